@@ -1,0 +1,53 @@
+"""Every error the package raises on purpose: one base, one class per meaning.
+
+Each message is one line that says what is wrong and what to write instead.
+"""
+
+from __future__ import annotations
+
+
+class SymbolicResponseError(Exception):
+    """Base of all errors raised on purpose by this package."""
+
+
+class InputError(SymbolicResponseError):
+    """The input cannot be used as it stands."""
+
+
+class ExpressionError(InputError):
+    """A text cannot be read as an expression, quantity or response.
+
+    ``position`` counts characters from 0 in the text that was read, or is None.
+    """
+
+    def __init__(self, message: str, position: int | None = None) -> None:
+        super().__init__(message)
+        self.position = position
+
+
+class NetworkError(InputError):
+    """A network, or the file that describes it, breaks a rule."""
+
+
+class QuantityError(InputError):
+    """A quantity names something that the network does not have, or does not exist for it."""
+
+
+class AssignmentError(InputError):
+    """A value given to a symbol cannot be used."""
+
+
+class EvaluationError(InputError):
+    """A quantity has no value at a point: a division by zero, a rate that is not positive ..."""
+
+
+class OutputError(InputError):
+    """An output file cannot be written."""
+
+
+class SizeLimitError(SymbolicResponseError):
+    """An answer exists but is beyond a stated limit; the message gives the number."""
+
+
+class UndecidedError(SymbolicResponseError):
+    """A question was not settled within the precision allowed."""
