@@ -1,0 +1,1 @@
+"""Exact expressions: the tree, its reader, normal form, values, enclosures and printers."""
