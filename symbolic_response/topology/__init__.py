@@ -1,5 +1,13 @@
 """What depends on the graph of a network alone: trees, forests, cycles, splittings, blocks."""
 
+from symbolic_response.topology.blocks import blocks, bridges
+from symbolic_response.topology.cycles import (
+    Cycle,
+    can_run_against,
+    can_run_along,
+    cycles,
+    fundamental_cycles,
+)
 from symbolic_response.topology.graph import (
     Graph,
     Progress,
@@ -7,6 +15,7 @@ from symbolic_response.topology.graph import (
     is_strongly_connected,
     unreachable,
 )
+from symbolic_response.topology.splittings import connected_bipartitions, splittings
 from symbolic_response.topology.trees import (
     SpanningTrees,
     count_rooted_trees,
@@ -17,15 +26,24 @@ from symbolic_response.topology.trees import (
 )
 
 __all__ = [
+    "Cycle",
     "Graph",
     "Progress",
     "SpanningTrees",
+    "blocks",
+    "bridges",
+    "can_run_against",
+    "can_run_along",
+    "connected_bipartitions",
     "count_rooted_trees",
     "count_undirected_trees",
+    "cycles",
+    "fundamental_cycles",
     "is_connected",
     "is_strongly_connected",
     "rooted",
     "spanning_trees",
+    "splittings",
     "two_tree_forests",
     "unreachable",
 ]
