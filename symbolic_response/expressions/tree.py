@@ -144,8 +144,11 @@ def power(base: Expression, exponent: int | Fraction) -> Expression:
             return _number_power(base.value, exact.numerator)
         if base.value in (0, 1):
             return base
-    if isinstance(base, Power) and exact.denominator == 1:
-        return power(base.base, base.exponent * exact)
+    if exact.denominator == 1:
+        if isinstance(base, Power):
+            return power(base.base, base.exponent * exact)
+        if isinstance(base, Product):
+            return multiply([power(factor, exact) for factor in base.factors])
     return Power(base, exact)
 
 

@@ -1,0 +1,118 @@
+"""Rigorous enclosures of constant expressions by ball arithmetic."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+from fractions import Fraction
+
+import flint
+
+from symbolic_response.errors import EvaluationError, UndecidedError
+from symbolic_response.expressions.tree import (
+    Expression,
+    Function,
+    Number,
+    Power,
+    Product,
+    Sum,
+    Symbol,
+)
+
+MAX_PRECISION = 4096
+RELATIVE_WIDTH = Fraction(1, 10**20)
+_PRECISIONS = (128, 256, 512, 1024, 2048, MAX_PRECISION)
+
+
+def ball(node: Expression, values: Mapping[str, flint.arb] | None = None) -> flint.arb:
+    """Return a ball that contains the value, at the precision in force (``flint.ctx``)."""
+    match node:
+        case Number(value):
+            return flint.arb(flint.fmpq(value.numerator, value.denominator))
+        case Symbol(name):
+            return (values or {})[name]
+        case Sum(terms):
+            return sum((ball(term, values) for term in terms), flint.arb(0))
+        case Product(factors):
+            result = flint.arb(1)
+            for factor in factors:
+                result *= ball(factor, values)
+            return result
+        case Power(base, exponent):
+            return _ball_power(ball(base, values), exponent)
+        case Function("exp", argument):
+            return ball(argument, values).exp()
+        case Function(_, argument):
+            return ball(argument, values).log()
+    raise TypeError(f"no enclosure for {type(node).__name__}")
+
+
+def _ball_power(base: flint.arb, exponent: Fraction) -> flint.arb:
+    raised = base ** abs(exponent.numerator)
+    if exponent.denominator != 1:
+        raised = raised.root(exponent.denominator)
+    return 1 / raised if exponent < 0 else raised
+
+
+def sign_of_constant(node: Expression) -> int:
+    """Return the sign, +1 or -1, of a constant that is not known to be zero.
+
+    Raises UndecidedError where 4096 bits cannot tell it from zero, or it has no value.
+    """
+    for precision in _PRECISIONS:
+        with flint.ctx.workprec(precision):
+            value = ball(node)
+            if value > 0:
+                return 1
+            if value < 0:
+                return -1
+    raise UndecidedError(f"a value cannot be told from zero at {MAX_PRECISION} bits")
+
+
+def decimal_enclosure(node: Expression) -> tuple[str, str]:
+    """Return two decimals, as text, that enclose a constant; relative width at most 1e-20.
+
+    Rounded outwards exactly. Raises UndecidedError where 4096 bits cannot tell the value from
+    zero, EvaluationError where it has none (a logarithm or root of a negative number).
+    """
+    for precision in _PRECISIONS:
+        with flint.ctx.workprec(precision):
+            value = ball(node)
+            if value.is_finite() and (value > 0 or value < 0):
+                low, high = _exact(value.lower()), _exact(value.upper())
+                shown = _round_outwards(low, high)
+                if shown is not None:
+                    return shown
+    if not value.is_finite():
+        raise EvaluationError("the value does not exist, or is too large to enclose")
+    raise UndecidedError(f"a value cannot be told from zero at {MAX_PRECISION} bits")
+
+
+def _exact(end: flint.arb) -> Fraction:
+    mantissa, exponent = end.man_exp()
+    return Fraction(int(mantissa)) * Fraction(2) ** int(exponent)
+
+
+def _round_outwards(low: Fraction, high: Fraction) -> tuple[str, str] | None:
+    size = min(abs(low), abs(high))
+    digits = 25 - _decimal_exponent(size)
+    scale = Fraction(10) ** digits
+    bottom, top = (low * scale).__floor__(), (high * scale).__ceil__()
+    if Fraction(top - bottom) > size * scale * RELATIVE_WIDTH:
+        return None
+    return _decimal(bottom, digits), _decimal(top, digits)
+
+
+def _decimal_exponent(size: Fraction) -> int:
+    bits = size.numerator.bit_length() - size.denominator.bit_length()
+    return int(bits * 0.30103)  # only chooses how many digits are shown
+
+
+def _decimal(value: int, digits: int) -> str:
+    sign, text = ("-" if value < 0 else ""), str(flint.fmpz(abs(value)))
+    first = len(text) - 1 - digits
+    if -5 <= first <= 25:
+        if digits <= 0:
+            return sign + text + "0" * -digits
+        text = text.rjust(digits + 1, "0")
+        return f"{sign}{text[:-digits]}.{text[-digits:]}"
+    return f"{sign}{text[0]}.{text[1:]}e{first:+d}"
