@@ -64,7 +64,7 @@ def splittings(
 
 
 def _collect(graph: Graph, sides: Iterator[int], limit: int, progress: Progress | None) -> Masks:
-    check_mask_size(graph)
+    check_mask_size(graph.size, "states")
     if len(breadth_first(graph)) < graph.size:
         raise ValueError("the graph is not connected")
     found: list[int] = []

@@ -97,7 +97,8 @@ def spanning_trees(
             f" the limit of {limit}; exact values at given points (--at) still work, or a higher"
             " limit"
         )
-    check_mask_size(graph)
+    check_mask_size(graph.size, "states")
+    check_mask_size(len(graph.ends), "transitions")
     partial = _enumerate(graph, count, progress) if count else _Partial.empty(graph.size, 0)
     order = np.argsort(partial.used)
     masks = partial.used[order]
@@ -200,8 +201,8 @@ def two_tree_forests(
     towards k, the other one towards each of its states l: M entries in order of l, then of the
     trees, as int8[M], uint64[M], uint64[M]. The sign is +1 if the second end of e is in k's tree,
     -1 if the first is. Forests that run a one-way transition backwards are left out.
-    Phi_{k,e} = sum of sign times product of rates; d pi_k / d barrier[e] = (C_e/D) (Phi_{k,e}/D)
-    with C_e/D the current of e.
+    Phi_{k,e} = sum of sign times product of rates; d pi_k / d barrier[e] = -(C_e/D) (Phi_{k,e}/D)
+    with C_e/D the current of e: a higher barrier holds back what e brings to its second end.
 
     >>> ring = Graph(3, ((0, 1), (1, 2), (2, 0)), (False,) * 3)
     >>> [part.tolist() for part in two_tree_forests(spanning_trees(ring), 0, 0)]
