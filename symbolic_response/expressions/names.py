@@ -31,6 +31,8 @@ def nearest(name: str, known: Iterable[str]) -> str:
     >>> nearest("xyz", ["flip", "bind"])
     ''
     """
+    if len(name) > 100:
+        return ""
     candidates = list(known)
     lowered = {candidate.lower(): candidate for candidate in reversed(candidates)}
     found = difflib.get_close_matches(name.lower(), list(lowered), n=1)
