@@ -237,6 +237,8 @@ def test_many_paths_and_few_cycles():
 def test_limits():
     graph = graph_of(nx.complete_graph(5))
     assert len(cycles(graph, limit=37)) == 37
+    with pytest.raises(SizeLimitError, match="36 cycles"):
+        cycles(graph, limit=36)
     for one_way in (False, True):
         ends = graph.ends + tuple((j, i) for i, j in graph.ends)
         limited = Graph(5, ends, (one_way,) * 20)

@@ -215,16 +215,15 @@ def two_tree_forests(
     forward = trees.forward[:, holders]
     # A tree directed towards r uses e forward exactly if r is on the side of e's second end.
     on_second = (forward & bit) != 0
-    first, second = graph.ends[transition]
-    meeting = np.where(on_second[state], forward[first], forward[second])
-    towards_state = (forward[state] ^ meeting) & ~bit
+    towards_k_and_e = forward[state] ^ forward[graph.ends[transition][0]]
     signs = np.where(on_second[state], 1, -1).astype(np.int8)
     parts: list[tuple[NDArray[np.int8], Masks, Masks]] = []
     for other in range(graph.size):
         apart = np.flatnonzero(on_second[other] != on_second[state])
-        # Inside k's tree forward[other] and meeting agree, inside the other tree forward[state]
-        # and meeting do: what is left is forward[state] in the one, forward[other] in the other.
-        directed = (towards_state[apart] ^ forward[other][apart]) & ~bit
+        # Both trees directed towards e are forward[first end], e itself left aside. In k's tree
+        # that agrees with forward[l], in l's tree with forward[k]: the exclusive or of the three
+        # leaves forward[k] in k's tree and forward[l] in l's tree.
+        directed = (towards_k_and_e[apart] ^ forward[other][apart]) & ~bit
         against = masks[apart] & ~directed
         allowed = (against & _one_way_mask(graph)) == 0
         parts.append((signs[apart][allowed], directed[allowed], against[allowed]))
