@@ -112,7 +112,11 @@ def read_latex(table: Table, what: str, place: Place) -> str | None:
     if "latex" not in table:
         return None
     place = (*place, "latex")
-    latex = one_line(table["latex"], f"{what}: latex", place)
+    latex = table["latex"]
+    if isinstance(latex, str) and not latex.isprintable():
+        raise DocumentError(f"{what}: latex {shown(latex)} holds a control character; write LaTeX "
+                            "in single quotes", *place)
+    latex = one_line(latex, f"{what}: latex", place)
     if not _balanced(latex) or re.search(r"(?<!\\)[$%&#]", latex):
         raise DocumentError(
             f"{what}: latex {shown(latex)} cannot stand in a formula; balance its braces, and "
