@@ -10,6 +10,7 @@ from symbolic_response.expressions.tree import (
     ZERO,
     Expression,
     Function,
+    Number,
     Power,
     Product,
     Sum,
@@ -27,9 +28,11 @@ LeafDerivative = Callable[[Expression], Expression]
 def derivative(node: Expression, leaf: LeafDerivative) -> Expression:
     """Return the derivative of a tree, given the derivatives of its leaves.
 
-    Sum, product, power and chain rule; ``leaf(x)`` is asked for every symbol and other leaf.
+    Sum, product, power and chain rule; ``leaf(x)`` is asked for every leaf but numbers.
     """
     match node:
+        case Number():
+            return ZERO
         case Sum(terms):
             return add([derivative(term, leaf) for term in terms])
         case Product(factors):

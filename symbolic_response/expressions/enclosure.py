@@ -8,6 +8,7 @@ from fractions import Fraction
 import flint
 
 from symbolic_response.errors import EvaluationError, UndecidedError
+from symbolic_response.expressions.ring import Polynomial
 from symbolic_response.expressions.tree import (
     Expression,
     Function,
@@ -39,11 +40,28 @@ def ball(node: Expression, values: Mapping[str, flint.arb] | None = None) -> fli
             return result
         case Power(base, exponent):
             return _ball_power(ball(base, values), exponent)
+        case Polynomial():
+            return _ball_polynomial(node, values)
         case Function("exp", argument):
             return ball(argument, values).exp()
         case Function(_, argument):
             return ball(argument, values).log()
     raise TypeError(f"no enclosure for {type(node).__name__}")
+
+
+def _ball_polynomial(leaf: Polynomial, values: Mapping[str, flint.arb] | None) -> flint.arb:
+    variables = [
+        ball(generator.expression(Fraction(1, root)), values)
+        for generator, root in zip(leaf.ring.generators, leaf.ring.roots, strict=True)
+    ]
+    total = flint.arb(0)
+    for exponents, coefficient in leaf.poly.terms():
+        term = flint.arb(coefficient)
+        for variable, exponent in zip(variables, exponents, strict=True):
+            if exponent:
+                term *= variable ** int(exponent)
+        total += term
+    return total
 
 
 def _ball_power(base: flint.arb, exponent: Fraction) -> flint.arb:

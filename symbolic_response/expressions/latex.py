@@ -124,7 +124,7 @@ def _factor(base: Expression, exponent: Fraction, names: Mapping[str, str]) -> s
     body = _atom(base, names)
     if exponent == 1:
         return body
-    if "^" in body or (isinstance(base, Function) and base.name == "ln"):
+    if isinstance(base, Function) or (isinstance(base, Symbol) and "^" in body):
         body = f"({body})"
     top, bottom = exponent.numerator, exponent.denominator
     shown = f"{top}" if bottom == 1 else f"{top}/{bottom}"
@@ -138,7 +138,10 @@ def _atom(base: Expression, names: Mapping[str, str]) -> str:
         case Function("exp", argument):
             return f"e^{{{exponent_latex(argument, names)}}}"
         case Function(_, argument):
-            return rf"\ln({expression_latex(argument, names)})"
+            inner = expression_latex(argument, names)
+            if inner.startswith(r"\frac") and len(latex_terms(argument, names)) == 1:
+                return rf"\ln\left({inner}\right)"
+            return rf"\ln({inner})"
         case Number(value) if value >= 0 and value.denominator == 1:
             return fraction_latex(value)
     return f"({expression_latex(base, names)})"

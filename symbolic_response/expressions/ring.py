@@ -29,6 +29,7 @@ from symbolic_response.expressions.tree import (
     multiply,
     number,
     power,
+    walk,
 )
 
 Poly = flint.fmpz_mpoly
@@ -209,6 +210,18 @@ def monomial_expression(ring: Ring, exponents: Sequence[int]) -> Expression:
     if argument:
         plain.append(function("exp", add(argument)))
     return multiply(plain) if plain else ONE
+
+
+def all_symbols(node: Expression) -> frozenset[str]:
+    """Return the names of all symbols in a tree, those inside polynomial leaves included."""
+    found: set[str] = set()
+    for part in walk(node):
+        if isinstance(part, Symbol):
+            found.add(part.name)
+        elif isinstance(part, Polynomial):
+            for generator in part.ring.generators:
+                found |= all_symbols(generator.base)
+    return frozenset(found)
 
 
 def symbol_ring(name: str, domain: Domain) -> Ring:

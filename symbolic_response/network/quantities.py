@@ -1,0 +1,101 @@
+"""What can be asked of a network: quantities and their responses, as data.
+
+The atoms are leaves of expression trees; any tree of atoms and symbols is a quantity. States,
+transitions and observables are referred to by their place in the network.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Iterator
+from dataclasses import dataclass
+
+from symbolic_response.expressions.tree import Expression, walk
+
+
+@dataclass(frozen=True, slots=True)
+class Probability(Expression):
+    """Stationary probability of a set of states."""
+
+    states: tuple[int, ...]
+
+
+@dataclass(frozen=True, slots=True)
+class Mean(Expression):
+    """Stationary mean of an observable."""
+
+    observable: int
+
+
+@dataclass(frozen=True, slots=True)
+class Current(Expression):
+    """Net stationary current of a transition, from its first to its second state, in 1/time."""
+
+    transition: int
+
+
+@dataclass(frozen=True, slots=True)
+class Traffic(Expression):
+    """Forward flow plus backward flow of a transition, in 1/time."""
+
+    transition: int
+
+
+@dataclass(frozen=True, slots=True)
+class DirectedRate(Expression):
+    """One rate of a transition, in 1/time; the backward rate of a one-way transition is 0."""
+
+    transition: int
+    backward: bool
+
+
+@dataclass(frozen=True, slots=True)
+class EntropyProduction(Expression):
+    """Entropy production rate, in k_B per time; each parallel channel counts by itself."""
+
+
+@dataclass(frozen=True, slots=True)
+class EnergyOf:
+    """Raising ``energy[state]`` by eps multiplies every rate out of the state by e^eps."""
+
+    state: int
+
+
+@dataclass(frozen=True, slots=True)
+class BarrierOf:
+    """Raising ``barrier[transition]`` by eps multiplies both its rates by e^-eps."""
+
+    transition: int
+
+
+@dataclass(frozen=True, slots=True)
+class DriveOf:
+    """Raising ``drive[transition]`` by eps multiplies its rates by e^(eps/2) and e^(-eps/2)."""
+
+    transition: int
+
+
+@dataclass(frozen=True, slots=True)
+class BySymbol:
+    """A symbol of the file, or its natural logarithm."""
+
+    name: str
+    logarithmic: bool = False
+
+
+Perturbation = EnergyOf | BarrierOf | DriveOf | BySymbol
+
+
+@dataclass(frozen=True, slots=True)
+class Response(Expression):
+    """The derivative of a quantity by a perturbation."""
+
+    quantity: Expression
+    perturbation: Perturbation
+
+
+def walk_quantity(node: Expression) -> Iterator[Expression]:
+    """Yield every node of a quantity, those inside responses included."""
+    for part in walk(node):
+        yield part
+        if isinstance(part, Response):
+            yield from walk_quantity(part.quantity)

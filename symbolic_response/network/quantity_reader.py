@@ -1,0 +1,284 @@
+"""Reading quantities and responses as they are written on paper.
+
+``p[A, B]``, ``mean[name]``, ``current[e]``, ``traffic[e]``, ``forward[e]``, ``backward[e]``,
+``entropy_production`` and expressions of them; ``d QUANTITY / d PERTURBATION`` for a response,
+which is the whole quantity or stands in parentheses.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Callable
+from dataclasses import dataclass
+
+from symbolic_response.errors import ExpressionError, QuantityError, SymbolicResponseError
+from symbolic_response.expressions.reader import Token, read_tokens, tokenize
+from symbolic_response.expressions.tree import Expression, function, symbols_of
+from symbolic_response.network.model import Network, nearest
+from symbolic_response.network.quantities import (
+    BarrierOf,
+    BySymbol,
+    Current,
+    DirectedRate,
+    DriveOf,
+    EnergyOf,
+    EntropyProduction,
+    Mean,
+    Perturbation,
+    Probability,
+    Response,
+    Traffic,
+)
+
+MAX_RESPONSE_DEPTH = 6
+_SHOWN = 60
+_ATOMS = ("p", "mean", "current", "traffic", "forward", "backward")
+_ONLY_IN_INEQUALITIES = ("force_max", "max_cov", "tanh", "abs", "max", "min")
+_OPENING, _CLOSING = ("(", "["), (")", "]")
+
+
+def read_quantity(text: str, network: Network) -> Expression:
+    """Return the quantity or response that ``text`` describes, for this network.
+
+    Raises QuantityError, in one line, with the position where reading stopped.
+    """
+    try:
+        tokens = tokenize(text)
+        quantity = _Reader(network, 0).read(tokens)
+    except ExpressionError as error:
+        raise QuantityError(f"in {_excerpt(text, error.position)}: {error}") from None
+    except QuantityError as error:
+        raise QuantityError(f"in {_excerpt(text, None)}: {error}") from None
+    return quantity
+
+
+def read_perturbation(text: str, network: Network) -> Perturbation:
+    """Return the perturbation that ``text`` names, such as ``barrier[bind]`` or ``ln c``."""
+    try:
+        return _Reader(network, 0).perturbation(tokenize(text))
+    except SymbolicResponseError as error:
+        raise QuantityError(f"in {_excerpt(text, None)}: {error}") from None
+
+
+def _excerpt(text: str, position: int | None) -> str:
+    flat = " ".join(text.split()) if position is None else text.replace("\n", " ")
+    if position is None or position <= 0:
+        return repr(flat if len(flat) <= _SHOWN else flat[:_SHOWN] + "...")
+    start = max(0, position - _SHOWN // 2)
+    shown = ("..." if start else "") + flat[start : start + _SHOWN]
+    shown += "..." if start + _SHOWN < len(flat) else ""
+    return f"{shown!r}, character {position + 1}"
+
+
+@dataclass(frozen=True, slots=True)
+class _Reader:
+    network: Network
+    depth: int
+
+    def read(self, tokens: list[Token]) -> Expression:
+        """Read a whole token list as a response or as an expression of atoms."""
+        if _is_d(tokens[0]):
+            return self.response(tokens)
+        quantity = read_tokens(tokens, self.atom)
+        self.check_symbols(quantity, tokens)
+        return quantity
+
+    def atom(self, tokens: list[Token], index: int) -> tuple[Expression, int] | None:
+        token = tokens[index]
+        if token.text == "(" and _is_d(tokens[index + 1]):
+            closing = _matching(tokens, index)
+            inner = [*tokens[index + 1 : closing], Token("end", "", tokens[closing].position)]
+            return self.response(inner), closing + 1
+        if token.kind != "name":
+            return None
+        if _is_d(token):
+            raise ExpressionError(
+                "a response is the whole quantity or stands in parentheses: (d ... / d ...)",
+                token.position,
+            )
+        if token.text == "entropy_production":
+            self.check_reversible()
+            return EntropyProduction(), index + 1
+        if token.text in _ATOMS:
+            return self.bracketed(tokens, index)
+        if token.text in _ONLY_IN_INEQUALITIES:
+            raise ExpressionError(f"{token.text!r} belongs in an inequality", token.position)
+        return None
+
+    def bracketed(self, tokens: list[Token], index: int) -> tuple[Expression, int]:
+        kind = tokens[index].text
+        names, after = _names_in_brackets(tokens, index + 1, kind)
+        network = self.network
+        if kind == "p":
+            states = tuple(network.state_index(name) for name in names)
+            if len(set(states)) != len(states):
+                raise ExpressionError("a state is named twice", tokens[index].position)
+            return Probability(tuple(sorted(states))), after
+        if len(names) != 1:
+            raise ExpressionError(f"{kind}[...] takes one name", tokens[index].position)
+        if kind == "mean":
+            known = [observable.name for observable in network.observables]
+            return Mean(known.index(network.observable(names[0]).name)), after
+        transition = network.transition_index(names[0])
+        makers: dict[str, Callable[[], Expression]] = {
+            "current": lambda: Current(transition),
+            "traffic": lambda: Traffic(transition),
+            "forward": lambda: DirectedRate(transition, False),
+            "backward": lambda: DirectedRate(transition, True),
+        }
+        return makers[kind](), after
+
+    def response(self, tokens: list[Token]) -> Expression:
+        if self.depth >= MAX_RESPONSE_DEPTH:
+            raise ExpressionError(
+                f"responses nested more than {MAX_RESPONSE_DEPTH} deep", tokens[0].position
+            )
+        slash = _last_slash_before_d(tokens)
+        end = Token("end", "", tokens[slash].position)
+        inner = _Reader(self.network, self.depth + 1)
+        quantity = inner.numerator([*tokens[1:slash], end])
+        return Response(quantity, self.perturbation(tokens[slash + 2 :]))
+
+    def numerator(self, tokens: list[Token]) -> Expression:
+        if _is_d(tokens[0]):
+            raise ExpressionError(
+                "put the inner response in parentheses: d (d ... / d ...) / d ...",
+                tokens[0].position,
+            )
+        if tokens[0].text == "ln" and tokens[1].text != "(":
+            if (operator := _top_level_operator(tokens[1:])) is not None:
+                raise ExpressionError(
+                    "a bare ln takes a single quantity; write ln(...) around what it applies to",
+                    operator.position,
+                )
+            return function("ln", self.read(tokens[1:]))
+        return self.read(tokens)
+
+    def perturbation(self, tokens: list[Token]) -> Perturbation:
+        first = tokens[0]
+        if first.text in ("energy", "barrier", "drive"):
+            names, after = _names_in_brackets(tokens, 1, first.text)
+            _expect_end(tokens, after)
+            if len(names) != 1:
+                raise ExpressionError(f"{first.text}[...] takes one name", first.position)
+            if first.text == "energy":
+                return EnergyOf(self.network.state_index(names[0]))
+            transition = self.network.transition_index(names[0])
+            return BarrierOf(transition) if first.text == "barrier" else DriveOf(transition)
+        logarithmic = first.text == "ln"
+        rest = tokens[1:] if logarithmic else tokens
+        if logarithmic and rest[0].text == "(" and len(rest) > 2 and rest[2].text == ")":
+            rest = [rest[1], *rest[3:]]
+        if rest[0].kind != "name":
+            raise ExpressionError(
+                "a perturbation is energy[state], barrier[transition], drive[transition],"
+                " a symbol, or ln of a positive symbol",
+                rest[0].position,
+            )
+        _expect_end(rest, 1)
+        return self.symbol_perturbation(rest[0], logarithmic)
+
+    def symbol_perturbation(self, token: Token, logarithmic: bool) -> Perturbation:
+        entry = self.network.symbol(token.text)
+        if logarithmic and not entry.positive:
+            raise ExpressionError(
+                f"d / d ln {entry.name} needs a positive symbol; write d / d {entry.name}",
+                token.position,
+            )
+        return BySymbol(entry.name, logarithmic)
+
+    def check_symbols(self, quantity: Expression, tokens: list[Token]) -> None:
+        known = [entry.name for entry in self.network.symbols]
+        unknown = symbols_of(quantity) - set(known)
+        for token in tokens:
+            if token.kind == "name" and token.text in unknown:
+                raise ExpressionError(
+                    f"unknown symbol {token.text!r}"
+                    + (nearest(token.text, known) or self.atom_hint(token.text)),
+                    token.position,
+                )
+
+    def atom_hint(self, name: str) -> str:
+        if name in [state.name for state in self.network.states]:
+            return f"; write p[{name}] for the probability of that state"
+        if name in [observable.name for observable in self.network.observables]:
+            return f"; write mean[{name}] for that observable"
+        if name in [transition.name for transition in self.network.transitions]:
+            return f"; write current[{name}] for the current of that transition"
+        return nearest(name, [*_ATOMS, "entropy_production"])
+
+    def check_reversible(self) -> None:
+        for transition in self.network.transitions:
+            if transition.backward is None:
+                raise QuantityError(
+                    f"entropy_production does not exist: transition {transition.name!r} is one-way"
+                )
+
+
+def _is_d(token: Token) -> bool:
+    return token.kind == "name" and token.text == "d"
+
+
+def _names_in_brackets(tokens: list[Token], index: int, kind: str) -> tuple[list[str], int]:
+    if tokens[index].text != "[":
+        message = f"{kind} needs a name in brackets: {kind}[...]"
+        raise ExpressionError(message, tokens[index].position)
+    names: list[str] = []
+    while True:
+        index += 1
+        if tokens[index].kind != "name":
+            raise ExpressionError(f"a name is expected in {kind}[...]", tokens[index].position)
+        names.append(tokens[index].text)
+        index += 1
+        if tokens[index].text == "]":
+            return names, index + 1
+        if tokens[index].text != ",":
+            raise ExpressionError(f"{kind}[...] is not closed by ]", tokens[index].position)
+
+
+def _matching(tokens: list[Token], index: int) -> int:
+    depth = 0
+    for place in range(index, len(tokens)):
+        if tokens[place].text in _OPENING:
+            depth += 1
+        elif tokens[place].text in _CLOSING:
+            depth -= 1
+            if depth == 0:
+                return place
+    raise ExpressionError("an opening parenthesis is never closed", tokens[index].position)
+
+
+def _top_level(tokens: list[Token]) -> list[int]:
+    depth, places = 0, []
+    for place, token in enumerate(tokens):
+        if token.text in _OPENING:
+            depth += 1
+        elif token.text in _CLOSING:
+            depth -= 1
+        elif depth == 0:
+            places.append(place)
+    return places
+
+
+def _last_slash_before_d(tokens: list[Token]) -> int:
+    for place in reversed(_top_level(tokens)):
+        if tokens[place].text == "/" and _is_d(tokens[place + 1]):
+            return place
+    raise ExpressionError(
+        "a response needs ' / d PERTURBATION', as in d p[A] / d ln c", tokens[-1].position
+    )
+
+
+def _top_level_operator(tokens: list[Token]) -> Token | None:
+    for place in _top_level(tokens):
+        if tokens[place].kind == "op" and tokens[place].text != ",":
+            return tokens[place]
+    return None
+
+
+def _expect_end(tokens: list[Token], index: int) -> None:
+    if tokens[index].kind != "end":
+        raise ExpressionError(
+            f"{tokens[index].text!r} cannot follow a perturbation; put a response in parentheses"
+            " to go on with it",
+            tokens[index].position,
+        )

@@ -1,0 +1,56 @@
+"""Closed forms of quantities and responses, in the user's symbols."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+from dataclasses import dataclass
+
+from symbolic_response.algebra.factored import Factored
+from symbolic_response.expressions.latex import expression_latex
+from symbolic_response.expressions.ring import all_symbols
+from symbolic_response.expressions.text import expression_text
+from symbolic_response.expressions.tree import Expression
+from symbolic_response.response.analysis import Analysis
+from symbolic_response.response.closed_trees import closed_tree
+
+
+@dataclass(frozen=True, slots=True)
+class ClosedForm:
+    """A quantity of a network in closed form: factored, exact, in the user's symbols."""
+
+    form: Factored
+    names: Mapping[str, str]
+
+    @property
+    def expression(self) -> Expression:
+        """The tree; its polynomials are leaves."""
+        return self.form.expression()
+
+    def text(self) -> str:
+        """Return the form in the syntax of the network file."""
+        return expression_text(self.expression)
+
+    def latex(self) -> str:
+        """Return the form as LaTeX, without math delimiters."""
+        return expression_latex(self.expression, self.names)
+
+    def symbols(self) -> frozenset[str]:
+        """Return the symbols that occur."""
+        return all_symbols(self.expression)
+
+    def __str__(self) -> str:
+        return self.text()
+
+    def _repr_latex_(self) -> str:
+        return f"$\\displaystyle {self.latex()}$"
+
+
+def closed_form(
+    quantity: Expression, analysis: Analysis, names: Mapping[str, str]
+) -> ClosedForm:
+    """Return a quantity or response of a network in closed form.
+
+    ``names`` gives the LaTeX of each symbol. Raises QuantityError where the quantity does not
+    exist for the network, EvaluationError for a division by zero, SizeLimitError past a limit.
+    """
+    return ClosedForm(analysis.simplified(closed_tree(quantity, analysis)), names)
