@@ -2,7 +2,9 @@
 
 from __future__ import annotations
 
+import contextlib
 import re
+import tomllib
 from fractions import Fraction
 
 import pytest
@@ -198,6 +200,7 @@ FAULTY = [
     (ring("[symbols.k]", "[symbols.k]\nrange = [1]"), 3, "not an array of two entries"),
     (ring("[symbols.k]", "[symbols.k]\nrange = 1"), 3, "not an array of two entries"),
     (ring("[symbols.k]", "[symbols.k]\nrange = [2, 1]"), 3, "range runs from 2 up to 1"),
+    (ring("[symbols.k]", "[symbols.k]\nrange = [1, 1]"), 3, "range runs from 1 up to 1"),
     (ring("[symbols.k]", "[symbols.k]\nrange = [1, inf]"), 3, "range is inf; write a finite"),
     (ring("[symbols.k]", "[symbols.k]\nrange = [0, 1.5]"), 3, "begins at 0, .* is positive"),
     (ring("[symbols.k]", '[symbols.k]\nrange = [1,\n"ln(2)"]'), 4, "'ln\\(2\\)' .* not an exact"),
@@ -268,6 +271,9 @@ FAULTY = [
     (ring("energy = 1", "energy = " + "9" * 5000), 8, "more than 1000 digits"),
     (ring("energy = 1", "energy = 0x" + "f" * 900_000), 8, "longer than 100000 bits"),
     (ring("energy = 1", "a." * 60_000 + "a = 1"), 8, "more than 100 parts"),
+    (RING + "x = '''\n", 21, "not valid TOML: .*end of the file; close the quotes"),
+    (RING + "[x\n", 21, "close the name of the table as it was opened"),
+    (RING + "[[é]]\n", 21, "Invalid initial character .*begin a name with a letter"),
     (RING + 'x = """\n', 21, "not valid TOML: .*end of the file"),
     (ring('"ring"', '"ri\0ng"'), 1, "not valid TOML: Illegal character"),
 ]
@@ -314,11 +320,36 @@ def test_numbers_are_exact() -> None:
 
 
 def test_lines_of_nested_values() -> None:
-    text = 'a.b = 1\n[[t]]\nx = [{y = 1, "z z" = [\n2, 3.5]},\n#]\n"]"]\n[[t]]\n[t.s]\nq = 1\n'
+    text = (
+        'a.b = 1\n[[t]]\nx = [{y = 1, "z z" = [\n2, 3.5]},\n#]\n"]"]\n'
+        "[[t]]\n[t.s]\nq = \"\"\"\n[u]\n\"\"\"\"\"\nr = 1\n"
+    )
     lines = key_lines(text)
     assert lines[("a", "b")] == 1 and lines[("t", 0, "x", 0, "y")] == 3
     assert lines[("t", 0, "x", 0, "z z", 1)] == 4 and lines[("t", 0, "x", 1)] == 6
     assert lines[("t", 1)] == 7 and lines[("t", 1, "s", "q")] == 9
+    assert lines[("t", 1, "s", "r")] == 12
+    assert set(lines) == places(tomllib.loads(text))
+
+
+def places(document: object) -> set[tuple[str | int, ...]]:
+    """Return the place of everything in a document, except of the document itself."""
+    found: set[tuple[str | int, ...]] = set()
+    pending: list[tuple[tuple[str | int, ...], object]] = [((), document)]
+    while pending:
+        place, part = pending.pop()
+        found.add(place)
+        if isinstance(part, dict | list):
+            entries = part.items() if isinstance(part, dict) else enumerate(part)
+            pending.extend(((*place, key), entry) for key, entry in entries)
+    return found - {()}
+
+
+def test_words_kept_sections_use() -> None:
+    text = ring("[symbols.k]", "[symbols.k]\n[symbols.spare]\n[symbols.other]")
+    read_network_text(text + "[notation]\nspare = 'other/2'\n")
+    with pytest.raises(NetworkError, match="'spare' is declared but not used"):
+        read_network_text(text + "[notation]\nspares = 'other/2'\n")
 
 
 @settings(max_examples=300, deadline=None)
@@ -330,6 +361,9 @@ def test_mutated_files_are_answered(tmp_path_factory, data) -> None:
         length = data.draw(st.integers(0, 12))
         alphabet = st.sampled_from([*b'"\'[]{}=.,#\n\r\t \\k1-\x00\xff', 0xC3, 0xA9])
         raw[start : start + length] = bytes(data.draw(st.lists(alphabet, max_size=3)))
+    with contextlib.suppress(ValueError):
+        text = raw.decode().replace("\r\n", "\n")
+        assert places(tomllib.loads(text)) == set(key_lines(text))
     file = tmp_path_factory.getbasetemp() / "mutated.toml"
     file.write_bytes(bytes(raw))
     try:

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import re
-from collections.abc import Iterator, Sequence
+from collections.abc import Iterator, Mapping, Sequence
 
 from symbolic_response.errors import EvaluationError
 from symbolic_response.expressions.names import RESERVED, default_latex, same_latex
@@ -53,7 +53,7 @@ def words_of(network: Network) -> frozenset[str]:
         part = pending.pop()
         if isinstance(part, str):
             found.update(re.findall(r"[A-Za-z0-9_]+", part))
-        elif isinstance(part, dict):
+        elif isinstance(part, Mapping):
             pending.extend(part.keys())
             pending.extend(part.values())
         elif isinstance(part, list | tuple):

@@ -17,7 +17,7 @@ MAX_BYTES = 5_000_000
 MAX_DIGITS = 1_000
 MAX_PARTS = 100
 
-_DIGITS = re.compile(rf"[0-9_]{{{MAX_DIGITS + 1}}}", re.ASCII)
+_DIGITS = re.compile(rf"[0-9][0-9_]{{{MAX_DIGITS}}}", re.ASCII)
 _DOTTED = re.compile(
     r"(?<![A-Za-z0-9_-])(?:(?:[A-Za-z0-9_-]++|\"[^\"\n]*+\"|'[^'\n]*+')[ \t]*+\.[ \t]*+)++"
 )
@@ -31,7 +31,13 @@ _SYNTAX_HINTS = {
     "Invalid statement": "write KEY = VALUE or [TABLE]",
     "Unescaped '\\' in a string": "write LaTeX in single quotes",
     "Illegal character '\\n'": "close the quotes on the line they open on",
+    "Found invalid character": "remove it",
+    "Illegal character": "remove it",
     "Unterminated string": "close the quotes",
+    "Expected \"'''\"": "close the quotes",
+    "Expected '\"\"\"'": "close the quotes",
+    "Expected ']": "close the name of the table as it was opened",
+    "Invalid initial character": "begin a name with a letter",
     "Unclosed array": "put commas between the entries and ] at the end",
     "Unclosed inline table": "put commas between the entries and } at the end",
 }
@@ -42,7 +48,7 @@ def read_network(path: str | os.PathLike[str]) -> Network:
 
     Raises NetworkError, its message one line that begins with file and line.
     """
-    label = os.fspath(path)
+    label = os.fsdecode(path)
     return read_network_text(_read_text(label), label)
 
 
