@@ -1,16 +1,17 @@
-"""From rates to the user's symbols: each rate as a coefficient times a monomial.
+"""Substituting expressions for generators, each as a coefficient times a monomial.
 
-A sum that occurs in a rate, such as ``k1 + k2*c``, is not multiplied out: it becomes a generator
-of its own whose relation says what it stands for.
+A sum that is put in for a generator, such as the rate ``k1 + k2*c``, is not multiplied out: it
+becomes a generator of its own whose relation says what it stands for.
 """
 
 from __future__ import annotations
 
-from collections.abc import Sequence
-from dataclasses import dataclass
+from collections.abc import Callable, Sequence
 from fractions import Fraction
+from typing import Any
 
 import numpy as np
+from numpy.typing import NDArray
 
 from symbolic_response.algebra.factored import (
     ZERO,
@@ -23,13 +24,14 @@ from symbolic_response.algebra.factored import (
     product,
     scaled,
 )
-from symbolic_response.algebra.rates import RateRing
+from symbolic_response.errors import EvaluationError
 from symbolic_response.expressions.normal_form import normal_form
 from symbolic_response.expressions.ring import (
     Domain,
     Generator,
     Poly,
     Polynomial,
+    Ring,
     common_denominator,
     expression_of,
     lift_exponents,
@@ -39,24 +41,37 @@ from symbolic_response.expressions.signs import certain_sign
 from symbolic_response.expressions.tree import Expression
 
 
-@dataclass(frozen=True, slots=True)
-class RateSubstitution:
-    """``images[g]``: what generator g of the ring of rates stands for, a single monomial."""
+class Substitution:
+    """A substitution of generators; sums met on the way are named once for all uses.
 
-    rates: RateRing
-    context: Context
-    images: tuple[Factored, ...]
+    ``image(generator, root)`` is the expression put in for the generator to the power 1/root.
+    """
 
-    def apply(self, poly: Poly) -> Factored:
-        """Return a polynomial in the rates as a factored expression in the user's symbols."""
+    def __init__(
+        self, domain: Domain, image: Callable[[Generator, int], Expression]
+    ) -> None:
+        self.context = Context(domain, {})
+        self._image = image
+        self._images: dict[tuple[Generator, int], Factored] = {}
+
+    def image(self, generator: Generator, root: int) -> Factored:
+        """Return what stands for a ring's variable, a single product of generators."""
+        key = (generator, root)
+        if key not in self._images:
+            self._images[key] = self._monomial(self._image(generator, root))
+        return self._images[key]
+
+    def apply(self, poly: Poly, ring: Ring) -> Factored:
+        """Return a polynomial with every generator replaced, in factored form."""
         if len(poly) == 0:
             return ZERO
-        target = union(image.ring for image in self.images)
-        rows = [lift_exponents(image.monomial, image.ring, target) for image in self.images]
-        exponents = np.array(poly.monoms(), dtype=np.int64).reshape(len(poly), -1)
+        images = [self.image(g, root) for g, root in zip(ring.generators, ring.roots, strict=True)]
+        exponents = np.array(poly.monoms(), dtype=np.int64).reshape(len(poly), len(images))
+        values = _coefficients(exponents, poly, images)
+        target = union(image.ring for image in images)
+        rows = [lift_exponents(image.monomial, image.ring, target) for image in images]
         mapped = exponents @ np.array(rows, dtype=np.int64).reshape(len(rows), -1)
-        lowest = mapped.min(axis=0) if mapped.size else np.zeros(0, dtype=np.int64)
-        values = self._coefficients(exponents, poly)
+        lowest = mapped.min(axis=0)
         scale = common_denominator(values)
         terms: dict[tuple[int, ...], int] = {}
         for key, value in zip(map(tuple, (mapped - lowest).tolist()), values, strict=True):
@@ -65,59 +80,60 @@ class RateSubstitution:
         lead = Factored(Fraction(1, scale), target, tuple(int(step) for step in lowest))
         return product([lead, from_polynomial(gathered, target, self.context)])
 
-    def _coefficients(self, exponents: np.ndarray, poly: Poly) -> list[Fraction]:
-        values = [Fraction(int(c)) for c in poly.coeffs()]
-        for place, image in enumerate(self.images):
-            if image.coefficient != 1:
-                steps = exponents[:, place].tolist()
-                values = [
-                    value * image.coefficient**step
-                    for value, step in zip(values, steps, strict=True)
-                ]
-        return values
+    def monomial(self, value: Factored) -> Factored:
+        """Return coefficient and monomial of a product with every generator replaced.
+
+        Raises EvaluationError if what stands in a denominator becomes zero.
+        """
+        parts = [constant(value.coefficient)]
+        for generator, root, exponent in zip(
+            value.ring.generators, value.ring.roots, value.monomial, strict=True
+        ):
+            if exponent:
+                image = self.image(generator, root)
+                if image.is_zero() and exponent < 0:
+                    raise EvaluationError("division by zero")
+                parts.append(integer_power(image, exponent) if not image.is_zero() else ZERO)
+        return product(parts)
+
+    def _monomial(self, expression: Expression) -> Factored:
+        form = normal_form(expression, self.context.domain)
+        if form.is_zero():
+            return ZERO
+        parts = []
+        for poly, sign in ((form.numerator, 1), (form.denominator, -1)):
+            content, pieces = poly.factor()
+            parts.append(integer_power(constant(int(content)), sign))
+            for piece, exponent in pieces:
+                parts.append(integer_power(self._named(piece, form.ring), int(exponent) * sign))
+        return product(parts)
+
+    def _named(self, piece: Poly, ring: Ring) -> Factored:
+        value = from_polynomial(piece, ring, Context(self.context.domain, {}))
+        parts = [scaled(Factored(Fraction(1), value.ring, value.monomial), value.coefficient)]
+        for base, exponent in value.factors:
+            assert isinstance(base, Polynomial)
+            if base not in self.context.named:
+                self.context.named[base] = self._generator_for(base)
+            parts.append(monomial_of(self.context.named[base], exponent))
+        return product(parts)
+
+    def _generator_for(self, base: Polynomial) -> Generator:
+        expression = expression_of(base.ring, base.poly)
+        positive = certain_sign(expression, self.context.domain.positive) == 1
+        rank = len(self.context.named)
+        return Generator("root", rank, repr(expression), expression, positive, base)
 
 
-def rate_substitution(
-    rates: RateRing, expressions: Sequence[Expression], domain: Domain
-) -> RateSubstitution:
-    """Return the substitution of rates by expressions in the symbols of ``domain``.
-
-    ``expressions``: one for each generator of the ring of rates, in order.
-    """
-    named: dict[Polynomial, Generator] = {}
-    images = [_image(expression, domain, named) for expression in expressions]
-    return RateSubstitution(rates, Context(domain, named), tuple(images))
-
-
-def _image(
-    expression: Expression, domain: Domain, named: dict[Polynomial, Generator]
-) -> Factored:
-    form = normal_form(expression, domain)
-    plain = Context(domain, {})
-    parts = []
-    for poly, sign in ((form.numerator, 1), (form.denominator, -1)):
-        content, pieces = poly.factor()
-        parts.append(integer_power(constant(int(content)), sign))
-        for piece, exponent in pieces:
-            value = from_polynomial(piece, form.ring, plain)
-            parts.append(_named(value, int(exponent) * sign, domain, named))
-    return product(parts)
-
-
-def _named(
-    value: Factored, exponent: int, domain: Domain, named: dict[Polynomial, Generator]
-) -> Factored:
-    lead = scaled(Factored(Fraction(1), value.ring, value.monomial), value.coefficient)
-    parts = [lead]
-    for base, power_ in value.factors:
-        assert isinstance(base, Polynomial)
-        if base not in named:
-            named[base] = _generator_for(base, domain, len(named))
-        parts.append(monomial_of(named[base], power_))
-    return integer_power(product(parts), exponent)
-
-
-def _generator_for(base: Polynomial, domain: Domain, rank: int) -> Generator:
-    expression = expression_of(base.ring, base.poly)
-    positive = certain_sign(expression, domain.positive) == 1
-    return Generator("root", rank, repr(expression), expression, positive, base)
+def _coefficients(
+    exponents: NDArray[np.int64], poly: Poly, images: Sequence[Factored]
+) -> list[Fraction]:
+    values: list[Any] = [Fraction(int(c)) for c in poly.coeffs()]
+    for place, image in enumerate(images):
+        if image.coefficient != 1:
+            powers: dict[int, Fraction] = {}
+            for index, step in enumerate(exponents[:, place].tolist()):
+                if step not in powers:
+                    powers[step] = image.coefficient**step
+                values[index] *= powers[step]
+    return values

@@ -49,7 +49,9 @@ def total(values: Sequence[Factored], context: Context) -> Factored:
         content = constant(common.coefficient)
         rest = [product([content, term]) for term in rest]
         bare = product([_inverse(content), common])
-        return product([bare, _sum_with_functions(rest, opaque, context)])
+        gathered = product([bare, _sum_with_functions(rest, opaque, context)])
+        apart = Factored(Fraction(1), factors=((FactoredSum(tuple(terms)), Fraction(1)),))
+        return gathered if gathered.literals() <= apart.literals() else apart
     kept = Factored(Fraction(1), factors=((FactoredSum(tuple(rest)), Fraction(1)),))
     if sum(_products_needed(term) for term in rest) > MAX_EXPANDED_PRODUCTS:
         return product([common, kept])

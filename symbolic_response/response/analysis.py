@@ -14,9 +14,10 @@ from functools import cached_property
 from symbolic_response.algebra.factored import Factored, from_polynomial
 from symbolic_response.algebra.rates import RateRing, polynomial_from_masks, rate_ring
 from symbolic_response.algebra.simplify import simplify
-from symbolic_response.algebra.substitution import RateSubstitution, rate_substitution
+from symbolic_response.algebra.substitution import Substitution
 from symbolic_response.errors import SizeLimitError
-from symbolic_response.expressions.ring import Domain, Poly, Polynomial
+from symbolic_response.expressions.normal_form import normal_form
+from symbolic_response.expressions.ring import Domain, Generator, Poly, Polynomial
 from symbolic_response.expressions.tree import Expression
 from symbolic_response.network.model import Network
 from symbolic_response.topology import (
@@ -87,24 +88,28 @@ class Analysis:
         return expression
 
     @cached_property
-    def substitution(self) -> RateSubstitution:
+    def substitution(self) -> Substitution:
         """The user's expressions for the rates."""
-        expressions = [self.rate_expression(e, back) for e, back in self.rates.directions()]
-        return rate_substitution(self.rates, expressions, self.domain)
+        directions = self.rates.directions()
+
+        def image(generator: Generator, _: int) -> Expression:
+            return self.rate_expression(*directions[generator.rank])
+
+        return Substitution(self.domain, image)
 
     def simplified(self, tree: Expression) -> Factored:
         """Return a tree over symbols and polynomials in the rates in factored form."""
         return simplify(tree, self.substitution.context, self._substituted)
 
     def tidy(self, expression: Expression) -> Expression:
-        """Return an expression in the user's symbols alone, simplified."""
-        return self.simplified(expression).expression()
+        """Return an expression in the user's symbols alone, in normal form."""
+        return normal_form(expression, self.domain).expression()
 
     def _substituted(self, leaf: Polynomial) -> Factored:
         if leaf.ring != self.rates.ring:
             return from_polynomial(leaf.poly, leaf.ring, self.substitution.context)
         if leaf not in self._images:
-            self._images[leaf] = self.substitution.apply(leaf.poly)
+            self._images[leaf] = self.substitution.apply(leaf.poly, leaf.ring)
         return self._images[leaf]
 
     # -- trees -----------------------------------------------------------------------------

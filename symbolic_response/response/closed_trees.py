@@ -215,7 +215,7 @@ def _mean_change(
     values: tuple[Expression, ...], perturbation: Perturbation, analysis: Analysis
 ) -> Expression:
     """Return d/d theta of the sum of values[k] p_k, explicit dependence of the values included."""
-    explicit = ZERO
+    explicit: Expression = ZERO
     if isinstance(perturbation, BySymbol):
         slopes = tuple(
             multiply([by_symbol(value, perturbation.name),
