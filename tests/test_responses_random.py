@@ -76,7 +76,7 @@ def values() -> dict[str, Expression]:
 @given(networks(), responses())
 def test_closed_forms_against_the_linear_system(network: Network, text: str) -> None:
     quantity = read_quantity(text, network)
-    form = closed_form(quantity, Analysis(network), {})
+    form = closed_form(quantity, Analysis(network))
     exact = Point(network, values()).value(quantity)
     placed = specialise(form.form, values(), NONE)
     found = normal_form(placed.expression(), NONE)
@@ -129,7 +129,7 @@ def test_responses_against_sympy(network: Network, name: str) -> None:
     expected = sympy_answer(network, weights[: len(network.states)], name)
     quantity = read_quantity(f"d mean[q] / d {name}", network)
     assert Point(network, values()).value(quantity) == expected
-    placed = specialise(closed_form(quantity, Analysis(network), {}).form, values(), NONE)
+    placed = specialise(closed_form(quantity, Analysis(network)).form, values(), NONE)
     assert normal_form(placed.expression(), NONE).as_fraction() == expected
 
 

@@ -7,9 +7,11 @@ from dataclasses import dataclass
 
 from symbolic_response.algebra.factored import Factored
 from symbolic_response.expressions.latex import expression_latex
+from symbolic_response.expressions.names import default_latex
 from symbolic_response.expressions.ring import all_symbols
 from symbolic_response.expressions.text import expression_text
 from symbolic_response.expressions.tree import Expression
+from symbolic_response.network.model import Network
 from symbolic_response.response.analysis import Analysis
 from symbolic_response.response.closed_trees import closed_tree
 
@@ -45,12 +47,16 @@ class ClosedForm:
         return f"$\\displaystyle {self.latex()}$"
 
 
-def closed_form(
-    quantity: Expression, analysis: Analysis, names: Mapping[str, str]
-) -> ClosedForm:
+def closed_form(quantity: Expression, analysis: Analysis) -> ClosedForm:
     """Return a quantity or response of a network in closed form.
 
-    ``names`` gives the LaTeX of each symbol. Raises QuantityError where the quantity does not
-    exist for the network, EvaluationError for a division by zero, SizeLimitError past a limit.
+    Raises QuantityError where the quantity does not exist for the network, EvaluationError for a
+    division by zero, SizeLimitError past a limit.
     """
-    return ClosedForm(analysis.simplified(closed_tree(quantity, analysis)), names)
+    form = analysis.simplified(closed_tree(quantity, analysis))
+    return ClosedForm(form, symbol_names(analysis.network))
+
+
+def symbol_names(network: Network) -> dict[str, str]:
+    """Return the LaTeX of every symbol of a network."""
+    return {entry.name: entry.latex or default_latex(entry.name) for entry in network.symbols}

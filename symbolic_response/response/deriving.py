@@ -1,0 +1,216 @@
+"""From a text to a result: closed form, substitutions, exact value, enclosure."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping, Sequence
+from dataclasses import dataclass
+from fractions import Fraction
+
+from symbolic_response.algebra.specialise import specialise
+from symbolic_response.errors import (
+    AssignmentError,
+    EvaluationError,
+    ExpressionError,
+    QuantityError,
+)
+from symbolic_response.expressions.enclosure import decimal_enclosure
+from symbolic_response.expressions.latex import expression_latex, fraction_latex
+from symbolic_response.expressions.names import nearest
+from symbolic_response.expressions.normal_form import Quotient, normal_form
+from symbolic_response.expressions.reader import read_expression
+from symbolic_response.expressions.ring import Domain
+from symbolic_response.expressions.signs import certain_sign
+from symbolic_response.expressions.text import expression_text, fraction_text
+from symbolic_response.expressions.tree import (
+    Expression,
+    Symbol,
+    number,
+    rebuild,
+    substitute,
+    symbols_of,
+)
+from symbolic_response.network.model import Network
+from symbolic_response.network.quantities import BySymbol, Response
+from symbolic_response.network.quantity_reader import read_quantity
+from symbolic_response.network.substitution import with_substitution
+from symbolic_response.response.analysis import Analysis
+from symbolic_response.response.closed_form import ClosedForm, closed_form
+from symbolic_response.response.values import Point
+
+NO_SYMBOLS = Domain((), frozenset())
+
+
+@dataclass(frozen=True, slots=True)
+class Value:
+    """The exact value of a quantity: a rational number, or an expression and its enclosure.
+
+    ``enclosure``: two decimals as text, relative width at most 1e-20; None for a rational value.
+    """
+
+    exact: Fraction | None
+    expression: Expression
+    enclosure: tuple[str, str] | None = None
+
+    def __str__(self) -> str:
+        return expression_text(self.expression)
+
+
+@dataclass(frozen=True, slots=True)
+class Derived:
+    """One result: the quantity as asked for, its expression, LaTeX, and value if it has one."""
+
+    quantity: str
+    expression: str
+    latex: str
+    value: Value | None
+
+    def _repr_latex_(self) -> str:
+        return f"$\\displaystyle {self.latex}$"
+
+
+def read_assignments(texts: Sequence[str], what: str) -> dict[str, Expression]:
+    """Return ``SYMBOL=EXPRESSION`` texts as expressions by name; AssignmentError if one is bad."""
+    found: dict[str, Expression] = {}
+    for text in texts:
+        name, equals, value = text.partition("=")
+        name = name.strip()
+        if not equals or not name:
+            raise AssignmentError(f"{what} {text[:60]!r}: write SYMBOL=EXPRESSION")
+        if name in found:
+            raise AssignmentError(f"{what}: {name} is given twice")
+        try:
+            found[name] = read_expression(value)
+        except ExpressionError as error:
+            raise AssignmentError(f"{what} {text[:60]!r}: {error}") from None
+    return found
+
+
+def check_values(values: Mapping[str, Expression], network: Network) -> None:
+    """Raise AssignmentError unless each value is a constant that its symbol may take."""
+    known = [entry.name for entry in network.symbols]
+    for name, value in values.items():
+        if name not in known:
+            raise AssignmentError(f"there is no symbol {name!r}{nearest(name, known)}")
+        if others := sorted(symbols_of(value)):
+            raise AssignmentError(
+                f"the value of {name} contains the symbol {others[0]}; a value has none (an"
+                " expression with symbols goes into a substitution)"
+            )
+        try:
+            sign = certain_sign(value, frozenset())
+        except EvaluationError as error:
+            raise AssignmentError(f"the value of {name}: {error}") from None
+        if network.symbol(name).positive and sign != 1:
+            raise AssignmentError(f"the value of {name} is {expression_text(value)}, and {name} is"
+                                  " a positive symbol")
+
+
+Given = str | int | Fraction | Expression
+
+
+def derive(
+    subject: Network | Analysis,
+    text: str,
+    *,
+    at: Mapping[str, Given] | None = None,
+    put: Mapping[str, Given] | None = None,
+) -> Derived:
+    """Return a quantity or response of a network in closed form, or its exact value.
+
+    ``put`` substitutes expressions for symbols first, ``at`` then gives values to symbols (``3/7``,
+    ``ln(3/2)``). Pass an :class:`Analysis` to derive several quantities of one network. Raises
+    QuantityError, AssignmentError, EvaluationError, SizeLimitError.
+
+    >>> from symbolic_response.network.build import build_network
+    >>> pair = build_network("pair", states="A B", transitions=[("A", "B", "k*c", "k")])
+    >>> derive(pair, "d p[B] / d ln c").expression
+    'c/(c + 1)**2'
+    >>> derive(pair, "d p[B] / d ln c", at={"c": "1/2", "k": 3}).value.exact
+    Fraction(2, 9)
+    """
+    analysis = subject if isinstance(subject, Analysis) else Analysis(subject)
+    quantity = read_quantity(text, analysis.network)
+    if put:
+        changes = {name: _given(name, value) for name, value in put.items()}
+        analysis = Analysis(with_substitution(analysis.network, changes))
+        quantity = replaced(quantity, changes, text)
+    values = {name: _given(name, value) for name, value in (at or {}).items()}
+    return derive_quantity(analysis, quantity, text, values)
+
+
+def _given(name: str, value: Given) -> Expression:
+    if isinstance(value, Expression):
+        return value
+    if isinstance(value, str):
+        return read_assignments([f"{name}={value}"], "assignment")[name]
+    if isinstance(value, (int, Fraction)):
+        return number(value)
+    raise AssignmentError(f"the value of {name} is a {type(value).__name__}; give it as exact text")
+
+
+def derive_quantity(
+    analysis: Analysis, quantity: Expression, label: str, values: Mapping[str, Expression]
+) -> Derived:
+    """Return a quantity that has been read, with ``values`` put in for symbols.
+
+    Where every symbol has a value, the value comes straight from the linear system and no closed
+    form is needed.
+    """
+    check_values(values, analysis.network)
+    if all(entry.name in values for entry in analysis.network.symbols):
+        exact = Point(analysis.network, values).value(quantity)
+        if exact is not None:
+            return _rational(label, exact)
+    form = closed_form(quantity, analysis)
+    if values:
+        check_rates(analysis.network, values)
+        form = ClosedForm(specialise(form.form, dict(values), analysis.domain), form.names)
+    if form.symbols():
+        return Derived(label, form.text(), form.latex(), None)
+    return _constant(label, normal_form(form.expression, NO_SYMBOLS), form)
+
+
+def _rational(text: str, exact: Fraction) -> Derived:
+    shown = Value(exact, number(exact))
+    return Derived(text, fraction_text(exact), fraction_latex(exact), shown)
+
+
+def _constant(text: str, value: Quotient, form: ClosedForm) -> Derived:
+    exact = value.as_fraction()
+    if exact is not None:
+        return _rational(text, exact)
+    expression = min(value.expression(), form.expression, key=lambda e: len(expression_text(e)))
+    shown = Value(None, expression, decimal_enclosure(expression))
+    return Derived(text, expression_text(expression), expression_latex(expression, {}), shown)
+
+
+def check_rates(network: Network, values: Mapping[str, Expression]) -> None:
+    """Raise EvaluationError if, with some symbols given values, a rate cannot be positive."""
+    placed = dict(values)
+    for transition in network.transitions:
+        for rate in (transition.forward, transition.backward):
+            if rate is None:
+                continue
+            sign = certain_sign(substitute(rate, placed), network.positive_symbols)
+            if sign is not None and sign <= 0:
+                at = ", ".join(f"{name} = {expression_text(v)}" for name, v in placed.items())
+                raise EvaluationError(
+                    f"rate {expression_text(rate)!r} of transition {transition.name!r} is not"
+                    f" positive at {at}"
+                )
+
+
+def replaced(quantity: Expression, changes: Mapping[str, Expression], label: str) -> Expression:
+    """Return a quantity with symbols replaced; QuantityError for a response to one of them."""
+
+    def leaf(part: Expression) -> Expression:
+        if isinstance(part, Response):
+            by = part.perturbation
+            if isinstance(by, BySymbol) and by.name in changes:
+                raise QuantityError(
+                    f"{label!r} is a response to {by.name}, which a substitution replaces"
+                )
+            return Response(rebuild(part.quantity, leaf), by)
+        return changes.get(part.name, part) if isinstance(part, Symbol) else part
+
+    return rebuild(quantity, leaf)
