@@ -1,0 +1,76 @@
+"""Exact steady states, responses and thermodynamic bounds of small driven kinetic networks.
+
+>>> import symbolic_response as sr
+>>> pair = sr.build_network("pair", states="A B", transitions=[("A", "B", "k*c", "k")])
+>>> print(sr.derive(pair, "p[B]").expression)
+c/(c + 1)
+"""
+
+from __future__ import annotations
+
+from importlib import import_module
+from typing import TYPE_CHECKING, Any
+
+if TYPE_CHECKING:
+    from symbolic_response.appendix import write_appendix
+    from symbolic_response.network import (
+        Barrier,
+        Network,
+        Rates,
+        build_network,
+        from_generator_matrix,
+        from_networkx,
+        generator_matrix,
+        read_network,
+        read_network_text,
+        to_networkx,
+        with_substitution,
+    )
+    from symbolic_response.response.analysis import Analysis
+    from symbolic_response.response.deriving import Derived, Value, derive
+    from symbolic_response.response.survey import Survey, survey
+
+_HOMES = {
+    "write_appendix": "appendix",
+    **dict.fromkeys(
+        ("Barrier", "Network", "Rates", "build_network", "from_generator_matrix", "from_networkx",
+         "generator_matrix", "read_network", "read_network_text", "to_networkx",
+         "with_substitution"),
+        "network",
+    ),
+    "Analysis": "response.analysis",
+    **dict.fromkeys(("Derived", "Value", "derive"), "response.deriving"),
+    **dict.fromkeys(("Survey", "survey"), "response.survey"),
+}
+
+__all__ = [
+    "Analysis",
+    "Barrier",
+    "Derived",
+    "Network",
+    "Rates",
+    "Survey",
+    "Value",
+    "build_network",
+    "derive",
+    "from_generator_matrix",
+    "from_networkx",
+    "generator_matrix",
+    "read_network",
+    "read_network_text",
+    "survey",
+    "to_networkx",
+    "with_substitution",
+    "write_appendix",
+]
+
+
+def __getattr__(name: str) -> Any:
+    """Import a public name where it is first used, so that starting up stays quick."""
+    if name not in _HOMES:
+        raise AttributeError(f"module {__name__!r} has no attribute {name!r}")
+    return getattr(import_module(f"{__name__}.{_HOMES[name]}"), name)
+
+
+def __dir__() -> list[str]:
+    return sorted(__all__)

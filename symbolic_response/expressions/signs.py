@@ -6,7 +6,7 @@ from symbolic_response.errors import SizeLimitError, UndecidedError
 from symbolic_response.expressions.enclosure import sign_of_constant
 from symbolic_response.expressions.normal_form import normal_form
 from symbolic_response.expressions.ring import Domain, Poly, Ring, expression_of
-from symbolic_response.expressions.tree import Expression, symbols_of
+from symbolic_response.expressions.tree import Expression, Number, symbols_of
 
 
 def certain_sign(node: Expression, positive: frozenset[str]) -> int | None:
@@ -19,6 +19,8 @@ def certain_sign(node: Expression, positive: frozenset[str]) -> int | None:
     >>> certain_sign(read_expression("a*b + exp(-F)"), frozenset("ab"))
     1
     """
+    if isinstance(node, Number):
+        return (node.value > 0) - (node.value < 0)
     domain = Domain(tuple(sorted(symbols_of(node))), positive)
     try:
         value = normal_form(node, domain)

@@ -157,6 +157,15 @@ def derive_quantity(
     form is needed.
     """
     check_values(values, analysis.network)
+    try:
+        return _derived(analysis, quantity, label, values)
+    except EvaluationError as error:
+        raise EvaluationError(f"{label!r}: {error}") from None
+
+
+def _derived(
+    analysis: Analysis, quantity: Expression, label: str, values: Mapping[str, Expression]
+) -> Derived:
     if all(entry.name in values for entry in analysis.network.symbols):
         exact = Point(analysis.network, values).value(quantity)
         if exact is not None:

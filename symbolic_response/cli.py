@@ -1,0 +1,246 @@
+"""The command line: verbs, progress, exit status. No mathematics.
+
+Exit status: 0 done; 2 the input cannot be used; 3 undecided or beyond a size limit; 130
+interrupted.
+"""
+
+from __future__ import annotations
+
+import contextlib
+import json
+import os
+import sys
+from collections.abc import Callable, Sequence
+from typing import TYPE_CHECKING, Any
+
+import click
+
+from symbolic_response.errors import (
+    InputError,
+    SizeLimitError,
+    SymbolicResponseError,
+    UndecidedError,
+)
+from symbolic_response.progress import Progress
+
+if TYPE_CHECKING:
+    from symbolic_response.network.model import Network
+    from symbolic_response.response.analysis import Analysis
+    from symbolic_response.response.deriving import Derived
+
+UNUSABLE, UNDECIDED, INTERRUPTED = 2, 3, 130
+
+_json = click.option("--json", "as_json", is_flag=True, help="One JSON object on standard output.")
+_quiet = click.option("--quiet", is_flag=True, help="No progress on standard error.")
+_trees = click.option("--trees", type=click.IntRange(min=1), metavar="N",
+                      help="Enumerate up to N rooted spanning trees (default 2000000).")
+_terms = click.option("--terms", type=click.IntRange(min=1), metavar="N",
+                      help="Expand polynomials up to N terms (default 200000).")
+_network = click.argument("network", type=click.Path())
+
+
+def run(arguments: Sequence[str]) -> int:
+    """Run one command; return the exit status."""
+    try:
+        status = main.main(args=list(arguments), prog_name="symbolic-response",
+                           standalone_mode=False)
+        return int(status or 0)
+    except click.exceptions.NoArgsIsHelpError as error:
+        click.echo(error.ctx.get_help() if error.ctx else "", err=True)
+        return UNUSABLE
+    except click.ClickException as error:
+        return _fail(error.format_message(), UNUSABLE)
+    except InputError as error:
+        return _fail(str(error), UNUSABLE)
+    except (SizeLimitError, UndecidedError) as error:
+        return _fail(str(error), UNDECIDED)
+    except SymbolicResponseError as error:
+        return _fail(str(error), UNUSABLE)
+    except (KeyboardInterrupt, click.Abort):
+        return _fail("interrupted", INTERRUPTED)
+    except MemoryError:
+        return _fail("out of memory: the network is too large for a closed form; exact values with"
+                     " --at still work", UNDECIDED)
+    except BrokenPipeError:
+        os.dup2(os.open(os.devnull, os.O_WRONLY), sys.stdout.fileno())
+        return 0
+
+
+def _fail(message: str, status: int) -> int:
+    line = " ".join(message.split())
+    with contextlib.suppress(OSError):
+        click.echo(f"error: {line}", err=True)
+    return status
+
+
+@click.group(context_settings={"help_option_names": ["-h", "--help"], "max_content_width": 100})
+@click.version_option(package_name="symbolic-response", message="%(version)s")
+def main() -> None:
+    """Exact steady states and responses of small driven kinetic networks.
+
+    NETWORK is a network file (TOML); its format is in the README.
+    """
+
+
+@main.command(short_help="What was read: states, trees, cycles, forces, splittings.")
+@_network
+@_json
+@_quiet
+def survey(network: str, as_json: bool, quiet: bool) -> int:
+    """Say what was read: states, trees, cycles and their forces, splittings.
+
+    \b
+    Example:
+      symbolic-response survey worked_cases/rectifier/network.toml
+    """
+    from symbolic_response.response.survey import survey as make_survey
+    from symbolic_response.response.survey import survey_data, survey_text
+
+    with Progress(quiet) as progress:
+        progress.stage("surveying the network")
+        result = make_survey(_analysis(_read(network), progress))
+    click.echo(json.dumps(survey_data(result), indent=1) if as_json else survey_text(result))
+    if result.beyond:
+        return _fail("beyond a limit: " + "; ".join(result.beyond), UNDECIDED)
+    return 0
+
+
+@main.command(short_help="Closed forms and exact values of quantities and responses.")
+@_network
+@click.argument("quantities", nargs=-1, required=True, metavar="QUANTITY...")
+@click.option("--at", multiple=True, metavar="SYMBOL=VALUE",
+              help="Give a symbol an exact value, such as 3/7 or ln(3/2); may be repeated.")
+@click.option("--set", "put", multiple=True, metavar="SYMBOL=EXPRESSION",
+              help="Put an expression in the place of a symbol first; may be repeated.")
+@_json
+@_quiet
+@_trees
+@_terms
+def derive(
+    network: str,
+    quantities: tuple[str, ...],
+    at: tuple[str, ...],
+    put: tuple[str, ...],
+    as_json: bool,
+    quiet: bool,
+    trees: int | None,
+    terms: int | None,
+) -> int:
+    """Derive quantities and responses in closed form, or their exact values.
+
+    \b
+    Quantities: p[A]  p[A, B]  mean[name]  current[e]  traffic[e]  forward[e]
+      backward[e]  entropy_production, and expressions of them and of symbols.
+    Responses: d QUANTITY / d PERTURBATION with energy[A], barrier[e],
+      drive[e], a symbol, or ln of a positive symbol.
+
+    \b
+    Examples:
+      symbolic-response derive net.toml "p[A]" "d p[A] / d ln c"
+      symbolic-response derive net.toml "current[bind]" --at c=3/7 --at k=2
+    """
+    from symbolic_response.network.quantity_reader import read_quantity
+    from symbolic_response.network.substitution import with_substitution
+    from symbolic_response.response.deriving import derive_quantity, read_assignments, replaced
+
+    changes = read_assignments(put, "--set")
+    values = read_assignments(at, "--at")
+    described = _read(network)
+    asked = [(text, read_quantity(text, described)) for text in quantities]
+    if changes:
+        asked = [(text, replaced(quantity, changes, text)) for text, quantity in asked]
+        described = with_substitution(described, changes)
+    results = []
+    with Progress(quiet) as progress:
+        analysis = _analysis(described, progress, trees, terms)
+        for text, quantity in asked:
+            progress.stage(f"deriving {text}")
+            results.append(derive_quantity(analysis, quantity, text, values))
+    if as_json:
+        data = {"network": described.title, "results": [_derived_data(r) for r in results]}
+        click.echo(json.dumps(data, indent=1))
+    else:
+        click.echo("\n".join(_derived_text(result) for result in results))
+    return 0
+
+
+def _derived_data(result: Derived) -> dict[str, Any]:
+    from symbolic_response.expressions.text import fraction_text
+
+    data: dict[str, Any] = {"quantity": result.quantity, "expression": result.expression,
+                            "latex": result.latex, "value": None}
+    if result.value is not None:
+        exact = result.value.exact
+        data["value"] = str(result.value) if exact is None else fraction_text(exact)
+        if result.value.enclosure is not None:
+            data["enclosure"] = list(result.value.enclosure)
+    return data
+
+
+def _derived_text(result: Derived) -> str:
+    line = f"{result.quantity} = {result.expression}"
+    if result.value is not None and result.value.enclosure is not None:
+        low, high = result.value.enclosure
+        line += f"\n  between {low}\n      and {high}"
+    return line
+
+
+@main.command(short_help="A complete LaTeX document.")
+@_network
+@click.option("-o", "--output", required=True, type=click.Path(), metavar="FILE.tex",
+              help="The LaTeX file to write.")
+@_json
+@_quiet
+@_trees
+@_terms
+def appendix(
+    network: str,
+    output: str,
+    as_json: bool,
+    quiet: bool,
+    trees: int | None,
+    terms: int | None,
+) -> int:
+    """Write a complete LaTeX document: model, cycles, trees, steady state, results.
+
+    The [appendix] section of the network file chooses the quantities.
+
+    \b
+    Example:
+      symbolic-response appendix worked_cases/rectifier/network.toml -o rectifier.tex
+    """
+    from symbolic_response.appendix import write_appendix
+
+    described = _read(network)
+    with Progress(quiet) as progress:
+        progress.stage("writing the appendix")
+        analysis = _analysis(described, progress, trees, terms)
+        write_appendix(described, output, analysis=analysis)
+    if as_json:
+        click.echo(json.dumps({"network": described.title, "file": output}))
+    else:
+        click.echo(f"wrote {output}", err=True)
+    return 0
+
+
+def _read(path: str) -> Network:
+    from symbolic_response.network.toml_reader import read_network
+
+    return read_network(path)
+
+
+def _analysis(
+    network: Network,
+    progress: Callable[[int, int], None],
+    trees: int | None = None,
+    terms: int | None = None,
+) -> Analysis:
+    from symbolic_response.response.analysis import TERM_LIMIT, TREE_LIMIT
+    from symbolic_response.response.analysis import Analysis as Analysis_
+
+    return Analysis_(
+        network,
+        tree_limit=trees or TREE_LIMIT,
+        term_limit=terms or TERM_LIMIT,
+        progress=progress,
+    )
