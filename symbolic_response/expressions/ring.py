@@ -29,6 +29,7 @@ from symbolic_response.expressions.tree import (
     multiply,
     number,
     power,
+    rebuild,
     walk,
 )
 
@@ -210,6 +211,15 @@ def monomial_expression(ring: Ring, exponents: Sequence[int]) -> Expression:
     if argument:
         plain.append(function("exp", add(argument)))
     return multiply(plain) if plain else ONE
+
+
+def plain(node: Expression) -> Expression:
+    """Return a tree with every polynomial leaf written out as a sum."""
+
+    def leaf(part: Expression) -> Expression:
+        return expression_of(part.ring, part.poly) if isinstance(part, Polynomial) else part
+
+    return rebuild(node, leaf)
 
 
 def all_symbols(node: Expression) -> frozenset[str]:

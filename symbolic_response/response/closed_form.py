@@ -4,11 +4,13 @@ from __future__ import annotations
 
 from collections.abc import Mapping
 from dataclasses import dataclass
+from typing import Any
 
 from symbolic_response.algebra.factored import Factored
 from symbolic_response.expressions.latex import expression_latex
 from symbolic_response.expressions.names import default_latex
-from symbolic_response.expressions.ring import all_symbols
+from symbolic_response.expressions.ring import all_symbols, plain
+from symbolic_response.expressions.sympy_exchange import expression_to_sympy
 from symbolic_response.expressions.text import expression_text
 from symbolic_response.expressions.tree import Expression
 from symbolic_response.network.model import Network
@@ -22,6 +24,7 @@ class ClosedForm:
 
     form: Factored
     names: Mapping[str, str]
+    positive: frozenset[str] = frozenset()
 
     @property
     def expression(self) -> Expression:
@@ -35,6 +38,10 @@ class ClosedForm:
     def latex(self) -> str:
         """Return the form as LaTeX, without math delimiters."""
         return expression_latex(self.expression, self.names)
+
+    def to_sympy(self) -> Any:
+        """Return the form as a SymPy expression, its symbols positive or real as in the file."""
+        return expression_to_sympy(plain(self.expression), self.positive)
 
     def symbols(self) -> frozenset[str]:
         """Return the symbols that occur."""
@@ -54,7 +61,7 @@ def closed_form(quantity: Expression, analysis: Analysis) -> ClosedForm:
     division by zero, SizeLimitError past a limit.
     """
     form = analysis.simplified(closed_tree(quantity, analysis))
-    return ClosedForm(form, symbol_names(analysis.network))
+    return ClosedForm(form, symbol_names(analysis.network), analysis.domain.positive)
 
 
 def symbol_names(network: Network) -> dict[str, str]:

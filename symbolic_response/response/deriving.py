@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Mapping, Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from fractions import Fraction
 
 from symbolic_response.algebra.specialise import specialise
@@ -18,7 +18,6 @@ from symbolic_response.expressions.latex import expression_latex, fraction_latex
 from symbolic_response.expressions.names import nearest
 from symbolic_response.expressions.normal_form import Quotient, normal_form
 from symbolic_response.expressions.reader import read_expression
-from symbolic_response.expressions.ring import Domain
 from symbolic_response.expressions.signs import certain_sign
 from symbolic_response.expressions.text import expression_text, fraction_text
 from symbolic_response.expressions.tree import (
@@ -36,8 +35,6 @@ from symbolic_response.network.substitution import with_substitution
 from symbolic_response.response.analysis import Analysis
 from symbolic_response.response.closed_form import ClosedForm, closed_form
 from symbolic_response.response.values import Point
-
-NO_SYMBOLS = Domain((), frozenset())
 
 
 @dataclass(frozen=True, slots=True)
@@ -173,10 +170,12 @@ def _derived(
     form = closed_form(quantity, analysis)
     if values:
         check_rates(analysis.network, values)
-        form = ClosedForm(specialise(form.form, dict(values), analysis.domain), form.names)
+        placed = specialise(form.form, dict(values), analysis.domain)
+        form = replace(form, form=placed)
     if form.symbols():
         return Derived(label, form.text(), form.latex(), None)
-    return _constant(label, normal_form(form.expression, NO_SYMBOLS), form)
+    # in the domain of the form: its polynomials hold generators that were ranked there
+    return _constant(label, normal_form(form.expression, analysis.domain), form)
 
 
 def _rational(text: str, exact: Fraction) -> Derived:
