@@ -80,6 +80,8 @@ class Factored:
 
     def expression(self) -> Expression:
         """Return the product as a tree whose polynomials are leaves."""
+        if _reads_better_spread(self):
+            return add(_spread(self))
         parts = [number(self.coefficient), monomial_expression(self.ring, self.monomial)]
         parts += [power(_base_expression(base), exponent) for base, exponent in self.factors]
         return multiply(parts)
@@ -106,6 +108,19 @@ def _base_expression(base: Base) -> Expression:
             return add([piece for term in terms for piece in _spread(term)])
         case FactoredFunction(name, argument):
             return function(name, argument.expression())
+
+
+def _reads_better_spread(value: Factored) -> bool:
+    """Return whether ``-(a - b)`` or ``(2*a + b)/2`` stands alone: ``-a + b``, ``a + b/2``."""
+    if len(value.factors) != 1 or any(value.monomial) or abs(value.coefficient.numerator) != 1:
+        return False
+    ((base, exponent),) = value.factors
+    if not isinstance(base, Polynomial) or exponent != 1 or len(base.poly) > MAX_SPREAD:
+        return False
+    bottom = value.coefficient.denominator
+    if bottom == 1:
+        return value.coefficient < 0
+    return any(coefficient % bottom == 0 for coefficient in base.poly.coeffs())
 
 
 def _spread(term: Factored) -> list[Expression]:
