@@ -9,18 +9,19 @@ from pathlib import Path
 from textwrap import wrap
 
 STYLES = (r"\textstyle", r"\scriptstyle", r"\scriptscriptstyle")
-GREEK = (
+_GREEK = (
     "alpha beta gamma delta epsilon zeta eta theta iota kappa lambda mu nu xi pi rho sigma tau "
     "upsilon phi chi psi omega varepsilon vartheta varpi varrho varsigma varphi Gamma Delta Theta "
     "Lambda Xi Pi Sigma Upsilon Phi Psi Omega"
-).split()
-COMMANDS = (
+)
+_COMMANDS = (
     "cdot times pm mp to rightarrow leftarrow leftrightarrow rightleftharpoons infty partial "
     "langle rangle ell hbar circ ast star dagger ddagger prime nabla emptyset mid vert Vert neq "
     "leq geq le ge approx sim equiv propto oplus otimes bullet ldots cdots uparrow downarrow "
     "Re Im wp in setminus cup cap quad qquad"
-).split()
-HEAD = '''"""Widths of glyphs in pt, measured in TeX (article, 10 pt); ``tests/tex_measure.py`` makes this.
+)
+GREEK, COMMANDS = _GREEK.split(), _COMMANDS.split()
+HEAD = '''"""Widths of glyphs in pt, measured in TeX (article, 10 pt) by ``tests/tex_measure.py``.
 
 A line of GLYPHS: a glyph, then for text, script and scriptscript size its width standing alone
 and as a nucleus before a subscript. A line of KERNS: what TeX adds in these three sizes between

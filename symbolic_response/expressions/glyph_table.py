@@ -1,4 +1,4 @@
-"""Widths of glyphs in pt, measured in TeX (article, 10 pt); ``tests/tex_measure.py`` makes this.
+"""Widths of glyphs in pt, measured in TeX (article, 10 pt) by ``tests/tex_measure.py``.
 
 A line of GLYPHS: a glyph, then for text, script and scriptscript size its width standing alone
 and as a nucleus before a subscript. A line of KERNS: what TeX adds in these three sizes between
