@@ -17,10 +17,14 @@ from symbolic_response.expressions.tree import (
     Product,
     Sum,
     Symbol,
+    walk,
 )
 
 MAX_PRECISION = 4096
 RELATIVE_WIDTH = Fraction(1, 10**20)
+_ACCURACY_BITS = 72  # a little more than RELATIVE_WIDTH asks for
+_SHOWN_DIGITS = 25
+_LOG10_OF_2 = Fraction(30102999566398119521373889472449302676, 10**38)
 _PRECISIONS = (128, 256, 512, 1024, 2048, MAX_PRECISION)
 
 
@@ -65,9 +69,9 @@ def _ball_polynomial(leaf: Polynomial, values: Mapping[str, flint.arb] | None) -
 
 
 def _ball_power(base: flint.arb, exponent: Fraction) -> flint.arb:
+    if exponent.denominator != 1 and base != 0:
+        base = base.root(exponent.denominator)  # no number where the base may be negative
     raised = base ** abs(exponent.numerator)
-    if exponent.denominator != 1:
-        raised = raised.root(exponent.denominator)
     return 1 / raised if exponent < 0 else raised
 
 
@@ -89,40 +93,57 @@ def sign_of_constant(node: Expression) -> int:
 def decimal_enclosure(node: Expression) -> tuple[str, str]:
     """Return two decimals, as text, that enclose a constant; relative width at most 1e-20.
 
-    Rounded outwards exactly. Raises UndecidedError where 4096 bits cannot tell the value from
-    zero, EvaluationError where it has none (a logarithm or root of a negative number).
+    Rounded outwards exactly. Raises UndecidedError where 4096 bits cannot tell the value, or what
+    must not be zero on the way to it, from zero; EvaluationError where it has none (a logarithm or
+    root of a negative number).
     """
     for precision in _PRECISIONS:
         with flint.ctx.workprec(precision):
             value = ball(node)
             if value.is_finite() and (value > 0 or value < 0):
-                low, high = _exact(value.lower()), _exact(value.upper())
-                shown = _round_outwards(low, high)
+                shown = _round_outwards(value)
                 if shown is not None:
                     return shown
-    if not value.is_finite():
-        raise EvaluationError("the value does not exist, or is too large to enclose")
+    if value.is_nan():
+        _refuse_without_value(node)
+    elif not value.is_finite():
+        raise EvaluationError("the value is too large to enclose")
     raise UndecidedError(f"a value cannot be told from zero at {MAX_PRECISION} bits")
 
 
-def _exact(end: flint.arb) -> Fraction:
-    mantissa, exponent = end.man_exp()
-    return Fraction(int(mantissa)) * Fraction(2) ** int(exponent)
+def _refuse_without_value(node: Expression) -> None:
+    """Raise EvaluationError if some part of a constant certainly has no value."""
+    with flint.ctx.workprec(MAX_PRECISION):
+        for part in walk(node):
+            if isinstance(part, Function) and part.name == "ln" and ball(part.argument) <= 0:
+                raise EvaluationError("a logarithm of zero or of a negative number")
+            if isinstance(part, Power):
+                base = ball(part.base)
+                if base < 0 and part.exponent.denominator != 1:
+                    raise EvaluationError("a root of a negative number")
+                if base == 0 and part.exponent < 0:
+                    raise EvaluationError("division by zero")
+                if not (base.is_finite() or base.is_nan()):
+                    raise EvaluationError("a part of the value is too large to enclose")
 
 
-def _round_outwards(low: Fraction, high: Fraction) -> tuple[str, str] | None:
-    size = min(abs(low), abs(high))
-    digits = 25 - _decimal_exponent(size)
-    scale = Fraction(10) ** digits
-    bottom, top = (low * scale).__floor__(), (high * scale).__ceil__()
-    if Fraction(top - bottom) > size * scale * RELATIVE_WIDTH:
+def _round_outwards(value: flint.arb) -> tuple[str, str] | None:
+    mantissa, exponent = value.mid().man_exp()
+    bits = int(abs(mantissa)).bit_length() + int(exponent)
+    digits = _SHOWN_DIGITS - bits * _LOG10_OF_2.numerator // _LOG10_OF_2.denominator
+    power = flint.arb(10) ** flint.fmpz(abs(digits))
+    scaled = value * power if digits >= 0 else value / power
+    if min(value.rel_accuracy_bits(), scaled.rel_accuracy_bits()) < _ACCURACY_BITS:
+        return None
+    bottom, top = _integer(scaled.lower().floor()), _integer(scaled.upper().ceil())
+    if (top - bottom) > min(abs(bottom), abs(top)) * RELATIVE_WIDTH:
         return None
     return _decimal(bottom, digits), _decimal(top, digits)
 
 
-def _decimal_exponent(size: Fraction) -> int:
-    bits = size.numerator.bit_length() - size.denominator.bit_length()
-    return int(bits * 0.30103)  # only chooses how many digits are shown
+def _integer(exact: flint.arb) -> int:
+    mantissa, exponent = exact.man_exp()
+    return int(mantissa) << int(exponent)
 
 
 def _decimal(value: int, digits: int) -> str:

@@ -13,7 +13,12 @@ from fractions import Fraction
 
 import flint
 
-from symbolic_response.expressions.layout import fraction_layout, printed_terms, without_sign
+from symbolic_response.expressions.layout import (
+    FractionLayout,
+    fraction_layout,
+    printed_terms,
+    without_sign,
+)
 from symbolic_response.expressions.ring import Polynomial
 from symbolic_response.expressions.tree import Expression, Function, Number, Sum, Symbol
 
@@ -127,7 +132,7 @@ def _factor(base: Expression, exponent: Fraction, names: Mapping[str, str]) -> s
     if isinstance(base, Function) or (isinstance(base, Symbol) and "^" in body):
         body = f"({body})"
     top, bottom = exponent.numerator, exponent.denominator
-    shown = f"{top}" if bottom == 1 else f"{top}/{bottom}"
+    shown = f"{flint.fmpz(top)}" if bottom == 1 else f"{flint.fmpz(top)}/{bottom}"
     return f"{body}^{{{shown}}}" if len(shown) > 1 else f"{body}^{shown}"
 
 
@@ -147,8 +152,16 @@ def _atom(base: Expression, names: Mapping[str, str]) -> str:
     return f"({expression_latex(base, names)})"
 
 
+def _before_slash(layout: FractionLayout, names: Mapping[str, str]) -> str:
+    if layout.top == 1 and len(layout.above) == 1:
+        return _factor(*layout.above[0], names)
+    return _side(layout.top, list(layout.above), names)
+
+
 def exponent_latex(argument: Expression, names: Mapping[str, str]) -> str:
     """Return the argument of an exponential, with slashes instead of small fractions."""
+    if isinstance(argument, Polynomial):
+        return expression_latex(argument, names)
     parts = argument.terms if isinstance(argument, Sum) else (argument,)
     terms = []
     for part in parts:
@@ -157,6 +170,6 @@ def exponent_latex(argument: Expression, names: Mapping[str, str]) -> str:
         if layout.below or isinstance(rest, (Sum, Polynomial)) or layout.bottom == 1:
             terms.append(SignedTerm(negative, _product(rest, names)))
             continue
-        top = _side(layout.top, list(layout.above), names)
+        top = _before_slash(layout, names)
         terms.append(SignedTerm(negative, f"{top}/{layout.bottom}"))
     return join_terms(terms)

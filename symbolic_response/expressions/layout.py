@@ -60,6 +60,8 @@ def without_sign(node: Expression) -> tuple[bool, Expression]:
         lead = node.factors[0].value
         if lead < 0:
             return True, multiply([number(-lead), *node.factors[1:]])
+    if isinstance(node, Polynomial) and len(node.poly) == 1 and node.poly.coeffs()[0] < 0:
+        return True, Polynomial(node.ring, -node.poly)
     return False, node
 
 
@@ -87,8 +89,9 @@ def printed_terms(
                 continue
             key = (place, exponent)
             if key not in printed:
-                base, shown = _printed_base(ring.generators[place])
-                printed[key] = factor(base, shown * Fraction(exponent, ring.roots[place]))
+                printed[key] = factor(
+                    *_printed_power(ring.generators[place], Fraction(exponent, ring.roots[place]))
+                )
             texts.append(printed[key])
         if argument:
             texts.append(factor(Function("exp", add(argument)), Fraction(1)))
@@ -96,9 +99,9 @@ def printed_terms(
     return terms
 
 
-def _printed_base(generator: Generator) -> tuple[Expression, Fraction]:
+def _printed_power(generator: Generator, exponent: Fraction) -> tuple[Expression, Fraction]:
     if generator.kind == "ln":
-        return Function("ln", generator.base), Fraction(1)
-    if isinstance(generator.base, Power):
-        return generator.base.base, generator.base.exponent
-    return generator.base, Fraction(1)
+        return Function("ln", generator.base), exponent
+    if isinstance(generator.base, Power) and exponent.denominator == 1:  # sqrt(x**2) is not x
+        return generator.base.base, generator.base.exponent * exponent
+    return generator.base, exponent

@@ -22,10 +22,11 @@ from symbolic_response.expressions.ring import (
     Poly,
     Polynomial,
     Ring,
+    common_divisor,
     expression_of,
+    key_of,
     lift,
     monomial_content,
-    monomial_expression,
     product_of,
     symbol_ring,
     union,
@@ -44,7 +45,9 @@ from symbolic_response.expressions.tree import (
 )
 
 MAX_FACTORED_TERMS = 200
+MAX_FACTORED_DEGREE = 128
 MAX_FACTORED_BITS = 128
+MAX_TRIAL_PRIMES = 1_000
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -94,7 +97,7 @@ def quotient(ring: Ring, numerator: Poly, denominator: Poly) -> Quotient:
     ring, (numerator, denominator) = reduce_roots([numerator, denominator], ring)
     if len(denominator) == 0:
         raise EvaluationError("division by an expression that is identically zero")
-    common = numerator.gcd(denominator)
+    common = common_divisor(numerator, denominator)
     if not common.is_one():
         numerator, denominator = numerator // common, denominator // common
     if denominator.leading_coefficient() < 0:
@@ -157,7 +160,7 @@ def sum_of(values: Sequence[Quotient]) -> Quotient:
             gathered.append((top, bottom))
     total, below = gathered[0]
     for top, bottom in gathered[1:]:
-        common = below.gcd(bottom)
+        common = common_divisor(below, bottom)
         left, right = bottom // common, below // common
         total = product_of([(total, 1), (left, 1)], ring) + product_of([(top, 1), (right, 1)], ring)
         below = product_of([(below, 1), (left, 1)], ring)
@@ -192,14 +195,17 @@ def integer_power(value: Quotient, exponent: int) -> Quotient:
 
 @dataclass(frozen=True, slots=True)
 class PositiveFactor:
-    """A generator or a root-free base that is certainly positive, to a rational power."""
+    """A generator that is positive, or a root and not negative, to a rational power."""
 
     generator: Generator
     exponent: Fraction
 
 
 def positive_factors(value: Quotient, domain: Domain) -> list[PositiveFactor] | None:
-    """Return the factors of a certainly positive normal form; None if it is not certain."""
+    """Return the factors of a normal form that is certainly nowhere negative, else None.
+
+    Each is nowhere negative itself, so that roots and logarithms may be taken one by one.
+    """
     if value.is_zero():
         return None
     top = _poly_factors(value.numerator, value.ring, domain)
@@ -213,7 +219,8 @@ def _poly_factors(poly: Poly, ring: Ring, domain: Domain) -> list[PositiveFactor
     if len(poly) == 0 or any(coefficient < 0 for coefficient in poly.coeffs()):
         return None
     used = [bool(degree) for degree in poly.degrees()]
-    if not all(g.positive for g, u in zip(ring.generators, used, strict=True) if u):
+    occurring = [g for g, u in zip(ring.generators, used, strict=True) if u]
+    if not all(g.positive or g.kind == "root" for g in occurring):
         return None
     exponents = monomial_content(poly)
     content = int(poly.primitive()[0])
@@ -225,7 +232,8 @@ def _poly_factors(poly: Poly, ring: Ring, domain: Domain) -> list[PositiveFactor
     rest = poly // (ring.monomial(exponents) * content)
     if rest.is_one():
         return factors
-    pieces = rest.factor()[1] if len(rest) <= MAX_FACTORED_TERMS else [(rest, 1)]
+    short = len(rest) <= MAX_FACTORED_TERMS and sum(rest.degrees()) <= MAX_FACTORED_DEGREE
+    pieces = rest.factor()[1] if short else [(rest, 1)]
     if any(coefficient < 0 for piece, _ in pieces for coefficient in piece.coeffs()):
         pieces = [(rest, 1)]
     for piece, exponent in pieces:
@@ -234,21 +242,24 @@ def _poly_factors(poly: Poly, ring: Ring, domain: Domain) -> list[PositiveFactor
 
 
 def _prime_powers(value: int) -> list[tuple[int, int]]:
-    if value.bit_length() > MAX_FACTORED_BITS:
-        return [(value, 1)]
-    return [(int(prime), int(e)) for prime, e in flint.fmpz(value).factor()]
+    limit = MAX_TRIAL_PRIMES if value.bit_length() > MAX_FACTORED_BITS else None
+    return [(int(prime), int(e)) for prime, e in flint.fmpz(value).factor(limit)]
 
 
 def _root_of(ring: Ring, poly: Poly) -> Generator:
     base = expression_of(ring, poly)
-    return Generator("root", 0, repr(base), base, True, Polynomial(ring, poly))
+    positive = all(coefficient > 0 for coefficient in poly.coeffs()) and any(
+        all(generator.positive for generator, _ in ring.powers(exponents))
+        for exponents in poly.monoms()
+    )
+    return Generator("root", 0, key_of(base), base, positive, Polynomial(ring, poly))
 
 
 def _opaque_root(value: Quotient) -> Generator:
     if value.denominator.is_one():
         return _root_of(value.ring, value.numerator)
     base = value.expression()
-    return Generator("root", 0, repr(base), base, True)
+    return Generator("root", 0, key_of(base), base, False)
 
 
 def rational_power(value: Quotient, exponent: Fraction, domain: Domain) -> Quotient:
@@ -341,10 +352,9 @@ def exponential(value: Quotient, domain: Domain) -> Quotient:
                 or [PositiveFactor(_opaque_root(logarithm_of), Fraction(1))]
             ]
             continue
-        argument = divide(
-            monomial_expression(value.ring, exponents), expression_of(value.ring, below)
-        )
-        generator = Generator("exp", _rank(argument, domain), repr(argument), argument, True)
+        term = quotient(value.ring, value.ring.monomial(exponents), below)
+        argument = term.expression()
+        generator = Generator("exp", _rank(argument, domain), key_of(argument), argument, True)
         factors.append(PositiveFactor(generator, exponent))
     return monomial_quotient(factors, domain)
 
@@ -373,7 +383,7 @@ def logarithm(value: Quotient, domain: Domain) -> Quotient:
 
 
 def _logarithm_generator(base: Expression) -> Quotient:
-    ring = Ring([Generator("ln", 0, repr(base), base, False)], [1])
+    ring = Ring([Generator("ln", 0, key_of(base), base, False)], [1])
     return Quotient(ring, ring.context.gen(0), ring.constant(1))
 
 

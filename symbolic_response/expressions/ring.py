@@ -12,7 +12,7 @@ one that does not is known to differ only once an enclosure excludes zero.
 from __future__ import annotations
 
 from collections.abc import Iterable, Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 from fractions import Fraction
 from functools import reduce
 from math import lcm
@@ -25,6 +25,7 @@ from symbolic_response.expressions.tree import (
     Expression,
     Symbol,
     add,
+    children,
     function,
     multiply,
     number,
@@ -35,6 +36,11 @@ from symbolic_response.expressions.tree import (
 
 Poly = flint.fmpz_mpoly
 MAX_PRODUCTS = 4_000_000
+MAX_COEFFICIENT_BITS = 1_000_000
+MAX_GENERATORS = 1_000
+MAX_PARTS = 20_000
+MAX_DIVISOR_DEGREE = 10_000
+MAX_DIVISOR_TERMS = 30_000
 KINDS = ("symbol", "exp", "ln", "root", "rate")
 
 
@@ -52,15 +58,16 @@ class Generator:
 
     ``base`` is the symbol itself, the argument of the exponential or logarithm, or what a root is
     taken of; ``relation`` is the latter as a polynomial, None where it is not one. ``rank`` orders
-    generators of a kind; ``key`` is unique within the kind.
+    generators of a kind; ``key`` is unique within the kind. ``positive`` says that it is certainly
+    positive; a root that is not so marked is still never negative.
     """
 
     kind: str
     rank: int
     key: str
-    base: Expression
+    base: Expression = field(compare=False)
     positive: bool
-    relation: Polynomial | None = None
+    relation: Polynomial | None = field(default=None, compare=False)
 
     def order(self) -> tuple[int, int, str]:
         """Return the canonical sort key."""
@@ -120,7 +127,10 @@ EMPTY_RING = Ring((), ())
 
 
 def union(rings: Iterable[Ring]) -> Ring:
-    """Return the smallest ring that contains all the given ones."""
+    """Return the smallest ring that contains all the given ones.
+
+    SizeLimitError where it has more than 1,000 generators.
+    """
     distinct = list(dict.fromkeys(rings))
     if not distinct:
         return EMPTY_RING
@@ -130,6 +140,10 @@ def union(rings: Iterable[Ring]) -> Ring:
     for ring in distinct:
         for generator, root in zip(ring.generators, ring.roots, strict=True):
             roots[generator] = lcm(roots.get(generator, 1), root)
+        if len(roots) > MAX_GENERATORS:
+            raise SizeLimitError(
+                f"more than {MAX_GENERATORS} different symbols, exponentials, logarithms and roots"
+            )
     ordered = sorted(roots, key=Generator.order)
     return Ring(ordered, [roots[generator] for generator in ordered])
 
@@ -174,16 +188,65 @@ class Polynomial(Expression):
 
 
 def product_of(factors: Sequence[tuple[Poly, int]], ring: Ring, limit: int = MAX_PRODUCTS) -> Poly:
-    """Return the expanded product of powers; SizeLimitError past ``limit`` term products."""
-    result = ring.constant(1)
+    """Return the expanded product of powers; SizeLimitError past ``limit`` term products.
+
+    Term products count more in rings of many generators and where coefficients grow long.
+    """
+    result, spent, weight = ring.constant(1), 0, 1 + len(ring.generators) // 64
     for poly, exponent in sorted(factors, key=lambda pair: len(pair[0])):
+        if exponent > 1:
+            weight += _bits_of_power(poly, exponent) // 512
+        if len(poly) <= 1:
+            result = result * poly**exponent
+            continue
         for _ in range(exponent):
-            if len(result) * len(poly) > limit:
-                raise SizeLimitError(
-                    f"expanding a product needs more than {limit} term products"
-                )
+            spent += len(result) * len(poly) * weight
+            if spent > limit:
+                raise SizeLimitError(f"expanding a product needs more than {limit} term products")
             result = result * poly
     return result
+
+
+def _bits_of_power(poly: Poly, exponent: int) -> int:
+    longest = max((abs(int(c)).bit_length() for c in poly.coeffs()), default=0)
+    bits = 0 if longest <= 1 else longest * exponent
+    if bits > MAX_COEFFICIENT_BITS:
+        raise SizeLimitError(f"a coefficient is longer than {MAX_COEFFICIENT_BITS} bits")
+    return bits
+
+
+def common_divisor(left: Poly, right: Poly) -> Poly:
+    """Return the greatest common divisor.
+
+    For sums of more than 30,000 terms or of a degree above 10,000 only the monomial that divides
+    every term is found: a quotient reduced by it is right, though perhaps not in lowest terms.
+    """
+    if len(left) > 1 and len(right) > 1 and _too_large_to_divide(left, right):
+        return left.term_content().gcd(right.term_content())
+    return left.gcd(right)
+
+
+def _too_large_to_divide(left: Poly, right: Poly) -> bool:
+    # FLINT answers 0, or runs out of memory, where exponents are huge
+    return len(left) + len(right) > MAX_DIVISOR_TERMS or (
+        max(*left.degrees(), *right.degrees()) > MAX_DIVISOR_DEGREE
+    )
+
+
+def key_of(base: Expression) -> str:
+    """Return a key that tells expressions apart; SizeLimitError past 20,000 parts."""
+    if _parts(base, {}) > MAX_PARTS:
+        raise SizeLimitError(
+            f"more than {MAX_PARTS} parts under a root, an exponential or a logarithm"
+        )
+    return repr(base)
+
+
+def _parts(node: Expression, known: dict[int, int]) -> int:
+    """Count the parts of a tree, each shared one counted wherever it occurs but visited once."""
+    if id(node) not in known:
+        known[id(node)] = 1 + sum(_parts(part, known) for part in children(node))
+    return known[id(node)]
 
 
 def monomial_content(poly: Poly) -> tuple[int, ...]:

@@ -37,10 +37,10 @@ def _sign(poly: Poly, ring: Ring) -> int | None:
     signs = {1 if coefficient > 0 else -1 for coefficient in poly.coeffs()}
     strict = False
     for exponents, _ in poly.terms():
-        odd = [g for g, e in ring.powers(exponents) if not g.positive and (e % 2 != 0)]
-        if odd:
+        powers = ring.powers(exponents)
+        if any(not g.positive and g.kind != "root" and e % 2 != 0 for g, e in powers):
             return _constant_sign(poly, ring)
-        strict = strict or all(g.positive for g, _ in ring.powers(exponents))
+        strict = strict or all(g.positive for g, _ in powers)
     if len(signs) == 1 and strict:
         return signs.pop()
     return _constant_sign(poly, ring)

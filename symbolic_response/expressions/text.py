@@ -7,6 +7,7 @@ from fractions import Fraction
 import flint
 
 from symbolic_response.expressions.layout import fraction_layout, printed_terms, without_sign
+from symbolic_response.expressions.reader import MAX_EXPONENT
 from symbolic_response.expressions.ring import Polynomial
 from symbolic_response.expressions.tree import Expression, Function, Number, Sum, Symbol
 
@@ -77,8 +78,25 @@ def _factor(base: Expression, exponent: Fraction) -> str:
     body = _atom(base)
     if exponent == 1:
         return body
+    if exponent.denominator > MAX_EXPONENT:  # the reader knows no such root
+        return f"exp({fraction_text(exponent)}*ln({expression_text(base)}))"
+    if exponent > MAX_EXPONENT:
+        return f"({_large_power(body, exponent)})"
     shown = fraction_text(exponent)
     return f"{body}**{shown}" if exponent.denominator == 1 else f"{body}**({shown})"
+
+
+def _large_power(body: str, exponent: Fraction) -> str:
+    """Write a power in steps of exponents that the reader takes."""
+    high, low = divmod(exponent, MAX_EXPONENT)
+    inner = body if high == 1 else f"{body}**{high}"
+    if high > MAX_EXPONENT:
+        inner = _large_power(body, Fraction(high))
+    text = f"{body}**{MAX_EXPONENT}" if high == 1 else f"({inner})**{MAX_EXPONENT}"
+    if not low:
+        return text
+    rest = fraction_text(low)
+    return f"{text}*{body}**" + (rest if low.denominator == 1 else f"({rest})")
 
 
 def _atom(base: Expression) -> str:

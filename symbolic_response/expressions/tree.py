@@ -29,6 +29,12 @@ class Number(Expression):
 
     value: Fraction
 
+    def __repr__(self) -> str:
+        if max(self.value.numerator.bit_length(), self.value.denominator.bit_length()) < 10_000:
+            return f"Number(value={self.value!r})"
+        # Python refuses to write longer ones in decimal digits
+        return f"Number(value=Fraction({self.value.numerator:#x}, {self.value.denominator:#x}))"
+
 
 @dataclass(frozen=True, slots=True)
 class Symbol(Expression):
@@ -127,7 +133,8 @@ def negate(term: Expression) -> Expression:
 
 
 def power(base: Expression, exponent: int | Fraction) -> Expression:
-    """Return ``base ** exponent``; EvaluationError for 0 to a negative power.
+    """Return ``base ** exponent``; EvaluationError for 0 to a negative power, and for a root of a
+    negative number.
 
     >>> power(number(2), -3)
     Number(value=Fraction(1, 8))
@@ -144,6 +151,8 @@ def power(base: Expression, exponent: int | Fraction) -> Expression:
             return _number_power(base.value, exact.numerator)
         if base.value in (0, 1):
             return base
+        if base.value < 0:
+            raise EvaluationError("a root of a negative number")
     if exact.denominator == 1:
         if isinstance(base, Power):
             return power(base.base, base.exponent * exact)
