@@ -1,0 +1,124 @@
+"""The whole document, and writing it to a file."""
+
+from __future__ import annotations
+
+import os
+import re
+import tempfile
+from collections.abc import Sequence
+from pathlib import Path
+
+from symbolic_response.appendix.cycles_section import cycles_section
+from symbolic_response.appendix.escape import escaped
+from symbolic_response.appendix.model_section import model_section
+from symbolic_response.appendix.named_sums import NamedSums
+from symbolic_response.appendix.paper import Paper
+from symbolic_response.appendix.requests import requested
+from symbolic_response.appendix.results import results_section
+from symbolic_response.appendix.trees_section import trees_section
+from symbolic_response.errors import OutputError
+from symbolic_response.expressions.tree import Expression
+from symbolic_response.network.model import Network
+from symbolic_response.response.analysis import Analysis
+from symbolic_response.response.quantity_latex import notation_of
+
+TEXT_WIDTH = 345.0
+
+SOURCES = {
+    "kirchhoff": r"G. Kirchhoff, Ann. Phys. Chem. \textbf{72}, 497 (1847).",
+    "hill": r"T. L. Hill, J. Theor. Biol. \textbf{10}, 442 (1966).",
+    "schnakenberg": r"J. Schnakenberg, Rev. Mod. Phys. \textbf{48}, 571 (1976).",
+    "chaiken": r"S. Chaiken, SIAM J. Algebraic Discrete Methods \textbf{3}, 319 (1982).",
+    "owen": r"J. A. Owen, T. R. Gingrich, and J. M. Horowitz, Phys. Rev. X \textbf{10}, 011066 "
+            "(2020).",
+}
+
+
+def appendix_text(
+    network: Network,
+    *,
+    quantities: Sequence[str | Expression] | None = None,
+    analysis: Analysis | None = None,
+    width: float = TEXT_WIDTH,
+) -> str:
+    """Return a complete LaTeX document on a network.
+
+    ``quantities`` (as text or read before) override those of the file; ``width`` is the width of
+    the text in pt. Raises QuantityError or NetworkError for what cannot be used of these, and
+    SizeLimitError past a limit of the analysis.
+    """
+    request = requested(network, quantities)
+    known = analysis if analysis is not None else Analysis(network)
+    notation = notation_of(network)
+    paper = Paper(network, known, notation, NamedSums(known, notation), width)
+    body = "\n\n".join([
+        model_section(paper, request.quantities),
+        cycles_section(paper),
+        trees_section(paper),
+        results_section(paper, request.quantities, request.note),
+    ])
+    return _preamble(network, width) + body + "\n\n" + _bibliography(body) + "\n\\end{document}\n"
+
+
+def write_appendix(
+    network: Network,
+    path: str | os.PathLike[str],
+    *,
+    quantities: Sequence[str | Expression] | None = None,
+    analysis: Analysis | None = None,
+) -> None:
+    """Write the document of :func:`appendix_text` to a file, whole or not at all.
+
+    Raises OutputError where the file cannot be written.
+    """
+    target = Path(path)
+    _check_target(target)
+    text = appendix_text(network, quantities=quantities, analysis=analysis)
+    try:
+        handle, temporary = tempfile.mkstemp(dir=target.parent, prefix=f".{target.name}.")
+    except OSError as error:
+        raise OutputError(f"cannot write {str(target)!r}: {error.strerror}") from None
+    try:
+        with os.fdopen(handle, "w", encoding="ascii") as file:
+            file.write(text)
+        mask = os.umask(0)
+        os.umask(mask)
+        os.chmod(temporary, 0o666 & ~mask)
+        os.replace(temporary, target)
+    except BaseException as error:
+        os.unlink(temporary)
+        if isinstance(error, OSError):
+            raise OutputError(f"cannot write {str(target)!r}: {error.strerror}") from None
+        raise
+
+
+def _check_target(target: Path) -> None:
+    if target.is_dir():
+        raise OutputError(f"{str(target)!r} is a folder; give the name of a file")
+    if not target.parent.is_dir():
+        raise OutputError(f"there is no folder {str(target.parent)!r}; make it first")
+
+
+def _preamble(network: Network, width: float) -> str:
+    geometry = "" if width == TEXT_WIDTH else f"\\usepackage[textwidth={width:g}pt]{{geometry}}\n"
+    return rf"""\documentclass{{article}}
+\usepackage{{amsmath}}
+\usepackage{{array,booktabs,longtable}}
+{geometry}\allowdisplaybreaks
+\setlength{{\emergencystretch}}{{3em}}
+\title{{{escaped(network.title)}}}
+\author{{}}
+\date{{}}
+\begin{{document}}
+\maketitle
+
+"""
+
+
+def _bibliography(body: str) -> str:
+    """Return the list of exactly the sources cited, in the order of their first citation."""
+    keys = [
+        key for group in re.findall(r"\\cite\{([^}]*)\}", body) for key in group.split(",")
+    ]
+    entries = [rf"\bibitem{{{key}}} {SOURCES[key]}" for key in dict.fromkeys(keys)]
+    return "\\begin{thebibliography}{9}\n" + "\n".join(entries) + "\n\\end{thebibliography}"

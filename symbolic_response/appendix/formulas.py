@@ -1,0 +1,204 @@
+"""General formulas and their words, and the definitions of named sums."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+
+from symbolic_response.appendix.named_sums import NamedSum, expanded
+from symbolic_response.appendix.paper import Paper
+from symbolic_response.expressions.breaking import (
+    Equation,
+    Piece,
+    align,
+    continued,
+    line_limit,
+)
+from symbolic_response.expressions.tree import Expression, Symbol, add, multiply, negate
+from symbolic_response.network.quantities import Mean, Probability, Response
+
+MAX_SECOND_FORM = 60
+
+
+def introduction(
+    paper: Paper, kind: str, quantities: Sequence[Expression], definitions: Sequence[NamedSum]
+) -> str:
+    """Return the general formula of a group of results, in a sentence."""
+    words = _INTRODUCTIONS.get(kind)
+    text = words(paper) if words is not None else ""
+    if kind == "mean":
+        return text
+    if kind in ("barrier", "drive", "symbol") and any(
+        d.kind in ("forest", "mean forest") for d in definitions
+    ):
+        text += _mean_forests(paper, definitions)
+    del quantities
+    return text
+
+
+def _letters(paper: Paper) -> dict[str, str]:
+    letters = dict(paper.notation.letters)
+    return {role.replace(" ", "_"): latex for role, latex in letters.items()}
+
+
+def _filled(paper: Paper, text: str) -> str:
+    r"""Put letters in: ``@current@`` becomes ``J``."""
+    for role, latex in paper.notation.letters.items():
+        text = text.replace(f"@{role}@", latex)
+    return text
+
+
+def _current(paper: Paper) -> str:
+    return _filled(paper, r"""The net current of a transition $e$ from state $m$ to state $n$ is
+\begin{equation}
+@current@_e = @rate@^+_e @probability@_m - @rate@^-_e @probability@_n
+ = \frac{@current numerator@_e}{@normalisation@}, \qquad
+@current numerator@_e = @rate@^+_e @tree sum@_m - @rate@^-_e @tree sum@_n .
+\label{eq:current}
+\end{equation}""")
+
+
+def _traffic(paper: Paper) -> str:
+    return _filled(paper, r"""The traffic of a transition $e$ from $m$ to $n$, the sum of its two
+flows, is
+\begin{equation}
+@traffic@_e = @rate@^+_e @probability@_m + @rate@^-_e @probability@_n
+ = \frac{@traffic numerator@_e}{@normalisation@}, \qquad
+@traffic numerator@_e = @rate@^+_e @tree sum@_m + @rate@^-_e @tree sum@_n .
+\end{equation}""")
+
+
+def _entropy(paper: Paper) -> str:
+    return _filled(paper, r"""The entropy production rate, in units of $k_{\mathrm B}$ per time, is
+\begin{equation}
+@entropy@ = \sum_e @current@_e
+ \ln \frac{@rate@^+_e @probability@_m}{@rate@^-_e @probability@_n}
+ = \sum_{c} @current@_{c} @force@_{c} ,
+\end{equation}
+where each parallel transition counts by itself and the second sum runs over fundamental cycles,
+$@current@_c$ being the current through the one transition that belongs to no other of
+them~\cite{schnakenberg}.""")
+
+
+def _energy(paper: Paper) -> str:
+    return _filled(paper, r"""For a function $q$ of the state that does not itself depend on the
+energies,
+\begin{equation}
+\frac{\partial \langle q \rangle}{\partial @energy@_j}
+ = @probability@_j \bigl(\langle q \rangle - q_j\bigr), \qquad
+\frac{\partial @probability@_k}{\partial @energy@_j}
+ = @probability@_j \bigl(@probability@_k - \delta_{jk}\bigr),
+\end{equation}
+however far from equilibrium~\cite{owen}.""")
+
+
+_FOREST = r"""Here $@forest@_{k,e}$, for $e$ between $m$ and $n$, is a difference of sums over
+spanning forests of two trees, each tree directed towards its root: the forests with roots $k$ and
+$m$ and with $n$ in the tree of $k$, minus those with roots $k$ and $n$ and with $m$ in the tree of
+$k$ (all-minors theorem~\cite{chaiken})"""
+
+
+def _forest(paper: Paper) -> str:
+    divided = "" if is_one(paper) else ", divided by the factor $@factor@$ like the $@tree sum@_k$"
+    return _FOREST + divided + "."
+
+
+def is_one(paper: Paper) -> bool:
+    """Return whether the tree sums have no common factor."""
+    common = paper.sums.common
+    return common.is_constant() and common.coefficient == 1
+
+
+def _barrier(paper: Paper) -> str:
+    return _filled(paper, r"""The response of a probability to a barrier factorises,
+\begin{equation}
+\frac{\partial @probability@_k}{\partial @barrier@_e}
+ = -\frac{@current numerator@_e @forest@_{k,e}}{@normalisation@^2}
+ = -@current@_e \frac{@forest@_{k,e}}{@normalisation@} ,
+\label{eq:barrier}
+\end{equation}
+with $@current numerator@_e = @rate@^+_e @tree sum@_m - @rate@^-_e @tree sum@_n$ the numerator of
+the current; it vanishes with the current. """ + _forest(paper))
+
+
+def _drive(paper: Paper) -> str:
+    return _filled(paper, r"""The response of a probability to a drive is
+\begin{equation}
+\frac{\partial @probability@_k}{\partial @drive@_e}
+ = \frac{@traffic numerator@_e @forest@_{k,e}}{2 @normalisation@^2} , \qquad
+@traffic numerator@_e = @rate@^+_e @tree sum@_m + @rate@^-_e @tree sum@_n .
+\end{equation}
+""" + _forest(paper))
+
+
+def _symbol(paper: Paper) -> str:
+    return _filled(paper, r"""A parameter $x$ acts through all rates that contain it,
+\begin{equation}
+\frac{\partial @probability@_k}{\partial x} = \sum_e \Bigl(
+ \frac{\partial \ln @rate@^+_e}{\partial x} @rate@^+_e @tree sum@_m
+ - \frac{\partial \ln @rate@^-_e}{\partial x} @rate@^-_e @tree sum@_n \Bigr)
+ \frac{@forest@_{k,e}}{@normalisation@^2} ,
+\end{equation}
+and on a mean also through the values of its observable. """ + _forest(paper))
+
+
+_INTRODUCTIONS = {
+    "current": _current,
+    "traffic": _traffic,
+    "entropy": _entropy,
+    "energy": _energy,
+    "barrier": _barrier,
+    "drive": _drive,
+    "symbol": _symbol,
+}
+
+
+def _mean_forests(paper: Paper, definitions: Sequence[NamedSum]) -> str:
+    if not any(d.kind == "mean forest" for d in definitions):
+        return ""
+    return _filled(paper, r""" For an observable $q$,
+$@forest@_{q,e} = \sum_k q_k @forest@_{k,e}$.""")
+
+
+# -- definitions ---------------------------------------------------------------------------------
+
+
+def definitions_text(paper: Paper, definitions: Sequence[NamedSum]) -> str:
+    """Return the definitions of named sums; a sum too long to print is described."""
+    equations: list[Equation] = []
+    described: list[str] = []
+    for named in definitions:
+        first = first_form(paper, named)
+        long = named.terms > paper.room or (first is not None and named.terms > MAX_SECOND_FORM)
+        if first is None and long:
+            described.append(f"${named.latex}$ is a sum of {named.terms:,} products of rates"
+                             " and is not printed")
+            continue
+        limit = line_limit(named.latex, paper.width)
+        pieces: list[Piece] = []
+        if first is not None:
+            pieces = paper.pieces(first, limit)
+        if not long and paper.take(named.terms):
+            terms = paper.pieces(expanded(named.form), limit)
+            pieces = [*pieces, *continued(terms)] if pieces else terms
+        equations.append(Equation(named.latex, tuple(pieces)))
+    texts = [align(equations, paper.width)] if equations else []
+    if described:
+        texts.insert(0, "; ".join(described) + ".")
+    return "\n".join(texts)
+
+
+def first_form(paper: Paper, named: NamedSum) -> list[Expression] | None:
+    """Return the terms w+ N_m and w- N_n of the numerator of a current or traffic."""
+    if named.kind not in ("current", "traffic"):
+        return None
+    (e,) = named.place
+    transition = paper.network.transitions[e]
+    first = paper.sums.tree(transition.first)
+    terms = [multiply([transition.forward, Symbol(first.key)])]
+    if transition.backward is not None:
+        back = multiply([transition.backward, Symbol(paper.sums.tree(transition.second).key)])
+        terms.append(negate(back) if named.kind == "current" else back)
+    return [add([term]) for term in terms]
+
+
+__all__ = ["Mean", "Probability", "Response"]

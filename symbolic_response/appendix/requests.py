@@ -1,0 +1,115 @@
+"""Which quantities a document prints: those asked for, those of the file, or a bounded default."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from dataclasses import dataclass
+
+from symbolic_response.errors import NetworkError, QuantityError
+from symbolic_response.expressions.tree import Expression, symbols_of
+from symbolic_response.network.checks import expressions_of
+from symbolic_response.network.model import Network, nearest
+from symbolic_response.network.quantities import (
+    BarrierOf,
+    BySymbol,
+    Current,
+    EntropyProduction,
+    Mean,
+    Probability,
+    Response,
+)
+from symbolic_response.network.quantity_reader import read_quantity
+
+KEYS = ("quantities",)
+DEFAULT_RESULTS = 20
+DEFAULT_BARRIERS = 12
+MAX_QUANTITIES = 500
+
+
+@dataclass(frozen=True, slots=True)
+class Request:
+    """The quantities to print; ``note`` says what a default left out, empty for nothing."""
+
+    quantities: tuple[Expression, ...]
+    note: str = ""
+
+
+def requested(network: Network, quantities: Sequence[str | Expression] | None) -> Request:
+    """Return the quantities given, else those of the file's [appendix], else the default ones.
+
+    Raises QuantityError for a quantity the network does not have, NetworkError for a section of
+    another shape; both name the entry.
+    """
+    section = network.appendix
+    for key in section:
+        if key not in KEYS:
+            hint = nearest(str(key), KEYS) or f"; known: {', '.join(KEYS)}"
+            raise NetworkError(f"[appendix] has no key {str(key)!r}{hint}")
+    if quantities is not None:
+        return Request(tuple(_read(network, list(quantities), "quantities")))
+    if "quantities" not in section:
+        return default_request(network)
+    entries = section["quantities"]
+    if not isinstance(entries, list | tuple):
+        raise NetworkError("[appendix] quantities is not an array; write "
+                           'quantities = ["p[A]", ...]')
+    return Request(tuple(_read(network, list(entries), "[appendix] quantities")))
+
+
+def _read(network: Network, entries: list[object], where: str) -> list[Expression]:
+    if len(entries) > MAX_QUANTITIES:
+        raise NetworkError(f"{where} has {len(entries)} entries, more than {MAX_QUANTITIES}")
+    found = []
+    for place, entry in enumerate(entries, start=1):
+        if isinstance(entry, Expression):
+            found.append(entry)
+            continue
+        if type(entry) is not str:
+            raise NetworkError(f"{where}, entry {place}: write the quantity as text in quotes")
+        try:
+            found.append(read_quantity(entry, network))
+        except QuantityError as error:
+            raise QuantityError(f"{where}, entry {place}: {error}") from None
+    return list(dict.fromkeys(found))
+
+
+def default_request(network: Network) -> Request:
+    """Return currents, means, entropy production and responses, about 20 in all."""
+    steady: list[Expression] = [Current(e) for e in range(len(network.transitions))][:8]
+    left_out = len(network.transitions) - len(steady)
+    steady += [Mean(place) for place in range(len(network.observables))][:6]
+    left_out += max(0, len(network.observables) - 6)
+    if all(t.backward is not None for t in network.transitions):
+        steady.append(EntropyProduction())
+    room = max(6, DEFAULT_RESULTS - len(steady))
+    chosen: list[Expression] = list(_observable_responses(network))
+    barriers = list(_barrier_responses(network))
+    if not chosen or len(barriers) <= DEFAULT_BARRIERS:
+        chosen += barriers
+    left_out += max(0, len(chosen) - room)
+    note = ""
+    if left_out:
+        note = (
+            f"Of the currents, the means and the responses {left_out} further ones, given by the "
+            "same formulas, are left out here."
+        )
+    return Request((*steady, *chosen[:room]), note)
+
+
+def _observable_responses(network: Network) -> list[Response]:
+    varied = {
+        name for expression, _, place in expressions_of(network) if place[0] != "observables"
+        for name in symbols_of(expression)
+    }
+    return [
+        Response(Mean(place), BySymbol(entry.name, True))
+        for place in range(len(network.observables))
+        for entry in network.symbols if entry.positive and entry.name in varied
+    ]
+
+
+def _barrier_responses(network: Network) -> list[Response]:
+    return [
+        Response(Probability((k,)), BarrierOf(e))
+        for e in range(len(network.transitions)) for k in range(len(network.states))
+    ]
