@@ -3,111 +3,146 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
+from dataclasses import dataclass
 
 from symbolic_response.algebra.factored import Factored
-from symbolic_response.appendix.formulas import _filled
-from symbolic_response.appendix.model_section import table, table_width
+from symbolic_response.appendix.formulas import filled
 from symbolic_response.appendix.paper import Paper
+from symbolic_response.appendix.tables import table, table_width
 from symbolic_response.errors import SizeLimitError
-from symbolic_response.expressions.breaking import Equation, align, line_limit
-from symbolic_response.expressions.tree import divide, function
+from symbolic_response.expressions.breaking import Equation, Piece, align, line_limit
+from symbolic_response.expressions.tree import Expression, divide, function
 from symbolic_response.response.closed_trees import cycle_force
 from symbolic_response.topology import Cycle, can_run_along
 
 MAX_LISTED = 40
 
 
+@dataclass(frozen=True, slots=True)
+class _Entry:
+    """A cycle of the list; ``force`` is None where it is infinite."""
+
+    number: int
+    cycle: Cycle
+    force: Factored | None
+
+
 def cycles_section(paper: Paper) -> str:
     """Return the cycles with their forces, and whether detailed balance holds identically."""
     analysis = paper.analysis
-    text = [r"\section{Cycles and forces}"]
+    heading = r"\section{Cycles and forces}"
     independent = analysis.fundamental_cycles
     if not independent:
-        return "\n\n".join([*text, "The network has no cycles: all currents vanish, and detailed "
-                            "balance holds for all values of the rates."])
+        return heading + ("\nThe network has no cycles: all stationary currents vanish, and "
+                          "detailed balance holds for all values of the rates.")
     try:
         every: Sequence[Cycle] = analysis.cycles
         count = f"{len(every)}"
     except SizeLimitError:
         every, count = (), f"more than {analysis.cycle_limit:,}"
     listed = every if 0 < len(every) <= MAX_LISTED else independent
-    text.append(_filled(paper, _definition(count, len(listed), len(every))))
-    text.append(_route_table(paper, listed))
-    text.append(_forces(paper, listed))
-    text.append(_balance(paper, independent, listed))
-    return "\n\n".join(part for part in text if part)
+    entries = [_entry(paper, n, cycle) for n, cycle in enumerate(listed, start=1)]
+    return "\n\n".join([
+        heading + "\n" + filled(paper, _definition(count, len(listed) == len(every))),
+        _listing(paper, entries),
+        _balance(paper, [_entry(paper, 0, cycle) for cycle in independent]),
+    ])
 
 
-def _definition(count: str, listed: int, known: int) -> str:
-    one = count == "1"
-    opening = (
-        r"""A cycle $c$ is a closed walk that repeats no state and no transition. Its force is
+def _entry(paper: Paper, number: int, cycle: Cycle) -> _Entry:
+    if any(paper.analysis.graph.one_way[e] for e in cycle.transitions):
+        return _Entry(number, cycle, None)
+    force = paper.analysis.simplified(cycle_force(cycle, paper.analysis))
+    if number:
+        back = Cycle(cycle.states, cycle.transitions, tuple(not ahead for ahead in cycle.along))
+        reverse = paper.analysis.simplified(cycle_force(back, paper.analysis))
+        paper.defined.add(paper.sums.force(number, force, reverse).key)
+    return _Entry(number, cycle, force)
+
+
+def _definition(count: str, complete: bool) -> str:
+    opening = r"""A cycle $c$ is a closed walk that repeats no state and no transition. Its force is
 \begin{equation}
 @force@_c = \ln \frac{\prod_{c} @rate@ \ \text{along}}{\prod_{c} @rate@ \ \text{against}} ,
 \end{equation}
 the logarithm of the product of the rates along its orientation over the product of the rates
 against it. """
-    )
-    noun = "cycle" if one else "cycles"
-    opening += f"The network has {count} {noun}"
-    if listed == known:
-        return opening + ("." if one else ", each counted once:")
+    if count == "1":
+        return opening + "The network has a single cycle:"
+    opening += f"The network has {count} cycles"
+    if complete:
+        return opening + ", each listed in one of its two orientations:"
     return opening + (
-        r"""; listed are fundamental ones, of whose forces every cycle force is a sum with
-coefficients $\pm 1$~\cite{schnakenberg}:"""
+        r"""; listed are fundamental ones, of which every cycle force is a sum with coefficients
+$\pm 1$~\cite{schnakenberg}:"""
     )
 
 
-def _route_table(paper: Paper, cycles: Sequence[Cycle]) -> str:
-    notation = paper.notation
-    rows = []
-    for number, cycle in enumerate(cycles, start=1):
-        states = [notation.states[k] for k in (*cycle.states, cycle.states[0])]
-        steps = [
-            ("" if ahead else "-") + notation.transitions[e]
-            for e, ahead in zip(cycle.transitions, cycle.along, strict=True)
+def _listing(paper: Paper, entries: Sequence[_Entry]) -> str:
+    """Return the table of cycles, with the forces where these are short."""
+    rows = [_row(paper, entry) for entry in entries]
+    head = [r"\mathrm{Cycle\ }c", r"\mathrm{States}", r"\mathrm{Transitions}",
+            paper.notation.letters["force"] + "_c"]
+    forces = [row[3] for row in rows]
+    if table_width([head, *rows]) <= paper.width and not any(r"\frac" in f for f in forces):
+        shown = f"Cycle $c$ & States & Transitions & ${head[3]}$"
+        return table("llll", shown, [" & ".join(f"${cell}$" for cell in row) for row in rows]) + (
+            _minus_note(entries)
+        )
+    shown = "Cycle $c$ & States & Transitions"
+    if table_width([head[:3], *(row[:3] for row in rows)]) <= paper.width:
+        routes = table("lll", shown, [" & ".join(f"${c}$" for c in row[:3]) for row in rows])
+    else:
+        column = r">{\raggedright\arraybackslash}p{0.44\linewidth}"
+        body = [
+            f"${n}$ & ${states}$ & ${steps}$"
+            .replace(r" \to ", r" \to{}$ $").replace(",\\ ", ",$ $")
+            for n, states, steps, _ in rows
         ]
-        rows.append([f"{number}", r" \to ".join(states), r",\ ".join(steps)])
-    wide = table_width(rows) > paper.width - 10
-    columns = (
-        r"l>{\raggedright\arraybackslash}p{0.42\linewidth}>{\raggedright\arraybackslash}"
-        r"p{0.42\linewidth}" if wide else "lll"
-    )
-    separator = {True: r"$, $", False: r",\ "}[wide]
-    arrow = {True: r"$ $\to$ $", False: r" \to "}[wide]
-    body = [
-        f"${n}$ & ${states}$ & ${steps}$".replace(r",\ ", separator).replace(r" \to ", arrow)
-        for n, states, steps in rows
+        routes = table("l" + 2 * column, shown, body)
+    verb = "The force is" if len(entries) == 1 else "The forces are"
+    equations = [_equation(paper, entry) for entry in entries]
+    return routes + _minus_note(entries) + f"\n{verb}\n" + align(equations, paper.width)
+
+
+def _minus_note(entries: Sequence[_Entry]) -> str:
+    if all(all(entry.cycle.along) for entry in entries):
+        return ""
+    return "\nA minus sign marks a transition that is run from its second state to its first."
+
+
+def _row(paper: Paper, entry: _Entry) -> list[str]:
+    notation, cycle = paper.notation, entry.cycle
+    states = [notation.states[k] for k in (*cycle.states, cycle.states[0])]
+    steps = [
+        ("" if ahead else "-") + notation.transitions[e]
+        for e, ahead in zip(cycle.transitions, cycle.along, strict=True)
     ]
-    return table(columns, r"Cycle $c$ & States & Transitions ($-$: run backwards)", body)
+    force = _infinite(paper, entry)
+    if entry.force is not None:
+        force = paper.latex(entry.force.expression())
+    return [f"{entry.number}", r" \to ".join(states), ",\\ ".join(steps), force]
 
 
-def _forces(paper: Paper, cycles: Sequence[Cycle]) -> str:
-    equations = []
-    for number, cycle in enumerate(cycles, start=1):
-        left = paper.notation.indexed("force", f"{number}")
-        limit = line_limit(left, paper.width)
-        force = _force(paper, cycle)
-        if force is None:
-            sign = "" if can_run_along(paper.analysis.graph, cycle) else "-"
-            from symbolic_response.expressions.breaking import Piece
-
-            equations.append(Equation(left, (Piece(sign, r"\infty"),)))
-            continue
-        pieces = paper.pieces([force.expression()], limit)
-        if len(pieces) > 1 and pieces[1].forced:
-            pieces = paper.pieces(_step_by_step(paper, cycle), limit)
-        equations.append(Equation(left, tuple(pieces)))
-    return "Their forces are\n" + align(equations, paper.width)
+def _infinite(paper: Paper, entry: _Entry) -> str:
+    return r"\infty" if can_run_along(paper.analysis.graph, entry.cycle) else r"-\infty"
 
 
-def _force(paper: Paper, cycle: Cycle) -> Factored | None:
-    if any(paper.analysis.graph.one_way[e] for e in cycle.transitions):
-        return None
-    return paper.analysis.simplified(cycle_force(cycle, paper.analysis))
+def _equation(paper: Paper, entry: _Entry) -> Equation:
+    left = paper.notation.indexed("force", f"{entry.number}")
+    limit = line_limit(left, paper.width)
+    if entry.force is None:
+        infinite = _infinite(paper, entry)
+        return Equation(left, (Piece("-" if infinite.startswith("-") else "", r"\infty"),))
+    node = entry.force.expression()
+    pieces = paper.pieces([node], limit)
+    if any(piece.forced for piece in pieces):
+        pieces = paper.pieces(_step_by_step(paper, entry.cycle), limit)
+    return Equation(left, tuple(pieces))
 
 
-def _step_by_step(paper: Paper, cycle: Cycle) -> list:  # type: ignore[type-arg]
+def _step_by_step(paper: Paper, cycle: Cycle) -> list[Expression]:
+    """Return the force as a sum of one logarithm for each step."""
     analysis = paper.analysis
     return [
         function("ln", divide(analysis.rate_expression(e, not ahead),
@@ -116,14 +151,18 @@ def _step_by_step(paper: Paper, cycle: Cycle) -> list:  # type: ignore[type-arg]
     ]
 
 
-def _balance(paper: Paper, independent: Sequence[Cycle], listed: Sequence[Cycle]) -> str:
-    forces = [_force(paper, cycle) for cycle in independent]
+def _balance(paper: Paper, independent: Sequence[_Entry]) -> str:
+    forces = [entry.force for entry in independent]
     if any(force is None for force in forces):
-        return ("A force is infinite where a cycle contains a one-way transition; such a network "
-                "is never in detailed balance.")
+        return ("The force of a cycle with a one-way transition is infinite; the network is never "
+                "in detailed balance.")
     if all(force is not None and force.is_zero() for force in forces):
         return ("All forces vanish identically: the network obeys detailed balance for all values "
                 "of its symbols, and all stationary currents are zero.")
-    del listed
-    return ("Detailed balance, and with it the vanishing of all stationary currents, holds where "
-            "all of these forces vanish, and only there.")
+    if all(force is not None and force.is_constant() for force in forces) or not (
+        paper.network.symbols
+    ):
+        return "Not all forces vanish: the network is not in detailed balance."
+    which = "this force vanishes" if len(forces) == 1 else "all these forces vanish"
+    return (f"Detailed balance, and with it the vanishing of all stationary currents, holds where "
+            f"{which}, and only there.")

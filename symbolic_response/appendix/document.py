@@ -106,11 +106,12 @@ def _preamble(network: Network, width: float) -> str:
 \usepackage{{array,booktabs,longtable}}
 {geometry}\allowdisplaybreaks
 \setlength{{\emergencystretch}}{{3em}}
-\title{{{escaped(network.title)}}}
-\author{{}}
-\date{{}}
 \begin{{document}}
-\maketitle
+\begin{{center}}
+{{\Large {escaped(network.title)}\par}}
+\medskip
+Stationary state, currents and responses in closed form
+\end{{center}}
 
 """
 

@@ -14,41 +14,30 @@ from symbolic_response.expressions.breaking import (
     line_limit,
 )
 from symbolic_response.expressions.tree import Expression, Symbol, add, multiply, negate
-from symbolic_response.network.quantities import Mean, Probability, Response
 
 MAX_SECOND_FORM = 60
 
 
-def introduction(
-    paper: Paper, kind: str, quantities: Sequence[Expression], definitions: Sequence[NamedSum]
-) -> str:
+def introduction(paper: Paper, kind: str, definitions: Sequence[NamedSum]) -> str:
     """Return the general formula of a group of results, in a sentence."""
     words = _INTRODUCTIONS.get(kind)
     text = words(paper) if words is not None else ""
-    if kind == "mean":
-        return text
     if kind in ("barrier", "drive", "symbol") and any(
         d.kind in ("forest", "mean forest") for d in definitions
     ):
         text += _mean_forests(paper, definitions)
-    del quantities
     return text
 
 
-def _letters(paper: Paper) -> dict[str, str]:
-    letters = dict(paper.notation.letters)
-    return {role.replace(" ", "_"): latex for role, latex in letters.items()}
-
-
-def _filled(paper: Paper, text: str) -> str:
-    r"""Put letters in: ``@current@`` becomes ``J``."""
+def filled(paper: Paper, text: str) -> str:
+    r"""Return a text with letters put in: ``@current@`` becomes ``J``."""
     for role, latex in paper.notation.letters.items():
         text = text.replace(f"@{role}@", latex)
     return text
 
 
 def _current(paper: Paper) -> str:
-    return _filled(paper, r"""The net current of a transition $e$ from state $m$ to state $n$ is
+    return filled(paper, r"""The net current of a transition $e$ from state $m$ to state $n$ is
 \begin{equation}
 @current@_e = @rate@^+_e @probability@_m - @rate@^-_e @probability@_n
  = \frac{@current numerator@_e}{@normalisation@}, \qquad
@@ -58,7 +47,7 @@ def _current(paper: Paper) -> str:
 
 
 def _traffic(paper: Paper) -> str:
-    return _filled(paper, r"""The traffic of a transition $e$ from $m$ to $n$, the sum of its two
+    return filled(paper, r"""The traffic of a transition $e$ from $m$ to $n$, the sum of its two
 flows, is
 \begin{equation}
 @traffic@_e = @rate@^+_e @probability@_m + @rate@^-_e @probability@_n
@@ -68,7 +57,7 @@ flows, is
 
 
 def _entropy(paper: Paper) -> str:
-    return _filled(paper, r"""The entropy production rate, in units of $k_{\mathrm B}$ per time, is
+    return filled(paper, r"""The entropy production rate, in units of $k_{\mathrm B}$ per time, is
 \begin{equation}
 @entropy@ = \sum_e @current@_e
  \ln \frac{@rate@^+_e @probability@_m}{@rate@^-_e @probability@_n}
@@ -80,7 +69,7 @@ them~\cite{schnakenberg}.""")
 
 
 def _energy(paper: Paper) -> str:
-    return _filled(paper, r"""For a function $q$ of the state that does not itself depend on the
+    return filled(paper, r"""For a function $q$ of the state that does not itself depend on the
 energies,
 \begin{equation}
 \frac{\partial \langle q \rangle}{\partial @energy@_j}
@@ -109,7 +98,7 @@ def is_one(paper: Paper) -> bool:
 
 
 def _barrier(paper: Paper) -> str:
-    return _filled(paper, r"""The response of a probability to a barrier factorises,
+    return filled(paper, r"""The response of a probability to a barrier factorises,
 \begin{equation}
 \frac{\partial @probability@_k}{\partial @barrier@_e}
  = -\frac{@current numerator@_e @forest@_{k,e}}{@normalisation@^2}
@@ -121,7 +110,7 @@ the current; it vanishes with the current. """ + _forest(paper))
 
 
 def _drive(paper: Paper) -> str:
-    return _filled(paper, r"""The response of a probability to a drive is
+    return filled(paper, r"""The response of a probability to a drive is
 \begin{equation}
 \frac{\partial @probability@_k}{\partial @drive@_e}
  = \frac{@traffic numerator@_e @forest@_{k,e}}{2 @normalisation@^2} , \qquad
@@ -131,7 +120,7 @@ def _drive(paper: Paper) -> str:
 
 
 def _symbol(paper: Paper) -> str:
-    return _filled(paper, r"""A parameter $x$ acts through all rates that contain it,
+    return filled(paper, r"""A parameter $x$ acts through all rates that contain it,
 \begin{equation}
 \frac{\partial @probability@_k}{\partial x} = \sum_e \Bigl(
  \frac{\partial \ln @rate@^+_e}{\partial x} @rate@^+_e @tree sum@_m
@@ -141,7 +130,13 @@ def _symbol(paper: Paper) -> str:
 and on a mean also through the values of its observable. """ + _forest(paper))
 
 
+def _mean(paper: Paper) -> str:
+    return filled(paper, r"""With the $@tree sum@_k$ and $@normalisation@$ above, means are
+$\langle q \rangle = \sum_k q_k @tree sum@_k / @normalisation@$:""")
+
+
 _INTRODUCTIONS = {
+    "mean": _mean,
     "current": _current,
     "traffic": _traffic,
     "entropy": _entropy,
@@ -155,7 +150,7 @@ _INTRODUCTIONS = {
 def _mean_forests(paper: Paper, definitions: Sequence[NamedSum]) -> str:
     if not any(d.kind == "mean forest" for d in definitions):
         return ""
-    return _filled(paper, r""" For an observable $q$,
+    return filled(paper, r""" For an observable $q$,
 $@forest@_{q,e} = \sum_k q_k @forest@_{k,e}$.""")
 
 
@@ -199,6 +194,3 @@ def first_form(paper: Paper, named: NamedSum) -> list[Expression] | None:
         back = multiply([transition.backward, Symbol(paper.sums.tree(transition.second).key)])
         terms.append(negate(back) if named.kind == "current" else back)
     return [add([term]) for term in terms]
-
-
-__all__ = ["Mean", "Probability", "Response"]

@@ -5,11 +5,12 @@ from __future__ import annotations
 from collections.abc import Sequence
 
 from symbolic_response.appendix.escape import escaped, paragraphs
-from symbolic_response.appendix.formulas import _filled
+from symbolic_response.appendix.formulas import filled
 from symbolic_response.appendix.paper import Paper
+from symbolic_response.appendix.tables import COLUMN_GAP, table, table_width
 from symbolic_response.expressions.breaking import Equation, align, line_limit
-from symbolic_response.expressions.tree import ZERO, Expression, Number, Sum
-from symbolic_response.expressions.widths import formula_width
+from symbolic_response.expressions.tree import ZERO, Expression, Sum
+from symbolic_response.expressions.widths import DISPLAY, formula_width
 from symbolic_response.network.quantities import (
     BarrierOf,
     DriveOf,
@@ -17,9 +18,6 @@ from symbolic_response.network.quantities import (
     Response,
     walk_quantity,
 )
-from symbolic_response.response.quantity_latex import upright
-
-COLUMN_GAP = 12.0
 
 
 def model_section(paper: Paper, quantities: Sequence[Expression]) -> str:
@@ -28,7 +26,7 @@ def model_section(paper: Paper, quantities: Sequence[Expression]) -> str:
     if paper.network.about.strip():
         parts.append(paragraphs(paper.network.about))
     parts += [_statement(paper), _perturbations(paper, quantities), _symbols(paper),
-              _transitions(paper), _energy_form(paper), _observables(paper)]
+              _transitions(paper), _observables(paper)]
     return "\n\n".join(part for part in parts if part)
 
 
@@ -57,7 +55,7 @@ its own, and $@generator@_{ij}$ is the sum of their rates"""
         text += f"{noun} {', '.join(one_way)} {verb} one-way, $@rate@^-_e = 0$. "
     text += r"""Rates and currents are in units of inverse time, energies and forces in units of
 $k_{\mathrm B} T$. Stationary probabilities are denoted by $@probability@_k$."""
-    return _filled(paper, text)
+    return filled(paper, text)
 
 
 _ACTIONS = {
@@ -80,7 +78,7 @@ def _perturbations(paper: Paper, quantities: Sequence[Expression]) -> str:
     if not actions:
         return ""
     listed = actions[0] if len(actions) == 1 else "; ".join(actions[:-1]) + "; and " + actions[-1]
-    return _filled(paper, "Responses are derivatives of stationary quantities, all else being "
+    return filled(paper, "Responses are derivatives of stationary quantities, all else being "
                    r"held fixed. However the rates are written~\cite{owen}, " + listed + ".")
 
 
@@ -111,101 +109,113 @@ def _and(items: Sequence[str]) -> str:
     return items[0] if len(items) == 1 else ", ".join(items[:-1]) + " and " + items[-1]
 
 
-def table(columns: str, head: str, rows: Sequence[str]) -> str:
-    """Return a table that may cross pages, its head repeated."""
-    body = " \\\\\n".join(rows)
-    return (
-        f"\\begin{{longtable}}{{@{{}}{columns}@{{}}}}\n\\toprule\n{head} \\\\\n\\midrule\n"
-        f"\\endhead\n{body} \\\\\n\\bottomrule\n\\end{{longtable}}"
-    )
-
-
-def table_width(rows: Sequence[Sequence[str]]) -> float:
-    """Return the width of a table of formulas."""
-    columns = zip(*rows, strict=True)
-    widths = [max(formula_width(cell) for cell in column) for column in columns]
-    return sum(widths) + COLUMN_GAP * (len(widths) - 1)
-
-
 def _transitions(paper: Paper) -> str:
-    notation, sums = paper.notation, paper.sums
-    head = [r"\mathrm{Transition}", r"\mathrm{from}", r"\mathrm{to}",
-            f"{notation.letters['rate']}^+_e", f"{notation.letters['rate']}^-_e"]
-    rows = []
-    for e, transition in enumerate(paper.network.transitions):
-        rates = [transition.forward, transition.backward or ZERO]
-        rows.append([
-            upright(transition.name), notation.states[transition.first],
-            notation.states[transition.second], *(paper.latex(rate) for rate in rates),
-        ])
-    del sums
-    shown_head = f"Transition $e$ & from & to & ${head[3]}$ & ${head[4]}$"
-    if table_width([head, *rows]) <= paper.width - 5:
-        body = [" & ".join(f"$\\displaystyle {cell}$" for cell in row) for row in rows]
-        return "The transitions and their rates are:\n" + table("lllll", shown_head, body)
-    body = [" & ".join(f"${cell}$" for cell in row[:3]) for row in rows]
+    """Return the table of transitions, rates that are too wide for it as equations behind it."""
+    notation, letters = paper.notation, paper.notation.letters
+    energy_form = any(t.barrier is not None for t in paper.network.transitions)
+    parts = [_energy_form(paper)] if energy_form else []
+    head = [r"\mathrm{Transition\ }e", r"\mathrm{from}", r"\mathrm{to}"]
+    shown = ["Transition $e$", "from", "to"]
+    columns = [f"{letters['barrier']}_e", f"{letters['drive']}_e"] if energy_form else []
+    rates = [f"{letters['rate']}^+_e", f"{letters['rate']}^-_e"]
+    rows, long_rows = [], []
+    for e, t in enumerate(paper.network.transitions):
+        row = [notation.transitions[e], notation.states[t.first], notation.states[t.second]]
+        if energy_form:
+            row += ["", ""] if t.barrier is None else [
+                paper.latex(t.barrier), paper.latex(t.drive or ZERO)
+            ]
+        rows.append(row)
+        long_rows.append([*row, *(paper.latex(rate or ZERO) for rate in (t.forward, t.backward))])
+    whole = [*head, *columns, *rates]
+    if table_width([whole, *long_rows], style=DISPLAY) <= paper.width:
+        parts.append("The transitions and their rates are:\n" + _formula_table(
+            [*shown, *(f"${c}$" for c in (*columns, *rates))], long_rows
+        ))
+        return "\n\n".join(parts)
+    if table_width([[*head, *columns], *rows], style=DISPLAY) > paper.width:
+        rows, columns = [row[:3] for row in rows], []
+    parts.append("The transitions are:\n" + _formula_table(
+        [*shown, *(f"${c}$" for c in columns)], rows
+    ))
+    parts.append("Their rates are\n" + align(_rate_equations(paper), paper.width))
+    return "\n\n".join(parts)
+
+
+def _formula_table(head: Sequence[str], rows: Sequence[Sequence[str]]) -> str:
+    body = [
+        " & ".join(rf"$\displaystyle {cell}$" if r"\frac" in cell else f"${cell}$" for cell in row)
+        for row in rows
+    ]
+    return table("l" * len(head), " & ".join(head), body)
+
+
+def _rate_equations(paper: Paper) -> list[Equation]:
     equations = []
     for e, transition in enumerate(paper.network.transitions):
         for backward, rate in ((False, transition.forward), (True, transition.backward)):
             if rate is not None:
-                left = notation.rate(e, backward)
-                terms = list(rate.terms) if isinstance(rate, Sum) else [rate]
-                pieces = paper.pieces(terms, line_limit(left, paper.width))
-                equations.append(Equation(left, tuple(pieces)))
-    return ("The transitions are:\n" + table("lll", "Transition $e$ & from & to", body)
-            + "\nTheir rates are\n" + align(equations, paper.width))
+                left = paper.notation.rate(e, backward)
+                equations.append(_equation(paper, left, rate))
+    return equations
+
+
+def _equation(paper: Paper, left: str, value: Expression) -> Equation:
+    terms = list(value.terms) if isinstance(value, Sum) else [value]
+    return Equation(left, tuple(paper.pieces(terms, line_limit(left, paper.width))))
 
 
 def _energy_form(paper: Paper) -> str:
-    chosen = [t for t in paper.network.transitions if t.barrier is not None]
-    if not chosen:
-        return ""
-    which = "All transitions" if len(chosen) == len(paper.network.transitions) else "The following"
-    text = _filled(paper, which + r""" are given by the energies of the states, barriers and drives,
+    """Return how rates follow from energies, barriers and drives, and the energies."""
+    network = paper.network
+    complete = all(t.barrier is not None for t in network.transitions)
+    which = "The rates" if complete else "The rates of transitions with a barrier"
+    text = filled(paper, which + r""" follow from the energies $@energy@_k$ of the states, the
+barriers $@barrier@_e$ and the drives $@drive@_e$ as
 \begin{equation}
 @rate@^+_e = e^{@energy@_m - @barrier@_e + @drive@_e/2} , \qquad
-@rate@^-_e = e^{@energy@_n - @barrier@_e - @drive@_e/2} :
+@rate@^-_e = e^{@energy@_n - @barrier@_e - @drive@_e/2} .
 \end{equation}""")
-    head = r"Transition $e$ & $@barrier@_e$ & $@drive@_e$"
-    rows = [
-        f"${upright(t.name)}$ & ${paper.latex(t.barrier)}$ & ${paper.latex(t.drive or ZERO)}$"
-        for t in chosen if t.barrier is not None
-    ]
-    energies = [
-        f"${label}$ & ${paper.latex(state.energy)}$"
-        for state, label in zip(paper.network.states, paper.notation.states, strict=True)
+    equations = [
+        _equation(paper, left, state.energy)
+        for state, label in zip(network.states, paper.notation.states, strict=True)
         if state.energy is not None
+        and (left := paper.notation.indexed("energy", label)) != paper.latex(state.energy)
     ]
-    return (
-        text + "\n" + table("lll", _filled(paper, head), rows) + "\n"
-        + table("ll", _filled(paper, r"State $k$ & $@energy@_k$"), energies)
-    )
+    if not equations:
+        return text
+    return text + "\nThe energies are\n" + align(equations, paper.width)
 
 
 def _observables(paper: Paper) -> str:
+    """Return the values of the observables, in a sentence where they are short."""
     if not paper.network.observables:
         return ""
     notation = paper.notation
     equations = []
     for place, observable in enumerate(paper.network.observables):
-        for state, value in enumerate(observable.values):
-            if value != ZERO:
-                left = f"({notation.observables[place]})_{{{notation.states[state]}}}"
-                terms = list(value.terms) if isinstance(value, Sum) else [value]
-                pieces = paper.pieces(terms, line_limit(left, paper.width))
-                equations.append(Equation(left, tuple(pieces)))
+        name = notation.observables[place]
+        base = f"({name})" if "_" in name or "^" in name else name
+        equations += [
+            _equation(paper, f"{base}_{{{label}}}", value)
+            for label, value in zip(notation.states, observable.values, strict=True)
+            if value != ZERO
+        ]
     names = _and([f"${name}$" for name in notation.observables])
     count = len(paper.network.observables)
-    text = (
+    text = filled(paper, (
         f"The observable{'' if count == 1 else 's'} {names} "
         f"{'is a function' if count == 1 else 'are functions'} of the state; "
-        + r"the mean of $q$ is $\langle q \rangle = \sum_k q_k @probability@_k$."
-    )
+        r"$\langle q \rangle = \sum_k q_k @probability@_k$ is the mean of $q$."
+    ))
     if not equations:
-        return _filled(paper, text)
-    return _filled(paper, text + " The values that differ from zero are") + "\n" + align(
-        equations, paper.width
-    )
+        return text
+    inline = [f"${e.left} = {_one_line(e)}$" for e in equations]
+    if len(inline) <= 8 and all(formula_width(text_[1:-1]) < 120 for text_ in inline):
+        return text + f" The values other than zero are {_and(inline)}."
+    return text + " The values other than zero are\n" + align(equations, paper.width)
 
 
-__all__ = ["Number", "model_section", "table", "table_width"]
+def _one_line(equation: Equation) -> str:
+    first, *rest = equation.pieces
+    return first.sign + first.body + "".join(f" {piece.sign} {piece.body}" for piece in rest)

@@ -20,6 +20,7 @@ from symbolic_response.algebra.factored import (
     integer_power,
     monomial_of,
     product,
+    scaled,
     trimmed,
 )
 from symbolic_response.algebra.simplify import simplify
@@ -48,7 +49,7 @@ from symbolic_response.expressions.tree import (
 from symbolic_response.response.analysis import Analysis
 from symbolic_response.response.quantity_latex import Notation
 
-SHORT_TERMS = 2
+SHORT_TERMS = 4
 
 
 @dataclass(frozen=True, slots=True)
@@ -81,7 +82,9 @@ class NamedSum:
         return Generator("symbol", rank, self.key, Symbol(self.key), self.kind in _POSITIVE)
 
 
-_KINDS = ("current", "traffic", "tree", "forest", "mean forest", "remainder", "total")
+_KINDS = (
+    "current", "traffic", "tree", "forest", "mean forest", "remainder", "force", "total"
+)
 _POSITIVE = ("tree", "total", "traffic")
 
 
@@ -171,6 +174,12 @@ class NamedSums:
                          Factored(Fraction(1), factors=((base, Fraction(1)),)))
         return self._note(named)
 
+    def force(self, cycle: int, form: Factored, reverse: Factored) -> NamedSum:
+        """Name the force of the cycle with this number; ``reverse`` is minus ``form``."""
+        latex = self.notation.indexed("force", str(cycle))
+        self._note(NamedSum("force", (cycle,), latex, scaled(reverse, Fraction(-1))))
+        return self._note(NamedSum("force", (cycle,), latex, form))
+
     def _make(
         self, kind: str, place: tuple[int, ...], latex: str, poly: Callable[[], Poly],
         scale: int = 1,
@@ -216,7 +225,7 @@ class NamedSums:
 
     def _worth(self, named: NamedSum, defined: frozenset[str]) -> bool:
         return (
-            named.kind in ("tree", "total", "current", "remainder")
+            named.kind in ("tree", "total", "current", "remainder", "force")
             or named.key in defined
             or named.terms > SHORT_TERMS
         )
@@ -235,11 +244,11 @@ class NamedSums:
         None where a sum stands inside a function or a root.
         """
         for node in walk(tree):
-            if isinstance(node, Function) or (
+            opaque = isinstance(node, Function) or (
                 isinstance(node, Power) and node.exponent.denominator > 1
-            ):
-                if any(isinstance(part, Polynomial) for part in walk(node)):
-                    return None
+            )
+            if opaque and any(isinstance(part, Polynomial) for part in walk(node)):
+                return None
         return simplify(tree, self.analysis.substitution.context, self._leaf)
 
     def _leaf(self, leaf: Polynomial) -> Factored:
@@ -311,9 +320,8 @@ def _common_factor(analysis: Analysis) -> Factored:
         highs.append(high)
     monomial = []
     for place, generator in enumerate(ring.generators):
-        low, top = min(row[place] for row in lows), max(row[place] for row in highs)
-        shared = low if generator.kind != "exp" or low > 0 else min(top, 0)
-        monomial.append(shared)
+        least, most = min(row[place] for row in lows), max(row[place] for row in highs)
+        monomial.append(least if generator.kind != "exp" or least > 0 else min(most, 0))
     content = Fraction(
         gcd(*(image.coefficient.numerator for image in images)),
         lcm(*(image.coefficient.denominator for image in images)),

@@ -21,8 +21,10 @@ from symbolic_response.network.quantities import (
 from symbolic_response.network.quantity_reader import read_quantity
 
 KEYS = ("quantities",)
-DEFAULT_RESULTS = 20
-DEFAULT_BARRIERS = 12
+DEFAULT_RESULTS = 24
+MAX_BARRIERS = 12
+MAX_CURRENTS = 8
+MAX_MEANS = 6
 MAX_QUANTITIES = 500
 
 
@@ -74,26 +76,24 @@ def _read(network: Network, entries: list[object], where: str) -> list[Expressio
 
 
 def default_request(network: Network) -> Request:
-    """Return currents, means, entropy production and responses, about 20 in all."""
-    steady: list[Expression] = [Current(e) for e in range(len(network.transitions))][:8]
-    left_out = len(network.transitions) - len(steady)
-    steady += [Mean(place) for place in range(len(network.observables))][:6]
-    left_out += max(0, len(network.observables) - 6)
+    """Return currents, means, entropy production and responses, about 24 in all at the most."""
+    currents = [Current(e) for e in range(len(network.transitions))]
+    means = [Mean(place) for place in range(len(network.observables))]
+    steady: list[Expression] = [*currents[:MAX_CURRENTS], *means[:MAX_MEANS]]
+    left_out = len(currents) + len(means) - len(steady)
     if all(t.backward is not None for t in network.transitions):
         steady.append(EntropyProduction())
-    room = max(6, DEFAULT_RESULTS - len(steady))
-    chosen: list[Expression] = list(_observable_responses(network))
+    responses = list(_observable_responses(network))
     barriers = list(_barrier_responses(network))
-    if not chosen or len(barriers) <= DEFAULT_BARRIERS:
-        chosen += barriers
-    left_out += max(0, len(chosen) - room)
-    note = ""
-    if left_out:
-        note = (
-            f"Of the currents, the means and the responses {left_out} further ones, given by the "
-            "same formulas, are left out here."
-        )
-    return Request((*steady, *chosen[:room]), note)
+    if not responses or len(barriers) <= MAX_BARRIERS:
+        responses += barriers
+    room = DEFAULT_RESULTS - len(steady)
+    left_out += max(0, len(responses) - room)
+    note = (
+        "Of the currents and means and of their responses to the parameters and barriers, "
+        f"{left_out} that have the same form are not listed."
+    )
+    return Request((*steady, *responses[:room]), note if left_out else "")
 
 
 def _observable_responses(network: Network) -> list[Response]:

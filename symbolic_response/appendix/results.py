@@ -64,7 +64,8 @@ class Result:
 
 def results_section(paper: Paper, quantities: Sequence[Expression], note: str) -> str:
     """Return the sections that give the quantities in closed form."""
-    parts = [note] if note else []
+    parts = [r"\section{Closed forms}"] if quantities else []
+    parts += [note] if note else []
     for kind, heading in HEADINGS.items():
         chosen = [q for q in quantities if kind_of(q) == kind]
         if chosen:
@@ -122,7 +123,7 @@ def _group(paper: Paper, kind: str, quantities: Sequence[Expression]) -> str:
                 definitions.append(named)
                 paper.defined.add(named.key)
         equations.append(equation)
-    texts = [formulas.introduction(paper, kind, quantities, definitions)]
+    texts = [formulas.introduction(paper, kind, definitions)]
     if definitions:
         texts.append(formulas.definitions_text(paper, definitions))
         texts.append("With these," if len(equations) > 1 else "Hence")

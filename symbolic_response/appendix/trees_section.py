@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from symbolic_response.appendix.formulas import _filled, is_one
+from symbolic_response.appendix.formulas import filled, is_one
 from symbolic_response.appendix.named_sums import expanded
 from symbolic_response.appendix.paper import Paper
 from symbolic_response.expressions.breaking import (
@@ -19,8 +19,8 @@ from symbolic_response.topology import count_undirected_trees
 
 def trees_section(paper: Paper) -> str:
     """Return the tree sums N_k, D, and the stationary probabilities N_k/D."""
-    text = [r"\section{Spanning trees and stationary probabilities}", _theorem(paper),
-            _counts(paper)]
+    text = [r"\section{Spanning trees and stationary probabilities}", _theorem(paper)]
+    counts = _counts(paper)
     sums = [paper.sums.tree(k) for k in range(paper.analysis.graph.size)]
     terms = sum(s.terms for s in sums)
     if paper.take(terms):
@@ -28,25 +28,26 @@ def trees_section(paper: Paper) -> str:
         for s in sums:
             limit = line_limit(s.latex, paper.width)
             equations.append(Equation(s.latex, tuple(paper.pieces(expanded(s.form), limit))))
-        text.append("The tree sums are\n" + align(equations, paper.width))
+        text.append(counts + " The tree sums and their total are\n"
+                    + align([*equations, _total(paper)], paper.width))
     else:
-        text.append(_filled(paper, _too_long(paper, terms)))
-    text.append("and the normalisation is\n" + align([_total(paper)], paper.width))
+        text.append(counts + filled(paper, _too_long(terms)) + "\n"
+                    + align([_total(paper)], paper.width))
     paper.defined.update(s.key for s in (*sums, paper.sums.total()))
     return "\n\n".join(part for part in text if part)
 
 
 def _theorem(paper: Paper) -> str:
-    return _filled(paper, r"""A spanning tree directed towards its root $k$ holds exactly one
+    return filled(paper, r"""A spanning tree directed towards its root $k$ holds exactly one
 transition out of every other state, and following them from any state leads to $k$. Its weight is
 the product of the rates of its transitions in these directions. With $@tree sum@_k$ the sum of the
-weights of all spanning trees directed towards $k$, the stationary probabilities are
+weights of all spanning trees directed towards $k$, the tree
+theorem~\cite{kirchhoff,hill,schnakenberg} gives the stationary probabilities as
 \begin{equation}
 @probability@_k = \frac{@tree sum@_k}{@normalisation@} , \qquad
 @normalisation@ = \sum_k @tree sum@_k
 \label{eq:steady}
-\end{equation}
-(tree theorem~\cite{kirchhoff,hill,schnakenberg}).""")
+\end{equation}""")
 
 
 def _counts(paper: Paper) -> str:
@@ -63,15 +64,16 @@ def _counts(paper: Paper) -> str:
     text += "."
     if not is_one(paper):
         factor = paper.latex(paper.sums.common.expression())
-        text += _filled(paper, rf""" All tree sums share the factor $@factor@ = {factor}$, which cancels
-from all stationary quantities; $@tree sum@_k$ and all sums below are given divided by it.""")
+        text += filled(paper, rf""" All tree sums share the factor
+$@factor@ = {factor}$, which cancels from all stationary quantities; $@tree sum@_k$ and all sums
+below are given divided by it.""")
     return text
 
 
-def _too_long(paper: Paper, terms: int) -> str:
-    return rf"""The tree sums have {terms:,} terms in all and are not printed; $@tree sum@_k$ is the
-determinant of $-@generator@$ with row and column $k$ left out, its diagonal being
-$@generator@_{{jj}} = -\sum_{{i \neq j}} @generator@_{{ij}}$. Below they are used by name,"""
+def _too_long(terms: int) -> str:
+    return rf""" The tree sums have {terms:,} terms in all and are not printed; $@tree sum@_k$ is
+the determinant of $-@generator@$ with row and column $k$ left out, where
+$@generator@_{{jj}} = -\sum_{{i \neq j}} @generator@_{{ij}}$. Below they are used by name, and"""
 
 
 def _total(paper: Paper) -> Equation:

@@ -17,6 +17,7 @@ from symbolic_response.expressions.widths import formula_width
 NUMBER_ROOM = 30.0
 SIGN_WIDTH = 12.23
 """Width of a plus, minus or multiplication sign with the space on both its sides."""
+MINUS_WIDTH = 7.78
 RELATION_WIDTH = 13.34
 INDENT = 10.0
 _LINE_COST, _SLACK_COST, _EQUALS_BONUS = 100.0, 50.0, 40.0
@@ -86,10 +87,16 @@ def align(equations: Sequence[Equation], width: float) -> str:
 
 def _environment(block: Sequence[Equation], width: float) -> str:
     wide = is_wide(block[0].left, width)
-    left = INDENT if wide else max(formula_width(e.left) for e in block)
+    left = INDENT if wide else max(_left_width(equation) for equation in block)
     limit = width - left - RELATION_WIDTH
     rows = " \\\\\n".join(_rows(equation, limit, wide) for equation in block)
     return f"\\begin{{align}}\n{rows}\n\\end{{align}}"
+
+
+def _left_width(equation: Equation) -> float:
+    """Return the width left of the alignment: a leading minus stands there too."""
+    minus = MINUS_WIDTH if equation.pieces[0].sign == "-" else 0.0
+    return formula_width(equation.left) + minus
 
 
 def _rows(equation: Equation, limit: float, wide: bool) -> str:

@@ -17,7 +17,7 @@ from symbolic_response.expressions.glyph_table import GLYPHS, KERNS
 
 DISPLAY, TEXT, SCRIPT = 0, 1, 2
 SCRIPT_SPACE, FRACTION_SPACE = 0.5, 2.4
-UNKNOWN_WIDTH = 14.0
+UNKNOWN_WIDTH, WORD_SPACE = 14.0, 3.3334
 ROOT_WIDTH = (10.0, 10.0, 8.34, 7.5)
 TALL_PARENTHESIS = (7.37, 5.98, 5.98, 5.98)
 _SIZED = {r"\bigl": 4.59, r"\bigr": 4.59, r"\Bigl": 5.98, r"\Bigr": 5.98}
@@ -27,7 +27,7 @@ _CLASSES = {
     "rel": r"= < > : \to \rightarrow \leftarrow \leftrightarrow \rightleftharpoons \mid \neq \leq"
            r" \geq \le \ge \approx \sim \equiv \propto \uparrow \downarrow \in",
     "open": r"( [ \{ \langle", "close": r") ] ! \} \rangle", "punct": ", ;",
-    "inner": r"\ldots \cdots", "space": r"\, \: \; \! \quad \qquad ~",
+    "inner": r"\ldots \cdots", "space": r"\, \: \; \! \quad \qquad",
 }
 _CLASS = {glyph: kind for kind, glyphs in _CLASSES.items() for glyph in glyphs.split()}
 _ORDER = ("ord", "op", "bin", "rel", "open", "close", "punct", "inner")
@@ -173,6 +173,8 @@ def _symbol(token: str, alphabet: str) -> _Atom:
     if token in _OPERATORS:
         letters = [_Atom("ord", "glyph", f"rm:{letter}") for letter in token[1:]]
         return _Atom("op", "list", parts=(letters,))
+    if token in ("\\ ", "~"):
+        return _Atom("space", "fixed", fixed=WORD_SPACE)
     glyph = alphabet + token if alphabet + token in _glyphs() else token
     if glyph not in _glyphs():
         return _Atom("ord", "fixed", fixed=UNKNOWN_WIDTH)

@@ -1,0 +1,26 @@
+"""Tables that may cross pages."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+
+from symbolic_response.expressions.widths import TEXT, formula_width
+
+COLUMN_GAP = 12.0
+"""Twice LaTeX's tabcolsep, in pt."""
+
+
+def table(columns: str, head: str, rows: Sequence[str]) -> str:
+    """Return a table whose head is repeated on each page."""
+    body = " \\\\\n".join(rows)
+    return (
+        f"\\begin{{longtable}}{{@{{}}{columns}@{{}}}}\n\\toprule\n{head} \\\\\n\\midrule\n"
+        f"\\endhead\n{body} \\\\\n\\bottomrule\n\\end{{longtable}}"
+    )
+
+
+def table_width(rows: Sequence[Sequence[str]], *, style: int = TEXT) -> float:
+    """Return the width of a table whose cells, the head included, are formulas."""
+    columns = list(zip(*rows, strict=True))
+    widths = [max(formula_width(cell, style=style) for cell in column) for column in columns]
+    return sum(widths) + COLUMN_GAP * (len(widths) - 1)
