@@ -84,18 +84,21 @@ def independent_forces(cycles: Sequence[Cycle], analysis: Analysis) -> Independe
     """
     forms = [normal_form(cycle_force(cycle, analysis), analysis.domain) for cycle in cycles]
     rows = _coordinates(forms)
-    basis: list[int] = []
-    relations: dict[int, tuple[Fraction, ...]] = {}
-    for place, row in enumerate(rows):
-        found = _combination([rows[b] for b in basis], row)
-        if found is None:
-            basis.append(place)
-        else:
-            relations[place] = found
-    size = len(basis)
-    padded = {place: (*found, *[Fraction(0)] * (size - len(found)))
-              for place, found in relations.items()}
-    return Independence(tuple(basis), padded)
+    if not rows or not rows[0]:
+        return Independence((), dict.fromkeys(range(len(rows)), ()))
+    columns = [[_fmpq(row[place]) for row in rows] for place in range(len(rows[0]))]
+    reduced, rank = flint.fmpq_mat(columns).rref()
+    basis = tuple(_pivot(reduced, line) for line in range(rank))
+    relations = {
+        place: tuple(_fraction(reduced[line, place]) for line in range(rank))
+        for place in range(len(rows))
+        if place not in basis
+    }
+    return Independence(basis, relations)
+
+
+def _pivot(reduced: flint.fmpq_mat, line: int) -> int:
+    return next(place for place in range(reduced.ncols()) if reduced[line, place] != 0)
 
 
 def _coordinates(forms: Sequence[Quotient]) -> list[list[Fraction]]:
@@ -112,21 +115,9 @@ def _coordinates(forms: Sequence[Quotient]) -> list[list[Fraction]]:
     return [[Fraction(int(poly.get(key, 0))) for key in monomials] for poly in polys]
 
 
-def _combination(
-    basis: Sequence[Sequence[Fraction]], row: Sequence[Fraction]
-) -> tuple[Fraction, ...] | None:
-    """Return the coefficients of ``row`` in independent rows, None if it is not in their span."""
-    if not any(row):
-        return (Fraction(0),) * len(basis)
-    if not basis:
-        return None
-    size = len(basis)
-    entries = [[_fmpq(vector[c]) for vector in basis] + [_fmpq(row[c])] for c in range(len(row))]
-    reduced, rank = flint.fmpq_mat(entries).rref()
-    if rank > size:
-        return None
-    return tuple(Fraction(int(reduced[i, size].p), int(reduced[i, size].q)) for i in range(size))
-
-
 def _fmpq(value: Fraction) -> flint.fmpq:
     return flint.fmpq(value.numerator, value.denominator)
+
+
+def _fraction(value: flint.fmpq) -> Fraction:
+    return Fraction(int(value.p), int(value.q))

@@ -61,16 +61,20 @@ class Survey:
     beyond: tuple[str, ...]
 
     def path(self, cycle: Cycle) -> str:
-        """Return a cycle as its states, with transitions where several join two states."""
-        network = self.network
-        names = [network.states[k].name for k in cycle.states]
-        steps = [names[0]]
-        for place, e in enumerate(cycle.transitions):
-            ends = {network.transitions[e].first, network.transitions[e].second}
-            parallel = sum({t.first, t.second} == ends for t in network.transitions) > 1
-            arrow = f" -[{network.transitions[e].name}]-> " if parallel else " -> "
-            steps += [arrow, names[(place + 1) % len(names)]]
-        return "".join(steps)
+        """Return a cycle as its states."""
+        return cycle_path(cycle, self.network)
+
+
+def cycle_path(cycle: Cycle, network: Network) -> str:
+    """Return a cycle as its states, with transitions where several join two states."""
+    names = [network.states[k].name for k in cycle.states]
+    steps = [names[0]]
+    for place, e in enumerate(cycle.transitions):
+        ends = {network.transitions[e].first, network.transitions[e].second}
+        parallel = sum({t.first, t.second} == ends for t in network.transitions) > 1
+        arrow = f" -[{network.transitions[e].name}]-> " if parallel else " -> "
+        steps += [arrow, names[(place + 1) % len(names)]]
+    return "".join(steps)
 
 
 def survey(analysis: Analysis) -> Survey:
@@ -83,7 +87,7 @@ def survey(analysis: Analysis) -> Survey:
     except SizeLimitError as error:
         beyond.append(f"cycles: {error}")
     try:
-        independent, relations = _independence(analysis)
+        independent, relations = _independence(analysis, cycle_forces is not None)
     except SizeLimitError as error:
         beyond.append(f"independent forces: {error}")
     try:
@@ -106,9 +110,9 @@ def survey(analysis: Analysis) -> Survey:
 
 
 def _independence(
-    analysis: Analysis,
+    analysis: Analysis, listed: bool
 ) -> tuple[tuple[IndependentForce, ...], tuple[ForceRelation, ...]]:
-    cycles = _finite_cycles(analysis)
+    cycles = _finite_cycles(analysis, listed)
     found = independent_forces(cycles, analysis)
     chosen = []
     for place in found.basis:
@@ -124,13 +128,9 @@ def _independence(
     return tuple(chosen), tuple(relations)
 
 
-def _finite_cycles(analysis: Analysis) -> tuple[Cycle, ...]:
-    """Return all cycles of finite force while they are few, else a basis of them."""
-    try:
-        few = len(analysis.cycles) <= MAX_RELATED
-    except SizeLimitError:
-        few = False
-    if not few:
+def _finite_cycles(analysis: Analysis, listed: bool) -> tuple[Cycle, ...]:
+    """Return all cycles of finite force while they are listed and few, else a basis of them."""
+    if not listed or len(analysis.cycles) > MAX_RELATED:
         return force_basis(analysis)
     return tuple(
         cycle
