@@ -38,6 +38,7 @@ Poly = flint.fmpz_mpoly
 MAX_PRODUCTS = 4_000_000
 MAX_COEFFICIENT_BITS = 1_000_000
 MAX_GENERATORS = 1_000
+MAX_EXPONENTS = 5_000_000
 MAX_PARTS = 20_000
 MAX_DIVISOR_DEGREE = 10_000
 MAX_DIVISOR_TERMS = 30_000
@@ -149,9 +150,17 @@ def union(rings: Iterable[Ring]) -> Ring:
 
 
 def lift(poly: Poly, source: Ring, target: Ring) -> Poly:
-    """Return ``poly`` of ``source`` as an element of ``target``, which must contain it."""
+    """Return ``poly`` of ``source`` as an element of ``target``, which must contain it.
+
+    SizeLimitError past five million exponents.
+    """
     if source == target:
         return poly
+    if len(poly) * len(target.generators) > MAX_EXPONENTS:
+        raise SizeLimitError(
+            f"a sum of {len(poly)} terms in {len(target.generators)} symbols and functions"
+            " is too long to be combined with others"
+        )
     lifted = poly.project_to_context(target.context)
     factors = [1] * len(target.generators)
     for generator, root in zip(source.generators, source.roots, strict=True):
