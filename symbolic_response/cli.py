@@ -1,6 +1,6 @@
 """The command line: verbs, progress, exit status. No mathematics.
 
-Exit status: 0 done; 2 the input cannot be used; 3 undecided or beyond a size limit; 130
+Exit status: 0 done; 1 an inequality fails; 2 the input cannot be used; 3 undecided or beyond a size limit; 130
 interrupted.
 """
 
@@ -28,7 +28,7 @@ if TYPE_CHECKING:
     from symbolic_response.response.analysis import Analysis
     from symbolic_response.response.deriving import Derived
 
-UNUSABLE, UNDECIDED, INTERRUPTED = 2, 3, 130
+REFUTED, UNUSABLE, UNDECIDED, INTERRUPTED = 1, 2, 3, 130
 
 _json = click.option("--json", "as_json", is_flag=True, help="One JSON object on standard output.")
 _quiet = click.option("--quiet", is_flag=True, help="No progress on standard error.")
@@ -183,6 +183,36 @@ def _derived_text(result: Derived) -> str:
         low, high = result.value.enclosure
         line += f"\n  between {low}\n      and {high}"
     return line
+
+
+@main.command(short_help="The inequalities that limit a response, with their data.")
+@_network
+@click.argument("response")
+@click.option("--at", multiple=True, metavar="SYMBOL=VALUE",
+              help="Give a symbol an exact value; every symbol needs one, or none has.")
+@_json
+@_quiet
+def bound(network: str, response: str, at: tuple[str, ...], as_json: bool, quiet: bool) -> int:
+    """Say which inequalities limit a response, what in the network sets the limit, and the source.
+
+    With --at both sides are evaluated and the verdict is exact.
+
+    \b
+    Example:
+      symbolic-response bound net.toml "d ln(p[A]/p[B]) / d barrier[bind]"
+    """
+    from symbolic_response.bounds.report import bound as make_report
+    from symbolic_response.bounds.report import report_data, report_text
+    from symbolic_response.response.deriving import read_assignments
+
+    values = read_assignments(at, "--at")
+    with Progress(quiet) as progress:
+        progress.stage(f"bounding {response}")
+        report = make_report(_analysis(_read(network), progress), response, values)
+    click.echo(json.dumps(report_data(report), indent=1) if as_json else report_text(report))
+    if report.refuted():
+        return REFUTED
+    return UNDECIDED if report.undecided() else 0
 
 
 @main.command(short_help="A complete LaTeX document.")

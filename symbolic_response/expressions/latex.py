@@ -46,7 +46,7 @@ def latex_terms(node: Expression, names: Mapping[str, str]) -> list[SignedTerm]:
     """Return the terms of a sum, or the one term of anything else."""
     if isinstance(node, Polynomial):
         return _polynomial_terms(node, names)
-    parts = node.terms if isinstance(node, Sum) else (node,)
+    parts = shown_terms(node) if isinstance(node, Sum) else (node,)
     terms = []
     for part in parts:
         negative, rest = without_sign(part)
@@ -162,7 +162,7 @@ def exponent_latex(argument: Expression, names: Mapping[str, str]) -> str:
     """Return the argument of an exponential, with slashes instead of small fractions."""
     if isinstance(argument, Polynomial):
         return expression_latex(argument, names)
-    parts = argument.terms if isinstance(argument, Sum) else (argument,)
+    parts = shown_terms(argument) if isinstance(argument, Sum) else (argument,)
     terms = []
     for part in parts:
         negative, rest = without_sign(part)

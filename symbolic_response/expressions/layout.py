@@ -13,6 +13,7 @@ from symbolic_response.expressions.tree import (
     Number,
     Power,
     Product,
+    Sum,
     add,
     multiply,
     number,
@@ -63,6 +64,14 @@ def without_sign(node: Expression) -> tuple[bool, Expression]:
     if isinstance(node, Polynomial) and len(node.poly) == 1 and node.poly.coeffs()[0] < 0:
         return True, Polynomial(node.ring, -node.poly)
     return False, node
+
+
+def shown_terms(node: Sum) -> tuple[Expression, ...]:
+    """Return the terms of a sum in the order they are shown: ``1 - a`` rather than ``-a + 1``."""
+    first, last = node.terms[0], node.terms[-1]
+    if without_sign(first)[0] and isinstance(last, Number) and last.value > 0:
+        return (last, *node.terms[:-1])
+    return node.terms
 
 
 def printed_terms(

@@ -6,7 +6,12 @@ from fractions import Fraction
 
 import flint
 
-from symbolic_response.expressions.layout import fraction_layout, printed_terms, without_sign
+from symbolic_response.expressions.layout import (
+    fraction_layout,
+    printed_terms,
+    shown_terms,
+    without_sign,
+)
 from symbolic_response.expressions.reader import MAX_EXPONENT
 from symbolic_response.expressions.ring import Polynomial
 from symbolic_response.expressions.tree import Expression, Function, Number, Sum, Symbol
@@ -20,7 +25,7 @@ def expression_text(node: Expression) -> str:
     'k1*c/(k2 + k1*c)**2 - 1/2'
     """
     if isinstance(node, Sum):
-        return _join([(neg, _product(term)) for neg, term in map(without_sign, node.terms)])
+        return _join([(neg, _product(term)) for neg, term in map(without_sign, shown_terms(node))])
     if isinstance(node, Polynomial):
         return _polynomial(node)
     negative, rest = without_sign(node)

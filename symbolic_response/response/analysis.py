@@ -11,6 +11,8 @@ from __future__ import annotations
 from collections.abc import Iterable
 from functools import cached_property
 
+import numpy as np
+
 from symbolic_response.algebra.factored import Factored, from_polynomial
 from symbolic_response.algebra.rates import RateRing, polynomial_from_masks, rate_ring
 from symbolic_response.algebra.simplify import simplify
@@ -150,6 +152,14 @@ class Analysis:
         count = sum(self.tree_counts[k] for k in chosen)
         self.require_terms(count, "the sum over spanning trees")
         return sum((self.tree_sum(k) for k in chosen), self.rates.ring.constant(0))
+
+    def tree_sum_without(self, root: int, transition: int) -> Poly:
+        """Return a_k, the part of N_k from trees that do not use a transition."""
+        name = self.network.states[root].name
+        self.require_terms(self.tree_counts[root], f"the tree sum of state {name!r}")
+        forward, backward = rooted(self.trees, root)
+        free = (forward | backward) & np.uint64(1 << transition) == 0
+        return polynomial_from_masks(self.rates, forward[free], backward[free])
 
     @cached_property
     def normalisation(self) -> Poly:

@@ -271,22 +271,31 @@ def _energy_parts(
     They act as energies: d<Q>/d energy[j] = p_j (<Q> - Q_j), given here times D^2.
     """
     parts = []
+    for state, change, leaving in uniform_states(changes, analysis):
+        for place in leaving:
+            del changes[place]
+        shifted = tuple(add([value, negate(values[state])]) for value in values)
+        own = _poly(analysis.tree_sum(state), analysis)
+        parts.append(multiply([change, own, _weighted(shifted, analysis)]))
+    return parts
+
+
+def uniform_states(
+    changes: RateChanges, analysis: Analysis
+) -> list[tuple[int, Expression, list[int]]]:
+    """Return the states all of whose outgoing rates change alike, the change, and those rates."""
     directions = analysis.rates.directions()
+    found = []
     for state in range(analysis.graph.size):
         leaving = [
             place
             for place, (e, backward) in enumerate(directions)
             if analysis.graph.ends[e][1 if backward else 0] == state
         ]
-        found = {changes.get(place, ZERO) for place in leaving}
-        if len(found) != 1 or ZERO in found:
-            continue
-        for place in leaving:
-            del changes[place]
-        shifted = tuple(add([value, negate(values[state])]) for value in values)
-        own = _poly(analysis.tree_sum(state), analysis)
-        parts.append(multiply([found.pop(), own, _weighted(shifted, analysis)]))
-    return parts
+        alike = {changes.get(place, ZERO) for place in leaving}
+        if len(alike) == 1 and ZERO not in alike:
+            found.append((state, alike.pop(), leaving))
+    return found
 
 
 def _changed_flow(e: int, changes: RateChanges, analysis: Analysis) -> Expression:

@@ -14,7 +14,7 @@ from fractions import Fraction
 import flint
 
 from symbolic_response.errors import EvaluationError
-from symbolic_response.expressions.derivative import by_symbol
+from symbolic_response.expressions.derivative import by_symbol, derivative
 from symbolic_response.expressions.normal_form import normal_form
 from symbolic_response.expressions.ring import Domain
 from symbolic_response.expressions.signs import certain_sign
@@ -27,7 +27,12 @@ from symbolic_response.expressions.tree import (
     Product,
     Sum,
     Symbol,
+    add,
+    divide,
+    function,
     multiply,
+    number,
+    rebuild,
     substitute,
 )
 from symbolic_response.network.model import Network
@@ -60,6 +65,39 @@ from symbolic_response.response.jets import (
 NO_SYMBOLS = Domain((), frozenset())
 
 
+class _NotRationalError(Exception):
+    """An atom has no rational value."""
+
+
+def atomic(quantity: Expression, network: Network) -> Expression:
+    """Return a quantity with responses of atoms only, entropy production as a sum of atoms."""
+
+    def leaf(part: Expression) -> Expression:
+        if isinstance(part, Response):
+            by = part.perturbation
+            return derivative(atomic(part.quantity, network), lambda atom: _changed(atom, by))
+        return _entropy_production(network) if isinstance(part, EntropyProduction) else part
+
+    return rebuild(quantity, leaf)
+
+
+def _changed(atom: Expression, by: Perturbation) -> Expression:
+    if not isinstance(atom, Symbol):
+        return Response(atom, by)
+    if not isinstance(by, BySymbol) or by.name != atom.name:
+        return number(0)
+    return atom if by.logarithmic else number(1)
+
+
+def _entropy_production(network: Network) -> Expression:
+    """Return the sum of J ln(w+/w-): the ln(p_m/p_n) add up to nothing."""
+    terms = []
+    for e in range(len(network.transitions)):
+        ratio = divide(DirectedRate(e, False), DirectedRate(e, True))
+        terms.append(multiply([Current(e), function("ln", ratio)]))
+    return add(terms)
+
+
 class Point:
     """A network at given values of all its symbols.
 
@@ -79,6 +117,35 @@ class Point:
         """Return the exact value of a quantity, None where it is not known to be rational."""
         found = self._jet(quantity, ())[0]
         return None if found is None else Fraction(int(found.p), int(found.q))
+
+    def expression(self, quantity: Expression) -> Expression | None:
+        """Return the exact value of a quantity as a constant expression.
+
+        Every atom, and every response of an atom, becomes a rational number; None where one of
+        them is not known to be rational.
+        """
+        try:
+            return rebuild(atomic(quantity, self.network), self._constant_leaf)
+        except _NotRationalError:
+            return None
+
+    def _constant_leaf(self, leaf: Expression) -> Expression:
+        if isinstance(leaf, Symbol):
+            return self.values[leaf.name]
+        if isinstance(leaf, Number):
+            return leaf
+        exact = self.value(leaf)
+        if exact is None:
+            raise _NotRationalError
+        return number(exact)
+
+    def rate(self, transition: int, backward: bool) -> Fraction:
+        """Return a directed rate; EvaluationError where it is not rational."""
+        (found,) = self._rate(transition, backward, ())
+        if found is None:
+            name = self.network.transitions[transition].name
+            raise EvaluationError(f"a rate of transition {name!r} is not rational at this point")
+        return Fraction(int(found.p), int(found.q))
 
     def _check_rates(self) -> None:
         for transition in self.network.transitions:
@@ -188,7 +255,10 @@ class Point:
                     result = jet_product(result, self._jet(factor, stack))
                 return result
             case Power(base, exponent):
-                return jet_power(self._jet(base, stack), exponent)
+                inner = self._jet(base, stack)
+                if exponent > 0 and not stack and inner[0] is not None and inner[0] == 0:
+                    return inner
+                return jet_power(inner, exponent)
             case Function("exp", argument):
                 return jet_exponential(self._jet(argument, stack))
             case Function(_, argument):

@@ -15,6 +15,7 @@ from symbolic_response.topology.graph import (
     is_strongly_connected,
     unreachable,
 )
+from symbolic_response.topology.paths import can_run_path, simple_paths
 from symbolic_response.topology.splittings import connected_bipartitions, splittings
 from symbolic_response.topology.trees import (
     SpanningTrees,
@@ -34,6 +35,7 @@ __all__ = [
     "bridges",
     "can_run_against",
     "can_run_along",
+    "can_run_path",
     "connected_bipartitions",
     "count_rooted_trees",
     "count_undirected_trees",
@@ -42,6 +44,7 @@ __all__ = [
     "is_connected",
     "is_strongly_connected",
     "rooted",
+    "simple_paths",
     "spanning_trees",
     "splittings",
     "two_tree_forests",

@@ -1,0 +1,154 @@
+"""Responses to a control parameter that enters several rates."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from fractions import Fraction
+
+from symbolic_response.bounds.claim import Claim, CycleMaximum, Question, Term
+from symbolic_response.bounds.sides import quantity_text
+from symbolic_response.bounds.target import absolute, depends_on, extreme, spread_factor
+from symbolic_response.bounds.topological import cycle_data
+from symbolic_response.expressions.signs import certain_sign
+from symbolic_response.expressions.tree import (
+    ZERO,
+    Expression,
+    add,
+    multiply,
+    negate,
+    number,
+)
+from symbolic_response.network.quantities import BySymbol
+from symbolic_response.response.analysis import Analysis
+from symbolic_response.response.closed_trees import RateChanges, rate_changes, uniform_states
+
+SOURCE = (
+    "Owen, Gingrich & Horowitz, Phys. Rev. X 10, 011066 (2020), summed over energies and"
+    " transitions"
+)
+
+
+@dataclass(frozen=True, slots=True)
+class Decomposition:
+    """d/d theta as energies, barriers and single rates.
+
+    ``energies[j]``: the common change of the logarithms of all rates out of state j, 0 if they do
+    not change alike. ``barriers``: per transition the size of what both its rates share.
+    ``singles``: per transition what is left for one rate, or for the two in opposite directions.
+    """
+
+    energies: tuple[Expression, ...]
+    barriers: dict[int, Expression]
+    singles: dict[int, Expression]
+
+
+def decompose(changes: RateChanges, analysis: Analysis) -> Decomposition:
+    """Return the decomposition of the changes of the logarithms of the rates."""
+    left = dict(changes)
+    energies: list[Expression] = [ZERO] * analysis.graph.size
+    for state, change, leaving in uniform_states(changes, analysis):
+        energies[state] = change
+        for place in leaving:
+            del left[place]
+    barriers: dict[int, Expression] = {}
+    singles: dict[int, Expression] = {}
+    for e, forward in enumerate(analysis.rates.forward):
+        back = analysis.rates.backward[e]
+        ahead = left.get(forward, ZERO)
+        behind = ZERO if back is None else left.get(back, ZERO)
+        shared, rest = _shared(ahead, behind, analysis.domain.positive)
+        if shared != ZERO:
+            barriers[e] = shared
+        if rest != ZERO:
+            singles[e] = rest
+    return Decomposition(tuple(energies), barriers, singles)
+
+
+def _shared(
+    ahead: Expression, behind: Expression, positive: frozenset[str]
+) -> tuple[Expression, Expression]:
+    """Return the sizes of the barrier part and of the rest of two changes."""
+    difference = _size(add([ahead, negate(behind)]), positive)
+    if ahead == behind:
+        return _size(ahead, positive), ZERO
+    if ZERO in (ahead, behind):
+        return ZERO, difference
+    signs = certain_sign(ahead, positive), certain_sign(behind, positive)
+    if None not in signs and signs[0] == signs[1]:
+        return extreme("min", (_size(ahead, positive), _size(behind, positive))), difference
+    if None not in signs:
+        return ZERO, difference
+    half = multiply([number(Fraction(1, 2)), add([ahead, behind])])
+    return absolute(half), difference
+
+
+def _size(node: Expression, positive: frozenset[str]) -> Expression:
+    """Return the absolute value of an expression of symbols, its sign used where it is certain."""
+    sign = certain_sign(node, positive)
+    if sign is None:
+        return absolute(node)
+    return node if sign >= 0 else negate(node)
+
+
+def parameter(question: Question) -> Claim | None:
+    """|d<Q>/dx| <= H <Q>(1 - <Q>) for 0 <= Q <= 1 that does not depend on x.
+
+    H = (max a - min a) + sum |b_e| tanh(F_max(e)/4) + sum |single rates|: the changes of ln of the
+    rates written as energies a, barriers b and single rates, of which each counts at most 1.
+    """
+    perturbation, analysis = question.response.perturbation, question.analysis
+    if not isinstance(perturbation, BySymbol) or depends_on(question.target, perturbation.name):
+        return None
+    parts = decompose(rate_changes(perturbation, analysis), analysis)
+    factor = spread_factor(question.target)
+    spread = add([extreme("max", parts.energies), negate(extreme("min", parts.energies))])
+    fixed = add([spread, *parts.singles.values()])
+    terms = [Term(multiply([factor, fixed]))] if fixed != ZERO else []
+    terms += [
+        Term(multiply([factor, size]), CycleMaximum(e)) for e, size in parts.barriers.items()
+    ]
+    return Claim(
+        "parameter", question.response, tuple(terms) or (Term(ZERO),),
+        _data(parts, analysis), "the observable does not depend on the parameter", SOURCE,
+    )
+
+
+def _data(parts: Decomposition, analysis: Analysis) -> dict[str, object]:
+    states = [state.name for state in analysis.network.states]
+    names = [t.name for t in analysis.network.transitions]
+
+    def shown(sizes: dict[int, Expression]) -> dict[str, str]:
+        return {names[e]: quantity_text(size, analysis.network) for e, size in sizes.items()}
+
+    return {
+        "energies": {
+            name: quantity_text(change, analysis.network)
+            for name, change in zip(states, parts.energies, strict=True) if change != ZERO
+        },
+        "barriers": shown(parts.barriers),
+        "single_rates": shown(parts.singles),
+        "cycles": {names[e]: cycle_data(e, analysis)["cycles"] for e in parts.barriers},
+    }
+
+
+def support(question: Question) -> Claim | None:
+    """|d ln(p_i/p_j)/d ln x| <= m if x multiplies some of the rates that leave m states."""
+    perturbation, analysis = question.response.perturbation, question.analysis
+    if not isinstance(perturbation, BySymbol) or depends_on(question.target, perturbation.name):
+        return None
+    changes = rate_changes(perturbation, analysis)
+    if len(set(changes.values())) != 1:
+        return None
+    directions = analysis.rates.directions()
+    sources = sorted({
+        analysis.graph.ends[directions[place][0]][1 if directions[place][1] else 0]
+        for place in changes
+    })
+    power = _size(next(iter(changes.values())), analysis.domain.positive)
+    factor = multiply([number(len(sources)), power, spread_factor(question.target)])
+    names = [analysis.network.states[k].name for k in sources]
+    return Claim(
+        "support", question.response, (Term(factor),), {"states": names},
+        "the parameter multiplies rates by one common power and changes nothing else",
+        "Owen & Horowitz, Nat. Commun. 14, 1280 (2023), statement from memory",
+    )
