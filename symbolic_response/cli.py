@@ -1,7 +1,7 @@
 """The command line: verbs, progress, exit status. No mathematics.
 
-Exit status: 0 done; 1 an inequality fails; 2 the input cannot be used; 3 undecided or beyond a size limit; 130
-interrupted.
+Exit status: 0 done; 1 something was refuted; 2 the input cannot be used; 3 undecided or beyond a
+size limit; 130 interrupted.
 """
 
 from __future__ import annotations

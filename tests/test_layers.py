@@ -10,8 +10,8 @@ import pytest
 import symbolic_response
 
 ROOT = Path(symbolic_response.__file__).parent
-STAGES = ["errors", "expressions", "network", "topology", "algebra", "response", "bounds", "appendix",
-          "progress", "cli", "__main__"]
+STAGES = ["errors", "expressions", "network", "topology", "algebra", "response", "bounds",
+          "certificates", "appendix", "progress", "cli", "__main__"]
 SHELL = {"__init__"}  # the lazy list of public names reaches everything
 MAX_LINES = 400
 

@@ -11,6 +11,7 @@ from symbolic_response.expressions.tree import (
     ZERO,
     Expression,
     Number,
+    Sum,
     Symbol,
     add,
     divide,
@@ -145,6 +146,8 @@ def _leaf_text(leaf: Expression, network: Network) -> str:
             return "entropy_production"
         case Response(inner, perturbation):
             shown = quantity_text(inner, network)
+            if isinstance(inner, Sum):
+                shown = f"({shown})"
             return f"(d {shown} / d {perturbation_text(perturbation, network)})"
     raise TypeError(f"no text for {type(leaf).__name__}")
 

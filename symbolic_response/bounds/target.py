@@ -231,7 +231,18 @@ def extreme(name: str, parts: tuple[Expression, ...]) -> Expression:
 
 
 def absolute(inner: Expression) -> Expression:
-    """Return the absolute value, of a number at once."""
+    """Return the absolute value, without bars where the sign is plain."""
     if isinstance(inner, Number):
         return number(abs(inner.value))
-    return inner if isinstance(inner, (Absolute, Probability)) else Absolute(inner)
+    if isinstance(inner, Product):
+        lead = inner.factors[0]
+        if isinstance(lead, Number) and lead.value < 0:
+            return absolute(multiply([number(-lead.value), *inner.factors[1:]]))
+        return inner if all(map(_plainly_positive, inner.factors)) else Absolute(inner)
+    return inner if _plainly_positive(inner) or isinstance(inner, Absolute) else Absolute(inner)
+
+
+def _plainly_positive(node: Expression) -> bool:
+    if isinstance(node, Number):
+        return node.value > 0
+    return isinstance(node.base if isinstance(node, Power) else node, Probability)

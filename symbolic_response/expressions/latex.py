@@ -17,6 +17,7 @@ from symbolic_response.expressions.layout import (
     FractionLayout,
     fraction_layout,
     printed_terms,
+    shown_terms,
     without_sign,
 )
 from symbolic_response.expressions.ring import Polynomial
