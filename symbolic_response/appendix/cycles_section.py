@@ -10,7 +10,7 @@ from symbolic_response.appendix.formulas import filled
 from symbolic_response.appendix.paper import Paper
 from symbolic_response.appendix.tables import table, table_width
 from symbolic_response.errors import SizeLimitError
-from symbolic_response.expressions.breaking import Equation, Piece, align, line_limit
+from symbolic_response.expressions.breaking import Equation, Piece, align, fits, line_limit
 from symbolic_response.expressions.tree import Expression, divide, function
 from symbolic_response.response.closed_trees import cycle_force
 from symbolic_response.topology import Cycle, can_run_along
@@ -79,49 +79,65 @@ $\pm 1$~\cite{schnakenberg}:"""
 
 
 def _listing(paper: Paper, entries: Sequence[_Entry]) -> str:
-    """Return the table of cycles, with the forces where these are short."""
-    rows = [_row(paper, entry) for entry in entries]
-    head = [r"\mathrm{Cycle\ }c", r"\mathrm{States}", r"\mathrm{Transitions}",
-            paper.notation.letters["force"] + "_c"]
-    forces = [row[3] for row in rows]
-    if table_width([head, *rows]) <= paper.width and not any(r"\frac" in f for f in forces):
-        shown = f"Cycle $c$ & States & Transitions & ${head[3]}$"
-        return table("llll", shown, [" & ".join(f"${cell}$" for cell in row) for row in rows]) + (
-            _minus_note(entries)
-        )
-    shown = "Cycle $c$ & States & Transitions"
-    if table_width([head[:3], *(row[:3] for row in rows)]) <= paper.width:
-        routes = table("lll", shown, [" & ".join(f"${c}$" for c in row[:3]) for row in rows])
+    """Return the table of cycles, with the forces where these are short.
+
+    The transitions are listed only where parallel ones make the states ambiguous.
+    """
+    pairs = [frozenset(ends) for ends in paper.analysis.graph.ends]
+    parallel = len(set(pairs)) < len(pairs)
+    rows = [_row(paper, entry, parallel) for entry in entries]
+    head = [r"\mathrm{Cycle\ }c", r"\mathrm{States}"]
+    head += [r"\mathrm{Transitions}"] if parallel else []
+    shown = ["Cycle $c$", "States", "Transitions"][: len(head)]
+    forces = [_force_latex(paper, entry) for entry in entries]
+    note = "\nA minus sign marks a transition that is run from its second state to its first."
+    note = note if parallel and not all(all(entry.cycle.along) for entry in entries) else ""
+    letter = paper.notation.letters["force"] + "_c"
+    whole = [[*row, force] for row, force in zip(rows, forces, strict=True)]
+    if table_width([[*head, letter], *whole]) <= paper.width and "frac" not in "".join(forces):
+        return _route_table([*shown, f"${letter}$"], whole) + note
+    if table_width([head, *rows]) <= paper.width:
+        routes = _route_table(shown, rows)
     else:
-        column = r">{\raggedright\arraybackslash}p{0.44\linewidth}"
-        body = [
-            f"${n}$ & ${states}$ & ${steps}$"
-            .replace(r" \to ", r" \to{}$ $").replace(",\\ ", ",$ $")
-            for n, states, steps, _ in rows
-        ]
-        routes = table("l" + 2 * column, shown, body)
+        routes = _wrapped_table(shown, rows)
     verb = "The force is" if len(entries) == 1 else "The forces are"
     equations = [_equation(paper, entry) for entry in entries]
-    return routes + _minus_note(entries) + f"\n{verb}\n" + align(equations, paper.width)
+    return routes + note + f"\n{verb}\n" + align(equations, paper.width)
 
 
-def _minus_note(entries: Sequence[_Entry]) -> str:
-    if all(all(entry.cycle.along) for entry in entries):
-        return ""
-    return "\nA minus sign marks a transition that is run from its second state to its first."
+def _route_table(head: Sequence[str], rows: Sequence[Sequence[str]]) -> str:
+    body = [" & ".join(f"${cell}$" for cell in row) for row in rows]
+    return table("l" * len(head), " & ".join(head), body)
 
 
-def _row(paper: Paper, entry: _Entry) -> list[str]:
+def _wrapped_table(head: Sequence[str], rows: Sequence[Sequence[str]]) -> str:
+    """Return a table whose cells break over lines after arrows and commas."""
+    share = 0.8 / (len(head) - 1)
+    column = rf">{{\raggedright\arraybackslash}}p{{{share:.2f}\linewidth}}"
+    body = [
+        " & ".join(
+            f"${cell}$".replace(r" \to ", r" \to{}$ $").replace(",\\ ", ",$ $") for cell in row
+        )
+        for row in rows
+    ]
+    return table("l" + (len(head) - 1) * column, " & ".join(head), body)
+
+
+def _row(paper: Paper, entry: _Entry, parallel: bool) -> list[str]:
     notation, cycle = paper.notation, entry.cycle
     states = [notation.states[k] for k in (*cycle.states, cycle.states[0])]
     steps = [
         ("" if ahead else "-") + notation.transitions[e]
         for e, ahead in zip(cycle.transitions, cycle.along, strict=True)
     ]
-    force = _infinite(paper, entry)
-    if entry.force is not None:
-        force = paper.latex(entry.force.expression())
-    return [f"{entry.number}", r" \to ".join(states), ",\\ ".join(steps), force]
+    row = [f"{entry.number}", r" \to ".join(states)]
+    return [*row, ",\\ ".join(steps)] if parallel else row
+
+
+def _force_latex(paper: Paper, entry: _Entry) -> str:
+    if entry.force is None:
+        return _infinite(paper, entry)
+    return paper.latex(entry.force.expression())
 
 
 def _infinite(paper: Paper, entry: _Entry) -> str:
@@ -136,7 +152,7 @@ def _equation(paper: Paper, entry: _Entry) -> Equation:
         return Equation(left, (Piece("-" if infinite.startswith("-") else "", r"\infty"),))
     node = entry.force.expression()
     pieces = paper.pieces([node], limit)
-    if any(piece.forced for piece in pieces):
+    if any(piece.forced or not fits(piece.body, limit) for piece in pieces):
         pieces = paper.pieces(_step_by_step(paper, entry.cycle), limit)
     return Equation(left, tuple(pieces))
 

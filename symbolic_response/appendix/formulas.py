@@ -8,7 +8,6 @@ from symbolic_response.appendix.named_sums import NamedSum, expanded
 from symbolic_response.appendix.paper import Paper
 from symbolic_response.expressions.breaking import (
     Equation,
-    Piece,
     align,
     continued,
     line_limit,
@@ -16,6 +15,7 @@ from symbolic_response.expressions.breaking import (
 from symbolic_response.expressions.tree import Expression, Symbol, add, multiply, negate
 
 MAX_SECOND_FORM = 60
+MAX_SUM_TERMS = 250
 
 
 def introduction(paper: Paper, kind: str, definitions: Sequence[NamedSum]) -> str:
@@ -87,6 +87,9 @@ $k$ (all-minors theorem~\cite{chaiken})"""
 
 
 def _forest(paper: Paper) -> str:
+    if "forest" in paper.explained:
+        return ""
+    paper.explained.add("forest")
     divided = "" if is_one(paper) else ", divided by the factor $@factor@$ like the $@tree sum@_k$"
     return _FOREST + divided + "."
 
@@ -160,25 +163,40 @@ $@forest@_{q,e} = \sum_k q_k @forest@_{k,e}$.""")
 def definitions_text(paper: Paper, definitions: Sequence[NamedSum]) -> str:
     """Return the definitions of named sums; a sum too long to print is described."""
     equations: list[Equation] = []
-    described: list[str] = []
+    described: list[NamedSum] = []
     for named in definitions:
-        first = first_form(paper, named)
-        long = named.terms > paper.room or (first is not None and named.terms > MAX_SECOND_FORM)
-        if first is None and long:
-            described.append(f"${named.latex}$ is a sum of {named.terms:,} products of rates"
-                             " and is not printed")
-            continue
         limit = line_limit(named.latex, paper.width)
-        pieces: list[Piece] = []
-        if first is not None:
-            pieces = paper.pieces(first, limit)
-        if not long and paper.take(named.terms):
+        first = first_form(paper, named)
+        allowed = MAX_SUM_TERMS if first is None else MAX_SECOND_FORM
+        printed = named.terms <= allowed and paper.take(named.terms)
+        if first is None and not printed:
+            described.append(named)
+            continue
+        pieces = paper.pieces(first, limit) if first is not None else []
+        if printed:
             terms = paper.pieces(expanded(named.form), limit)
             pieces = [*pieces, *continued(terms)] if pieces else terms
         equations.append(Equation(named.latex, tuple(pieces)))
     texts = [align(equations, paper.width)] if equations else []
     if described:
-        texts.insert(0, "; ".join(described) + ".")
+        texts.insert(0, filled(paper, _description(described)))
+    return "\n".join(texts)
+
+
+def _description(sums: Sequence[NamedSum]) -> str:
+    """Return what long sums are, how many terms they have, and how to get them."""
+    forests = [s for s in sums if s.kind in ("forest", "mean forest")]
+    others = [s for s in sums if s not in forests]
+    texts = []
+    if forests:
+        texts.append(
+            "Not printed, but given by the definition above as minors of $@generator@$, "
+            + ("is " if len(forests) == 1 else "are ")
+            + ", ".join(f"${s.latex}$ ({s.terms:,} terms)" for s in forests) + "."
+        )
+    texts += [
+        f"We write ${s.latex}$ for a sum of {s.terms:,} terms that is not printed." for s in others
+    ]
     return "\n".join(texts)
 
 

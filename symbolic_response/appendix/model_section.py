@@ -99,9 +99,12 @@ def _symbols(paper: Paper) -> str:
         f"${names[e.name]}$ & {escaped(e.about)} & {'positive' if e.positive else 'real'}"
         for e in entries
     ]
-    room = paper.width - 2 * COLUMN_GAP - 45 - max(formula_width(names[e.name]) for e in entries)
-    return "The symbols are listed below.\n" + table(
-        rf"l>{{\raggedright\arraybackslash}}p{{{room:.0f}pt}}l", "Symbol & Meaning & Sign", rows
+    sides = table_width([
+        [r"\mathrm{Symbol}", r"\mathrm{positive}"], *([names[e.name], ""] for e in entries)
+    ])
+    room = paper.width - sides - COLUMN_GAP
+    return "The symbols are:\n" + table(
+        rf"l>{{\raggedright\arraybackslash}}p{{{int(room)}pt}}l", "Symbol & Meaning & Sign", rows
     )
 
 

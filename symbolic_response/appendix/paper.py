@@ -42,7 +42,10 @@ MAX_PRINTED_TERMS = 2000
 
 @dataclass(slots=True)
 class Paper:
-    """One document in the making; ``defined`` holds the keys of sums defined so far."""
+    """One document in the making; ``defined`` holds the keys of sums defined so far.
+
+    ``explained`` holds the general notions a section has explained.
+    """
 
     network: Network
     analysis: Analysis
@@ -51,6 +54,7 @@ class Paper:
     width: float
     room: int = MAX_PRINTED_TERMS
     defined: set[str] = field(default_factory=set)
+    explained: set[str] = field(default_factory=set)
 
     def latex(self, node: Expression) -> str:
         """Return an expression in the user's symbols and named sums."""

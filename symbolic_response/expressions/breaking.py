@@ -2,7 +2,7 @@ r"""Breaking long formulas over lines, with widths computed beforehand.
 
 An :class:`Equation` is a left side and the pieces of its right side; between two pieces a line may
 end. :func:`align` sets equations in one ``align`` environment, each with its own number, whose
-lines fit a given width: `` \notag\\ &{}+`` continues a sum. Breaks minimise the sum over lines of
+lines fit a given width: `` \notag\\ &\quad{}+`` continues a sum. Breaks minimise the sum over lines of
 100 + 50 (slack/limit)^2; the last line leaves room for the number.
 """
 
@@ -87,32 +87,25 @@ def align(equations: Sequence[Equation], width: float) -> str:
 
 def _environment(block: Sequence[Equation], width: float) -> str:
     wide = is_wide(block[0].left, width)
-    left = INDENT if wide else max(_left_width(equation) for equation in block)
+    left = INDENT if wide else max(formula_width(e.left) for e in block)
     limit = width - left - RELATION_WIDTH
     rows = " \\\\\n".join(_rows(equation, limit, wide) for equation in block)
     return f"\\begin{{align}}\n{rows}\n\\end{{align}}"
 
 
-def _left_width(equation: Equation) -> float:
-    """Return the width left of the alignment: a leading minus stands there too."""
-    minus = MINUS_WIDTH if equation.pieces[0].sign == "-" else 0.0
-    return formula_width(equation.left) + minus
-
-
 def _rows(equation: Equation, limit: float, wide: bool) -> str:
-    start = r"&\quad " if wide else ""
-    rows: list[str] = []
-    for line in break_lines(equation.pieces, limit):
+    start = r"&\quad " if wide else "&"
+    rows = [f"&{equation.left}"] if wide else []
+    for place, line in enumerate(break_lines(equation.pieces, limit)):
         first, *rest = line
-        if not rows:
-            head = "=-" if first.sign == "-" else "={}"
-            row = f"&{equation.left} \\notag\\\\\n" + start + head if wide else equation.left + head
-            row += "" if wide else "&"
+        if place == 0:
+            head = ("" if wide else equation.left + " ") + start + "=" + first.sign
         elif first.sign == "=":
-            row = start + "={}" if wide else "={}&"
+            head = start + "="
         else:
-            row = (r"&\quad\;\;{}" if wide else "&{}") + first.sign + " "
-        rows.append(row + first.body + "".join(f" {piece.sign} {piece.body}" for piece in rest))
+            head = start + r"\quad{}" + first.sign
+        tail = "".join(f" {piece.sign} {piece.body}" for piece in rest)
+        rows.append(f"{head} {first.body}{tail}")
     label = f" \\label{{{equation.label}}}" if equation.label else ""
     return " \\notag\\\\\n".join(rows) + label
 
@@ -159,7 +152,7 @@ def _line_cost(
 
 def _sign_width(piece: Piece, first: bool) -> float:
     if first:
-        return 0.0
+        return MINUS_WIDTH if piece.sign == "-" else 0.0
     return RELATION_WIDTH if piece.sign == "=" else SIGN_WIDTH
 
 
