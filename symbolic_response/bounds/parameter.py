@@ -103,12 +103,12 @@ def parameter(question: Question) -> Claim | None:
     factor = spread_factor(question.target)
     spread = add([extreme("max", parts.energies), negate(extreme("min", parts.energies))])
     fixed = add([spread, *parts.singles.values()])
-    terms = [Term(multiply([factor, fixed]))] if fixed != ZERO else []
+    terms = [Term(multiply([factor, fixed]))]
     terms += [
         Term(multiply([factor, size]), CycleMaximum(e)) for e, size in parts.barriers.items()
     ]
     return Claim(
-        "parameter", question.response, tuple(terms) or (Term(ZERO),),
+        "parameter", question.response, tuple(terms),
         _data(parts, analysis), "the observable does not depend on the parameter", SOURCE,
     )
 
