@@ -24,7 +24,6 @@ MAX_PRECISION = 4096
 RELATIVE_WIDTH = Fraction(1, 10**20)
 _ACCURACY_BITS = 72  # a little more than RELATIVE_WIDTH asks for
 _SHOWN_DIGITS = 25
-_LOG10_OF_2 = Fraction(30102999566398119521373889472449302676, 10**38)
 _PRECISIONS = (128, 256, 512, 1024, 2048, MAX_PRECISION)
 
 
@@ -128,12 +127,15 @@ def _refuse_without_value(node: Expression) -> None:
 
 
 def _round_outwards(value: flint.arb) -> tuple[str, str] | None:
-    mantissa, exponent = value.mid().man_exp()
-    bits = int(abs(mantissa)).bit_length() + int(exponent)
-    digits = _SHOWN_DIGITS - bits * _LOG10_OF_2.numerator // _LOG10_OF_2.denominator
+    if value.rel_accuracy_bits() < _ACCURACY_BITS:
+        return None
+    size = abs(value).log() / flint.arb(10).log()
+    if not size.rad() < 1:
+        return None
+    digits = _SHOWN_DIGITS - _integer(size.mid().floor())
     power = flint.arb(10) ** flint.fmpz(abs(digits))
     scaled = value * power if digits >= 0 else value / power
-    if min(value.rel_accuracy_bits(), scaled.rel_accuracy_bits()) < _ACCURACY_BITS:
+    if scaled.rel_accuracy_bits() < _ACCURACY_BITS:
         return None
     bottom, top = _integer(scaled.lower().floor()), _integer(scaled.upper().ceil())
     if (top - bottom) > min(abs(bottom), abs(top)) * RELATIVE_WIDTH:

@@ -98,8 +98,8 @@ def _large_power(body: str, exponent: Fraction) -> str:
     if high > MAX_EXPONENT:
         inner = _large_power(body, Fraction(high))
     text = f"{body}**{MAX_EXPONENT}" if high == 1 else f"({inner})**{MAX_EXPONENT}"
-    if not low:
-        return text
+    if low in (0, 1):
+        return f"{text}*{body}" if low else text
     rest = fraction_text(low)
     return f"{text}*{body}**" + (rest if low.denominator == 1 else f"({rest})")
 

@@ -14,6 +14,7 @@ from fractions import Fraction
 from symbolic_response.errors import EvaluationError, SizeLimitError
 
 MAX_NUMBER_BITS = 100_000
+MAX_DEPTH = 250
 FUNCTIONS = ("exp", "ln")
 
 
@@ -227,6 +228,8 @@ def rebuild(node: Expression, leaf: Callable[[Expression], Expression]) -> Expre
 def substitute(node: Expression, values: dict[str, Expression]) -> Expression:
     """Return the tree with symbols replaced, all at once.
 
+    SizeLimitError where the result is nested more than 250 deep.
+
     >>> substitute(Symbol("c"), {"c": number(3)})
     Number(value=Fraction(3, 1))
     """
@@ -234,4 +237,15 @@ def substitute(node: Expression, values: dict[str, Expression]) -> Expression:
     def leaf(part: Expression) -> Expression:
         return values.get(part.name, part) if isinstance(part, Symbol) else part
 
-    return rebuild(node, leaf)
+    result = rebuild(node, leaf)
+    if any(children(value) for value in values.values()) and _depth(result) > MAX_DEPTH:
+        raise SizeLimitError(f"an expression is nested more than {MAX_DEPTH} deep")
+    return result
+
+
+def _depth(node: Expression) -> int:
+    deepest, level = 0, [node]
+    while level:
+        deepest += 1
+        level = list({id(part): part for above in level for part in children(above)}.values())
+    return deepest
