@@ -29,6 +29,7 @@ if TYPE_CHECKING:
     from symbolic_response.response.deriving import Derived
 
 REFUTED, UNUSABLE, UNDECIDED, INTERRUPTED = 1, 2, 3, 130
+MAX_MESSAGE = 700
 
 _json = click.option("--json", "as_json", is_flag=True, help="One JSON object on standard output.")
 _quiet = click.option("--quiet", is_flag=True, help="No progress on standard error.")
@@ -48,6 +49,10 @@ def run(arguments: Sequence[str]) -> int:
     except click.exceptions.NoArgsIsHelpError as error:
         click.echo(error.ctx.get_help() if error.ctx else "", err=True)
         return UNUSABLE
+    except click.NoSuchOption as error:
+        hint = "; a quantity that begins with - stands in parentheses" if error.ctx and (
+            error.ctx.info_name == "derive") else ""
+        return _fail(error.format_message() + hint, UNUSABLE)
     except click.ClickException as error:
         return _fail(error.format_message(), UNUSABLE)
     except InputError as error:
@@ -64,10 +69,15 @@ def run(arguments: Sequence[str]) -> int:
     except BrokenPipeError:
         os.dup2(os.open(os.devnull, os.O_WRONLY), sys.stdout.fileno())
         return 0
+    except OSError as error:
+        place = f"{error.filename}: " if error.filename else ""
+        return _fail(f"{place}{(error.strerror or str(error)).lower()}", UNUSABLE)
 
 
 def _fail(message: str, status: int) -> int:
     line = " ".join(message.split())
+    if len(line) > MAX_MESSAGE:
+        line = f"{line[: MAX_MESSAGE - 100]} ... {line[-100:]}"
     with contextlib.suppress(OSError):
         click.echo(f"error: {line}", err=True)
     return status
@@ -141,7 +151,12 @@ def derive(
     """
     from symbolic_response.network.quantity_reader import read_quantity
     from symbolic_response.network.substitution import with_substitution
-    from symbolic_response.response.deriving import derive_quantity, read_assignments, replaced
+    from symbolic_response.response.deriving import (
+        check_not_replaced,
+        derive_quantity,
+        read_assignments,
+        replaced,
+    )
 
     changes = read_assignments(put, "--set")
     values = read_assignments(at, "--at")
@@ -150,6 +165,7 @@ def derive(
     if changes:
         asked = [(text, replaced(quantity, changes, text)) for text, quantity in asked]
         described = with_substitution(described, changes)
+        check_not_replaced(values, changes, described)
     results = []
     with Progress(quiet) as progress:
         analysis = _analysis(described, progress, trees, terms)

@@ -6,6 +6,8 @@ from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, replace
 from fractions import Fraction
 
+import flint
+
 from symbolic_response.algebra.specialise import specialise
 from symbolic_response.errors import (
     AssignmentError,
@@ -13,11 +15,12 @@ from symbolic_response.errors import (
     ExpressionError,
     QuantityError,
 )
-from symbolic_response.expressions.enclosure import decimal_enclosure
+from symbolic_response.expressions.enclosure import ball, decimal_enclosure
 from symbolic_response.expressions.latex import expression_latex, fraction_latex
 from symbolic_response.expressions.names import nearest
-from symbolic_response.expressions.normal_form import Quotient, normal_form
+from symbolic_response.expressions.normal_form import normal_form
 from symbolic_response.expressions.reader import read_expression
+from symbolic_response.expressions.ring import Domain
 from symbolic_response.expressions.signs import certain_sign
 from symbolic_response.expressions.text import expression_text, fraction_text
 from symbolic_response.expressions.tree import (
@@ -33,8 +36,12 @@ from symbolic_response.network.quantities import BySymbol, Response
 from symbolic_response.network.quantity_reader import read_quantity
 from symbolic_response.network.substitution import with_substitution
 from symbolic_response.response.analysis import Analysis
-from symbolic_response.response.closed_form import ClosedForm, closed_form
-from symbolic_response.response.values import Point
+from symbolic_response.response.closed_form import closed_form
+from symbolic_response.response.existence import require_existence
+from symbolic_response.response.values import NO_SYMBOLS, Point
+
+MAX_TIDIED = 600  # a longer irrational value is shown as it comes
+RATIONAL_PRECISION, RATIONAL_DENOMINATOR = 2048, 2**900
 
 
 @dataclass(frozen=True, slots=True)
@@ -102,6 +109,17 @@ def check_values(values: Mapping[str, Expression], network: Network) -> None:
                                   " a positive symbol")
 
 
+def check_not_replaced(
+    values: Mapping[str, Expression], changes: Mapping[str, Expression], network: Network
+) -> None:
+    """Raise AssignmentError where a symbol that a substitution has removed is given a value."""
+    known = [entry.name for entry in network.symbols]
+    for name in values:
+        if name in changes and name not in known:
+            raise AssignmentError(f"{name} has been replaced; give values to the symbols that"
+                                  f" remain: {', '.join(known[:12]) or 'none'}")
+
+
 Given = str | int | Fraction | Expression
 
 
@@ -132,6 +150,8 @@ def derive(
         analysis = Analysis(with_substitution(analysis.network, changes))
         quantity = replaced(quantity, changes, text)
     values = {name: _given(name, value) for name, value in (at or {}).items()}
+    if put:
+        check_not_replaced(values, changes, analysis.network)
     return derive_quantity(analysis, quantity, text, values)
 
 
@@ -164,18 +184,24 @@ def _derived(
     analysis: Analysis, quantity: Expression, label: str, values: Mapping[str, Expression]
 ) -> Derived:
     if all(entry.name in values for entry in analysis.network.symbols):
-        exact = Point(analysis.network, values).value(quantity)
+        point = Point(analysis.network, values)
+        exact = point.value(quantity)
         if exact is not None:
             return _rational(label, exact)
+        constant = point.expression(quantity)
+        if constant is not None:
+            return _constant(label, constant, NO_SYMBOLS)
     form = closed_form(quantity, analysis)
+    require_existence(form.expression, analysis.domain.positive)
     if values:
         check_rates(analysis.network, values)
         placed = specialise(form.form, dict(values), analysis.domain)
         form = replace(form, form=placed)
+        require_existence(form.expression, analysis.domain.positive)
     if form.symbols():
         return Derived(label, form.text(), form.latex(), None)
     # in the domain of the form: its polynomials hold generators that were ranked there
-    return _constant(label, normal_form(form.expression, analysis.domain), form)
+    return _constant(label, form.expression, analysis.domain)
 
 
 def _rational(text: str, exact: Fraction) -> Derived:
@@ -183,13 +209,41 @@ def _rational(text: str, exact: Fraction) -> Derived:
     return Derived(text, fraction_text(exact), fraction_latex(exact), shown)
 
 
-def _constant(text: str, value: Quotient, form: ClosedForm) -> Derived:
-    exact = value.as_fraction()
-    if exact is not None:
-        return _rational(text, exact)
-    expression = min(value.expression(), form.expression, key=lambda e: len(expression_text(e)))
+def _constant(text: str, given: Expression, domain: Domain) -> Derived:
+    expression = given
+    if _is_short(given, domain) or may_be_rational(given):
+        value = normal_form(given, domain)
+        exact = value.as_fraction()
+        if exact is not None:
+            return _rational(text, exact)
+        expression = min(value.expression(), given, key=lambda e: len(expression_text(e)))
     shown = Value(None, expression, decimal_enclosure(expression))
     return Derived(text, expression_text(expression), expression_latex(expression, {}), shown)
+
+
+def _is_short(constant: Expression, domain: Domain) -> bool:
+    """Return whether its normal form is found quickly: numbers and their logarithms, or little."""
+    return not domain.names or len(expression_text(constant)) <= MAX_TIDIED
+
+
+def may_be_rational(constant: Expression) -> bool:
+    """Return False if a constant is certainly no fraction with a denominator below 2^900.
+
+    A fraction inside an enclosure is no closer to its middle than the best approximation.
+    """
+    with flint.ctx.workprec(RATIONAL_PRECISION):
+        enclosure = ball(constant)
+    if not enclosure.is_finite():
+        return True
+    middle, radius = (arb_fraction(end) for end in (enclosure.mid(), enclosure.rad()))
+    nearest_one = middle.limit_denominator(RATIONAL_DENOMINATOR)
+    return abs(nearest_one - middle) <= radius
+
+
+def arb_fraction(exact: flint.arb) -> Fraction:
+    """Return an exact ball as a fraction."""
+    mantissa, exponent = exact.man_exp()
+    return Fraction(int(mantissa)) * Fraction(2) ** int(exponent)
 
 
 def check_rates(network: Network, values: Mapping[str, Expression]) -> None:
