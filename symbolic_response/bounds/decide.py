@@ -64,15 +64,18 @@ def _single(x: Fraction, term: Weighted) -> bool:
 def tanh_bounds(g: Fraction, divisor: int, bits: int) -> tuple[Fraction, Fraction]:
     """Return rational bounds of tanh(ln(g)/divisor), g >= 1; equal where the root is rational.
 
+    The lower one takes g^(2/n) as floor(2^bits b g^(2/n))/(2^bits b), with b the denominator of g
+    (of g^2 for an odd divisor): for 4 the one that the record of a certificate prescribes.
+
     >>> tanh_bounds(Fraction(16), 4, 64)
     (Fraction(3, 5), Fraction(3, 5))
     """
-    power = g**2
+    power, index = (g, divisor // 2) if divisor % 2 == 0 else (g**2, divisor)
     bottom = power.denominator
-    scaled = flint.fmpz(power.numerator * bottom ** (divisor - 1) << (divisor * bits))
-    root = scaled.root(divisor)
+    scaled = flint.fmpz(power.numerator * bottom ** (index - 1) << (index * bits))
+    root = scaled.root(index)
     low = Fraction(int(root), bottom << bits)
-    high = low if root**divisor == scaled else Fraction(int(root) + 1, bottom << bits)
+    high = low if root**index == scaled else Fraction(int(root) + 1, bottom << bits)
     return (low - 1) / (low + 1), (high - 1) / (high + 1)
 
 
