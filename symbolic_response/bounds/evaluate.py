@@ -47,6 +47,7 @@ class ClaimPoint:
         self.point = point
         self._forces: dict[Force, Fraction | None] = {}
         self._values: dict[Expression, Fraction] = {}
+        self._rates: dict[tuple[int, bool], Fraction] = {}
 
     def evaluate(self, claim: Claim) -> Evaluated:
         """Return both sides of a claim and the exact verdict.
@@ -143,7 +144,10 @@ class ClaimPoint:
 
     def rate(self, transition: int, backward: bool) -> Fraction:
         """Return a directed rate."""
-        return self.point.rate(transition, backward)
+        key = (transition, backward)
+        if key not in self._rates:
+            self._rates[key] = self.point.rate(transition, backward)
+        return self._rates[key]
 
     def _end_pair(self, e: int) -> Fraction | None:
         """Return max(r, 1/r) with r = w+ a_m/(w- a_n), None where it is infinite."""

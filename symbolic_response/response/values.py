@@ -50,6 +50,7 @@ from symbolic_response.network.quantities import (
     Response,
     Traffic,
 )
+from symbolic_response.response.direct import direct_value
 from symbolic_response.response.jets import (
     Jet,
     Scalar,
@@ -152,7 +153,12 @@ class Point:
             for rate in (transition.forward, transition.backward):
                 if rate is None:
                     continue
-                if certain_sign(substitute(rate, self.values), frozenset()) != 1:
+                value = direct_value(rate, self.values)
+                if value is not None:
+                    self._constants[(rate, ())] = value
+                positive = (value > 0 if value is not None
+                            else certain_sign(substitute(rate, self.values), frozenset()) == 1)
+                if not positive:
                     at = ", ".join(f"{k} = {expression_text(v)}" for k, v in self.values.items())
                     raise EvaluationError(
                         f"rate {expression_text(rate)!r} of transition {transition.name!r} is not"
@@ -181,7 +187,10 @@ class Point:
                 changed = by_symbol(changed, step.name)
                 if step.logarithmic:
                     changed = multiply([Symbol(step.name), changed])
-            self._constants[key] = rational_constant(substitute(changed, self.values))
+            found = direct_value(changed, self.values)
+            if found is None:
+                found = rational_constant(substitute(changed, self.values))
+            self._constants[key] = found
         return self._constants[key]
 
     def _rate(self, e: int, backward: bool, stack: tuple[Perturbation, ...]) -> Jet:
