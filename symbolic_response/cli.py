@@ -40,6 +40,22 @@ _terms = click.option("--terms", type=click.IntRange(min=1), metavar="N",
 _network = click.argument("network", type=click.Path())
 
 
+class _InterruptedError(Exception):
+    """The user pressed Ctrl-C."""
+
+
+class _Verbs(click.Group):
+    """A group whose interruption is one line of our own; click adds an empty one."""
+
+    def invoke(self, ctx: click.Context) -> Any:
+        try:
+            return super().invoke(ctx)
+        except KeyboardInterrupt:
+            if sys.stderr.isatty():
+                click.echo(err=True)  # past the ^C
+            raise _InterruptedError from None
+
+
 def run(arguments: Sequence[str]) -> int:
     """Run one command; return the exit status."""
     try:
@@ -61,7 +77,7 @@ def run(arguments: Sequence[str]) -> int:
         return _fail(str(error), UNDECIDED)
     except SymbolicResponseError as error:
         return _fail(str(error), UNUSABLE)
-    except (KeyboardInterrupt, click.Abort):
+    except (_InterruptedError, KeyboardInterrupt, click.Abort):
         return _fail("interrupted", INTERRUPTED)
     except MemoryError:
         return _fail("out of memory: the network is too large for a closed form; exact values with"
@@ -83,7 +99,9 @@ def _fail(message: str, status: int) -> int:
     return status
 
 
-@click.group(context_settings={"help_option_names": ["-h", "--help"], "max_content_width": 100})
+@click.group(
+    cls=_Verbs, context_settings={"help_option_names": ["-h", "--help"], "max_content_width": 100}
+)
 @click.version_option(package_name="symbolic-response", message="%(version)s")
 def main() -> None:
     """Exact steady states and responses of small driven kinetic networks.
