@@ -249,6 +249,34 @@ def bound(network: str, response: str, at: tuple[str, ...], as_json: bool, quiet
     return UNDECIDED if report.undecided() else 0
 
 
+@main.command(short_help="The independent check of certificates.")
+@click.argument("files", nargs=-1, required=True, metavar="FILE...", type=click.Path())
+@_json
+def recheck(files: tuple[str, ...], as_json: bool) -> int:
+    """Check certificates independently of the code that wrote them.
+
+    \b
+    Each FILE is valid, invalid (exit status 1), malformed or unreadable (2),
+    or beyond a size limit (3); of several the first of 1, 2, 3 counts.
+
+    \b
+    Example:
+      symbolic-response recheck certificate.json
+    """
+    from symbolic_response.checker import check_file, exit_status
+
+    verdicts = []
+    for path in files:
+        verdicts.append(check_file(path))
+        if not as_json:
+            click.echo(" ".join(f"{path}: {verdicts[-1]}".split()))
+    if as_json:
+        results = [{"file": path, **verdict.data()}
+                   for path, verdict in zip(files, verdicts, strict=True)]
+        click.echo(json.dumps({"results": results}, indent=1))
+    return exit_status(verdicts)
+
+
 @main.command(short_help="A complete LaTeX document.")
 @_network
 @click.option("-o", "--output", required=True, type=click.Path(), metavar="FILE.tex",

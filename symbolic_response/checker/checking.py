@@ -1,0 +1,98 @@
+"""The check of a whole record, from its entries to one verdict."""
+
+from __future__ import annotations
+
+import os
+from dataclasses import dataclass
+from fractions import Fraction
+
+from .bounds import Term, check_applies, holds, ratio, right_side
+from .expressions import bits
+from .network import Graph
+from .point import solve_point
+from .reading import MAX_WORK, Rejected, Verdict, Work, invalid, read_file, shown
+from .record import Claim, Record, read_record
+
+
+@dataclass
+class Place:
+    """The place of the largest ratio so far."""
+
+    point: int
+    left: Fraction
+    terms: list[Term]
+    ratio: Fraction
+
+
+def check_file(path: str | os.PathLike[str]) -> Verdict:
+    """Check the record in a file."""
+    try:
+        return check_record(read_file(path))
+    except Rejected as error:
+        return error.verdict
+    except MemoryError:
+        return Verdict("incomplete", "file", "a record that fits into memory", "another")
+
+
+def check_record(data: object, most_work: int = MAX_WORK) -> Verdict:
+    """Check a record that was read from JSON."""
+    try:
+        record = read_record(data)
+        _check(record, Work(most_work))
+    except Rejected as error:
+        return error.verdict
+    return Verdict("valid", got=f"{len(record.claims)} claims, {len(record.points)} points")
+
+
+def _check(record: Record, work: Work) -> None:
+    network, points = record.network, len(record.points)
+    one_way = [backward is None for _, backward in network.rates]
+    graph = Graph(len(network.states), network.ends, one_way, work)
+    if not graph.strongly_connected():
+        raise invalid("network.transitions", "every state within reach of every other", "others")
+    if record.count > points:
+        raise invalid("sampling.count", f"at most {points}", record.count)
+    check_applies(record)
+    for i, claim in enumerate(record.claims):
+        if claim.holds != points:
+            raise invalid(f"claims[{i}].holds", str(points), claim.holds)
+    worst: list[Place | None] = [None] * len(record.claims)
+    for k in range(points):
+        solved = solve_point(record, k, graph, work)
+        for i, claim in enumerate(record.claims):
+            terms = right_side(record, i, solved, graph, work)
+            share = _settle(claim, i, k, solved.left, terms, work)
+            place = worst[i]
+            if place is None or share > place.ratio:
+                worst[i] = Place(k, solved.left, terms, share)
+    for i, (claim, place) in enumerate(zip(record.claims, worst, strict=True)):
+        assert place is not None
+        _compare(claim, f"claims[{i}].worst", place)
+
+
+def _settle(claim: Claim, i: int, k: int, left: Fraction, terms: list[Term],
+            work: Work) -> Fraction:
+    """Return the ratio of the sides at a point where the claim holds."""
+    for factor, g in terms:
+        work.charge(8, max(bits(left), bits(factor), bits(g or factor)))
+    verdict, share = holds(claim, left, terms), ratio(left, terms)
+    if not verdict or share is None:
+        right = " + ".join(shown(f) + ("" if g is None else f"*tanh(ln({shown(g)})/4)")
+                           for f, g in terms[:4])
+        status = "undecided" if verdict is not False else "it does not"
+        relation = "=" if claim.name == "energy-covariance" else "<="
+        raise invalid(f"claims[{i}].holds", f"{claim.name} holds at points[{k}]",
+                      f"{status}: {shown(left)} {relation} {right}")
+    return share
+
+
+def _compare(claim: Claim, entry: str, place: Place) -> None:
+    """Compare the worst place of a claim with what was found."""
+    pairs: list[tuple[str, object, object]] = [
+        ("point", place.point, claim.point), ("left", place.left, claim.left),
+        ("right", len(place.terms), len(claim.right))]
+    for j, (found, given) in enumerate(zip(place.terms, claim.right, strict=False)):
+        pairs += [(f"right[{j}].factor", found[0], given[0]), (f"right[{j}].g", found[1], given[1])]
+    for key, wanted, stated in [*pairs, ("ratio", place.ratio, claim.ratio)]:
+        if wanted != stated:
+            raise invalid(f"{entry}.{key}", shown(wanted), stated)

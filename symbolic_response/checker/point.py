@@ -1,0 +1,161 @@
+"""One point of a record: rates, steady state, and its derivative from W p = 0."""
+
+from __future__ import annotations
+
+import re
+from dataclasses import dataclass, field
+from fractions import Fraction
+
+from .expressions import ZERO, Dual, Expression, Inexact, bits, log, times
+from .network import Graph, generator, solve
+from .reading import Work, fraction, invalid, malformed
+from .record import Network, Perturbation, Record, read_point
+
+_LOGARITHM = re.compile(r"(-?[1-9][0-9]*)\*ln\(([^()]*)\)")
+ONE, HALF = Fraction(1), Fraction(1, 2)
+
+
+@dataclass
+class Solved:
+    """All that claims need to know at one point."""
+
+    where: str
+    symbols: dict[str, Dual]
+    rates: list[Fraction]  # by number of the rate; 0 where a transition is one-way
+    moves: list[Fraction]  # d ln rate / d theta
+    p: list[Fraction]
+    left: Fraction = ZERO
+    above: list[Fraction] = field(default_factory=list)
+    below: list[Fraction] = field(default_factory=list)
+
+
+def evaluate(expression: Expression, entry: str, where: str, symbols: dict[str, Dual],
+             work: Work) -> tuple[Fraction, Fraction]:
+    """Return value and derivative of an expression at a point."""
+    try:
+        return expression.at(symbols, work)
+    except Inexact as error:
+        raise invalid(entry, f"a fraction at {where}", str(error)) from None
+
+
+def solve_point(record: Record, k: int, graph: Graph, work: Work) -> Solved:
+    """Read a point, find rates and steady state there, and the left side of the claims."""
+    network, where = record.network, f"points[{k}]"
+    symbols = _symbols(record.points[k], where, network, record.perturbation, work)
+    rates, moves = _rates(network, where, symbols, work)
+    if record.perturbation is not None:
+        _elementary(moves, graph, record.perturbation)
+    made = Solved(where, symbols, rates, moves, [])
+    reduced = [row[:-1] for row in generator(graph.states, graph.ends, rates)[:-1]]
+    last = [row[-1] for row in generator(graph.states, graph.ends, rates)[:-1]]
+    weights = [*solve(reduced, [-x for x in last], work), ONE]
+    total = sum(weights, ZERO)
+    made.p = [x / total for x in weights]
+    if record.path is not None:
+        start, goal = record.path
+        made.left = made.p[goal] / made.p[start]
+    elif record.target is not None:
+        change = _derivative(made, graph, reduced, work)
+        _observe(made, record, change, work)
+    return made
+
+
+def _symbols(value: object, where: str, network: Network, perturbation: Perturbation | None,
+             work: Work) -> dict[str, Dual]:
+    found: dict[str, Dual] = {}
+    for symbol, given in read_point(value, where, network.positive).items():
+        entry = f"{where}.{symbol}"
+        logarithm = _LOGARITHM.fullmatch(given) if type(given) is str else None
+        if logarithm and not network.positive[symbol]:
+            q = fraction(logarithm[2], entry)
+            if q <= 0:
+                raise malformed(entry, "the logarithm of a positive fraction", given)
+            found[symbol] = times(fraction(logarithm[1], entry), log(q)), ZERO
+        else:
+            found[symbol] = fraction(given, entry), ZERO
+        value_here, moved = found[symbol][0], perturbation and perturbation.symbol == symbol
+        work.charge(1, bits(value_here))
+        if network.positive[symbol] and isinstance(value_here, Fraction) and value_here <= 0:
+            raise invalid(entry, "a positive value", value_here)
+        if moved and perturbation:
+            found[symbol] = value_here, value_here if perturbation.logarithmic else ONE
+    return found
+
+
+def _rates(network: Network, where: str, symbols: dict[str, Dual],
+           work: Work) -> tuple[list[Fraction], list[Fraction]]:
+    rates: list[Fraction] = []
+    moves: list[Fraction] = []
+    for e, pair in enumerate(network.rates):
+        for key, expression in zip(("forward", "backward"), pair, strict=True):
+            rate = change = ZERO
+            if expression is not None:
+                entry = f"network.transitions[{e}].{key}"
+                rate, change = evaluate(expression, entry, where, symbols, work)
+                if rate <= 0:
+                    raise invalid(entry, f"a positive rate at {where}", rate)
+            rates.append(rate)
+            moves.append(change / rate if change else ZERO)
+    return rates, moves
+
+
+def _elementary(moves: list[Fraction], graph: Graph, perturbation: Perturbation) -> None:
+    """Put the effect of an energy, barrier or drive on the logarithms of the rates."""
+    e = perturbation.place
+    if perturbation.kind == "barrier":
+        moves[2 * e] = moves[2 * e + 1] = -ONE
+    elif perturbation.kind == "drive":
+        moves[2 * e], moves[2 * e + 1] = HALF, -HALF
+    elif perturbation.kind == "energy":
+        for i, ends in enumerate(graph.ends):
+            for direction in (0, 1):
+                if ends[direction] == e:
+                    moves[2 * i + direction] = ONE
+
+
+def _derivative(made: Solved, graph: Graph, reduced: list[list[Fraction]],
+                work: Work) -> list[Fraction]:
+    """Return dp/d theta from W p' = -W' p with p' summing to 0."""
+    source = [ZERO] * graph.states  # W' p
+    for e, (first, second) in enumerate(graph.ends):
+        i, j = 2 * e, 2 * e + 1
+        flow = made.rates[i] * made.moves[i] * made.p[first]
+        flow -= made.rates[j] * made.moves[j] * made.p[second]
+        source[first] -= flow
+        source[second] += flow
+    change = [*solve(reduced, [-x for x in source[:-1]], work), ZERO]
+    total = sum(change, ZERO)
+    return [x - total * p for x, p in zip(change, made.p, strict=True)]
+
+
+def _observe(made: Solved, record: Record, change: list[Fraction], work: Work) -> None:
+    """Evaluate the observables, check their signs, and find abs(dX/d theta)."""
+    target, states = record.target, record.network.states
+    assert target is not None
+    sides = [("target.above", target.above)]
+    if target.below is not None:
+        sides.append(("target.below", target.below))
+    values: list[list[Fraction]] = []
+    for entry, expressions in sides:
+        found = [evaluate(one, f"{entry}.{state}", made.where, made.symbols, work)[0]
+                 for one, state in zip(expressions, states, strict=True)]
+        for value, state in zip(found, states, strict=True):
+            if target.kind != "mean" and value < 0:
+                raise invalid(f"{entry}.{state}", f"no negative value at {made.where}", value)
+        if target.kind != "mean" and not any(found):
+            raise invalid(entry, f"a value other than 0 at {made.where}", "0 for every state")
+        values.append(found)
+    made.above = values[0]
+    slope = dot(made.above, change)
+    if target.kind != "mean":
+        made.below = values[1]
+        mean, other = dot(made.above, made.p), dot(made.below, made.p)
+        slope = slope / mean - dot(made.below, change) / other
+        if target.kind == "ratio":
+            slope *= mean / other
+    made.left = abs(slope)
+
+
+def dot(a: list[Fraction], b: list[Fraction]) -> Fraction:
+    """Return the sum of products."""
+    return sum((x * y for x, y in zip(a, b, strict=True) if x and y), ZERO)
