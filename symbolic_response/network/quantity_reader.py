@@ -9,10 +9,11 @@ from __future__ import annotations
 
 from collections.abc import Callable
 from dataclasses import dataclass
+from fractions import Fraction
 
 from symbolic_response.errors import ExpressionError, QuantityError, SymbolicResponseError
 from symbolic_response.expressions.reader import Token, read_tokens, tokenize
-from symbolic_response.expressions.tree import Expression, function, symbols_of
+from symbolic_response.expressions.tree import Expression, function, power, symbols_of
 from symbolic_response.network.model import Network, nearest
 from symbolic_response.network.quantities import (
     BarrierOf,
@@ -33,6 +34,7 @@ MAX_RESPONSE_DEPTH = 6
 _SHOWN = 60
 _ATOMS = ("p", "mean", "current", "traffic", "forward", "backward")
 _ONLY_IN_INEQUALITIES = ("force_max", "max_cov", "tanh", "abs", "max", "min")
+_FUNCTIONS = ("exp", "ln", "sqrt")
 _OPENING, _CLOSING = ("(", "["), (")", "]")
 
 
@@ -85,11 +87,12 @@ class _Reader:
     def atom(self, tokens: list[Token], index: int) -> tuple[Expression, int] | None:
         token = tokens[index]
         if token.text == "(" and _is_d(tokens[index + 1]):
-            closing = _matching(tokens, index)
-            inner = [*tokens[index + 1 : closing], Token("end", "", tokens[closing].position)]
-            return self.response(inner), closing + 1
+            return self.response_in_parentheses(tokens, index)
         if token.kind != "name":
             return None
+        if token.text in _FUNCTIONS and tokens[index + 1].text == "(" and _is_d(tokens[index + 2]):
+            argument, after = self.response_in_parentheses(tokens, index + 1)
+            return _applied(token.text, argument), after
         if _is_d(token):
             raise ExpressionError(
                 "a response is the whole quantity or stands in parentheses: (d ... / d ...)",
@@ -103,6 +106,13 @@ class _Reader:
         if token.text in _ONLY_IN_INEQUALITIES:
             raise ExpressionError(f"{token.text!r} belongs in an inequality", token.position)
         return None
+
+    def response_in_parentheses(
+        self, tokens: list[Token], index: int
+    ) -> tuple[Expression, int]:
+        closing = _matching(tokens, index)
+        inner = [*tokens[index + 1 : closing], Token("end", "", tokens[closing].position)]
+        return self.response(inner), closing + 1
 
     def bracketed(self, tokens: list[Token], index: int) -> tuple[Expression, int]:
         kind = tokens[index].text
@@ -212,6 +222,10 @@ class _Reader:
                 raise QuantityError(
                     f"entropy_production does not exist: transition {transition.name!r} is one-way"
                 )
+
+
+def _applied(name: str, argument: Expression) -> Expression:
+    return power(argument, Fraction(1, 2)) if name == "sqrt" else function(name, argument)
 
 
 def _is_d(token: Token) -> bool:
