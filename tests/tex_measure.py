@@ -55,6 +55,7 @@ def glyph_sources() -> dict[str, str]:
     """Return the LaTeX of each entry of the table, by its key there."""
     found = {letter: letter for letter in string.ascii_letters + string.digits}
     found |= {f"rm:{letter}": rf"\mathrm{{{letter}}}" for letter in string.ascii_letters}
+    found["rm:-"] = r"\text{-}"
     found |= {
         f"bf:{letter}": rf"\mathbf{{{letter}}}" for letter in string.ascii_letters + string.digits
     }

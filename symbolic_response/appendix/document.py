@@ -105,7 +105,7 @@ def _preamble(network: Network, width: float) -> str:
 \usepackage{{amsmath}}
 \usepackage{{array,booktabs,longtable}}
 {geometry}\allowdisplaybreaks
-\setlength{{\emergencystretch}}{{3em}}
+\setlength{{\emergencystretch}}{{0.3\textwidth}}
 \begin{{document}}
 \begin{{center}}
 {{\Large {escaped(network.title)}\par}}

@@ -41,7 +41,7 @@ _GREEK = (
 )
 _CAPITALS = frozenset(("gamma", "delta", "theta", "lambda", "xi", "pi", "sigma", "upsilon",
                        "phi", "psi", "omega"))
-_LONG_WORD = 24
+_LONG_WORD, _BREAK_EVERY = 24, 8
 
 
 def escaped(text: str) -> str:
@@ -62,10 +62,21 @@ def paragraphs(text: str) -> str:
 def _word(word: str) -> str:
     clusters = re.findall(r".[\u0300-\u036f]*", unicodedata.normalize("NFC", word))
     shown = [_cluster(cluster) for cluster in clusters]
-    if len(shown) <= _LONG_WORD:
+    if sum(_size(text) for text in shown) <= _LONG_WORD:
         return "".join(shown)
-    pieces = [shown[start : start + 8] for start in range(0, len(shown), 8)]
-    return r"\allowbreak{}".join("".join(piece) for piece in pieces)
+    pieces, size = [""], 0
+    for text in shown:
+        if size >= _BREAK_EVERY:
+            pieces.append("")
+            size = 0
+        pieces[-1] += text
+        size += _size(text)
+    return r"\allowbreak{}".join(pieces)
+
+
+def _size(shown: str) -> int:
+    """Return about how many characters wide a printed character is."""
+    return len(shown) if shown.startswith("[U+") else 1
 
 
 def _cluster(cluster: str) -> str:

@@ -42,7 +42,6 @@ def _current(paper: Paper) -> str:
 @current@_e = @rate@^+_e @probability@_m - @rate@^-_e @probability@_n
  = \frac{@current numerator@_e}{@normalisation@}, \qquad
 @current numerator@_e = @rate@^+_e @tree sum@_m - @rate@^-_e @tree sum@_n .
-\label{eq:current}
 \end{equation}""")
 
 
@@ -106,7 +105,6 @@ def _barrier(paper: Paper) -> str:
 \frac{\partial @probability@_k}{\partial @barrier@_e}
  = -\frac{@current numerator@_e @forest@_{k,e}}{@normalisation@^2}
  = -@current@_e \frac{@forest@_{k,e}}{@normalisation@} ,
-\label{eq:barrier}
 \end{equation}
 with $@current numerator@_e = @rate@^+_e @tree sum@_m - @rate@^-_e @tree sum@_n$ the numerator of
 the current; it vanishes with the current. """ + _forest(paper))

@@ -32,12 +32,13 @@ def model_section(paper: Paper, quantities: Sequence[Expression]) -> str:
 
 def _statement(paper: Paper) -> str:
     network = paper.network
-    states = ", ".join(f"${label}$" for label in paper.notation.states)
+    states = _and([f"${label}$" for label in paper.notation.states])
+    count, steps = len(network.states), len(network.transitions)
     one_way = [f"${paper.notation.transitions[e]}$"
                for e, t in enumerate(network.transitions) if t.backward is None]
     ends = [frozenset((t.first, t.second)) for t in network.transitions]
-    text = rf"""The network has the {len(network.states)} states {states} and
-{len(network.transitions)} transitions. We write $@generator@_{{ij}}$ for the rate from state $j$ to
+    text = rf"""The network has the {_number(count)} states {states}, joined by {_number(steps)}
+transition{'' if steps == 1 else 's'}. We write $@generator@_{{ij}}$ for the rate from state $j$ to
 state $i$, so that probabilities obey
 \begin{{equation}}
 \frac{{\mathrm{{d}} p_i}}{{\mathrm{{d}} t}}
@@ -106,6 +107,11 @@ def _symbols(paper: Paper) -> str:
     return "The symbols are:\n" + table(
         rf"l>{{\raggedright\arraybackslash}}p{{{int(room)}pt}}l", "Symbol & Meaning & Sign", rows
     )
+
+
+def _number(count: int) -> str:
+    words = ("one", "two", "three", "four", "five", "six", "seven", "eight", "nine", "ten")
+    return words[count - 1] if count <= len(words) else f"{count}"
 
 
 def _and(items: Sequence[str]) -> str:

@@ -13,6 +13,7 @@ from symbolic_response.network.quantities import (
     BarrierOf,
     BySymbol,
     Current,
+    EnergyOf,
     EntropyProduction,
     Mean,
     Probability,
@@ -22,7 +23,7 @@ from symbolic_response.network.quantity_reader import read_quantity
 
 KEYS = ("quantities",)
 DEFAULT_RESULTS = 24
-MAX_BARRIERS = 12
+MAX_FURTHER = 12
 MAX_CURRENTS = 8
 MAX_MEANS = 6
 MAX_QUANTITIES = 500
@@ -76,22 +77,27 @@ def _read(network: Network, entries: list[object], where: str) -> list[Expressio
 
 
 def default_request(network: Network) -> Request:
-    """Return currents, means, entropy production and responses, about 24 in all at the most."""
+    """Return currents, means, entropy production and responses, about 24 in all at the most.
+
+    Responses are those of means to ln of each positive parameter, and those of probabilities to
+    barriers; without cycles the latter vanish, and those to energies take their place.
+    """
     currents = [Current(e) for e in range(len(network.transitions))]
     means = [Mean(place) for place in range(len(network.observables))]
     steady: list[Expression] = [*currents[:MAX_CURRENTS], *means[:MAX_MEANS]]
     left_out = len(currents) + len(means) - len(steady)
-    if all(t.backward is not None for t in network.transitions):
+    without_cycles = len(network.transitions) == len(network.states) - 1
+    if not without_cycles and all(t.backward is not None for t in network.transitions):
         steady.append(EntropyProduction())
     responses = list(_observable_responses(network))
-    barriers = list(_barrier_responses(network))
-    if not responses or len(barriers) <= MAX_BARRIERS:
-        responses += barriers
+    further = list(_energy_responses(network) if without_cycles else _barrier_responses(network))
+    if not responses or len(further) <= MAX_FURTHER:
+        responses += further
     room = DEFAULT_RESULTS - len(steady)
     left_out += max(0, len(responses) - room)
     note = (
-        "Of the currents and means and of their responses to the parameters and barriers, "
-        f"{left_out} that have the same form are not listed."
+        f"Of the currents, the means and the responses, {left_out} that have the same form as "
+        "those below are not listed."
     )
     return Request((*steady, *responses[:room]), note if left_out else "")
 
@@ -105,6 +111,13 @@ def _observable_responses(network: Network) -> list[Response]:
         Response(Mean(place), BySymbol(entry.name, True))
         for place in range(len(network.observables))
         for entry in network.symbols if entry.positive and entry.name in varied
+    ]
+
+
+def _energy_responses(network: Network) -> list[Response]:
+    return [
+        Response(Probability((k,)), EnergyOf(j))
+        for j in range(len(network.states)) for k in range(len(network.states))
     ]
 
 

@@ -135,7 +135,8 @@ def _merged(equations: Sequence[Equation], width: float) -> list[Equation]:
     """Return the equations, neighbours with the same right side put together."""
     merged: list[Equation] = []
     for equation in equations:
-        if merged and merged[-1].pieces == equation.pieces:
+        alike = bool(merged) and merged[-1].pieces == equation.pieces
+        if alike and r"\frac" not in equation.left:
             left = f"{merged[-1].left} = {equation.left}"
             if formula_width(left) < 0.4 * width:
                 merged[-1] = Equation(left, equation.pieces)

@@ -46,7 +46,6 @@ theorem~\cite{kirchhoff,hill,schnakenberg} gives the stationary probabilities as
 \begin{equation}
 @probability@_k = \frac{@tree sum@_k}{@normalisation@} , \qquad
 @normalisation@ = \sum_k @tree sum@_k
-\label{eq:steady}
 \end{equation}""")
 
 

@@ -38,11 +38,10 @@ class Piece:
 
 @dataclass(frozen=True, slots=True)
 class Equation:
-    """One numbered equation; ``label`` is for references, empty for none."""
+    """One numbered equation."""
 
     left: str
     pieces: tuple[Piece, ...]
-    label: str = ""
 
 
 def sum_pieces(terms: Sequence[SignedTerm]) -> list[Piece]:
@@ -106,8 +105,7 @@ def _rows(equation: Equation, limit: float, wide: bool) -> str:
             head = start + r"\quad{}" + first.sign
         tail = "".join(f" {piece.sign} {piece.body}" for piece in rest)
         rows.append(f"{head} {first.body}{tail}")
-    label = f" \\label{{{equation.label}}}" if equation.label else ""
-    return " \\notag\\\\\n".join(rows) + label
+    return " \\notag\\\\\n".join(rows)
 
 
 def break_lines(pieces: Sequence[Piece], limit: float) -> list[list[Piece]]:

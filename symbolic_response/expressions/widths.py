@@ -37,7 +37,7 @@ _ONLY_LARGE = {("op", "ord"), ("ord", "op"), ("op", "op"), ("close", "op"), ("in
 _GAPS = (r"\,", r"\:", r"\;")
 _OPERATORS = frozenset((r"\ln", r"\exp", r"\log", r"\tanh", r"\cosh", r"\sinh", r"\det", r"\arg"))
 _ALPHABETS = {
-    r"\mathrm": "rm:", r"\text": "rm:", r"\textrm": "rm:", r"\mathbf": "bf:",
+    r"\mathrm": "rm:", r"\mathbf": "bf:",
     r"\boldsymbol": "bf:", r"\mathcal": "cal:", r"\mathit": "", r"\mathnormal": "",
 }
 _SWITCHES = {r"\rm": "rm:", r"\bf": "bf:", r"\it": ""}
@@ -146,6 +146,8 @@ class _Reader:
         if token == "{":
             self.place -= 1
             return _group(self.argument(alphabet))
+        if token in (r"\text", r"\textrm"):
+            return _group([_in_text(atom) for atom in self.argument("rm:")])
         if token in _ALPHABETS:
             return _group(self.argument(_ALPHABETS[token]))
         if token in _ACCENTS:
@@ -179,6 +181,11 @@ def _symbol(token: str, alphabet: str) -> _Atom:
     if glyph not in _glyphs():
         return _Atom("ord", "fixed", fixed=UNKNOWN_WIDTH)
     return _Atom(_CLASS.get(token, "ord"), "glyph", glyph)
+
+
+def _in_text(atom: _Atom) -> _Atom:
+    """Return an atom as it stands in text, where a minus is a hyphen."""
+    return _Atom("ord", "glyph", "rm:-") if atom.glyph == "-" else atom
 
 
 def _group(inside: list[_Atom]) -> _Atom:

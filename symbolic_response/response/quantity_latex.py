@@ -38,6 +38,7 @@ from symbolic_response.network.quantities import (
     Traffic,
     walk_quantity,
 )
+from symbolic_response.response.closed_form import symbol_names
 
 LETTERS = {
     "probability": (r"\pi", "p", "P", r"\varpi"),
@@ -85,11 +86,6 @@ class Notation:
         """Return the LaTeX of a directed rate."""
         sign = "-" if backward else "+"
         return f"{self.letters['rate']}^{{{sign}}}_{{{self.transitions[transition]}}}"
-
-
-def symbol_names(network: Network) -> dict[str, str]:
-    """Return the LaTeX of every symbol of the file."""
-    return {entry.name: entry.latex or default_latex(entry.name) for entry in network.symbols}
 
 
 def notation_of(network: Network, names: Mapping[str, str] | None = None) -> Notation:

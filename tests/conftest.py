@@ -1,0 +1,19 @@
+"""Fixtures shared by the tests."""
+
+from __future__ import annotations
+
+import os
+import shutil
+
+import pytest
+
+
+@pytest.fixture
+def requires_latex() -> None:
+    """Skip where pdflatex is missing; fail there if the variable CI is set."""
+    if shutil.which("pdflatex") is not None:
+        return
+    message = "pdflatex is not installed"
+    if os.environ.get("CI"):
+        pytest.fail(f"{message}, and CI must not skip what needs it")
+    pytest.skip(message)
