@@ -1,8 +1,8 @@
 r"""Breaking long formulas over lines, with widths computed beforehand.
 
 An :class:`Equation` is a left side and the pieces of its right side; between two pieces a line may
-end. :func:`align` sets equations in one ``align`` environment, each with its own number, whose
-lines fit a given width: `` \notag\\ &\quad{}+`` continues a sum. Breaks minimise the sum over lines of
+end. :func:`align` sets equations in ``align`` environments, each with its own number, whose lines
+fit a given width: `` \notag\\ &\quad{}+`` continues a sum. Breaks minimise the sum over lines of
 100 + 50 (slack/limit)^2; the last line leaves room for the number.
 """
 
@@ -38,10 +38,11 @@ class Piece:
 
 @dataclass(frozen=True, slots=True)
 class Equation:
-    """One numbered equation."""
+    """One numbered equation; ``relation`` stands between the sides: ``=`` or ``\\le``."""
 
     left: str
     pieces: tuple[Piece, ...]
+    relation: str = "="
 
 
 def sum_pieces(terms: Sequence[SignedTerm]) -> list[Piece]:
@@ -98,7 +99,7 @@ def _rows(equation: Equation, limit: float, wide: bool) -> str:
     for place, line in enumerate(break_lines(equation.pieces, limit)):
         first, *rest = line
         if place == 0:
-            head = ("" if wide else equation.left + " ") + start + "=" + first.sign
+            head = ("" if wide else equation.left + " ") + start + equation.relation + first.sign
         elif first.sign == "=":
             head = start + "="
         else:
