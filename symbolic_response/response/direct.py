@@ -54,8 +54,9 @@ def direct_value(node: Expression, values: Mapping[str, Expression]) -> Scalar:
             return result
         case Power(base, exponent):
             inner = direct_value(base, values)
-            usable = inner is not None and (inner > 0 or (inner < 0 and exponent.denominator == 1))
-            return rational_root(inner, exponent) if usable else None
+            if inner is None or inner == 0 or (inner < 0 and exponent.denominator > 1):
+                return None
+            return rational_root(inner, exponent)
         case Function("exp", argument):
             found = _logarithms(argument, Fraction(1), values)
             return None if found is None else _exponential(found)

@@ -1,0 +1,219 @@
+"""The record of a certificate: version 1 of the format in DEVELOPERS.md."""
+
+from __future__ import annotations
+
+import contextlib
+import json
+import os
+import tempfile
+from fractions import Fraction
+from pathlib import Path
+
+from symbolic_response.bounds.claim import Claim
+from symbolic_response.bounds.parameter import Decomposition, decompose
+from symbolic_response.bounds.registry import PATH
+from symbolic_response.bounds.target import Absolute, Extreme, target_of
+from symbolic_response.certificates.axes import value_text
+from symbolic_response.certificates.certify import Certificate, Certified
+from symbolic_response.certificates.sampling import RULE
+from symbolic_response.errors import OutputError, QuantityError
+from symbolic_response.expressions.text import expression_text, fraction_text
+from symbolic_response.expressions.tree import (
+    ZERO,
+    Expression,
+    add,
+    multiply,
+    negate,
+    number,
+    power,
+    rebuild,
+)
+from symbolic_response.network.model import Network
+from symbolic_response.network.quantities import BarrierOf, BySymbol, DriveOf, EnergyOf, Response
+from symbolic_response.response.analysis import Analysis
+from symbolic_response.response.closed_trees import rate_changes
+
+FORMAT, VERSION, KIND = "symbolic-response-certificate", 1, "points"
+DOMAIN = "all admissible values of the symbols"
+
+Data = dict[str, object]
+
+
+def record_of(certificate: Certificate, analysis: Analysis) -> Data:
+    """Return the record as plain data; QuantityError for a certificate that was refuted."""
+    if certificate.refuted is not None:
+        raise QuantityError("a refuted inequality has no certificate: "
+                            + certificate.refuted.message())
+    network, quantity = certificate.network, certificate.quantity
+    asked = isinstance(quantity, Response)
+    return {
+        "format": FORMAT,
+        "version": VERSION,
+        "kind": KIND,
+        "network": _network(network),
+        "response": certificate.response,
+        "domain": DOMAIN,
+        "target": _target(quantity, network),
+        "perturbation": _perturbation(quantity, network) if asked else None,
+        "path": None if asked else _path(certificate.claims),
+        "sampling": {"rule": RULE, "seed": certificate.seed, "count": certificate.count},
+        "points": [{name: value_text(value) for name, value in values.items()}
+                   for values in certificate.points],
+        "claims": [_claim(entry, quantity, analysis) for entry in certificate.claims],
+    }
+
+
+def _network(network: Network) -> Data:
+    states = [state.name for state in network.states]
+    return {
+        "title": network.title,
+        "symbols": [
+            {"name": entry.name, "sign": "positive" if entry.positive else "real",
+             "range": [fraction_text(entry.low), fraction_text(entry.high)]}
+            for entry in network.symbols
+        ],
+        "states": states,
+        "transitions": [
+            {"name": t.name, "between": [states[t.first], states[t.second]],
+             "forward": expression_text(t.forward),
+             "backward": None if t.backward is None else expression_text(t.backward)}
+            for t in network.transitions
+        ],
+    }
+
+
+def _target(quantity: Expression, network: Network) -> Data | None:
+    target = target_of(quantity.quantity, network) if isinstance(quantity, Response) else None
+    if target is None:
+        return None
+    names = [state.name for state in network.states]
+    above, below = target.asked.above, target.asked.below
+    return {
+        "kind": target.asked.kind,
+        "above": dict(zip(names, map(expression_text, above), strict=True)),
+        "below": None if below is None
+        else dict(zip(names, map(expression_text, below), strict=True)),
+    }
+
+
+def _perturbation(response: Expression, network: Network) -> Data:
+    assert isinstance(response, Response)
+    match response.perturbation:
+        case EnergyOf(state):
+            return {"kind": "energy", "state": network.states[state].name}
+        case BarrierOf(e):
+            return {"kind": "barrier", "transition": network.transitions[e].name}
+        case DriveOf(e):
+            return {"kind": "drive", "transition": network.transitions[e].name}
+        case BySymbol(name, logarithmic):
+            return {"kind": "symbol", "symbol": name, "logarithmic": logarithmic}
+
+
+def _path(claims: tuple[Certified, ...]) -> Data:
+    data = next(entry.claim.data for entry in claims if entry.claim.name == PATH)
+    return {"from": data["from"], "to": data["to"]}
+
+
+def _claim(entry: Certified, quantity: Expression, analysis: Analysis) -> Data:
+    worst = entry.worst
+    assert worst.ratio is not None
+    return {
+        "name": entry.claim.name,
+        "parts": _parts(entry.claim, quantity, analysis),
+        "holds": entry.holds,
+        "worst": {
+            "point": worst.point,
+            "left": fraction_text(worst.left),
+            "right": [{"factor": fraction_text(term.factor),
+                       "g": None if term.g is None else fraction_text(term.g)}
+                      for term in worst.right],
+            "ratio": fraction_text(worst.ratio),
+        },
+    }
+
+
+def _parts(claim: Claim, quantity: Expression, analysis: Analysis) -> Data | None:
+    if claim.name != "parameter" or not isinstance(quantity, Response):
+        return None
+    pieces: Decomposition = decompose(rate_changes(quantity.perturbation, analysis), analysis)
+    states = [state.name for state in analysis.network.states]
+    names = [t.name for t in analysis.network.transitions]
+    return {
+        "energies": {name: _text(piece) for name, piece in zip(states, pieces.energies, strict=True)
+                     if piece != ZERO},
+        "barriers": {names[e]: _text(piece) for e, piece in pieces.barriers.items()},
+        "singles": {names[e]: _text(piece) for e, piece in pieces.singles.items()},
+    }
+
+
+def _text(piece: Expression) -> str:
+    """Return a piece in the syntax of the file: absolute values as square roots of squares."""
+    return expression_text(rebuild(piece, _plain))
+
+
+def _plain(leaf: Expression) -> Expression:
+    match leaf:
+        case Absolute(inner):
+            return power(power(rebuild(inner, _plain), 2), Fraction(1, 2))
+        case Extreme(name, parts):
+            first, *rest = (rebuild(part, _plain) for part in parts)
+            for other in rest:
+                gap = power(power(add([first, negate(other)]), 2), Fraction(1, 2))
+                both = add([first, other, gap if name == "max" else negate(gap)])
+                first = multiply([number(Fraction(1, 2)), both])
+            return first
+    return leaf
+
+
+def record_text(record: Data) -> str:
+    """Return a record as JSON, one point and one claim a line."""
+    lines = []
+    for key, value in record.items():
+        if isinstance(value, list):
+            inner = ",\n".join(_json(item) for item in value)
+            lines.append(f"{_json(key)}: [\n{inner}\n]")
+        else:
+            lines.append(f"{_json(key)}: {_json(value)}")
+    return "{\n" + ",\n".join(lines) + "\n}\n"
+
+
+def _json(value: object) -> str:
+    return json.dumps(value, ensure_ascii=False)
+
+
+def write_certificate(
+    certificate: Certificate, analysis: Analysis, path: str | os.PathLike[str]
+) -> None:
+    """Write the record to a file, whole or not at all; OutputError where that cannot be done."""
+    target = Path(path)
+    check_output(target)
+    text = record_text(record_of(certificate, analysis))
+    try:
+        handle, temporary = tempfile.mkstemp(dir=target.parent, prefix=f".{target.name}.")
+    except OSError as error:
+        raise _unwritable(target, error) from None
+    try:
+        with os.fdopen(handle, "w", encoding="utf-8") as file:
+            file.write(text)
+        mask = os.umask(0)
+        os.umask(mask)
+        os.chmod(temporary, 0o666 & ~mask)
+        os.replace(temporary, target)
+    except BaseException as error:
+        with contextlib.suppress(OSError):
+            os.unlink(temporary)
+        if isinstance(error, OSError):
+            raise _unwritable(target, error) from None
+        raise
+
+
+def check_output(target: Path) -> None:
+    """Raise OutputError where a file of that name cannot be made."""
+    if target.is_dir():
+        raise OutputError(f"{str(target)!r} is a folder; give the name of a file")
+    if not target.parent.is_dir():
+        raise OutputError(f"there is no folder {str(target.parent)!r}; make it first")
+
+
+def _unwritable(target: Path, error: OSError) -> OutputError:
+    return OutputError(f"cannot write {str(target)!r}: {error.strerror}")
