@@ -124,6 +124,34 @@ between = ["A", "B"]
 rates = ["k*N_A", "D"]
 """
 
+ODD = r"""
+title = "Functions, roots, fractions, own LaTeX, letters that are taken"
+[symbols]
+a = {latex = '\hat{k}_{+1}'}
+b = {latex = 'k_{\text{off}}'}
+pi_A = {}
+W = {}
+[states.A]
+[states.B]
+[states.CC]
+[[transitions]]
+between = ["A","B"]
+rates = ["a*ln(1+b)", "b**(1/2)"]
+[[transitions]]
+between = ["B","CC"]
+rates = ["pi_A", "W + a"]
+[[transitions]]
+between = ["CC","A"]
+rates = ["1/3", "2*W**2"]
+[[transitions]]
+name="par_2"
+between = ["CC","A"]
+rates = ["0.1*a", "2*a/(b+W)"]
+[observables.n_1]
+A = "-2"
+B = "ln(a)"
+"""
+
 
 def of_graph(title: str, states: list[str], pairs: list[tuple[str, str]], extra: str = "") -> str:
     """Return a network with one symbol for each directed rate of a graph."""
@@ -181,5 +209,6 @@ def long_energy() -> str:
 
 ALL = {
     "ring": RING, "energy": ENERGY, "one_way": ONE_WAY, "numbers": NUMBERS, "pair": PAIR,
-    "k4": K4, "cube": cube(), "long_names": long_names(), "long_energy": long_energy(),
+    "odd": ODD, "k4": K4, "cube": cube(), "long_names": long_names(),
+    "long_energy": long_energy(),
 }

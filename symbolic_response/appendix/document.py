@@ -102,7 +102,7 @@ def _check_target(target: Path) -> None:
 def _preamble(network: Network, width: float) -> str:
     geometry = "" if width == TEXT_WIDTH else f"\\usepackage[textwidth={width:g}pt]{{geometry}}\n"
     return rf"""\documentclass{{article}}
-\usepackage{{amsmath}}
+\usepackage{{amsmath,amssymb}}
 \usepackage{{array,booktabs,longtable}}
 {geometry}\allowdisplaybreaks
 \setlength{{\emergencystretch}}{{0.3\textwidth}}

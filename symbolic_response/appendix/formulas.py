@@ -172,7 +172,10 @@ def definitions_text(paper: Paper, definitions: Sequence[NamedSum]) -> str:
             continue
         pieces = paper.pieces(first, limit) if first is not None else []
         if printed:
-            terms = paper.pieces(expanded(named.form), limit)
+            terms = (
+                paper.fitted(named.form, limit)[0] if named.kind == "remainder"
+                else paper.pieces(expanded(named.form), limit)
+            )
             pieces = [*pieces, *continued(terms)] if pieces else terms
         equations.append(Equation(named.latex, tuple(pieces)))
     texts = [align(equations, paper.width)] if equations else []

@@ -6,7 +6,7 @@ divided out. A result in factored form is rewritten with the names of the sums t
 
 from __future__ import annotations
 
-from collections.abc import Callable, Iterable
+from collections.abc import Callable, Iterable, Sequence
 from dataclasses import dataclass
 from fractions import Fraction
 from math import gcd, lcm
@@ -24,6 +24,7 @@ from symbolic_response.algebra.factored import (
     trimmed,
 )
 from symbolic_response.algebra.simplify import simplify
+from symbolic_response.algebra.sums import total
 from symbolic_response.expressions.ring import (
     Generator,
     Poly,
@@ -107,18 +108,19 @@ class NamedSums:
         self._made: dict[tuple[str, tuple[int, ...]], NamedSum] = {}
         self._by_poly: dict[Polynomial, NamedSum] = {}
         self._by_base: dict[Base, NamedSum] = {}
-        self._by_key: dict[str, NamedSum] = {}
+        self.by_key: dict[str, NamedSum] = {}
+        self._remainders: dict[Base, NamedSum] = {}
         for k in range(analysis.graph.size):
             self.tree(k)
         self.total()
 
     def names(self) -> dict[str, str]:
         """Return the LaTeX of all symbols, those of the file and those that stand for sums."""
-        return dict(self.notation.symbols) | {key: s.latex for key, s in self._by_key.items()}
+        return dict(self.notation.symbols) | {key: s.latex for key, s in self.by_key.items()}
 
     def used_in(self, node: Iterable[str]) -> list[NamedSum]:
         """Return the named sums among symbol names, in canonical order."""
-        found = [self._by_key[name] for name in node if name in self._by_key]
+        found = [self.by_key[name] for name in node if name in self.by_key]
         return sorted(found, key=lambda s: (_KINDS.index(s.kind), s.place))
 
     # -- the sums ----------------------------------------------------------------------------
@@ -167,11 +169,14 @@ class NamedSums:
         return found
 
     def remainder(self, base: Base) -> NamedSum:
-        """Return a fresh name for a sum that has none."""
-        place = 1 + sum(1 for kind, _ in self._made if kind == "remainder")
+        """Return the name of a sum, a fresh one if it has none."""
+        if base in self._remainders:
+            return self._remainders[base]
+        place = 1 + len(self._remainders)
         latex = self.notation.indexed("remainder", str(place))
         named = NamedSum("remainder", (place,), latex,
                          Factored(Fraction(1), factors=((base, Fraction(1)),)))
+        self._remainders[base] = named
         return self._note(named)
 
     def force(self, cycle: int, form: Factored, reverse: Factored) -> NamedSum:
@@ -196,7 +201,7 @@ class NamedSums:
 
     def _note(self, named: NamedSum) -> NamedSum:
         self._made[(named.kind, named.place)] = named
-        self._by_key[named.key] = named
+        self.by_key[named.key] = named
         if len(named.form.factors) == 1:
             ((base, exponent),) = named.form.factors
             if exponent == 1:
@@ -219,8 +224,12 @@ class NamedSums:
                 quotient = product([named.symbol(), integer_power(rest, -1)])
                 parts.append(integer_power(quotient, int(exponent)))
                 continue
-            inner = self._inside(base, known)
-            parts.append(Factored(Fraction(1), factors=((inner, exponent),)))
+            if isinstance(base, FactoredSum) and exponent.denominator == 1:
+                inner = [self.recognised(term, known) for term in base.terms]
+                gathered = cleared(total(inner, self.analysis.substitution.context))
+                parts.append(integer_power(gathered, int(exponent)))
+                continue
+            parts.append(Factored(Fraction(1), factors=((self._inside(base, known), exponent),)))
         return product(parts)
 
     def _worth(self, named: NamedSum, defined: frozenset[str]) -> bool:
@@ -267,6 +276,26 @@ class NamedSums:
     def _scale(self, named: NamedSum) -> int:
         values = self.analysis.network.observables[named.place[0]].values
         return lcm(*(v.value.denominator for v in values if isinstance(v, Number)))
+
+
+def cleared(form: Factored) -> Factored:
+    """Return a form with the rational content of its sums in front of them."""
+    parts = [Factored(form.coefficient, form.ring, form.monomial)]
+    for base, exponent in form.factors:
+        if isinstance(base, FactoredSum) and exponent.denominator == 1:
+            content = _content([term.coefficient for term in base.terms])
+            terms = tuple(scaled(term, 1 / content) for term in base.terms)
+            parts.append(Factored(content ** int(exponent),
+                                  factors=((FactoredSum(terms), exponent),)))
+        else:
+            parts.append(Factored(Fraction(1), factors=((base, exponent),)))
+    return product(parts)
+
+
+def _content(values: Sequence[Fraction]) -> Fraction:
+    return Fraction(
+        gcd(*(value.numerator for value in values)), lcm(*(value.denominator for value in values))
+    )
 
 
 def expanded(form: Factored) -> list[Expression]:
@@ -322,8 +351,5 @@ def _common_factor(analysis: Analysis) -> Factored:
     for place, generator in enumerate(ring.generators):
         least, most = min(row[place] for row in lows), max(row[place] for row in highs)
         monomial.append(least if generator.kind != "exp" or least > 0 else min(most, 0))
-    content = Fraction(
-        gcd(*(image.coefficient.numerator for image in images)),
-        lcm(*(image.coefficient.denominator for image in images)),
-    )
+    content = _content([image.coefficient for image in images])
     return product([start, trimmed(Factored(content, ring, tuple(monomial)))])

@@ -118,10 +118,7 @@ def _group(paper: Paper, kind: str, quantities: Sequence[Expression]) -> str:
     definitions: list[NamedSum] = []
     for result in results:
         equation, fresh = _equation(paper, result)
-        for named in [*paper.needed([result.form.expression()]), *fresh]:
-            if named.key not in paper.defined:
-                definitions.append(named)
-                paper.defined.add(named.key)
+        _collect(paper, [*paper.needed([result.form.expression()]), *fresh], definitions)
         equations.append(equation)
     texts = [formulas.introduction(paper, kind, definitions)]
     if definitions:
@@ -129,6 +126,20 @@ def _group(paper: Paper, kind: str, quantities: Sequence[Expression]) -> str:
         texts.append("With these," if len(equations) > 1 else "Hence")
     texts.append(align(_merged(equations, paper.width), paper.width))
     return "\n".join(text for text in texts if text)
+
+
+def _collect(
+    paper: Paper, sums: Sequence[NamedSum], definitions: list[NamedSum]
+) -> None:
+    """Add sums that are not defined yet, behind those that their own definitions need."""
+    for named in sums:
+        if named.key in paper.defined:
+            continue
+        paper.defined.add(named.key)
+        if named.kind == "remainder":
+            _, inner = paper.fitted(named.form, line_limit(named.latex, paper.width))
+            _collect(paper, [*paper.needed([named.form.expression()]), *inner], definitions)
+        definitions.append(named)
 
 
 def _merged(equations: Sequence[Equation], width: float) -> list[Equation]:
