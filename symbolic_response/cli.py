@@ -249,6 +249,57 @@ def bound(network: str, response: str, at: tuple[str, ...], as_json: bool, quiet
     return UNDECIDED if report.undecided() else 0
 
 
+@main.command(short_help="Certificates that inequalities hold, and how tight they are.")
+@_network
+@click.argument("response")
+@click.option("--bound", "only", metavar="NAME", help="Only the inequality of this name.")
+@click.option("--points", type=click.IntRange(min=1), default=1000, show_default=True, metavar="N",
+              help="Sample N exact points.")
+@click.option("--seed", default="0", show_default=True, metavar="TEXT",
+              help="Any text; the same text draws the same points.")
+@click.option("--workers", type=click.IntRange(min=1), metavar="N",
+              help="Use N processes (default: all cores).")
+@click.option("-o", "--output", type=click.Path(), metavar="FILE", help="Write the certificate.")
+@_json
+@_quiet
+def certify(
+    network: str,
+    response: str,
+    only: str | None,
+    points: int,
+    seed: str,
+    workers: int | None,
+    output: str | None,
+    as_json: bool,
+    quiet: bool,
+) -> int:
+    """Try every inequality that limits a response at many exact points, and where it is tight.
+
+    \b
+    Example:
+      symbolic-response certify net.toml "d p[A] / d barrier[bind]" -o bind.json
+    """
+    from symbolic_response.certificates.certify import certify as make_certificate
+    from symbolic_response.certificates.record import check_output, write_certificate
+    from symbolic_response.certificates.report import certificate_data, certificate_text
+
+    if output is not None:
+        check_output(output)
+    with Progress(quiet) as progress:
+        progress.stage(f"certifying {response}")
+        analysis = _analysis(_read(network), lambda done, total: None)
+        made = make_certificate(analysis, response, only=only, count=points, seed=seed,
+                                workers=workers, progress=progress)
+    written = output if made.refuted is None else None
+    if written is not None:
+        write_certificate(made, analysis, written)
+    if as_json:
+        click.echo(json.dumps(certificate_data(made, written), indent=1))
+    elif made.refuted is None:
+        click.echo(certificate_text(made, written))
+    return 0 if made.refuted is None else _fail(made.refuted.message(), REFUTED)
+
+
 @main.command(short_help="The independent check of certificates.")
 @click.argument("files", nargs=-1, required=True, metavar="FILE...", type=click.Path())
 @_json

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import multiprocessing
 import os
+import signal
 import threading
 from collections.abc import Callable, Iterable, Iterator, Sequence
 from concurrent.futures import Executor, Future, ProcessPoolExecutor
@@ -217,11 +218,16 @@ def _pool(workers: int | None, executor: Executor | None, count: int) -> Iterato
         return
     # a fork beside running threads may hang
     method = "fork" if threading.active_count() == 1 and os.name == "posix" else "spawn"
-    pool = ProcessPoolExecutor(size, mp_context=multiprocessing.get_context(method))
+    pool = ProcessPoolExecutor(size, mp_context=multiprocessing.get_context(method),
+                               initializer=_ignore_interrupts)
     try:
         yield pool
     finally:
         pool.shutdown(cancel_futures=True)
+
+
+def _ignore_interrupts() -> None:
+    signal.signal(signal.SIGINT, signal.SIG_IGN)  # the process that started this one answers
 
 
 def _sample(

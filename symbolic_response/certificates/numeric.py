@@ -120,7 +120,7 @@ class NumericPoints:
             kept = [k for k in range(self.analysis.graph.size) if k != root]
             minor = np.linalg.det(-generator[:, kept][:, :, kept]) if kept else np.ones(self.count)
             sides.append(rate * minor)
-        return np.abs(np.log(sides[0]) - np.log(sides[1]))
+        return np.asarray(np.abs(np.log(sides[0]) - np.log(sides[1])), dtype=np.float64)
 
     # -- the steady state ------------------------------------------------------------------
 

@@ -186,7 +186,7 @@ def write_certificate(
 ) -> None:
     """Write the record to a file, whole or not at all; OutputError where that cannot be done."""
     target = Path(path)
-    check_output(target)
+    check_output(path)
     text = record_text(record_of(certificate, analysis))
     try:
         handle, temporary = tempfile.mkstemp(dir=target.parent, prefix=f".{target.name}.")
@@ -207,8 +207,9 @@ def write_certificate(
         raise
 
 
-def check_output(target: Path) -> None:
+def check_output(path: str | os.PathLike[str]) -> None:
     """Raise OutputError where a file of that name cannot be made."""
+    target = Path(path)
     if target.is_dir():
         raise OutputError(f"{str(target)!r} is a folder; give the name of a file")
     if not target.parent.is_dir():

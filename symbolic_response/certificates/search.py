@@ -191,7 +191,7 @@ class _Climb:
 def _floats(axis: Axis, places: Places) -> Floats:
     if axis.kind == "plain":
         step = float(axis.high - axis.low) / (1 << (BITS + PLAIN_BITS))
-        return float(axis.low) + step * places
+        return np.asarray(float(axis.low) + step * places, dtype=np.float64)
     octaves, parts = (places >> BITS).astype(np.float64), places & ((1 << BITS) - 1)
     base = np.exp2(octaves) * (1 + parts / (1 << BITS))
     result = base**axis.order if axis.kind == "power" else axis.order * np.log(base)
