@@ -37,7 +37,7 @@ from symbolic_response.network.quantity_reader import read_quantity
 from symbolic_response.network.substitution import with_substitution
 from symbolic_response.response.analysis import Analysis
 from symbolic_response.response.closed_form import closed_form
-from symbolic_response.response.existence import require_existence
+from symbolic_response.response.existence import require_existence, require_inner_existence
 from symbolic_response.response.values import NO_SYMBOLS, Point
 
 MAX_TIDIED = 600  # a longer irrational value is shown as it comes
@@ -192,6 +192,7 @@ def _derived(
         if constant is not None:
             return _constant(label, constant, NO_SYMBOLS)
     form = closed_form(quantity, analysis)
+    require_inner_existence(quantity, analysis)
     require_existence(form.expression, analysis.domain.positive)
     if values:
         check_rates(analysis.network, values)

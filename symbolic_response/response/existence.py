@@ -14,6 +14,15 @@ from symbolic_response.expressions.tree import (
     Symbol,
     walk,
 )
+from symbolic_response.network.quantities import (
+    DirectedRate,
+    Probability,
+    Response,
+    Traffic,
+    walk_quantity,
+)
+from symbolic_response.response.analysis import Analysis
+from symbolic_response.response.closed_form import closed_form
 
 
 def require_existence(node: Expression, positive: frozenset[str]) -> None:
@@ -28,6 +37,27 @@ def require_existence(node: Expression, positive: frozenset[str]) -> None:
                 continue
         if plain_sign(argument, positive) == -1:
             raise EvaluationError(f"{what} of an expression that is negative for all values")
+
+
+def require_inner_existence(quantity: Expression, analysis: Analysis) -> None:
+    """Raise EvaluationError where a response is asked of what does not exist.
+
+    A derivative may well exist as a formula: that of ``ln(-c)``, or of ``1/(k - k)`` by c.
+    """
+    positive = analysis.domain.positive
+    for part in walk_quantity(quantity):
+        if not isinstance(part, Response):
+            continue
+        for piece in walk(part.quantity):
+            match piece:
+                case Function("ln", argument):
+                    pass
+                case Power(argument, exponent) if exponent < 0 or exponent.denominator != 1:
+                    pass
+                case _:
+                    continue
+            if plain_sign(argument, positive) != 1:
+                require_existence(closed_form(piece, analysis).expression, positive)
 
 
 def plain_sign(node: Expression, positive: frozenset[str]) -> int | None:
@@ -46,7 +76,7 @@ def plain_sign(node: Expression, positive: frozenset[str]) -> int | None:
             return sign if sign is None or exponent % 2 else 1
         case Power(base, _):
             return 1 if plain_sign(base, positive) == 1 else None
-        case Function("exp", _):
+        case Function("exp", _) | Probability() | Traffic() | DirectedRate(_, False):
             return 1
         case Polynomial():
             return _polynomial_sign(node)
