@@ -83,8 +83,7 @@ def read_record(data: object) -> Record:
             raise malformed(entry, "null exactly where path is not", value)
     rule, seed, count = members(top[9], "sampling", "rule", "seed", "count")
     choice(rule, "sampling.rule", "dyadic-strata-1")
-    if type(seed) is not str:
-        whole(seed, "sampling.seed")
+    text(seed, "sampling.seed")
     claims: list[Claim] = []
     for i, value in enumerate(items(top[11], "claims", len(CLAIMS))):
         claims.append(_claim(value, f"claims[{i}]", network, {claim.name for claim in claims}))
