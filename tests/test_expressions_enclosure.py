@@ -1,4 +1,4 @@
-"""Decimal enclosures, against mpmath at 80 digits and against exact fractions."""
+"""Decimal enclosures, against mpmath at 150 digits and against exact fractions."""
 
 from fractions import Fraction
 
@@ -10,7 +10,7 @@ from hypothesis import strategies as st
 from symbolic_response.errors import EvaluationError, UndecidedError
 from symbolic_response.expressions.enclosure import decimal_enclosure, sign_of_constant
 from symbolic_response.expressions.reader import read_expression
-from symbolic_response.expressions.tree import ZERO, Expression, Number, function
+from symbolic_response.expressions.tree import ZERO, Expression, Number, function, negate
 
 TABLE = {
     "exp(1)": lambda m: m.e,
@@ -24,6 +24,7 @@ TABLE = {
     "exp(1000)": lambda m: m.exp(1000),
     "-exp(-1000)": lambda m: -m.exp(-1000),
     "exp(10**20)": lambda m: m.exp(m.mpf(10) ** 20),
+    "exp(-10**50)": lambda m: m.exp(-m.mpf(10) ** 50),
     "1/(exp(10**6) - 1)": lambda m: 1 / (m.exp(10**6) - 1),
     "sqrt(10**40 + 1) - 10**20": lambda m: 1 / (m.sqrt(m.mpf(10) ** 40 + 1) + m.mpf(10) ** 20),
     "2**(1/3)*3**(-5/7)": lambda m: m.cbrt(2) * m.power(3, -m.mpf(5) / 7),
@@ -38,9 +39,9 @@ TABLE = {
 
 @pytest.mark.parametrize("text", TABLE)
 def test_constants(text: str) -> None:
-    """Oracle: mpmath at 80 digits, written with other functions than the text."""
+    """Oracle: mpmath at 150 digits, written with other functions than the text."""
     low, high = decimal_enclosure(read_expression(text))
-    with mpmath.workdps(80):
+    with mpmath.workdps(150):
         bottom, top, value = mpmath.mpf(low), mpmath.mpf(high), TABLE[text](mpmath.mp)
         slack = abs(value) * mpmath.mpf(10) ** -50
         assert bottom - slack <= value <= top + slack
@@ -59,6 +60,18 @@ def test_rational_numbers_are_enclosed_exactly(value: Fraction, shift: int) -> N
     assert low <= value <= high
     assert high - low <= abs(value) * Fraction(1, 10**20)
     assert sign_of_constant(Number(value)) == (1 if value > 0 else -1)
+
+
+@pytest.mark.parametrize("distance", [Fraction(s, 10**60) for s in (-1, 1)])
+@pytest.mark.parametrize("whole", range(2, 14))
+def test_ends_are_rounded_outwards(whole: int, distance: Fraction) -> None:
+    """Built from the answer: a value nearer to a short decimal than the first precision sees."""
+    value = whole + distance
+    node = function("exp", function("ln", Number(value)))
+    low, high = decimal_enclosure(node)
+    assert Fraction(low) <= value <= Fraction(high)
+    low, high = decimal_enclosure(negate(node))
+    assert Fraction(low) <= -value <= Fraction(high)
 
 
 @pytest.mark.parametrize(

@@ -19,6 +19,7 @@ from symbolic_response.expressions.enclosure import decimal_enclosure, sign_of_c
 from symbolic_response.expressions.normal_form import normal_form, same_function
 from symbolic_response.expressions.reader import read_expression
 from symbolic_response.expressions.ring import Domain
+from symbolic_response.expressions.tree import number, power
 
 DOMAIN = Domain(("a", "b", "c", "x", "y"), frozenset("abc"))
 EQUAL = [
@@ -102,6 +103,14 @@ def test_a_nested_root_may_stay_undecided_but_gets_no_sign() -> None:
             sign_of_constant(read_expression(text))
         with pytest.raises(UndecidedError):
             decimal_enclosure(read_expression(text))
+
+
+def test_a_root_of_a_negative_number_is_not_folded_away() -> None:
+    with pytest.raises(EvaluationError, match="root of a negative number"):
+        power(number(-8), Fraction(2, 3))
+    with pytest.raises(InputError, match="root of a negative number"):
+        read_expression("sqrt(-2)**2")
+    assert read_expression("sqrt(0)") == number(0)
 
 
 @pytest.mark.parametrize("text", ["sqrt(-2)", "(-8)**(1/3)", "(-8)**(2/3)", "(2 - 5)**(-1/2)",

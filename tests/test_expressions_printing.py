@@ -158,15 +158,15 @@ def test_rules_of_latex(tree: Expression) -> None:
 
 def test_a_hundred_thousand_terms_print_in_seconds() -> None:
     """Time grows with the number of terms, not faster."""
-    names = tuple(f"k{i}" for i in range(40))
+    names = tuple(f"k{i}" for i in range(18))
     domain = Domain(names, frozenset(names))
     value = normal_form(
-        read_expression(f"({'+'.join(names)})**3*({'+'.join(names[:20])}+1/3)"), domain
+        read_expression(f"({'+'.join(names)})**6"), domain
     )
     leaf = Polynomial(value.ring, value.numerator)
     assert len(leaf.poly) > 100_000
     start = time.process_time()
     text = expression_text(leaf)
     latex = expression_latex(leaf, {name: f"k_{{{name[1:]}}}" for name in names})
-    assert time.process_time() - start < 5
+    assert time.process_time() - start < 8
     assert text.count(" + ") == latex.count(" + ") == len(leaf.poly) - 1

@@ -130,8 +130,6 @@ def _round_outwards(value: flint.arb) -> tuple[str, str] | None:
     if value.rel_accuracy_bits() < _ACCURACY_BITS:
         return None
     size = abs(value).log() / flint.arb(10).log()
-    if not size.rad() < 1:
-        return None
     digits = _SHOWN_DIGITS - _integer(size.mid().floor())
     power = flint.arb(10) ** flint.fmpz(abs(digits))
     scaled = value * power if digits >= 0 else value / power
