@@ -26,7 +26,7 @@ from symbolic_response.certificates.tally import (
     tally_points,
     try_stretch,
 )
-from symbolic_response.errors import QuantityError, UndecidedError
+from symbolic_response.errors import AssignmentError, QuantityError, UndecidedError
 from symbolic_response.expressions.text import fraction_text
 from symbolic_response.expressions.tree import Expression, Function
 from symbolic_response.network.model import Network
@@ -111,12 +111,21 @@ def certify(
     default) or ``executor`` (from concurrent.futures, left running). Raises QuantityError,
     EvaluationError (no point within the ranges), UndecidedError, SizeLimitError.
     """
+    check_seed(seed)
     quantity = read_quantity(text, analysis.network)
     claims = claims_for(quantity, analysis, only)
     if not isinstance(quantity, Response):
         claims = _as_asked(claims, quantity)
     return certify_claims(analysis, quantity, claims, text=text, count=count, seed=seed,
                           workers=workers, executor=executor, progress=progress)
+
+
+def check_seed(seed: str) -> None:
+    """Raise AssignmentError for a seed that cannot be written into a record."""
+    try:
+        seed.encode()
+    except UnicodeEncodeError:
+        raise AssignmentError("the seed is not a text in UTF-8; write another") from None
 
 
 def _as_asked(claims: tuple[Claim, ...], quantity: Expression) -> tuple[Claim, ...]:

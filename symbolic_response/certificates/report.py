@@ -30,7 +30,7 @@ def certificate_text(certificate: Certificate, file: str | None) -> str:
     for entry in certificate.claims:
         place, at = entry.worst.point, certificate.points[entry.worst.point]
         where = shown.get(place) or values_text(at) or "the only point"
-        shown[place] = f"as {entry.claim.name}"
+        shown.setdefault(place, f"as {entry.claim.name}")
         rows.append((entry.claim.name, str(entry.holds), _ratio(entry), where))
     widths = [max(len(row[column]) for row in rows) for column in range(3)]
     lines = ["  ".join([*(cell.ljust(width) for cell, width in zip(row, widths, strict=False)),

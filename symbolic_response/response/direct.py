@@ -22,7 +22,7 @@ from symbolic_response.expressions.tree import (
 )
 from symbolic_response.response.jets import Scalar, rational_root
 
-Logarithms = list[tuple[flint.fmpq, Fraction]]
+Logarithms = list[tuple[flint.fmpq, flint.fmpq]]
 
 
 def direct_value(node: Expression, values: Mapping[str, Expression]) -> Scalar:
@@ -58,18 +58,18 @@ def direct_value(node: Expression, values: Mapping[str, Expression]) -> Scalar:
                 return None
             return rational_root(inner, exponent)
         case Function("exp", argument):
-            found = _logarithms(argument, Fraction(1), values)
+            found = _logarithms(argument, flint.fmpq(1), values)
             return None if found is None else _exponential(found)
     return None
 
 
 def _logarithms(
-    node: Expression, factor: Fraction, values: Mapping[str, Expression]
+    node: Expression, factor: flint.fmpq, values: Mapping[str, Expression]
 ) -> Logarithms | None:
     """Return ``factor`` times an expression as a sum of rationals times logarithms."""
     match node:
         case Number(value):
-            return [] if value * factor == 0 else None
+            return [] if value == 0 else None
         case Symbol(name):
             return _logarithms(values[name], factor, {}) if name in values else None
         case Sum(terms):
@@ -81,7 +81,8 @@ def _logarithms(
                 result += part
             return result
         case Product((Number(value), rest)):
-            return _logarithms(rest, factor * value, values)
+            scaled = factor * flint.fmpq(value.numerator, value.denominator)
+            return _logarithms(rest, scaled, values)
         case Function("ln", argument):
             inner = direct_value(argument, values)
             return None if inner is None or inner <= 0 else [(inner, factor)]
@@ -89,8 +90,8 @@ def _logarithms(
 
 
 def _exponential(terms: Logarithms) -> Scalar:
-    scale = lcm(*(factor.denominator for _, factor in terms))
+    scale = lcm(*(int(factor.q) for _, factor in terms))
     result = flint.fmpq(1)
     for base, factor in terms:
-        result *= base ** int(factor * scale)
+        result *= base ** int((factor * scale).p)
     return rational_root(result, Fraction(1, scale))
