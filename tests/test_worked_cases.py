@@ -35,7 +35,7 @@ def test_the_commands_of_the_case_run(
     assert "error" not in capsys.readouterr().err
 
 
-@pytest.mark.usefixtures("latex")
+@pytest.mark.usefixtures("requires_latex")
 @pytest.mark.parametrize("case", CASES, ids=lambda case: case.name)
 def test_the_case_becomes_a_pdf(case: Path, tmp_path: Path) -> None:
     target = tmp_path / "case.tex"

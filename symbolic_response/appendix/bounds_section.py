@@ -10,9 +10,17 @@ from symbolic_response.bounds.claim import Claim, CycleMaximum, EndPair, OneCycl
 from symbolic_response.bounds.registry import applicable
 from symbolic_response.bounds.target import Absolute, Extreme
 from symbolic_response.bounds.topological import cycles_through
-from symbolic_response.expressions.breaking import Equation, Piece, align
+from symbolic_response.expressions.breaking import (
+    Equation,
+    Piece,
+    align,
+    fits,
+    line_limit,
+    product_pieces,
+)
 from symbolic_response.expressions.latex import expression_latex
 from symbolic_response.expressions.tree import (
+    ZERO,
     Expression,
     Number,
     Product,
@@ -21,24 +29,32 @@ from symbolic_response.expressions.tree import (
     multiply,
     rebuild,
 )
-from symbolic_response.network.quantities import Probability
+from symbolic_response.expressions.widths import formula_width
+from symbolic_response.network.quantities import (
+    BarrierOf,
+    BySymbol,
+    DriveOf,
+    EnergyOf,
+    Probability,
+    Response,
+)
 from symbolic_response.response.quantity_latex import quantity_in
 
 MAX_LISTED_CYCLES = 6
 MAX_LISTED_SPLITTINGS = 8
 
-NAMES = {
-    "energy-covariance": "the response to an energy is a covariance",
-    "energy-range": "range of the response to an energy",
-    "barrier": "cycle force",
-    "end-pair": "ends of the transition",
-    "splitting-barrier": "cycle force and splittings",
-    "splitting-end-pair": "ends of the transition and splittings",
-    "drive": "response to a drive",
-    "splitting-drive": "response to a drive, with splittings",
-    "parameter": "energies, barriers and single rates",
-    "support": "states that the parameter touches",
-    "path": "paths between two states",
+WORDS = {
+    "energy-covariance": "exactly, as a covariance",
+    "energy-range": "by the range of the quantity",
+    "barrier": "by the largest cycle force",
+    "end-pair": "by the ends of the transition",
+    "splitting-barrier": "by splittings and the largest cycle force",
+    "splitting-end-pair": "by splittings and the ends of the transition",
+    "drive": "by the range of the quantity",
+    "splitting-drive": "by splittings",
+    "parameter": "by energies, barriers and single rates",
+    "support": "by the number of states whose rates the parameter multiplies",
+    "path": "by the paths between the states",
 }
 SOURCE_KEYS = {
     "energy-covariance": "owen", "energy-range": "owen", "barrier": "owen", "drive": "owen",
@@ -72,7 +88,9 @@ def _definitions(paper: Paper, claims: Sequence[Claim]) -> str:
         text.append(r"$r_e = @rate@^+_e a_m / (@rate@^-_e a_n)$, for $e$ from $m$ to $n$, with "
                     r"$a_k$ the part of $@tree sum@_k$ from trees that do not use $e$; it is a "
                     r"weighted mean of the ratios of the products of rates along and against the "
-                    r"cycles through $e$, so that $|\ln r_e| \le @force@_{\max}(e)$.")
+                    r"cycles through $e$, so that $|\ln r_e| \le @force@_{\max}(e)$. The responses "
+                    r"of all $\ln @probability@_k$ to the barrier lie between those of $m$ and "
+                    r"$n$, which gives the bounds by the ends of the transition.")
     if any("splitting" in claim.name for claim in claims):
         text.append(r"A splitting $S$ of a transition is a set of states that contains its first "
                     r"state and not its second, $S$ and the other states each being connected; "
@@ -85,46 +103,88 @@ def _definitions(paper: Paper, claims: Sequence[Claim]) -> str:
 
 
 def _group(paper: Paper, quantity: Expression, claims: Sequence[Claim]) -> str:
-    equations, notes = [], []
+    equations: list[Equation] = []
+    words: list[str] = []
     for claim in claims:
-        left = f"|{quantity_in(paper.notation, claim.left)}|"
-        relation = "=" if claim.equality else r"\le"
-        equations.append(Equation(left, tuple(_right(paper, claim)), relation=relation))
-        notes.append(_cited(claim))
-    shown = f"${quantity_in(paper.notation, quantity)}$"
+        equation = _equation(paper, claim)
+        if equation in equations:
+            words[equations.index(equation)] += f", or {_cited(claim)}"
+            continue
+        equations.append(equation)
+        words.append(_cited(claim))
+    listed = "; ".join(words)
     return "\n".join([
-        rf"For {shown}: {'; '.join(dict.fromkeys(notes))}.",
+        rf"\paragraph{{{_heading(paper, quantity)}.}} Limited {listed}:",
         align(equations, paper.width),
         _data(paper, claims),
     ])
 
 
+def _equation(paper: Paper, claim: Claim) -> Equation:
+    inner = quantity_in(paper.notation, claim.left)
+    left = rf"\Bigl|{inner}\Bigr|" if isinstance(claim.left, Response) else inner
+    relation = "=" if claim.equality else r"\le"
+    pieces = _right(paper, claim, line_limit(left, paper.width))
+    return Equation(left, tuple(pieces), relation=relation)
+
+
+def _heading(paper: Paper, quantity: Expression) -> str:
+    """Return what responds, and to what, in words."""
+    notation = paper.notation
+    if not isinstance(quantity, Response):
+        return f"${quantity_in(notation, quantity)}$"
+    inner = quantity_in(notation, quantity.quantity)
+    if formula_width(inner) + 120 > paper.width:
+        return "A response"
+    match quantity.perturbation:
+        case EnergyOf(state):
+            what = f"the energy of ${notation.states[state]}$"
+        case BarrierOf(e):
+            what = f"the barrier of ${notation.transitions[e]}$"
+        case DriveOf(e):
+            what = f"the drive of ${notation.transitions[e]}$"
+        case BySymbol(name, logarithmic):
+            what = ("the logarithm of " if logarithmic else "") + f"${notation.symbols[name]}$"
+    return f"${inner}$ and {what}"
+
+
 def _cited(claim: Claim) -> str:
     key = SOURCE_KEYS.get(claim.name)
-    cite = f"~\\cite{{{key}}}" if key else " (shown here: the responses of all $\\ln$ " \
-        "probabilities lie between those of the two ends)"
-    return NAMES[claim.name] + cite
+    return WORDS[claim.name] + (f"~\\cite{{{key}}}" if key else "")
 
 
-def _right(paper: Paper, claim: Claim) -> list[Piece]:
+def _right(paper: Paper, claim: Claim, limit: float) -> list[Piece]:
     pieces: list[Piece] = []
     for term in claim.right:
-        body = _term(paper, term)
-        if body and not (body == "0" and len(claim.right) > 1):
-            pieces.append(Piece("+" if pieces else "", body))
+        factors = _factors(paper, term)
+        if not factors and len(claim.right) > 1:
+            continue
+        body = " \\, ".join(factors) or "0"
+        sign = "+" if pieces else ""
+        if fits(body, limit):
+            pieces.append(Piece(sign, body))
+        else:
+            pieces += product_pieces(factors, limit, sign)
     return pieces or [Piece("", "0")]
 
 
-def _term(paper: Paper, term: Term) -> str:
-    factor = side_latex(paper, term.factor)
-    if term.force is None or factor == "0":
-        return factor
-    force = _force(paper, term.force)
-    tanh = rf"\tanh \frac{{{force}}}{{{term.divisor}}}"
-    if factor == "1":
-        return tanh
-    composite = isinstance(term.factor, Sum)
-    return f"({factor}) {tanh}" if composite else f"{factor} \\, {tanh}"
+def _factors(paper: Paper, term: Term) -> list[str]:
+    """Return the factors of a term as they are printed, none for zero."""
+    if term.factor == ZERO:
+        return []
+    parts = term.factor.factors if isinstance(term.factor, Product) else (term.factor,)
+    plain = side_latex(paper, term.factor)
+    printed = [plain]
+    if formula_width(plain) > paper.width / 3 and len(parts) > 1:
+        printed = [side_latex(paper, multiply([part])) for part in parts]
+        printed = [f"({text})" if isinstance(part, Sum) else text
+                   for part, text in zip(parts, printed, strict=True)]
+    if term.force is None:
+        return printed
+    tanh = rf"\tanh \frac{{{_force(paper, term.force)}}}{{{term.divisor}}}"
+    if plain == "1":
+        return [tanh]
+    return [*([f"({plain})"] if isinstance(term.factor, Sum) else printed), tanh]
 
 
 def _force(paper: Paper, force: CycleMaximum | EndPair | OneCycle) -> str:
@@ -166,7 +226,7 @@ def _leaf(paper: Paper, part: Expression) -> str | None:
             return rf"\{name}\{{{shown}\}}"
         case Absolute(inner):
             return f"|{side_latex(paper, inner)}|"
-        case Symbol():
+        case Symbol() | Number():
             return None
     return quantity_in(paper.notation, part)
 
@@ -186,6 +246,9 @@ def _covariance_of(parts: Sequence[Expression]) -> Expression | None:
 def _data(paper: Paper, claims: Sequence[Claim]) -> str:
     """Return which cycles and splittings compete, once for each transition."""
     sentences: list[str] = []
+    if any("range" in claim.data for claim in claims):
+        sentences.append("The values of the observable are rescaled affinely to 0..1 where its "
+                         "range limits the response.")
     for claim in claims:
         for term in claim.right:
             if isinstance(term.force, CycleMaximum):
@@ -209,14 +272,14 @@ def _cycles(paper: Paper, e: int) -> str:
         return rf"$@force@_{{\max}}({name})$ is the largest over {len(through)} cycles.".replace(
             "@force@", letter)
     numbers = [analysis.cycles.index(cycle) + 1 for cycle in through]
-    shown = ", ".join(f"|{notation.indexed('force', str(n))}|" for n in numbers)
-    value = shown if len(numbers) == 1 else rf"\max\{{{shown}\}}"
-    return rf"${letter}_{{\max}}({name}) = {value}$."
+    shown = [f"$|{notation.indexed('force', str(n))}|$" for n in numbers]
+    value = shown[0] if len(shown) == 1 else f"the largest of {', '.join(shown)}"
+    return rf"${letter}_{{\max}}({name})$ is {value}."
 
 
 def _splittings(paper: Paper, cuts: Sequence[Sequence[str]]) -> str:
     places = {state.name: paper.notation.states[k] for k, state in enumerate(paper.network.states)}
     if len(cuts) > MAX_LISTED_SPLITTINGS:
         return f"The maximum runs over {len(cuts)} splittings."
-    shown = ", ".join(r"\{" + ", ".join(places[name] for name in cut) + r"\}" for cut in cuts)
-    return f"Splittings: ${shown}$."
+    sets = [r"$\{" + ",$ $".join(places[name] for name in cut) + r"\}$" for cut in cuts]
+    return f"Splittings: {', '.join(sets)}."

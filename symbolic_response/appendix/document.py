@@ -8,6 +8,7 @@ import tempfile
 from collections.abc import Sequence
 from pathlib import Path
 
+from symbolic_response.appendix.bounds_section import bounds_section
 from symbolic_response.appendix.cycles_section import cycles_section
 from symbolic_response.appendix.escape import escaped
 from symbolic_response.appendix.model_section import model_section
@@ -31,6 +32,12 @@ SOURCES = {
     "chaiken": r"S. Chaiken, SIAM J. Algebraic Discrete Methods \textbf{3}, 319 (1982).",
     "owen": r"J. A. Owen, T. R. Gingrich, and J. M. Horowitz, Phys. Rev. X \textbf{10}, 011066 "
             "(2020).",
+    "martins": r"G. Fernandes Martins and J. M. Horowitz, Phys. Rev. E \textbf{108}, 044113 "
+               "(2023).",
+    "support": r"J. A. Owen and J. M. Horowitz, Nat. Commun. \textbf{14}, 1280 (2023).",
+    "maes": r"C. Maes and K. Neto\v{c}n\'y, Ann. Henri Poincar\'e \textbf{14}, 1193 (2013).",
+    "liang": r"S. Liang, P. De Los Rios, and D. M. Busiello, Phys. Rev. Lett. \textbf{132}, 228402 "
+             "(2024).",
 }
 
 
@@ -56,6 +63,7 @@ def appendix_text(
         cycles_section(paper),
         trees_section(paper),
         results_section(paper, request.quantities, request.note),
+        bounds_section(paper, request.quantities),
     ])
     return _preamble(network, width) + body + "\n\n" + _bibliography(body) + "\n\\end{document}\n"
 

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Callable
+from dataclasses import replace
 
 from symbolic_response.bounds.barrier import barrier
 from symbolic_response.bounds.claim import Claim, Question
@@ -11,15 +12,16 @@ from symbolic_response.bounds.end_pair import end_pair
 from symbolic_response.bounds.energy import energy_covariance, energy_range
 from symbolic_response.bounds.parameter import parameter, support
 from symbolic_response.bounds.path import path_bounds
+from symbolic_response.bounds.sides import quantity_text
 from symbolic_response.bounds.splitting import (
     splitting_barrier,
     splitting_drive,
     splitting_end_pair,
 )
-from symbolic_response.bounds.target import target_of
+from symbolic_response.bounds.target import Target, extreme, target_of
 from symbolic_response.errors import QuantityError
 from symbolic_response.expressions.names import nearest
-from symbolic_response.expressions.tree import Expression
+from symbolic_response.expressions.tree import ONE, ZERO, Expression
 from symbolic_response.network.quantities import Response
 from symbolic_response.response.analysis import Analysis
 
@@ -38,6 +40,7 @@ CATALOGUE: dict[str, Rule] = {
     "support": support,
 }
 PATH = "path"
+BY_RANGE = ("energy-range", "end-pair", "barrier", "drive", "parameter", "support")
 
 
 def claims_for(
@@ -52,7 +55,7 @@ def claims_for(
     if only is not None and only not in names:
         hint = nearest(only, names) or f"; known: {', '.join(names)}"
         raise QuantityError(f"there is no bound {only!r}{hint}")
-    found = _claims(quantity, analysis)
+    found = applicable(quantity, analysis)
     chosen = tuple(claim for claim in found if only is None or claim.name == only)
     if not chosen:
         what = "no bound of the catalogue" if only is None else f"the bound {only!r} does not"
@@ -60,11 +63,23 @@ def claims_for(
     return chosen
 
 
-def _claims(quantity: Expression, analysis: Analysis) -> list[Claim]:
+def applicable(quantity: Expression, analysis: Analysis) -> list[Claim]:
+    """Return the inequalities that apply to a quantity, none if it is no such response."""
     if not isinstance(quantity, Response):
         return path_bounds(quantity, analysis)
     target = target_of(quantity.quantity, analysis.network)
     if target is None:
         return []
     question = Question(analysis, quantity, target)
-    return [claim for rule in CATALOGUE.values() if (claim := rule(question)) is not None]
+    found = [claim for rule in CATALOGUE.values() if (claim := rule(question)) is not None]
+    return [_with_range(claim, target, analysis) for claim in found]
+
+
+def _with_range(claim: Claim, target: Target, analysis: Analysis) -> Claim:
+    """Say so where a mean was rescaled affinely to 0 .. 1."""
+    low, high = extreme("min", target.values), extreme("max", target.values)
+    if claim.name not in BY_RANGE or target.below is not None or (low, high) == (ZERO, ONE):
+        return claim
+    shown = [quantity_text(end, analysis.network) for end in (low, high)]
+    words = f"; its values, from {shown[0]} to {shown[1]}, are rescaled affinely to 0 .. 1"
+    return replace(claim, data={**claim.data, "range": shown}, hypotheses=claim.hypotheses + words)
