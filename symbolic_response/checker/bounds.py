@@ -5,9 +5,9 @@ from __future__ import annotations
 from fractions import Fraction
 from math import isqrt, prod
 
-from .expressions import ZERO, Expression
+from .expressions import HALF, ONE, ZERO, Expression
 from .network import Graph, Path, determinant, generator
-from .point import HALF, ONE, Solved, dot, evaluate
+from .point import Solved, dot, evaluate
 from .reading import Work, invalid
 from .record import Claim, Record, Target
 

@@ -9,7 +9,7 @@ from fractions import Fraction
 from .bounds import Term, check_applies, holds, ratio, right_side
 from .expressions import bits
 from .network import Graph
-from .point import solve_point
+from .point import read_values, solve_point
 from .reading import MAX_WORK, Rejected, Verdict, Work, invalid, read_file, shown
 from .record import Claim, Record, read_record
 
@@ -46,6 +46,8 @@ def check_record(data: object, most_work: int = MAX_WORK) -> Verdict:
 
 def _check(record: Record, work: Work) -> None:
     network, points = record.network, len(record.points)
+    for k in range(points):
+        read_values(record, k, work)
     one_way = [backward is None for _, backward in network.rates]
     graph = Graph(len(network.states), network.ends, one_way, work)
     if not graph.strongly_connected():

@@ -6,13 +6,12 @@ import re
 from dataclasses import dataclass, field
 from fractions import Fraction
 
-from .expressions import ZERO, Dual, Expression, Inexact, bits, log, times
+from .expressions import HALF, ONE, ZERO, Dual, Expression, Inexact, bits, log, times
 from .network import Graph, generator, solve
-from .reading import Work, fraction, invalid, malformed
-from .record import Network, Perturbation, Record, read_point
+from .reading import Work, fraction, invalid, malformed, members
+from .record import Network, Perturbation, Record
 
 _LOGARITHM = re.compile(r"(-?[1-9][0-9]*)\*ln\(([^()]*)\)")
-ONE, HALF = Fraction(1), Fraction(1, 2)
 
 
 @dataclass
@@ -41,13 +40,17 @@ def evaluate(expression: Expression, entry: str, where: str, symbols: dict[str, 
 def solve_point(record: Record, k: int, graph: Graph, work: Work) -> Solved:
     """Read a point, find rates and steady state there, and the left side of the claims."""
     network, where = record.network, f"points[{k}]"
-    symbols = _symbols(record.points[k], where, network, record.perturbation, work)
-    rates, moves = _rates(network, where, symbols, work)
-    if record.perturbation is not None:
-        _elementary(moves, graph, record.perturbation)
-    made = Solved(where, symbols, rates, moves, [])
-    reduced = [row[:-1] for row in generator(graph.states, graph.ends, rates)[:-1]]
-    last = [row[-1] for row in generator(graph.states, graph.ends, rates)[:-1]]
+    symbols = read_values(record, k, work)
+    made = Solved(where, dict(symbols), [], [], [])  # observables and pieces are not differentiated
+    moved = record.perturbation
+    if moved is not None and moved.symbol:
+        value = symbols[moved.symbol][0]
+        symbols[moved.symbol] = value, value if moved.logarithmic else ONE
+    made.rates, made.moves = _rates(network, where, symbols, work)
+    if moved is not None:
+        _elementary(made.moves, graph, moved)
+    reduced = [row[:-1] for row in generator(graph.states, graph.ends, made.rates)[:-1]]
+    last = [row[-1] for row in generator(graph.states, graph.ends, made.rates)[:-1]]
     weights = [*solve(reduced, [-x for x in last], work), ONE]
     total = sum(weights, ZERO)
     made.p = [x / total for x in weights]
@@ -60,25 +63,25 @@ def solve_point(record: Record, k: int, graph: Graph, work: Work) -> Solved:
     return made
 
 
-def _symbols(value: object, where: str, network: Network, perturbation: Perturbation | None,
-             work: Work) -> dict[str, Dual]:
+def read_values(record: Record, k: int, work: Work) -> dict[str, Dual]:
+    """Return the values of the symbols at a point."""
     found: dict[str, Dual] = {}
-    for symbol, given in read_point(value, where, network.positive).items():
-        entry = f"{where}.{symbol}"
+    positive = record.network.positive
+    for symbol, given in zip(positive, members(record.points[k], f"points[{k}]", *positive),
+                             strict=True):
+        entry = f"points[{k}].{symbol}"
         logarithm = _LOGARITHM.fullmatch(given) if type(given) is str else None
-        if logarithm and not network.positive[symbol]:
+        if logarithm and not positive[symbol]:
             q = fraction(logarithm[2], entry)
             if q <= 0:
                 raise malformed(entry, "the logarithm of a positive fraction", given)
-            found[symbol] = times(fraction(logarithm[1], entry), log(q)), ZERO
+            value = times(fraction(logarithm[1], entry), log(q))
         else:
-            found[symbol] = fraction(given, entry), ZERO
-        value_here, moved = found[symbol][0], perturbation and perturbation.symbol == symbol
-        work.charge(1, bits(value_here))
-        if network.positive[symbol] and isinstance(value_here, Fraction) and value_here <= 0:
-            raise invalid(entry, "a positive value", value_here)
-        if moved and perturbation:
-            found[symbol] = value_here, value_here if perturbation.logarithmic else ONE
+            value = fraction(given, entry)
+            if positive[symbol] and value <= 0:
+                raise invalid(entry, "a positive value", value)
+        found[symbol] = value, ZERO
+        work.charge(3, bits(value))
     return found
 
 

@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping
 from dataclasses import dataclass
 from fractions import Fraction
 from typing import Any
@@ -211,8 +210,3 @@ def _parts(value: object, entry: str, network: Network) -> tuple[dict[int, Expre
                       read(what, f"{entry}.{key}.{one}", network.positive)
                       for one, what in given.items()})
     return tuple(found)
-
-
-def read_point(value: object, entry: str, positive: Mapping[str, bool]) -> dict[str, Any]:
-    """Return the texts of a point, one for each symbol."""
-    return dict(zip(positive, members(value, entry, *positive), strict=True))
