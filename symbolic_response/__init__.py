@@ -13,6 +13,8 @@ from typing import TYPE_CHECKING, Any
 
 if TYPE_CHECKING:
     from symbolic_response.appendix import write_appendix
+    from symbolic_response.certificates.certify import Certificate, Refutation, certify
+    from symbolic_response.certificates.record import write_certificate
     from symbolic_response.network import (
         Barrier,
         Network,
@@ -32,6 +34,8 @@ if TYPE_CHECKING:
 
 _HOMES = {
     "write_appendix": "appendix",
+    **dict.fromkeys(("Certificate", "Refutation", "certify"), "certificates.certify"),
+    "write_certificate": "certificates.record",
     **dict.fromkeys(
         ("Barrier", "Network", "Rates", "build_network", "from_generator_matrix", "from_networkx",
          "generator_matrix", "read_network", "read_network_text", "to_networkx",
@@ -46,12 +50,15 @@ _HOMES = {
 __all__ = [
     "Analysis",
     "Barrier",
+    "Certificate",
     "Derived",
     "Network",
     "Rates",
+    "Refutation",
     "Survey",
     "Value",
     "build_network",
+    "certify",
     "derive",
     "from_generator_matrix",
     "from_networkx",
@@ -62,6 +69,7 @@ __all__ = [
     "to_networkx",
     "with_substitution",
     "write_appendix",
+    "write_certificate",
 ]
 
 
