@@ -17,6 +17,7 @@ import click
 
 from symbolic_response.errors import (
     InputError,
+    RefutedError,
     SizeLimitError,
     SymbolicResponseError,
     UndecidedError,
@@ -75,6 +76,8 @@ def run(arguments: Sequence[str]) -> int:
         return _fail(str(error), UNUSABLE)
     except (SizeLimitError, UndecidedError) as error:
         return _fail(str(error), UNDECIDED)
+    except RefutedError as error:
+        return _fail(str(error), REFUTED)
     except SymbolicResponseError as error:
         return _fail(str(error), UNUSABLE)
     except (_InterruptedError, KeyboardInterrupt, click.Abort):

@@ -45,6 +45,10 @@ class OutputError(InputError):
     """An output file cannot be written."""
 
 
+class RefutedError(SymbolicResponseError):
+    """Something that was to be shown does not hold; the message gives the exact point."""
+
+
 class SizeLimitError(SymbolicResponseError):
     """An answer exists but is beyond a stated limit; the message gives the number."""
 

@@ -9,12 +9,13 @@ from collections.abc import Sequence
 from pathlib import Path
 
 from symbolic_response.appendix.bounds_section import bounds_section
+from symbolic_response.appendix.certificates_section import certificates_section
 from symbolic_response.appendix.cycles_section import cycles_section
 from symbolic_response.appendix.escape import escaped
 from symbolic_response.appendix.model_section import model_section
 from symbolic_response.appendix.named_sums import NamedSums
 from symbolic_response.appendix.paper import Paper
-from symbolic_response.appendix.requests import requested
+from symbolic_response.appendix.requests import extras, requested
 from symbolic_response.appendix.results import results_section
 from symbolic_response.appendix.trees_section import trees_section
 from symbolic_response.errors import OutputError
@@ -54,7 +55,7 @@ def appendix_text(
     the text in pt. Raises QuantityError or NetworkError for what cannot be used of these, and
     SizeLimitError past a limit of the analysis.
     """
-    request = requested(network, quantities)
+    request, wanted = requested(network, quantities), extras(network)
     known = analysis if analysis is not None else Analysis(network)
     notation = notation_of(network)
     paper = Paper(network, known, notation, NamedSums(known, notation), width)
@@ -63,7 +64,8 @@ def appendix_text(
         cycles_section(paper),
         trees_section(paper),
         results_section(paper, request.quantities, request.note),
-        bounds_section(paper, request.quantities),
+        bounds_section(paper, request.quantities) if wanted.bounds else "",
+        certificates_section(paper, request.quantities, wanted.certificates, wanted.digests),
     ])
     return _preamble(network, width) + body + "\n\n" + _bibliography(body) + "\n\\end{document}\n"
 

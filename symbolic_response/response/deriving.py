@@ -3,29 +3,34 @@
 from __future__ import annotations
 
 from collections.abc import Mapping, Sequence
-from dataclasses import dataclass, replace
+from dataclasses import dataclass
 from fractions import Fraction
+from math import gcd
 
 import flint
 
-from symbolic_response.algebra.specialise import specialise
 from symbolic_response.errors import (
     AssignmentError,
     EvaluationError,
     ExpressionError,
     QuantityError,
+    SizeLimitError,
 )
 from symbolic_response.expressions.enclosure import ball, decimal_enclosure
 from symbolic_response.expressions.latex import expression_latex, fraction_latex
 from symbolic_response.expressions.names import nearest
-from symbolic_response.expressions.normal_form import normal_form
+from symbolic_response.expressions.normal_form import Quotient, normal_form
 from symbolic_response.expressions.reader import read_expression
 from symbolic_response.expressions.ring import Domain
 from symbolic_response.expressions.signs import certain_sign
 from symbolic_response.expressions.text import expression_text, fraction_text
 from symbolic_response.expressions.tree import (
     Expression,
+    Number,
     Symbol,
+    add,
+    function,
+    multiply,
     number,
     rebuild,
     substitute,
@@ -36,8 +41,9 @@ from symbolic_response.network.quantities import BySymbol, Response
 from symbolic_response.network.quantity_reader import read_quantity
 from symbolic_response.network.substitution import with_substitution
 from symbolic_response.response.analysis import Analysis
-from symbolic_response.response.closed_form import closed_form
+from symbolic_response.response.closed_form import ClosedForm, closed_form
 from symbolic_response.response.existence import require_existence, require_inner_existence
+from symbolic_response.response.placing import placed, placed_as_it_stands
 from symbolic_response.response.values import NO_SYMBOLS, Point
 
 MAX_TIDIED = 600  # a longer irrational value is shown as it comes
@@ -178,6 +184,8 @@ def derive_quantity(
         return _derived(analysis, quantity, label, values)
     except EvaluationError as error:
         raise EvaluationError(f"{label!r}: {error}") from None
+    except OverflowError:
+        raise SizeLimitError(f"{label!r}: a value is too large for an exact result") from None
 
 
 def _derived(
@@ -196,13 +204,22 @@ def _derived(
     require_existence(form.expression, analysis.domain.positive)
     if values:
         check_rates(analysis.network, values)
-        placed = specialise(form.form, dict(values), analysis.domain)
-        form = replace(form, form=placed)
+        at = placed(form, values, analysis.domain)
+        if at is None:
+            return _as_it_stands(label, placed_as_it_stands(form, values), form)
+        form = at
         require_existence(form.expression, analysis.domain.positive)
     if form.symbols():
         return Derived(label, form.text(), form.latex(), None)
     # in the domain of the form: its polynomials hold generators that were ranked there
     return _constant(label, form.expression, analysis.domain)
+
+
+def _as_it_stands(text: str, given: Expression, form: ClosedForm) -> Derived:
+    shown, latex = expression_text(given), expression_latex(given, form.names)
+    if symbols_of(given):
+        return Derived(text, shown, latex, None)
+    return Derived(text, shown, latex, Value(None, given, decimal_enclosure(given)))
 
 
 def _rational(text: str, exact: Fraction) -> Derived:
@@ -217,9 +234,39 @@ def _constant(text: str, given: Expression, domain: Domain) -> Derived:
         exact = value.as_fraction()
         if exact is not None:
             return _rational(text, exact)
-        expression = min(value.expression(), given, key=lambda e: len(expression_text(e)))
+        forms = [value.expression(), given, gathered_logarithm(value)]
+        expression = min((form for form in forms if form is not None),
+                         key=lambda form: len(expression_text(form)))
     shown = Value(None, expression, decimal_enclosure(expression))
     return Derived(text, expression_text(expression), expression_latex(expression, {}), shown)
+
+
+def gathered_logarithm(value: Quotient) -> Expression | None:
+    """Return ``(358*ln(2) + 179*ln(5))/398`` as ``179*ln(20)/398``, None for other constants."""
+    if not value.denominator.is_constant():
+        return None
+    below = int(value.denominator.leading_coefficient())
+    rest, weights = Fraction(0), []
+    for exponents, coefficient in value.numerator.terms():
+        powers = value.ring.powers(exponents)
+        if not powers:
+            rest = Fraction(int(coefficient), below)
+            continue
+        (generator, exponent), *others = powers
+        if others or exponent != 1 or generator.kind != "ln" or not isinstance(
+            generator.base, Number
+        ):
+            return None
+        weights.append((generator.base.value, int(coefficient)))
+    common = gcd(*(weight for _, weight in weights))
+    if not common or sum(abs(w) // common * b.numerator.bit_length() for b, w in weights) > 64:
+        return None
+    argument = Fraction(1)
+    for base, weight in weights:
+        argument *= base ** (weight // common)
+    sign = 1 if argument > 1 else -1
+    factor = number(Fraction(sign * common, below))
+    return add([number(rest), multiply([factor, function("ln", number(argument**sign))])])
 
 
 def _is_short(constant: Expression, domain: Domain) -> bool:

@@ -1,0 +1,103 @@
+"""The table of point certificates: domain, points, largest ratio, digests if asked for."""
+
+from __future__ import annotations
+
+import hashlib
+from collections.abc import Sequence
+from fractions import Fraction
+
+from symbolic_response.appendix.bounds_section import WORDS
+from symbolic_response.appendix.paper import Paper
+from symbolic_response.appendix.tables import table
+from symbolic_response.bounds.registry import applicable
+from symbolic_response.certificates.certify import Certificate, certify_claims
+from symbolic_response.certificates.record import record_of, record_text
+from symbolic_response.certificates.report import ratio_text
+from symbolic_response.errors import RefutedError, UndecidedError
+from symbolic_response.expressions.tree import Expression
+from symbolic_response.expressions.widths import formula_width
+from symbolic_response.response.quantity_latex import quantity_in
+
+SEED = "0"
+MAX_WIDTH = 130.0
+
+
+def certificates_section(
+    paper: Paper, quantities: Sequence[Expression], count: int, digests: bool
+) -> str:
+    """Return the table for all responses that are bounded; empty if ``count`` is 0.
+
+    Raises RefutedError, with the point, if an inequality fails.
+    """
+    if count == 0:
+        return ""
+    rows: list[str] = []
+    hashes: list[str] = []
+    left_out: list[str] = []
+    for number, quantity in enumerate(quantities, start=1):
+        claims = applicable(quantity, paper.analysis)
+        if not claims:
+            continue
+        try:
+            found = certify_claims(paper.analysis, quantity, claims, count=count, seed=SEED)
+        except UndecidedError:
+            left_out.append(_shown(paper, quantity, number))
+            continue
+        if found.refuted is not None:
+            raise RefutedError(found.refuted.message())
+        rows += _rows(paper, quantity, number, found)
+        if digests:
+            text = record_text(record_of(found, paper.analysis))
+            digest = hashlib.sha256(text.encode()).hexdigest()
+            hashes.append(f"{_shown(paper, quantity, number)}: \\texttt{{{digest[:32]}}} "
+                          f"\\texttt{{{digest[32:]}}}.")
+    if not rows and not left_out:
+        return ""
+    return "\n\n".join(part for part in [
+        rf"\section{{Certificates}}{chr(10)}" + _words(count),
+        _table(rows), _left_out(left_out), _digests(hashes)] if part)
+
+
+def _words(count: int) -> str:
+    return (f"Each inequality was decided in exact rational arithmetic at {count} sampled points, "
+            "a fixed number of which bring the force of one cycle near zero, to moderate and to "
+            "large values, and at the points of a search for large ratios. The domain is that of "
+            "all admissible values of the symbols; samples are drawn from the ranges of the network "
+            "file. "
+            "None was violated. The last column is the largest ratio of the left to the right "
+            "side, rounded down: the closer to one, the tighter.")
+
+
+def _rows(
+    paper: Paper, quantity: Expression, number: int, found: Certificate
+) -> list[str]:
+    rows = []
+    for place, entry in enumerate(found.claims):
+        shown = _shown(paper, quantity, number) if place == 0 else ""
+        words = WORDS[entry.claim.name]
+        ratio = ratio_text(entry.worst.ratio or Fraction(0))
+        rows.append(f"{shown} & {words} & {entry.holds} & {ratio}")
+    return rows
+
+
+def _shown(paper: Paper, quantity: Expression, number: int) -> str:
+    latex = quantity_in(paper.notation, quantity)
+    return f"${latex}$" if formula_width(latex) <= MAX_WIDTH else f"quantity {number}"
+
+
+def _table(rows: Sequence[str]) -> str:
+    if not rows:
+        return ""
+    columns = r"l>{\raggedright\arraybackslash}p{0.42\linewidth}rr"
+    return table(columns, "Quantity & Limited & Points & Largest ratio", rows)
+
+
+def _left_out(names: Sequence[str]) -> str:
+    if not names:
+        return ""
+    return ("No points at which all rates are rational exist for a symbol that stands both inside "
+            f"and outside of exponentials; left out: {', '.join(names)}.")
+
+
+def _digests(hashes: Sequence[str]) -> str:
+    return ("SHA-256 digests of the certificate records. " + " ".join(hashes)) if hashes else ""

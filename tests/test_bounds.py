@@ -1,0 +1,153 @@
+"""The catalogue as it is shown: which bounds apply, their texts, data, exits and LaTeX."""
+
+import json
+from fractions import Fraction
+
+import pytest
+
+from symbolic_response.bounds.decide import Weighted, holds, tanh_bounds
+from symbolic_response.bounds.registry import CATALOGUE, claims_for
+from symbolic_response.bounds.report import bound
+from symbolic_response.bounds.sides import left_text, right_text
+from symbolic_response.cli import run
+from symbolic_response.errors import QuantityError
+from symbolic_response.network import Network, Rates, build_network
+from symbolic_response.network.quantity_reader import read_quantity
+from symbolic_response.response.analysis import Analysis
+
+RING = build_network("ring", states="A B C", transitions=[
+    Rates("A", "B", "a*c", "b", name="bind"), Rates("B", "C", "e", "f", name="flip"),
+    Rates("C", "A", "g", "h", name="reset")],
+    observables={"q": {"B": 2, "C": -1}, "moving": {"A": "c"}})
+PAIR = build_network("pair", states="A B", transitions=[
+    Rates("A", "B", 4, 1, name="one"), Rates("A", "B", 1, 4, name="two")])
+TREE = build_network("tree", states="A B C", transitions=[
+    Rates("A", "B", "a", "b", name="ab"), Rates("B", "C", "e", "f", name="bc")])
+
+
+def names(network: Network, text: str) -> list[str]:
+    return [c.name for c in claims_for(read_quantity(text, network), Analysis(network))]
+
+
+@pytest.mark.parametrize(("text", "expected"), [
+    ("d p[A] / d energy[B]", ["energy-covariance", "energy-range"]),
+    ("d ln(p[A]/p[B]) / d energy[B]", ["energy-range"]),
+    ("d p[A] / d barrier[bind]",
+     ["splitting-end-pair", "end-pair", "splitting-barrier", "barrier"]),
+    ("d (p[A] + p[B]) / d drive[bind]", ["splitting-drive", "drive"]),
+    ("d p[A]/p[B] / d barrier[bind]", ["end-pair", "barrier"]),
+    ("d mean[q] / d ln c", ["parameter", "support"]),
+    ("d ln p[A] / d c", ["parameter", "support"]),
+    ("ln(p[A]/p[B])", ["path", "path"]),
+    ("p[A]/p[B]", ["path", "path"]),
+])
+def test_which_bounds_apply(text: str, expected: list[str]) -> None:
+    assert names(RING, text) == expected
+
+
+@pytest.mark.parametrize("text", [
+    "p[A]", "current[bind]", "d current[bind] / d barrier[bind]", "d mean[moving] / d c",
+    "d (d p[A] / d c) / d c", "d p[A]*p[B] / d c", "d ln mean[q] / d barrier[bind]",
+])
+def test_what_the_catalogue_does_not_speak_of(text: str) -> None:
+    """A mean of both signs has no logarithm; an observable must not move with the parameter."""
+    with pytest.raises(QuantityError, match="no bound of the catalogue applies"):
+        names(RING, text)
+
+
+def test_an_unknown_bound_names_the_nearest() -> None:
+    with pytest.raises(QuantityError, match="did you mean 'barrier'"):
+        claims_for(read_quantity("d p[A] / d c", RING), Analysis(RING), "barier")
+    with pytest.raises(QuantityError, match="'barrier' does not apply"):
+        claims_for(read_quantity("d p[A] / d c", RING), Analysis(RING), "barrier")
+
+
+def test_texts() -> None:
+    analysis = Analysis(RING)
+    (claim,) = claims_for(read_quantity("d ln(p[A]/p[B]) / d barrier[flip]", RING), analysis,
+                          "barrier")
+    assert left_text(claim, RING) == "abs(d ln(p[A]/p[B]) / d barrier[flip])"
+    assert right_text(claim, analysis) == "tanh(abs(ln(a*c*e*g/(b*f*h)))/4)"
+    (claim,) = claims_for(read_quantity("d mean[q] / d barrier[flip]", RING), analysis, "barrier")
+    assert right_text(claim, analysis) == (
+        "(mean[q] + 1)*(2 - mean[q])*tanh(abs(ln(a*c*e*g/(b*f*h)))/4)/3")
+    assert claim.data["range"] == ["-1", "2"] and "rescaled affinely" in claim.hypotheses
+
+
+def test_a_bridge_is_bounded_by_zero() -> None:
+    """F_max = 0 for a bridge (Owen, Gingrich & Horowitz 2020)."""
+    analysis = Analysis(TREE)
+    for claim in claims_for(read_quantity("d p[A] / d barrier[ab]", TREE), analysis):
+        assert right_text(claim, analysis) == "0"
+
+
+def test_the_pair_saturates_three_fifths() -> None:
+    """|d ln(p_A/p_B)/dB| = 3/5 = tanh(ln 16/4): both conditions of the squared comparison."""
+    report = bound(Analysis(PAIR), "d ln(p[A]/p[B]) / d barrier[one]")
+    row = {r.claim.name: r.evaluated for r in report.rows}["barrier"]
+    assert row is not None and row.holds and row.left == row.right_value() == Fraction(3, 5)
+
+
+@pytest.mark.parametrize(("left", "factor", "g", "expected"), [
+    (2, 1, 9, False),  # (Y + |X|)^2 <= g (Y - |X|)^2 alone would pass
+    (Fraction(3, 5), 1, 16, True),
+    (Fraction(3, 5) + Fraction(1, 10**30), 1, 16, False),
+    (Fraction(3, 5), 1, 16 - Fraction(1, 10**30), False),
+    (0, 0, 1, True), (1, 0, 16, False), (0, 1, 1, True), (Fraction(1, 10**9), 1, 1, False),
+])
+def test_exact_verdicts(
+    left: Fraction, factor: Fraction, g: Fraction, expected: bool
+) -> None:
+    assert holds(Fraction(left), [Weighted(Fraction(factor), Fraction(g))]) is expected
+
+
+def test_verdicts_with_several_forces_agree_with_high_precision() -> None:
+    """Oracle: mpmath at 60 digits, for sums close to equality from both sides."""
+    import mpmath
+
+    terms = [Weighted(Fraction(1, 3), Fraction(5)), Weighted(Fraction(2), Fraction(7, 3)),
+             Weighted(Fraction(1, 7))]
+    with mpmath.workdps(60):
+        total = sum(
+            mpmath.mpf(t.factor.numerator) / t.factor.denominator
+            * (1 if t.g is None else mpmath.tanh(mpmath.log(mpmath.mpf(t.g.numerator)
+                                                            / t.g.denominator) / 4))
+            for t in terms)
+        near = Fraction(int(total * 10**40), 10**40)
+    step = Fraction(1, 10**39)
+    assert holds(near - step, terms) is True
+    assert holds(near + step, terms) is False
+    low, high = tanh_bounds(Fraction(5), 4, 128)
+    assert low < high < low + Fraction(1, 2**120)
+
+
+def test_json_and_exit_status(tmp_path: object, capsys: pytest.CaptureFixture[str]) -> None:
+    from pathlib import Path
+
+    path = Path(str(tmp_path)) / "pair.toml"
+    path.write_text(
+        'title = "pair"\n[symbols.x]\n[states.A]\n[states.B]\n[[transitions]]\nname = "one"\n'
+        'between = ["A", "B"]\nrates = ["4*x", "1"]\n[[transitions]]\nname = "two"\n'
+        'between = ["A", "B"]\nrates = ["1", "4"]\n', encoding="utf-8")
+    ask = ["bound", str(path), "d ln(p[A]/p[B]) / d barrier[one]", "--json"]
+    assert run(ask) == 0
+    data = json.loads(capsys.readouterr().out)
+    assert data["value"] is None
+    assert all(row["holds"] is None and row["left_value"] is None for row in data["bounds"])
+    assert run([*ask, "--at", "x=1"]) == 0
+    data = json.loads(capsys.readouterr().out)
+    row = next(r for r in data["bounds"] if r["name"] == "barrier")
+    assert (row["left_value"], row["right_value"], row["holds"]) == ("3/5", "3/5", True)
+    assert row["data"]["in_force"] == {"one": "A -[one]-> B -[two]-> A"}
+    assert run([*ask, "--at", "x=2"]) == 0
+    row = json.loads(capsys.readouterr().out)["bounds"][1]
+    low, high = map(Fraction, row["right_enclosure"])
+    x = Fraction(row["left_value"])
+    assert low <= high and x <= high
+    assert run([*ask, "--at", "y=2"]) == 2
+
+
+def test_every_name_of_the_catalogue_has_words_and_a_source() -> None:
+    from symbolic_response.appendix.bounds_section import WORDS
+
+    assert {*CATALOGUE, "path"} == set(WORDS)
