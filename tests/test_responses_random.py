@@ -133,6 +133,26 @@ def test_responses_against_sympy(network: Network, name: str) -> None:
     assert normal_form(placed.expression(), NONE).as_fraction() == expected
 
 
+def test_entropy_production_feels_a_drive() -> None:
+    """One cycle of force F_c: sigma = J F_c, so d sigma/d drive = F_c dJ/d drive + J (item 4)."""
+    ring = build_network("ring", states="A B C", transitions=[
+        Rates("A", "B", "k", "c", name="a"), Rates("B", "C", "u", "k", name="b"),
+        Rates("C", "A", "c", "u", name="e")])
+    drive, force = "drive[b]", "ln(forward[a]*forward[b]*forward[e]/" \
+        "(backward[a]*backward[b]*backward[e]))"
+    for quantity, other in ((f"d entropy_production / d {drive}",
+                             f"(d current[a] / d {drive})*{force} + current[a]"),
+                            ("d entropy_production / d barrier[b]",
+                             f"(d current[a] / d barrier[b])*{force}")):
+        given = {name: read_expression(text) for name, text in
+                 {"k": "3", "c": "5/7", "u": "2"}.items()}
+        analysis = Analysis(ring)
+        found = [normal_form(specialise(closed_form(read_quantity(text, ring), analysis).form,
+                                        given, NONE).expression(), NONE)
+                 for text in (quantity, other)]
+        assert expression_text(found[0].expression()) == expression_text(found[1].expression())
+
+
 @pytest.mark.parametrize("order", [1, 2, 3])
 def test_nested_responses_do_not_depend_on_the_order_of_elementary_ones(order: int) -> None:
     network = build_network("pair of channels", states="A B", transitions=[

@@ -62,8 +62,8 @@ def _words(count: int) -> str:
     return (f"Each inequality was decided in exact rational arithmetic at {count} sampled points, "
             "a fixed number of which bring the force of one cycle near zero, to moderate and to "
             "large values, and at the points of a search for large ratios. The domain is that of "
-            "all admissible values of the symbols; samples are drawn from the ranges of the network "
-            "file. "
+            "all admissible values of the symbols; samples are drawn from the ranges of the "
+            "network file. "
             "None was violated. The last column is the largest ratio of the left to the right "
             "side, rounded down: the closer to one, the tighter.")
 

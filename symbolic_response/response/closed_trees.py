@@ -123,10 +123,19 @@ def cycle_force(cycle: Cycle, analysis: Analysis) -> Expression:
     return function("ln", divide(multiply(along), multiply(against)))
 
 
+def _force_in_rates(cycle: Cycle, analysis: Analysis) -> Expression:
+    """Return the force of a cycle over the ring of rates, so that perturbations reach it."""
+    along = against = analysis.rates.ring.constant(1)
+    for e, ahead in zip(cycle.transitions, cycle.along, strict=True):
+        along = along * analysis.rates.generator(e, not ahead)
+        against = against * analysis.rates.generator(e, ahead)
+    return function("ln", divide(_poly(along, analysis), _poly(against, analysis)))
+
+
 def _entropy_production(analysis: Analysis) -> Expression:
     terms = [
         multiply([_poly(analysis.current_numerator(c.transitions[0]), analysis),
-                  cycle_force(c, analysis)])
+                  _force_in_rates(c, analysis)])
         for c in analysis.fundamental_cycles
     ]
     return divide(add(terms), _poly(analysis.normalisation, analysis))
