@@ -69,6 +69,8 @@ class ClaimPoint:
 
     def value(self, node: Expression) -> Fraction:
         """Return the value of a quantity in which maxima and absolute values may occur."""
+        if isinstance(node, (Sum, Product, Power, Absolute, Number)):
+            return self._value(node)  # quicker than to look it up
         if node not in self._values:
             self._values[node] = self._value(node)
         return self._values[node]
