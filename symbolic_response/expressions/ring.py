@@ -58,16 +58,16 @@ class Generator:
     """What one variable of a ring stands for.
 
     ``base`` is the symbol itself, the argument of the exponential or logarithm, or what a root is
-    taken of; ``relation`` is the latter as a polynomial, None where it is not one. ``rank`` orders
-    generators of a kind; ``key`` is unique within the kind. ``positive`` says that it is certainly
-    positive; a root that is not so marked is still never negative.
+    taken of; ``relation`` is the latter as a polynomial, None where it is not one. ``kind`` and
+    ``key`` alone say which generator it is; ``rank`` orders generators of a kind. ``positive`` says
+    that it is certainly positive; a root that is not so marked is still never negative.
     """
 
     kind: str
-    rank: int
+    rank: int = field(compare=False)
     key: str
     base: Expression = field(compare=False)
-    positive: bool
+    positive: bool = field(compare=False)
     relation: Polynomial | None = field(default=None, compare=False)
 
     def order(self) -> tuple[int, int, str]:
