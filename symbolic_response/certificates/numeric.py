@@ -6,7 +6,7 @@ Grassmann, Taksar & Heyman (1985), responses from W p' = -W' p.
 
 from __future__ import annotations
 
-from collections.abc import Mapping
+from collections.abc import Mapping, Sequence
 from functools import reduce
 
 import numpy as np
@@ -48,14 +48,44 @@ Dual = tuple[Floats, Floats]
 SMALLEST = 1e-4
 
 
+class CycleSteps:
+    """For each transition the cycles through it as a matrix: transitions by cycles, +1, -1 or 0."""
+
+    def __init__(self, analysis: Analysis) -> None:
+        self.analysis = analysis
+        self._matrices: dict[int, Floats | None] = {}
+
+    def through(self, e: int) -> Floats | None:
+        """Return the matrix, None where a cycle through the transition has infinite force."""
+        if e not in self._matrices:
+            self._matrices[e] = self._matrix(cycles_through(e, self.analysis))
+        return self._matrices[e]
+
+    def _matrix(self, cycles: Sequence[Cycle]) -> Floats | None:
+        matrix = np.zeros((len(self.analysis.graph.ends), len(cycles)))
+        for which, cycle in enumerate(cycles):
+            if not _finite(cycle, self.analysis):
+                return None
+            for e, ahead in zip(cycle.transitions, cycle.along, strict=True):
+                matrix[e, which] = 1 if ahead else -1
+        return matrix
+
+
+def _finite(cycle: Cycle, analysis: Analysis) -> bool:
+    return can_run_along(analysis.graph, cycle) and can_run_against(analysis.graph, cycle)
+
+
 class NumericPoints:
     """A network at many points; ``values``: an array for each symbol (exponents as they stand).
 
     Raises UndecidedError for quantities it has no arithmetic for.
     """
 
-    def __init__(self, analysis: Analysis, values: Mapping[str, Floats], count: int) -> None:
-        self.analysis = analysis
+    def __init__(
+        self, cycles: CycleSteps, values: Mapping[str, Floats], count: int
+    ) -> None:
+        self.cycles = cycles
+        self.analysis = analysis = cycles.analysis
         self.values = values
         self.count = count
         self.rates = [
@@ -95,16 +125,20 @@ class NumericPoints:
         """Return a force."""
         match force:
             case CycleMaximum(e):
-                cycles = cycles_through(e, self.analysis)
-                return reduce(np.maximum, map(self._cycle, cycles), np.zeros(self.count))
+                matrix = self.cycles.through(e)
+                if matrix is None:
+                    return np.full(self.count, np.inf)
+                # one-way transitions are on none of these cycles
+                steps = np.array([np.log(ahead) - np.log(np.where(back > 0, back, ahead))
+                                  for ahead, back in self.rates])
+                return np.asarray(np.abs(steps.T @ matrix).max(axis=1, initial=0.0))
             case OneCycle(cycle):
                 return self._cycle(cycle)
             case EndPair(e):
                 return self._end_pair(e)
 
     def _cycle(self, cycle: Cycle) -> Floats:
-        graph = self.analysis.graph
-        if not (can_run_along(graph, cycle) and can_run_against(graph, cycle)):
+        if not _finite(cycle, self.analysis):
             return np.full(self.count, np.inf)
         total = np.zeros(self.count)
         for e, ahead in zip(cycle.transitions, cycle.along, strict=True):

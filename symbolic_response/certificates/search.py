@@ -21,7 +21,7 @@ from symbolic_response.bounds.claim import Claim
 from symbolic_response.bounds.evaluate import ClaimPoint
 from symbolic_response.certificates.axes import PLAIN_BITS, Axis
 from symbolic_response.certificates.construct import constructed
-from symbolic_response.certificates.numeric import NumericPoints
+from symbolic_response.certificates.numeric import CycleSteps, NumericPoints
 from symbolic_response.certificates.sampling import Sampler, Values
 from symbolic_response.certificates.tally import Place, Stretch, tally_point
 from symbolic_response.errors import EvaluationError, UndecidedError
@@ -112,6 +112,7 @@ class _Climb:
         self.claim = claim
         self.analysis = analysis
         self.sampler = sampler
+        self.cycles = CycleSteps(analysis)
         digest = hashlib.sha256(f"search {claim.name} {sampler.seed}".encode()).digest()
         self.random = random.Random(int.from_bytes(digest, "big"))
         limits = [axis.limits(BITS) for axis in sampler.axes]
@@ -141,7 +142,7 @@ class _Climb:
         """Return left/right at many places, in floating point."""
         values = {axis.name: _floats(axis, places[:, k])
                   for k, axis in enumerate(self.sampler.axes)}
-        return NumericPoints(self.analysis, values, len(places)).ratio(self.claim)
+        return NumericPoints(self.cycles, values, len(places)).ratio(self.claim)
 
     def _climb(self, places: Places, scores: Floats) -> tuple[Places, Floats]:
         count = places.shape[1]
