@@ -147,7 +147,7 @@ def test_rules_of_latex(tree: Expression) -> None:
     known = {"frac", "sqrt", "ln", "mu", "cdot", "left", "right"}
     assert set(re.findall(r"\\([A-Za-z]+)", latex)) <= known
     assert not re.search(r"[0-9] [0-9]", latex)  # a number before a number is dotted
-    plain = latex.replace(r"\cdot ", "")
+    plain = latex.replace(r"\cdot ", r"\cdot@")
     assert not re.search(r"[A-Za-z}] [0-9]", plain)  # ... and so is one after a symbol
     assert not re.search(r"(?<![A-Za-z\\])(?:[abcx]|\\mu) \(", latex)  # no call by accident
     assert "^{2}" not in latex

@@ -117,7 +117,7 @@ def sympy_answer(network: Network, weights: list[sympy.Expr], name: str) -> Frac
     p = numeric.LUsolve(right)
     slope = system.diff(symbols[name]).subs(at).applyfunc(sympy.simplify)
     dp = numeric.LUsolve(-slope * p)
-    result = sympy.nsimplify(sympy.simplify(sum(w * x for w, x in zip(weights, dp, strict=True))))
+    result = sympy.simplify(sum(w * x for w, x in zip(weights, dp, strict=True)))
     assert result.is_Rational
     return Fraction(int(result.p), int(result.q))
 
