@@ -13,7 +13,7 @@ from fractions import Fraction
 
 import flint
 
-from symbolic_response.errors import EvaluationError
+from symbolic_response.errors import EvaluationError, UndecidedError
 from symbolic_response.expressions.derivative import by_symbol, derivative
 from symbolic_response.expressions.normal_form import normal_form
 from symbolic_response.expressions.ring import Domain
@@ -35,7 +35,7 @@ from symbolic_response.expressions.tree import (
     rebuild,
     substitute,
 )
-from symbolic_response.network.model import Network
+from symbolic_response.network.model import Network, Transition
 from symbolic_response.network.quantities import (
     BarrierOf,
     BySymbol,
@@ -62,6 +62,7 @@ from symbolic_response.response.jets import (
     jet_sum,
     scaled_jet,
 )
+from symbolic_response.response.plain_signs import plain_sign
 
 NO_SYMBOLS = Domain((), frozenset())
 
@@ -156,14 +157,27 @@ class Point:
                 value = direct_value(rate, self.values)
                 if value is not None:
                     self._constants[(rate, ())] = value
-                positive = (value > 0 if value is not None
-                            else certain_sign(substitute(rate, self.values), frozenset()) == 1)
+                positive = value > 0 if value is not None else self._is_positive(rate, transition)
                 if not positive:
-                    at = ", ".join(f"{k} = {expression_text(v)}" for k, v in self.values.items())
                     raise EvaluationError(
                         f"rate {expression_text(rate)!r} of transition {transition.name!r} is not"
-                        f" positive at {at}"
+                        f" positive at {self._shown()}"
                     )
+
+    def _is_positive(self, rate: Expression, transition: Transition) -> bool:
+        placed = substitute(rate, self.values)
+        if plain_sign(placed, frozenset()) == 1:
+            return True
+        sign = certain_sign(placed, frozenset())
+        if sign is None:
+            raise UndecidedError(
+                f"the sign of rate {expression_text(rate)!r} of transition {transition.name!r} was"
+                f" not settled at {self._shown()}"
+            )
+        return sign == 1
+
+    def _shown(self) -> str:
+        return ", ".join(f"{k} = {expression_text(v)}" for k, v in self.values.items())
 
     # -- expressions of symbols ------------------------------------------------------------
 
