@@ -370,6 +370,15 @@ def test_values_that_make_long_exponents(
     assert "ln(1001)" not in part["expression"]
 
 
+def test_a_value_with_a_long_exponent_of_its_own(
+    pair: Path, capfd: pytest.CaptureFixture[str]
+) -> None:
+    result, = derived(capfd, pair, "p[B]", "--at", "k=1 + exp(-10**5)", "--at", "c=1", "--at",
+                      "u=1", "--at", "x=0")
+    low, high = (Fraction(end) for end in result["enclosure"])
+    assert low <= Fraction(1, 2) <= high
+
+
 def test_set_then_at(pair: Path, capfd: pytest.CaptureFixture[str]) -> None:
     first, = derived(capfd, pair, "p[B]", "--set", "u=k*c**2", "--set", "x=ln(2)")
     assert first["value"] is None

@@ -44,12 +44,14 @@ def placed_as_it_stands(form: ClosedForm, values: Mapping[str, Expression]) -> E
 
 def exponent_degree(node: Expression, values: dict[str, Expression]) -> Fraction:
     """Return how large the numbers in exponents become, over their common denominator."""
-    found = [
-        number
+    arguments = [
+        substitute(argument, values)
         for argument in exponents_of(node)
         if symbols_of(argument) & values.keys()
-        for number in _numbers(substitute(argument, values))
     ]
+    for value in values.values():
+        arguments += exponents_of(value)
+    found = [number for argument in arguments for number in _numbers(argument)]
     common = lcm(*(number.denominator for number in found))
     return max((abs(number) * common for number in found), default=Fraction(0))
 
