@@ -11,9 +11,11 @@ import numpy as np
 import pytest
 
 from symbolic_response.bounds.claim import Claim, CycleMaximum, OneCycle, Term
+from symbolic_response.bounds.evaluate import ClaimPoint
 from symbolic_response.bounds.registry import claims_for
 from symbolic_response.certificates.axes import value_text
 from symbolic_response.certificates.certify import Refutation, certify_claims
+from symbolic_response.certificates.construct import constructed
 from symbolic_response.certificates.sampling import Sampler
 from symbolic_response.certificates.search import Found, search
 from symbolic_response.expressions.text import expression_text
@@ -22,6 +24,7 @@ from symbolic_response.network import Barrier, Network, Rates, build_network
 from symbolic_response.network.quantities import BarrierOf, Current, Response, Traffic
 from symbolic_response.network.quantity_reader import read_quantity
 from symbolic_response.response.analysis import Analysis
+from symbolic_response.response.values import Point
 from tests.benchmarks.networks import cube, square_with_chord
 
 
@@ -43,6 +46,21 @@ def test_barrier_bounds_are_reached(make: Any, name: str) -> None:
         assert 0.999 <= found.place.ratio <= 1
         if name == "barrier":
             assert abs(float(found.place.ratio) - numeric_ratio(network, found.best, e)) < 1e-6
+
+
+@pytest.mark.parametrize("make", [square_with_chord, cube])
+def test_the_construction_alone_is_tight(make: Any) -> None:
+    network = make()
+    analysis = Analysis(network)
+    for e in (0, 1):
+        t = network.transitions[e]
+        x, y = network.states[t.first].name, network.states[t.second].name
+        quantity = read_quantity(f"d ln(p[{x}]/p[{y}]) / d barrier[{t.name}]", network)
+        (claim,) = claims_for(quantity, analysis, "barrier")
+        point = constructed(claim, analysis, Sampler(analysis, "0")).points[0]
+        ratio = ClaimPoint(analysis, Point(network, point)).evaluate(claim).ratio()
+        assert 1 - Fraction(1, 10**7) <= ratio <= 1
+        assert abs(float(ratio) - numeric_ratio(network, point, e)) < 1e-9
 
 
 @pytest.mark.parametrize("name", ["barrier", "splitting-barrier"])

@@ -34,6 +34,10 @@ def direct_value(node: Expression, values: Mapping[str, Expression]) -> Scalar:
     >>> at = {"F": read_expression("2*ln(3/2)")}
     >>> print(direct_value(read_expression("5*exp(F/2)"), at))
     15/2
+    >>> print(direct_value(read_expression("exp(F/2)"), {"F": read_expression("ln(9/4)")}))
+    3/2
+    >>> print(direct_value(read_expression("exp(F/2)"), {"F": read_expression("ln(2)")}))
+    None
     """
     match node:
         case Number(value):
