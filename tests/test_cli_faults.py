@@ -460,6 +460,15 @@ def test_dangerous(name: str, tmp_path: Path) -> None:
     assert [path.name for path in tmp_path.iterdir()] == ["net.toml"]
 
 
+@pytest.mark.xfail(strict=True, reason="exp(n) + 1 is factored as a polynomial of degree n")
+@pytest.mark.parametrize("verb", [["survey"], ["derive", "p[A]"]], ids=["survey", "derive"])
+def test_long_exponents_in_a_file(verb: list[str], tmp_path: Path) -> None:
+    (tmp_path / "net.toml").write_text(rate("k*c*(exp(1e18) + 1)"), encoding="utf-8")
+    name, *arguments = verb
+    done = outside(tmp_path, name, "net.toml", "--quiet", *arguments)
+    assert done.returncode in (0, 2, 3)
+
+
 def test_survey_of_a_complete_graph_says_what_it_left_out(tmp_path: Path) -> None:
     (tmp_path / "net.toml").write_text(complete_graph(25), encoding="utf-8")
     done = outside(tmp_path, "survey", "net.toml", "--quiet")
