@@ -87,12 +87,12 @@ def share(left: Fraction, right: list[tuple[Fraction, Fraction | None]]) -> Frac
 def value_of(text: str, point: Point) -> Any:
     names = {name: sympy.sympify(value, locals={"ln": sympy.log}) for name, value in point.items()}
     symbols = {name: sympy.Symbol(name, positive=True) for name in names}
-    tree = sympy.sympify(text, locals={**symbols, "ln": sympy.log})
+    tree = sympy.sympify(text, locals={**symbols, "ln": sympy.log}, rational=True)
     return tree, symbols, {symbols[name]: value for name, value in names.items()}
 
 
 def fraction(tree: Any, values: Any) -> Fraction:
-    found = sympy.nsimplify(sympy.simplify(sympy.sympify(tree).subs(values)))
+    found = sympy.simplify(sympy.sympify(tree).subs(values))
     assert found.is_Rational, found
     return Fraction(int(found.p), int(found.q))
 

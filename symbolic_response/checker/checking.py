@@ -60,6 +60,7 @@ def _check(record: Record, work: Work) -> None:
             raise invalid(f"claims[{i}].holds", str(points), claim.holds)
     worst: list[Place | None] = [None] * len(record.claims)
     for k in range(points):
+        work.charge(300, 0)
         solved = solve_point(record, k, graph, work)
         for i, claim in enumerate(record.claims):
             terms = right_side(record, i, solved, graph, work)
@@ -75,6 +76,7 @@ def _check(record: Record, work: Work) -> None:
 def _settle(claim: Claim, i: int, k: int, left: Fraction, terms: list[Term],
             work: Work) -> Fraction:
     """Return the ratio of the sides at a point where the claim holds."""
+    work.charge(100, 0)
     for factor, g in terms:
         work.charge(8, max(bits(left), bits(factor), bits(g or factor)))
     verdict, share = holds(claim, left, terms), ratio(left, terms)

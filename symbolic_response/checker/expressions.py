@@ -12,7 +12,7 @@ from dataclasses import dataclass
 from fractions import Fraction
 from math import isqrt, lcm
 
-from .reading import Work, malformed, shown, too_large
+from .reading import Work, malformed, too_large
 
 MAX_LENGTH, MAX_DEPTH, MAX_NUMBER = 100_000, 60, 1_000  # characters, nesting, digits of a number
 MAX_EXPONENT, MAX_BITS = 64, 400_000
@@ -59,10 +59,10 @@ def read(text: object, entry: str, symbols: Mapping[str, object]) -> Expression:
     reader = _Reader(text, entry)
     reader.read(0, 0)
     if reader.kind != "end":
-        raise malformed(entry, "an operator", shown(reader.token))
+        raise malformed(entry, "an operator", reader.token)
     used = frozenset(str(what) for kind, what in reader.program if kind == "symbol")
     for symbol in sorted(used - set(symbols)):
-        raise malformed(entry, "symbols of the network", shown(symbol))
+        raise malformed(entry, "symbols of the network", symbol)
     return Expression(text, tuple(reader.program), used)
 
 
@@ -106,7 +106,7 @@ class _Reader:
                 self.next()
             self.read(0, depth + 1)
             if self.token != ")":
-                raise malformed(self.entry, "a closing parenthesis", shown(self.token))
+                raise malformed(self.entry, "a closing parenthesis", self.token or "the end")
             self.next()
             if token != "(":
                 self.program.append((token, "") if token != "sqrt" else ("**", HALF))
@@ -118,7 +118,7 @@ class _Reader:
         elif kind == "name":
             self.program.append(("symbol", token))
         else:
-            raise malformed(self.entry, "a value in the expression", shown(token))
+            raise malformed(self.entry, "a value in the expression", token or "the end")
 
     def exponent(self, program: Program) -> Fraction:
         try:

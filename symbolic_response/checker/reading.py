@@ -55,8 +55,7 @@ class Rejected(Exception):
 
     def __init__(self, status: str, entry: str, expected: str, got: object) -> None:
         super().__init__(status, entry)
-        shown_got = got if isinstance(got, str) else shown(got)
-        self.verdict = Verdict(status, entry, expected, shown_got)
+        self.verdict = Verdict(status, entry, expected, shown(got))
 
 
 def malformed(entry: str, expected: str, got: object) -> Rejected:
@@ -90,11 +89,11 @@ def shown(value: object) -> str:
         bits = max(abs(value.numerator), value.denominator).bit_length()
         return str(value) if bits < 1000 else f"a number of about {bits * 3 // 10} digits"
     if isinstance(value, str):
-        return ascii(value) if len(value) <= 80 else f"{value[:60]!a}... ({len(value)} long)"
-    plain = {"None": "null", "True": "true", "False": "false"}
+        plain = ascii(value)[1:-1]
+        return plain if len(plain) <= 300 else f"{plain[:200]}... ({len(value)} characters)"
     if value is None or isinstance(value, bool):
-        return plain[str(value)]
-    return "a list" if isinstance(value, list) else f"an object of type {type(value).__name__}"
+        return "null" if value is None else str(value).lower()
+    return "a list" if isinstance(value, list) else "an object"
 
 
 def read_file(path: str | os.PathLike[str]) -> object:
@@ -133,6 +132,8 @@ def _check_sizes(text: str) -> None:
             depth += mark != ","
         elif mark in "]}":
             depth -= 1
+        if depth < 0:
+            raise malformed("file", "JSON", "a closing bracket without an opening one")
         if depth > MAX_NESTING:
             raise too_large("file", MAX_NESTING, "deeper nesting")
         if items > MAX_ITEMS:
@@ -144,12 +145,12 @@ def _object(pairs: list[tuple[str, object]]) -> dict[str, object]:
     if len(made) < len(pairs):
         keys = [key for key, _ in pairs]
         twice = next(key for at, key in enumerate(keys) if key in keys[:at])
-        raise malformed("file", "each key once in an object", shown(twice) + " twice")
+        raise malformed("file", "each key once in an object", f"{twice} twice")
     return made
 
 
 def _no_float(text: str) -> object:
-    raise malformed("file", "integers and texts only", shown(text))
+    raise malformed("file", "integers and texts only", text)
 
 
 def _integer(text: str) -> int:
@@ -170,13 +171,13 @@ def integer(text: str, entry: str) -> int:
 def members(value: object, entry: str, *keys: str) -> list[object]:
     """Return the values of an object that has these keys and no others."""
     if type(value) is not dict:
-        raise malformed(entry, "an object", value)
+        raise malformed(entry or "file", "an object", value)
     for key in keys:
         if key not in value:
             raise malformed(f"{entry}.{key}".lstrip("."), "a value", "no such key")
     for key in value:
         if key not in keys:
-            raise malformed(entry or "file", "only known keys", shown(key))
+            raise malformed(entry or "file", "only known keys", key)
     return [value[key] for key in keys]
 
 
