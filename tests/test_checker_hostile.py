@@ -5,6 +5,7 @@ from __future__ import annotations
 import json
 import os
 import resource
+import runpy
 import subprocess
 import sys
 from pathlib import Path
@@ -15,6 +16,8 @@ import pytest
 sys.path.insert(0, str(Path(__file__).parent))
 
 from checker_examples import examples
+
+from symbolic_response.checker import check_file, reading
 
 ROOT = Path(__file__).parent.parent
 CHECKER = ROOT / "symbolic_response" / "checker"
@@ -81,6 +84,30 @@ def test_it_loads_nothing_of_the_project() -> None:
     done = subprocess.run([sys.executable, "-I", "-S", "-c", code], capture_output=True, text=True,
                           check=False, cwd="/")
     assert done.stdout.splitlines()[1:] == ["2", "[]"], done.stderr
+
+
+def test_the_same_without_a_process(
+    tmp_path: Path, monkeypatch: pytest.MonkeyPatch, capsys: pytest.CaptureFixture[str]
+) -> None:
+    pipe, long, here = tmp_path / "pipe", tmp_path / "long", tmp_path / "here"
+    os.mkfifo(pipe)
+    long.write_bytes(b" " * (64 * 2**20 + 1))
+    here.write_text("{}")
+    statuses = [check_file(path).status for path in (pipe, tmp_path, long, "a\0b", b"\xff")]
+    assert statuses == ["malformed", "malformed", "incomplete", "malformed", "malformed"]
+    monkeypatch.setattr(reading, "MAX_ITEMS", 3)
+    here.write_text("[1, 2, 3, 4]")
+    line = "incomplete: size limit: file: expected at most 3, got more entries"
+    assert str(check_file(here)) == line
+    here.write_text("]")
+    assert str(check_file(here)).startswith("malformed: file: expected JSON, got a closing bracket")
+    for arguments, status in (([str(here)], 2), ([], 2), (["-h"], 0)):
+        monkeypatch.setattr(sys, "argv", ["checker", *arguments])
+        with pytest.raises(SystemExit) as caught:
+            runpy.run_path(str(CHECKER), run_name="__main__")
+        assert caught.value.code == status
+    monkeypatch.delitem(sys.modules, "checker")
+    assert capsys.readouterr().out.startswith(f"{here}: malformed")
 
 
 def test_what_is_no_file(tmp_path: Path) -> None:
@@ -153,7 +180,7 @@ def test_numbers_of_a_million_digits(tmp_path: Path) -> None:
 
 def test_numbers_just_below_the_limit(tmp_path: Path) -> None:
     record: dict[str, Any] = json.loads(json.dumps(examples()["square-splitting"]))
-    record["points"] = [{"x": "1" * 19_999 + "/" + "7" * 19_998 + "2", "y": "9" * 20_000}] * 2
+    record["points"] = [{"x": "1/" + "7" * 6_000, "y": "9" * 20_000}] * 2
     record["sampling"]["count"] = 2
     for claim in record["claims"]:
         claim["holds"] = 2

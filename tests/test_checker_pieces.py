@@ -30,6 +30,7 @@ from symbolic_response.checker import (
 )
 from symbolic_response.checker.expressions import read, run
 from symbolic_response.checker.network import Graph, determinant, solve
+from symbolic_response.checker.point import Solved
 from symbolic_response.checker.reading import Rejected, Verdict, Work, shown
 
 F = Fraction
@@ -240,6 +241,33 @@ def test_an_equality_that_is_an_inequality_fails(monkeypatch: pytest.MonkeyPatch
     monkeypatch.setattr(checking, "right_side", lambda *_: [(F(9), None)])
     verdict = check_record(examples()["ring-energy"])
     assert verdict.entry == "claims[0].holds" and " = 9" in verdict.got
+
+
+def test_a_rate_that_is_no_text_and_ties_of_constant_observables() -> None:
+    record = copy.deepcopy(examples()["ring-barrier"])
+    for side in ("above", "below"):  # constant: Y = 0 and nothing responds
+        record["target"][side] = {"A": "2", "B": "2", "C": "2"}
+    for claim in record["claims"]:
+        claim["worst"] = {"point": 0, "left": "0", "ratio": "0", "right": [
+            {**claim["worst"]["right"][0], "factor": "0", "g": claim["worst"]["right"][0]["g"]}]}
+    verdict = check_record(record)
+    assert verdict.status == "invalid" and verdict.entry.endswith("right[0].g")
+    record["network"]["transitions"][0]["forward"] = 1
+    assert check_record(record).status == "malformed"
+
+
+def test_cycles_of_equal_force_and_cycles_that_cannot_be_run() -> None:
+    def force(ends: list[tuple[int, int]], one_way: list[bool], rates: list[F]) -> F | None:
+        graph = Graph(1 + max(map(max, ends)), ends, one_way, work())
+        return bounds._largest_force(graph, 0, Solved("", {}, rates, [], []), work())
+
+    double = [(0, 1), (0, 1), (0, 1)]
+    two = F(2)
+    assert force(double, [False] * 3, [two, F(1), F(1), two, F(1), F(1)]) == 4
+    assert force(double, [False] * 3, [two, F(1), F(1), F(1), F(1), two]) == 4
+    ring = [(0, 1), (1, 2), (0, 2)]  # one-way steps against each other: no cycle can be run
+    assert force(ring, [False, True, True], [two, F(1), F(1), F(0), F(1), F(0)]) == 1
+    assert force(ring, [False, True, False], [two, F(1), F(1), F(0), F(1), F(1)]) is None
 
 
 def test_work_is_bounded() -> None:

@@ -49,17 +49,16 @@ def solve_point(record: Record, k: int, graph: Graph, work: Work) -> Solved:
     made.rates, made.moves = _rates(network, where, symbols, work)
     if moved is not None:
         _elementary(made.moves, graph, moved)
-    reduced = [row[:-1] for row in generator(graph.states, graph.ends, made.rates)[:-1]]
-    last = [row[-1] for row in generator(graph.states, graph.ends, made.rates)[:-1]]
-    weights = [*solve(reduced, [-x for x in last], work), ONE]
+    rows = generator(graph.states, graph.ends, made.rates)[:-1]
+    reduced = [row[:-1] for row in rows]
+    weights = [*solve(reduced, [-row[-1] for row in rows], work), ONE]
     total = sum(weights, ZERO)
     made.p = [x / total for x in weights]
     if record.path is not None:
         start, goal = record.path
         made.left = made.p[goal] / made.p[start]
-    elif record.target is not None:
-        change = _derivative(made, graph, reduced, work)
-        _observe(made, record, change, work)
+    else:
+        _observe(made, record, _derivative(made, graph, reduced, work), work)
     return made
 
 
