@@ -34,6 +34,8 @@ from symbolic_response.expressions.ring import (
     Ring,
     common_denominator,
     expression_of,
+    factors_of,
+    key_of,
     lift_exponents,
     union,
 )
@@ -102,10 +104,10 @@ class Substitution:
             return ZERO
         parts = []
         for poly, sign in ((form.numerator, 1), (form.denominator, -1)):
-            content, pieces = poly.factor()
-            parts.append(integer_power(constant(int(content)), sign))
+            content, pieces = factors_of(poly)
+            parts.append(integer_power(constant(content), sign))
             for piece, exponent in pieces:
-                parts.append(integer_power(self._named(piece, form.ring), int(exponent) * sign))
+                parts.append(integer_power(self._named(piece, form.ring), exponent * sign))
         return product(parts)
 
     def _named(self, piece: Poly, ring: Ring) -> Factored:
@@ -122,7 +124,7 @@ class Substitution:
         expression = expression_of(base.ring, base.poly)
         positive = certain_sign(expression, self.context.domain.positive) == 1
         rank = len(self.context.named)
-        return Generator("root", rank, repr(expression), expression, positive, base)
+        return Generator("root", rank, key_of(expression), expression, positive, base)
 
 
 def _coefficients(

@@ -21,6 +21,8 @@ from symbolic_response.expressions.ring import (
     Poly,
     Polynomial,
     Ring,
+    common_divisor,
+    factors_of,
     lift,
     lift_exponents,
     product_of,
@@ -28,7 +30,6 @@ from symbolic_response.expressions.ring import (
 )
 
 MAX_EXPANDED_PRODUCTS = 400_000
-MAX_TRIED_TERMS = 300
 
 
 def total(values: Sequence[Factored], context: Context) -> Factored:
@@ -158,7 +159,7 @@ def _reduced(lead: Factored, common: Factored, context: Context) -> list[Factore
             both = union([ring, other.ring])
             top, bottom = lift(poly, ring, both), lift(other.poly, other.ring, both)
             left = int(-exponent)
-            while left and not (shared := top.gcd(bottom)).is_constant():
+            while left and not (shared := common_divisor(top, bottom)).is_constant():
                 if len(shared) != len(bottom) or shared.total_degree() != bottom.total_degree():
                     parts.append(_inverse(from_polynomial(bottom // shared, both, context)))
                 top, left = top // shared, left - 1
@@ -171,12 +172,10 @@ def _reduced(lead: Factored, common: Factored, context: Context) -> list[Factore
 
 def _irreducible(poly: Poly, ring: Ring, context: Context) -> list[Factored]:
     """Return a polynomial in factors, found only while it is short."""
-    if len(poly) > MAX_TRIED_TERMS:
-        return [from_polynomial(poly, ring, context)]
-    content, pieces = poly.factor()
-    parts = [Factored(Fraction(int(content)))]
+    content, pieces = factors_of(poly)
+    parts = [constant(content)]
     for piece, exponent in pieces:
-        parts += [from_polynomial(piece, ring, context)] * int(exponent)
+        parts += [from_polynomial(piece, ring, context)] * exponent
     return parts
 
 

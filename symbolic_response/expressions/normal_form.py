@@ -24,6 +24,7 @@ from symbolic_response.expressions.ring import (
     Ring,
     common_divisor,
     expression_of,
+    factors_of,
     key_of,
     lift,
     monomial_content,
@@ -44,8 +45,6 @@ from symbolic_response.expressions.tree import (
     number,
 )
 
-MAX_FACTORED_TERMS = 200
-MAX_FACTORED_DEGREE = 128
 MAX_FACTORED_BITS = 128
 MAX_TRIAL_PRIMES = 1_000
 
@@ -232,12 +231,11 @@ def _poly_factors(poly: Poly, ring: Ring, domain: Domain) -> list[PositiveFactor
     rest = poly // (ring.monomial(exponents) * content)
     if rest.is_one():
         return factors
-    short = len(rest) <= MAX_FACTORED_TERMS and sum(rest.degrees()) <= MAX_FACTORED_DEGREE
-    pieces = rest.factor()[1] if short else [(rest, 1)]
+    _, pieces = factors_of(rest)
     if any(coefficient < 0 for piece, _ in pieces for coefficient in piece.coeffs()):
         pieces = [(rest, 1)]
     for piece, exponent in pieces:
-        factors.append(PositiveFactor(_root_of(ring, piece), Fraction(int(exponent))))
+        factors.append(PositiveFactor(_root_of(ring, piece), Fraction(exponent)))
     return factors
 
 

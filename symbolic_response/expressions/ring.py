@@ -42,6 +42,8 @@ MAX_EXPONENTS = 5_000_000
 MAX_PARTS = 20_000
 MAX_DIVISOR_DEGREE = 10_000
 MAX_DIVISOR_TERMS = 30_000
+MAX_FACTORED_TERMS = 300
+MAX_FACTORED_DEGREE = 128
 KINDS = ("symbol", "exp", "ln", "root", "rate")
 
 
@@ -240,6 +242,18 @@ def _too_large_to_divide(left: Poly, right: Poly) -> bool:
     return len(left) + len(right) > MAX_DIVISOR_TERMS or (
         max(*left.degrees(), *right.degrees()) > MAX_DIVISOR_DEGREE
     )
+
+
+def factors_of(poly: Poly) -> tuple[int, list[tuple[Poly, int]]]:
+    """Return content and factors: irreducible ones while that is quick, else the primitive part.
+
+    Past 300 terms, or degrees that add up to more than 128, a sum is left as it is.
+    """
+    if len(poly) <= MAX_FACTORED_TERMS and sum(poly.degrees()) <= MAX_FACTORED_DEGREE:
+        lead, pieces = poly.factor()
+        return int(lead), [(piece, int(exponent)) for piece, exponent in pieces]
+    content = int(poly.primitive()[0])
+    return content, [(poly // content, 1)]
 
 
 def key_of(base: Expression) -> str:

@@ -9,7 +9,7 @@ from fractions import Fraction
 import flint
 
 from symbolic_response.expressions.normal_form import Quotient, normal_form
-from symbolic_response.expressions.ring import lift, union
+from symbolic_response.expressions.ring import common_divisor, lift, union
 from symbolic_response.expressions.tree import Expression
 from symbolic_response.response.analysis import Analysis
 from symbolic_response.response.closed_trees import cycle_force
@@ -108,7 +108,7 @@ def _coordinates(forms: Sequence[Quotient]) -> list[list[Fraction]]:
     lifted = []
     for form in forms:
         top, bottom = (lift(p, form.ring, ring) for p in (form.numerator, form.denominator))
-        common = common * (bottom // common.gcd(bottom))
+        common = common * (bottom // common_divisor(common, bottom))
         lifted.append((top, bottom))
     polys = [(top * (common // bottom)).to_dict() for top, bottom in lifted]
     monomials = sorted({key for poly in polys for key in poly})
