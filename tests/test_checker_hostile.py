@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import json
 import os
+import random
 import resource
 import runpy
 import subprocess
@@ -212,3 +213,20 @@ def test_largest_networks_end(tmp_path: Path) -> None:
                       ("end-pair", "invalid")):
         record["claims"] = [{**record["claims"][0], "name": name}]
         assert verdict(tmp_path, json.dumps(record)).startswith(end)
+
+
+def test_damaged_files_have_a_verdict(tmp_path: Path) -> None:
+    source = random.Random(11)
+    corpus = [path.read_bytes() for path in (Path(__file__).parent / "checker_corpus").glob("*/*")]
+    corpus = sorted(data for data in corpus if 50 < len(data) < 8000)
+    pieces = [b'"', b"0", b"/", b"**", b"(", b")", b"null", b"{}", b"[]", b",", b"ln(", b"exp(",
+              b"e9", b"k", b"true", b"\\u0000", b"\xff", b"99", b"sqrt(", b"*ln(2)"]
+    for _ in range(1500):
+        data = bytearray(source.choice(corpus))
+        for _ in range(source.randint(1, 3)):
+            at = source.randrange(len(data))
+            data[at : at + source.randint(0, 3)] = source.choice(pieces)
+        path = tmp_path / "record.json"
+        path.write_bytes(data)
+        found = str(check_file(path))
+        assert found.isprintable() and len(found) < 2000
