@@ -197,13 +197,13 @@ def test_keys_and_members_removed_and_added(name: str) -> None:
 
 @pytest.mark.parametrize("name", NAMES)
 def test_points_in_another_order(name: str) -> None:
-    record = examples()[name]
-    if all(claim["worst"]["ratio"] == "0" for claim in record["claims"]):
-        pytest.skip("no response: all points are alike")
-    record = copy.deepcopy(record)
+    record = copy.deepcopy(examples()[name])
     record["points"].append(record["points"].pop(0))
     verdict = check_record(record)
-    if "covariance" in record["claims"][0]["name"] and verdict.status == "invalid":
+    if all(claim["worst"]["ratio"] == "0" for claim in record["claims"]):
+        # no response: the ratio is 0 everywhere, and the right side at the worst point moved
+        assert verdict.entry.startswith("claims[0].worst.right") or verdict.status == "valid"
+    elif "covariance" in record["claims"][0]["name"] and verdict.status == "invalid":
         assert verdict.entry.startswith("claims[0].worst.left")  # every ratio is 1
     else:
         assert verdict.status == "invalid" and verdict.entry.endswith("worst.point"), verdict
