@@ -3,7 +3,9 @@
 from __future__ import annotations
 
 import contextlib
+import json
 import re
+import subprocess
 import tomllib
 from fractions import Fraction
 
@@ -13,7 +15,7 @@ from hypothesis import strategies as st
 
 from symbolic_response.errors import NetworkError, QuantityError
 from symbolic_response.expressions.reader import read_expression
-from symbolic_response.network import Observable, State, SymbolEntry, Transition
+from symbolic_response.network import Observable, State, SymbolEntry, Transition, math_latex
 from symbolic_response.network.lines import key_lines
 from symbolic_response.network.toml_reader import read_network, read_network_text
 
@@ -208,6 +210,23 @@ FAULTY = [
     (ring("[symbols.k]", "[symbols.k]\n[symbols.spare]"), 3, "'spare' is declared but not used"),
     (ring("[symbols.k]", "[symbols.k]\nlatex = 'k_{'"), 3, r"latex 'k_\{' cannot stand"),
     (ring("[symbols.k]", "[symbols.k]\nlatex = '$k$'"), 3, "cannot stand in a formula"),
+    (ring("[symbols.k]", "[symbols.k]\nlatex = 'k^'"), 3, "cannot stand in a formula"),
+    (ring("[symbols.k]", "[symbols.k]\nlatex = '{k_ }a'"), 3, "cannot stand in a formula"),
+    (ring("[symbols.k]", "[symbols.k]\nlatex = '\\newwrite\\x\\immediate\\openout\\x=a'"), 3,
+     r"symbol 'k': latex holds \\newwrite, which is not allowed; use"),
+    (ring("[symbols.k]", "[symbols.k]\nlatex = 'k_{\\immediate\\openout1=a}'"), 3, r"\\immediate,"),
+    (ring("[symbols.k]", "[symbols.k]\nlatex = '\\input{/etc/hostname}'"), 3, r"holds \\input,"),
+    (ring("[states.B]", "[states.B]\nlatex = '\\text{\\input{x}}'"), 8, r"state 'B': .* \\input,"),
+    (ring("[symbols.k]", "[symbols.k]\nlatex = '^^5cinput{x}'"), 3, r"latex holds \^\^, which"),
+    (ring("[symbols.k]", "[symbols.k]\nlatex = 'k^^^^005cinput'"), 3, r"latex holds \^\^, which"),
+    (ring("[symbols.k]", "[symbols.k]\nlatex = '\\csname input\\endcsname x'"), 3, r"\\csname,"),
+    (ring("[symbols.k]", "[symbols.k]\nlatex = '\\begin{input}'"), 3, r"holds \\begin,"),
+    (ring("[symbols.k]", "[symbols.k]\nlatex = '\\mathrmx'"), 3, r"holds \\mathrmx,"),
+    (ring("[symbols.k]", "[symbols.k]\nlatex = 'k\\\\input'"), 3, r"holds \\\\, which"),
+    (ring("[symbols.k]", "[symbols.k]\nlatex = '\\" + "a" * 500 + "'"), 3, r"\\a{39}\.\.\., which"),
+    (ring("[symbols.k]", "[symbols.k]\nlatex = 'k@'"), 3, "latex holds @, which"),
+    (ring("[symbols.k]", "[symbols.k]\nlatex = 'k~x'"), 3, "latex holds ~, which"),
+    (ring("[symbols.k]", "[symbols.k]\nlatex = 'κ'"), 3, "latex holds κ, which"),
     (ring("[symbols.k]", "[symbols.k]\nlatex = ''"), 3, "latex is not a line of text"),
     (ring("[symbols.k]", "[symbols.k]\nlatex = 'E'"), 4, "'k' and 'E' look the same in LaTeX"),
     (ring("[states.B]", "[states.B]\nlatex = 'C'"), 10, "states 'B' and 'C' look the same"),
@@ -287,6 +306,27 @@ def test_faulty(text: str, line: int, message: str) -> None:
     assert len(said.splitlines()) == 1 and len(said) < 600
     assert said.startswith(f"dir/net.toml:{line}: "), said
     assert re.search(message, said), said
+
+
+def test_every_command_that_is_allowed_compiles(tmp_path, requires_latex) -> None:
+    sized = {r"\left", r"\right", r"\big", r"\Big", r"\bigl", r"\bigr", r"\Bigl", r"\Bigr"}
+    lines = [rf"${command}{{x}}{{y}}$" for command in sorted(math_latex._COMMANDS - sized)]
+    lines += [r"$\left(x\right) \big(\Big(\bigl(\bigr)\Bigl(\Bigr)$"]
+    (tmp_path / "all.tex").write_text("\n\n".join([
+        r"\documentclass{article}\usepackage{amsmath,amssymb}\begin{document}", *lines,
+        "\\end{document}\n"]))
+    done = subprocess.run(["pdflatex", "-halt-on-error", "-interaction=nonstopmode", "all.tex"],
+                          cwd=tmp_path, capture_output=True, text=True, check=False)
+    assert done.returncode == 0, done.stdout[-1000:]
+
+
+@pytest.mark.parametrize("latex", [
+    r"k_{\mathrm{on}}", r"\varnothing", r"\hat{k}_{+1}", r"k_{\text{off}}", "A'", r"k\_x\ y",
+    r"\left\{a\,b\right\}", r"\operatorname{Ca}^{2+}", r"\tfrac{1}{2}", r"E\|\text{S:ATP}\_",
+    r"[\mathrm{S}]/2*<|>=(;)", r"\%\&"])
+def test_usual_latex_is_allowed(latex: str) -> None:
+    text = ring("[symbols.k]", f'[symbols.k]\nlatex = {json.dumps(latex)}')
+    assert read_network_text(text).symbols[0].latex == latex
 
 
 def test_deep_arrays() -> None:

@@ -12,6 +12,7 @@ from symbolic_response.errors import ExpressionError, NetworkError, SizeLimitErr
 from symbolic_response.expressions.names import NAME, nearest
 from symbolic_response.expressions.reader import read_expression
 from symbolic_response.expressions.tree import Expression, number
+from symbolic_response.network.math_latex import refused
 
 Place = tuple[str | int, ...]
 Table = Mapping[str, object]
@@ -117,10 +118,16 @@ def read_latex(table: Table, what: str, place: Place) -> str | None:
         raise DocumentError(f"{what}: latex {shown(latex)} holds a control character; write LaTeX "
                             "in single quotes", *place)
     latex = one_line(latex, f"{what}: latex", place)
-    if not _balanced(latex) or re.search(r"(?<!\\)[$%&#]", latex):
+    if not _balanced(latex) or re.search(r"(?<!\\)([$%&#]|[_^] *(}|$))", latex):
         raise DocumentError(
-            f"{what}: latex {shown(latex)} cannot stand in a formula; balance its braces, and "
-            "write it without $, %, & and #", *place,
+            f"{what}: latex {shown(latex)} cannot stand in a formula; balance its braces, "
+            "end none of them with ^ or _, and write it without $, %, & and #", *place,
+        )
+    if (token := refused(latex)) is not None:
+        token = token if len(token) <= 40 else f"{token[:40]}..."
+        raise DocumentError(
+            f"{what}: latex holds {token}, which is not allowed; use ASCII letters, signs and "
+            "commands that only set mathematics, such as \\mathrm, \\hat and \\alpha", *place,
         )
     return latex
 
