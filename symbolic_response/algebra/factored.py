@@ -12,6 +12,7 @@ from dataclasses import dataclass
 from fractions import Fraction
 from math import gcd
 
+from symbolic_response.expressions.normal_form import reduce_roots
 from symbolic_response.expressions.ring import (
     EMPTY_RING,
     Domain,
@@ -27,6 +28,7 @@ from symbolic_response.expressions.ring import (
 )
 from symbolic_response.expressions.tree import (
     Expression,
+    Number,
     Sum,
     add,
     function,
@@ -157,7 +159,8 @@ def monomial_of(generator: Generator, exponent: Fraction) -> Factored:
 
 
 def from_polynomial(poly: Poly, ring: Ring, context: Context) -> Factored:
-    """Return a polynomial as content times monomial times its primitive part."""
+    """Return a polynomial as content times monomial times its primitive part, roots reduced."""
+    ring, (poly,) = reduce_roots([poly], ring, lowest=2)
     if len(poly) == 0:
         return ZERO
     exponents = monomial_content(poly)
@@ -217,7 +220,18 @@ def product(values: Sequence[Factored]) -> Factored:
     if coefficient == 0:
         return ZERO
     kept = tuple((base, exponent) for base, exponent in gathered.items() if exponent)
+    coefficient *= _whole_roots(ring, exponents)
     return Factored(coefficient, *_trim(ring, exponents), kept)
+
+
+def _whole_roots(ring: Ring, exponents: list[int]) -> Fraction:
+    """Take the whole powers of roots of numbers out of a monomial, and return their product."""
+    taken = Fraction(1)
+    for place, (generator, root) in enumerate(zip(ring.generators, ring.roots, strict=True)):
+        if generator.kind == "root" and isinstance(generator.base, Number):
+            whole, exponents[place] = divmod(exponents[place], root)
+            taken *= generator.base.value**whole
+    return taken
 
 
 def integer_power(value: Factored, exponent: int) -> Factored:

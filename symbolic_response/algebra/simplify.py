@@ -5,8 +5,6 @@ from __future__ import annotations
 from collections.abc import Callable
 from fractions import Fraction
 
-import flint
-
 from symbolic_response.algebra.factored import (
     ZERO,
     Context,
@@ -21,10 +19,11 @@ from symbolic_response.algebra.factored import (
     scaled,
 )
 from symbolic_response.algebra.sums import total
-from symbolic_response.errors import EvaluationError, SizeLimitError, UndecidedError
-from symbolic_response.expressions.enclosure import ball
+from symbolic_response.algebra.vanishing import vanishes
+from symbolic_response.errors import EvaluationError, UndecidedError
+from symbolic_response.expressions.enclosure import nonzero_somewhere
 from symbolic_response.expressions.normal_form import exponential, normal_form, rational_power
-from symbolic_response.expressions.ring import Polynomial, all_symbols, symbol_ring
+from symbolic_response.expressions.ring import Polynomial, symbol_ring
 from symbolic_response.expressions.tree import (
     Expression,
     Function,
@@ -33,6 +32,8 @@ from symbolic_response.expressions.tree import (
     Product,
     Sum,
     Symbol,
+    add,
+    number,
 )
 
 MAX_FUNCTION_TERMS = 60
@@ -54,7 +55,8 @@ def simplify(
         case Polynomial():
             return leaf(node)
         case Sum(terms):
-            return total([simplify(term, context, leaf) for term in terms], context)
+            result = total([simplify(term, context, leaf) for term in terms], context)
+            return ZERO if _vanishing_functions(result, context) else result
         case Product(factors):
             return product([simplify(factor, context, leaf) for factor in factors])
         case Power(base, exponent):
@@ -144,9 +146,24 @@ def logarithm_of(value: Factored, context: Context) -> Factored:
             terms.append(scaled(argument, exponent))
             kept[place] = 0
     rest = product([Factored(value.coefficient, value.ring, tuple(kept), value.factors)])
-    if rest != constant(1):
+    if not _is_one(rest, context):
         terms.append(_function("ln", rest))
     return total(terms, context)
+
+
+def _vanishing_functions(value: Factored, context: Context) -> bool:
+    """Return whether a short sum with functions, such as ln(a*b) - ln(a) - ln(b), is zero."""
+    sums = [base for base, _ in value.factors if isinstance(base, FactoredSum)]
+    if not sums or value.literals() > MAX_FUNCTION_TERMS:
+        return False
+    return vanishes(value.expression(), context.domain)
+
+
+def _is_one(value: Factored, context: Context) -> bool:
+    if value == constant(1):
+        return True
+    difference = add([value.expression(), number(-1)])
+    return vanishes(difference, context.domain)
 
 
 def _no_leaf(leaf: Polynomial) -> Factored:
@@ -166,29 +183,10 @@ def require_nonzero(value: Factored, context: Context) -> None:
     if value.is_zero():
         raise EvaluationError("division by, or logarithm of, an expression that is identically 0")
     for base, _ in value.factors:
-        if isinstance(base, FactoredSum) and not _nonzero_somewhere(base, context):
-            node = Factored(Fraction(1), factors=((base, Fraction(1)),)).expression()
-            try:
-                vanishes = normal_form(node, context.domain).is_zero()
-            except SizeLimitError:
-                vanishes = False
-            if vanishes:
+        node = Factored(Fraction(1), factors=((base, Fraction(1)),)).expression()
+        if isinstance(base, FactoredSum) and not nonzero_somewhere(node):
+            if vanishes(node, context.domain):
                 raise EvaluationError(
                     "division by, or logarithm of, an expression that is identically 0"
                 )
             raise UndecidedError("whether a divisor vanishes identically was not settled")
-
-
-def _nonzero_somewhere(base: FactoredSum, context: Context) -> bool:
-    node = Factored(Fraction(1), factors=((base, Fraction(1)),)).expression()
-    names = sorted(all_symbols(node))
-    for trial in range(1, 4):
-        with flint.ctx.workprec(256):
-            values = {
-                name: flint.arb(flint.fmpq(2 * place + 2 * trial + 1, place + trial + 1))
-                for place, name in enumerate(names)
-            }
-            enclosure = ball(node, values)
-            if enclosure > 0 or enclosure < 0:
-                return True
-    return False

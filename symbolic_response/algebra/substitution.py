@@ -24,6 +24,7 @@ from symbolic_response.algebra.factored import (
     product,
     scaled,
 )
+from symbolic_response.algebra.vanishing import polynomial_vanishes
 from symbolic_response.errors import EvaluationError
 from symbolic_response.expressions.normal_form import normal_form
 from symbolic_response.expressions.ring import (
@@ -79,6 +80,8 @@ class Substitution:
         for key, value in zip(map(tuple, (mapped - lowest).tolist()), values, strict=True):
             terms[key] = terms.get(key, 0) + int(value * scale)
         gathered = target.context.from_dict({k: v for k, v in terms.items() if v})
+        if polynomial_vanishes(gathered, target):
+            return ZERO
         lead = Factored(Fraction(1, scale), target, tuple(int(step) for step in lowest))
         return product([lead, from_polynomial(gathered, target, self.context)])
 

@@ -17,6 +17,7 @@ from symbolic_response.algebra.factored import (
     product,
     trimmed,
 )
+from symbolic_response.algebra.vanishing import polynomial_vanishes
 from symbolic_response.expressions.ring import (
     Poly,
     Polynomial,
@@ -139,7 +140,7 @@ def expand_sum(terms: Sequence[Factored]) -> tuple[Ring, Poly]:
 
 def _expanded(rest: Sequence[Factored], context: Context, common: Factored) -> Factored:
     ring, poly = expand_sum(rest)
-    if len(poly) == 0:
+    if polynomial_vanishes(poly, ring):
         return ZERO
     lead = from_polynomial(poly, ring, context)
     if not lead.factors:

@@ -8,7 +8,7 @@ from fractions import Fraction
 import flint
 
 from symbolic_response.errors import EvaluationError, UndecidedError
-from symbolic_response.expressions.ring import Polynomial
+from symbolic_response.expressions.ring import Polynomial, all_symbols
 from symbolic_response.expressions.tree import (
     Expression,
     Function,
@@ -155,3 +155,21 @@ def _decimal(value: int, digits: int) -> str:
         text = text.rjust(digits + 1, "0")
         return f"{sign}{text[:-digits]}.{text[-digits:]}"
     return f"{sign}{text[0]}.{text[1:]}e{first:+d}"
+
+
+def nonzero_somewhere(node: Expression) -> bool:
+    """Return whether an enclosure at a point of positive values excludes zero.
+
+    True proves that the expression does not vanish identically; False proves nothing.
+    """
+    names = sorted(all_symbols(node))
+    for trial in range(1, 4):
+        with flint.ctx.workprec(256):
+            values = {
+                name: flint.arb(flint.fmpq(2 * place + 2 * trial + 1, place + trial + 1))
+                for place, name in enumerate(names)
+            }
+            enclosure = ball(node, values)
+            if enclosure > 0 or enclosure < 0:
+                return True
+    return False

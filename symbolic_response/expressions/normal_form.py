@@ -299,10 +299,15 @@ def monomial_quotient(factors: Sequence[PositiveFactor], domain: Domain) -> Quot
     return times([Quotient(ring, top, bottom), *whole])
 
 
-def reduce_roots(polys: Sequence[Poly], ring: Ring) -> tuple[Ring, list[Poly]]:
-    """Return the polynomials with every power of a root variable brought below its index."""
+def reduce_roots(
+    polys: Sequence[Poly], ring: Ring, *, lowest: int = 1
+) -> tuple[Ring, list[Poly]]:
+    """Return the polynomials with every power of a root variable brought below its index.
+
+    Variables of an index below ``lowest`` are left alone: one of index 1 stands for a whole sum.
+    """
     while True:
-        place = _excessive_root(polys, ring)
+        place = _excessive_root(polys, ring, lowest)
         if place is None:
             return ring, list(polys)
         relation = ring.generators[place].relation
@@ -314,8 +319,9 @@ def reduce_roots(polys: Sequence[Poly], ring: Ring) -> tuple[Ring, list[Poly]]:
         polys = [_reduce_root(poly, ring, place, base) for poly in polys]
 
 
-def _excessive_root(polys: Sequence[Poly], ring: Ring) -> int | None:
-    candidates = [p for p, g in enumerate(ring.generators) if g.relation is not None]
+def _excessive_root(polys: Sequence[Poly], ring: Ring, lowest: int) -> int | None:
+    candidates = [p for p, g in enumerate(ring.generators)
+                  if g.relation is not None and ring.roots[p] >= lowest]
     for place in candidates:
         if any(poly.degrees()[place] >= ring.roots[place] for poly in polys):
             return place
