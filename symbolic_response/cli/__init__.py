@@ -53,7 +53,7 @@ def run(arguments: Sequence[str]) -> int:
     except click.NoSuchOption as error:
         hint = "; a quantity that begins with - stands in parentheses" if error.ctx and (
             error.ctx.info_name == "derive") else ""
-        return fail(error.format_message() + hint, UNUSABLE)
+        return fail(error.format_message().rstrip(".") + hint, UNUSABLE)
     except click.ClickException as error:
         return fail(error.format_message(), UNUSABLE)
     except InputError as error:

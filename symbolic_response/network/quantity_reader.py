@@ -142,7 +142,8 @@ class _Reader:
             raise ExpressionError(
                 f"responses nested more than {MAX_RESPONSE_DEPTH} deep", tokens[0].position
             )
-        slash = _last_slash_before_d(tokens)
+        known = [entry.name for entry in self.network.symbols]
+        slash = _last_slash_before_d(tokens, {*known, "ln", "energy", "barrier", "drive"})
         end = Token("end", "", tokens[slash].position)
         inner = _Reader(self.network, self.depth + 1)
         quantity = inner.numerator([*tokens[1:slash], end])
@@ -170,6 +171,7 @@ class _Reader:
             _expect_end(tokens, after)
             if len(names) != 1:
                 raise ExpressionError(f"{first.text}[...] takes one name", first.position)
+            self.check_kind(first, names[0])
             if first.text == "energy":
                 return EnergyOf(self.network.state_index(names[0]))
             transition = self.network.transition_index(names[0])
@@ -178,6 +180,9 @@ class _Reader:
         rest = tokens[1:] if logarithmic else tokens
         if logarithmic and rest[0].text == "(" and len(rest) > 2 and rest[2].text == ")":
             rest = [rest[1], *rest[3:]]
+        if first.text == "log" and tokens[1].kind != "end":
+            named = next((t.text for t in tokens[1:] if t.kind == "name"), "c")
+            raise ExpressionError(f"write d / d ln {named}, not log", first.position)
         if rest[0].kind != "name":
             raise ExpressionError(
                 "a perturbation is energy[state], barrier[transition], drive[transition],"
@@ -186,6 +191,17 @@ class _Reader:
             )
         _expect_end(rest, 1)
         return self.symbol_perturbation(rest[0], logarithmic)
+
+    def check_kind(self, kind: Token, name: str) -> None:
+        """Say so where a state stands for a transition or the other way round."""
+        states = [state.name for state in self.network.states]
+        transitions = [transition.name for transition in self.network.transitions]
+        if kind.text == "energy" and name in transitions and name not in states:
+            raise ExpressionError(f"{name!r} is a transition; energy takes a state", kind.position)
+        if kind.text != "energy" and name in states and name not in transitions:
+            raise ExpressionError(
+                f"{name!r} is a state; {kind.text} takes a transition", kind.position
+            )
 
     def symbol_perturbation(self, token: Token, logarithmic: bool) -> Perturbation:
         entry = self.network.symbol(token.text)
@@ -273,10 +289,16 @@ def _top_level(tokens: list[Token]) -> list[int]:
     return places
 
 
-def _last_slash_before_d(tokens: list[Token]) -> int:
+def _last_slash_before_d(tokens: list[Token], known: set[str]) -> int:
     for place in reversed(_top_level(tokens)):
         if tokens[place].text == "/" and _is_d(tokens[place + 1]):
             return place
+    for place in reversed(_top_level(tokens)):
+        after = tokens[min(place + 1, len(tokens) - 1)]
+        if tokens[place].text == "/" and after.text[:1] == "d" and after.text[1:] in known:
+            raise ExpressionError(
+                f"write d {after.text[1:]}, with a space, not {after.text}", after.position
+            )
     raise ExpressionError(
         "a response needs ' / d PERTURBATION', as in d p[A] / d ln c", tokens[-1].position
     )
