@@ -1,7 +1,9 @@
 """The catalogue as it is shown: which bounds apply, their texts, data, exits and LaTeX."""
 
 import json
+from dataclasses import replace
 from fractions import Fraction
+from pathlib import Path
 
 import pytest
 
@@ -122,8 +124,6 @@ def test_verdicts_with_several_forces_agree_with_high_precision() -> None:
 
 
 def test_json_and_exit_status(tmp_path: object, capsys: pytest.CaptureFixture[str]) -> None:
-    from pathlib import Path
-
     path = Path(str(tmp_path)) / "pair.toml"
     path.write_text(
         'title = "pair"\n[symbols.x]\n[states.A]\n[states.B]\n[[transitions]]\nname = "one"\n'
@@ -151,3 +151,102 @@ def test_every_name_of_the_catalogue_has_words_and_a_source() -> None:
     from symbolic_response.appendix.bounds_section import WORDS
 
     assert {*CATALOGUE, "path"} == set(WORDS)
+
+
+FERRY = Path(__file__).parent.parent / "worked_cases" / "twin_ferry" / "network.toml"
+REST = ["E_w=0", "E_i=1/2", "B_b=0", "B_f=0", "B_1=0", "B_2=0"]
+
+
+def ferry_rows(
+    text: str, at: list[str], capsys: pytest.CaptureFixture[str]
+) -> tuple[int, dict[str, dict[str, object]]]:
+    put = [part for value in [*REST, *at] for part in ("--at", value)]
+    status = run(["bound", str(FERRY), text, "--json", "--quiet", *put])
+    rows = json.loads(capsys.readouterr().out)["bounds"]
+    return status, {row["name"]: row for row in rows}
+
+
+def test_a_point_with_irrational_rates(capsys: pytest.CaptureFixture[str]) -> None:
+    """Against floats: rates exp(E - B +- F/2), W p = 0, and a difference quotient."""
+    import math
+
+    import numpy as np
+
+    def log_ratio(barrier: float) -> float:
+        w, e, i = 1.0, math.e, math.exp(0.5)
+        up, down = w * math.exp(2 - barrier), e * math.exp(-2 - barrier)
+        generator = np.array([[-w - up - w, e + down, i], [w + up, -e - down - e, i], [1, 1, 1]])
+        p = np.linalg.solve(generator, [0, 0, 1])
+        return math.log(p[1] / p[0])
+
+    status, rows = ferry_rows(
+        "d ln(p[east]/p[west]) / d barrier[ferry]", ["F=4", "E_e=1"], capsys)
+    assert status == 0 and set(rows) == {"end-pair", "barrier"}
+    expected = abs(log_ratio(1e-5) - log_ratio(-1e-5)) / 2e-5
+    for row in rows.values():
+        (low, high), (below, above) = (
+            [Fraction(x) for x in row[f"{side}_enclosure"]]  # type: ignore[attr-defined]
+            for side in ("left", "right")
+        )
+        assert row["holds"] is True and 0 < high - low < Fraction(1, 10**20)
+        assert abs(float(low) - expected) < 1e-7
+        assert abs(float(below) - math.tanh(1)) < 1e-14 and below <= above
+
+
+def test_identities_and_zeros_at_an_irrational_point(capsys: pytest.CaptureFixture[str]) -> None:
+    status, rows = ferry_rows("d p[east] / d energy[island]", ["F=4", "E_e=1"], capsys)
+    assert status == 0 and rows["energy-covariance"]["holds"] is True
+    status, rows = ferry_rows(
+        "d p[east] / d barrier[ferry]", ["F=0", "E_e=1"], capsys)  # equilibrium: 0 <= 0
+    assert status == 0 and all(row["holds"] is True for row in rows.values())
+    assert rows["barrier"]["left_value"] == "0"
+    assert ferry_rows("p[east]/p[west]", ["F=0", "E_e=1"], capsys)[0] == 3  # equal, not told apart
+
+
+def test_a_false_claim_fails_at_an_irrational_point() -> None:
+    from symbolic_response.bounds.enclose import enclose
+    from symbolic_response.expressions.reader import read_expression
+    from symbolic_response.network import read_network
+
+    analysis = Analysis(read_network(FERRY))
+    (claim,) = claims_for(read_quantity("d ln(p[east]/p[west]) / d barrier[ferry]",
+                                        analysis.network), analysis, "barrier")
+    false = replace(claim, right=(replace(claim.right[0], divisor=5),))
+    at = {name: read_expression(value)
+          for name, value in (text.split("=") for text in [*REST, "F=4", "E_e=1"])}
+    assert enclose(claim, analysis, at).holds is True
+    assert enclose(false, analysis, at).holds is False
+    (identity, _) = claims_for(read_quantity("d p[east] / d energy[island]", analysis.network),
+                               analysis)
+    doubled = replace(identity, right=identity.right * 2)
+    assert enclose(doubled, analysis, at).holds is False
+
+
+def test_messages_say_what_the_catalogue_speaks_of() -> None:
+    analysis = Analysis(RING)
+    for text, words in [
+        ("d current[bind] / d barrier[bind]", "the catalogue speaks of responses"),
+        ("d mean[moving] / d c", "depends on c"),
+        ("d ln mean[q] / d barrier[bind]", "may be negative"),
+    ]:
+        with pytest.raises(QuantityError, match=words):
+            claims_for(read_quantity(text, RING), analysis)
+    with pytest.raises(QuantityError, match="those that apply: parameter, support"):
+        claims_for(read_quantity("d p[A] / d c", RING), analysis, "barrier")
+
+
+def test_help_lists_every_name(capsys: pytest.CaptureFixture[str]) -> None:
+    for verb in ("bound", "certify"):
+        assert run([verb, "--help"]) == 0
+        shown = capsys.readouterr().out.replace(",", " ").split()
+        assert {*CATALOGUE, "path"} <= set(shown)
+
+
+def test_text_names_the_limiting_cycle(capsys: pytest.CaptureFixture[str]) -> None:
+    put = [x for value in [*REST, "F=2*ln(3)", "E_e=2*ln(2)", "E_i=0"][1:] if value != "E_i=1/2"
+           for x in ("--at", value)]
+    ask = ["bound", str(FERRY), "d p[east] / d barrier[ferry]", "--quiet", "--bound", "barrier"]
+    assert run([*ask, "--at", "E_w=0", *put]) == 0
+    out = capsys.readouterr().out
+    assert "cycles through ferry (2), each with its force:" in out
+    assert "limiting cycle for ferry: west -[bridge]-> east -[ferry]-> west, force ln(1/9)" in out

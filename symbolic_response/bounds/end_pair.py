@@ -21,5 +21,5 @@ def end_pair(question: Question) -> Claim | None:
     return Claim(
         "end-pair", question.response, (Term(spread_factor(question.target), EndPair(e)),),
         end_pair_data(e, question.analysis), "any network",
-        "derived here (end-pair theorem)",
+        "derived here; see DEVELOPERS.md, The end-pair theorem",
     )

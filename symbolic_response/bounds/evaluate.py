@@ -18,6 +18,16 @@ from symbolic_response.response.values import Point
 from symbolic_response.topology import Cycle, can_run_against, can_run_along
 
 
+class IrrationalError(EvaluationError):
+    """A side of a claim is not rational at the point."""
+
+    def __init__(self) -> None:
+        super().__init__(
+            "a side of the inequality is not rational at this point; give energies, barriers and"
+            " drives as 2*ln(fraction), so that every rate is rational"
+        )
+
+
 @dataclass(frozen=True, slots=True)
 class Evaluated:
     """A claim at a point: |left|, the terms of the right side, whether it holds."""
@@ -52,7 +62,7 @@ class ClaimPoint:
     def evaluate(self, claim: Claim) -> Evaluated:
         """Return both sides of a claim and the exact verdict.
 
-        Raises EvaluationError where a side is not rational at the point.
+        Raises IrrationalError where a side is not rational at the point.
         """
         left = abs(self.value(claim.left))
         right = tuple(
@@ -98,7 +108,7 @@ class ClaimPoint:
                 return inner_value**exponent.numerator
         exact = self.point.value(node)
         if exact is None:
-            raise EvaluationError("a side of the inequality is not rational at this point")
+            raise IrrationalError
         return exact
 
     # -- forces ----------------------------------------------------------------------------
@@ -148,7 +158,10 @@ class ClaimPoint:
         """Return a directed rate."""
         key = (transition, backward)
         if key not in self._rates:
-            self._rates[key] = self.point.rate(transition, backward)
+            try:
+                self._rates[key] = self.point.rate(transition, backward)
+            except EvaluationError:
+                raise IrrationalError from None
         return self._rates[key]
 
     def _end_pair(self, e: int) -> Fraction | None:

@@ -150,5 +150,5 @@ def support(question: Question) -> Claim | None:
     return Claim(
         "support", question.response, (Term(factor),), {"states": names},
         "the parameter multiplies rates by one common power and changes nothing else",
-        "Owen & Horowitz, Nat. Commun. 14, 1280 (2023), statement from memory",
+        "Owen & Horowitz, Nat. Commun. 14, 1280 (2023)",
     )

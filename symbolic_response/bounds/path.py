@@ -10,7 +10,8 @@ from symbolic_response.response.analysis import Analysis
 from symbolic_response.topology import can_run_path, simple_paths
 
 SOURCE = (
-    "Maes & Netocny 2013; Liang, De Los Rios & Busiello, Phys. Rev. Lett. 132, 228402 (2024)"
+    "Maes & Netocny, Ann. Henri Poincare 14, 1193 (2013);"
+    " Liang, De Los Rios & Busiello, Phys. Rev. Lett. 132, 228402 (2024)"
 )
 
 

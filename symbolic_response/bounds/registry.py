@@ -18,11 +18,11 @@ from symbolic_response.bounds.splitting import (
     splitting_drive,
     splitting_end_pair,
 )
-from symbolic_response.bounds.target import Target, extreme, target_of
+from symbolic_response.bounds.target import Target, depends_on, extreme, may_be_negative, target_of
 from symbolic_response.errors import QuantityError
 from symbolic_response.expressions.names import nearest
 from symbolic_response.expressions.tree import ONE, ZERO, Expression
-from symbolic_response.network.quantities import Response
+from symbolic_response.network.quantities import BySymbol, Response
 from symbolic_response.response.analysis import Analysis
 
 Rule = Callable[[Question], Claim | None]
@@ -40,6 +40,10 @@ CATALOGUE: dict[str, Rule] = {
     "support": support,
 }
 PATH = "path"
+SPEAKS_OF = (
+    "the catalogue speaks of responses d X / d PERTURBATION, X a probability p[A], a set p[A, B], a"
+    " mean, a ratio of two of them or its ln; and, for the path bound, of p[A]/p[B] and its ln"
+)
 BY_RANGE = ("energy-range", "end-pair", "barrier", "drive", "parameter", "support")
 
 
@@ -51,16 +55,32 @@ def claims_for(
     ``only``: the name of one. Raises QuantityError for an unknown name, or if the quantity is
     neither a response of probabilities nor a ratio of two of them.
     """
-    names = [*CATALOGUE, PATH]
-    if only is not None and only not in names:
-        hint = nearest(only, names) or f"; known: {', '.join(names)}"
-        raise QuantityError(f"there is no bound {only!r}{hint}")
     found = applicable(quantity, analysis)
     chosen = tuple(claim for claim in found if only is None or claim.name == only)
-    if not chosen:
-        what = "no bound of the catalogue" if only is None else f"the bound {only!r} does not"
-        raise QuantityError(f"{what} applies to this quantity".replace("not applies", "not apply"))
-    return chosen
+    if chosen:
+        return chosen
+    names = [*CATALOGUE, PATH]
+    those = ", ".join(dict.fromkeys(claim.name for claim in found))
+    applying = f"; those that apply: {those}" if found else f"; {_why_none(quantity, analysis)}"
+    if only is None:
+        raise QuantityError(f"no bound of the catalogue applies to this quantity{applying}")
+    if only not in names:
+        raise QuantityError(f"there is no bound {only!r}{nearest(only, names)}{applying}")
+    raise QuantityError(f"the bound {only!r} does not apply to this quantity{applying}")
+
+
+def _why_none(quantity: Expression, analysis: Analysis) -> str:
+    """Say which hypothesis fails, else what the catalogue speaks of."""
+    if isinstance(quantity, Response):
+        target, by = target_of(quantity.quantity, analysis.network), quantity.perturbation
+        if target is not None and isinstance(by, BySymbol) and depends_on(target, by.name):
+            return f"the observable itself depends on {by.name}, which no bound allows"
+        if target is None and may_be_negative(quantity.quantity, analysis.network):
+            return (
+                "a mean may be negative (or is zero): in a ratio or under ln an observable must be"
+                " certainly not negative in every state"
+            )
+    return SPEAKS_OF
 
 
 def applicable(quantity: Expression, analysis: Analysis) -> list[Claim]:

@@ -65,5 +65,5 @@ def splitting_end_pair(question: Question) -> Claim | None:
     return Claim(
         "splitting-end-pair", question.response, (Term(factor, EndPair(e)),), data,
         "any network; the observable does not depend on the barrier",
-        "derived here (end-pair theorem with splitting weights)",
+        "derived here; see DEVELOPERS.md, The end-pair theorem",
     )

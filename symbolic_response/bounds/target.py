@@ -90,6 +90,15 @@ def _ratio_target(
     return Target(prefactor, top, bottom, above, asked)
 
 
+def may_be_negative(quantity: Expression, network: Network) -> bool:
+    """Return whether a quantity is no target only because a mean in it may be negative or zero."""
+    pair = _ratio(quantity, network) or _logarithm(quantity, network)
+    if pair is None:
+        return False
+    sides = [linear_values(side, network) for side in pair]
+    return all(sides) and not all(_non_negative(side, network) for side in sides if side)
+
+
 def _non_negative(values: Values, network: Network) -> bool:
     signs = [certain_sign(value, network.positive_symbols) for value in values]
     return all(sign in (0, 1) for sign in signs) and any(sign == 1 for sign in signs)

@@ -20,14 +20,27 @@ from symbolic_response.progress import Progress
 @click.command(short_help="The inequalities that limit a response, with their data.")
 @network_argument
 @click.argument("response")
+@click.option("--bound", "only", metavar="NAME", help="Only the inequality of this name.")
 @click.option("--at", multiple=True, metavar="SYMBOL=VALUE",
               help="Give a symbol an exact value; every symbol needs one, or none has.")
 @json_option
 @quiet_option
-def bound(network: str, response: str, at: tuple[str, ...], as_json: bool, quiet: bool) -> int:
+def bound(
+    network: str,
+    response: str,
+    only: str | None,
+    at: tuple[str, ...],
+    as_json: bool,
+    quiet: bool,
+) -> int:
     """Say which inequalities limit a response, what in the network sets the limit, and the source.
 
-    With --at both sides are evaluated and the verdict is exact.
+    With --at both sides are evaluated: exactly where all rates are rational (give energies and
+    drives as 2*ln(fraction)), else by rigorous enclosures.
+
+    \b
+    Names: energy-covariance, energy-range, splitting-end-pair, end-pair,
+      splitting-barrier, barrier, splitting-drive, drive, parameter, support, path
 
     \b
     Example:
@@ -40,7 +53,7 @@ def bound(network: str, response: str, at: tuple[str, ...], as_json: bool, quiet
     values = read_assignments(at, "--at")
     with Progress(quiet) as progress:
         progress.stage(f"bounding {response}")
-        report = make_report(analysis_of(read(network), progress), response, values)
+        report = make_report(analysis_of(read(network), progress), response, values, only)
     click.echo(json.dumps(report_data(report), indent=1) if as_json else report_text(report))
     if report.refuted():
         return REFUTED
@@ -72,6 +85,10 @@ def certify(
     quiet: bool,
 ) -> int:
     """Try every inequality that limits a response at many exact points, and where it is tight.
+
+    \b
+    Names: energy-covariance, energy-range, splitting-end-pair, end-pair,
+      splitting-barrier, barrier, splitting-drive, drive, parameter, support, path
 
     \b
     Example:

@@ -129,6 +129,12 @@ def _derived_text(result: Derived) -> str:
     if result.value is not None and result.value.enclosure is not None:
         low, high = result.value.enclosure
         line += f"\n  between {low}\n      and {high}"
+    elif result.value is not None and result.value.exact is not None:
+        from symbolic_response.bounds.report import LONG, about
+        from symbolic_response.expressions.enclosure import decimal_enclosure
+
+        if len(result.expression) > LONG:
+            line += f"\n  about {about(decimal_enclosure(result.value.expression))}"
     return line
 
 

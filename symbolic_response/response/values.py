@@ -215,7 +215,7 @@ class Point:
         jet = self._symbolic(rate, stack)
         source = transition.second if backward else transition.first
         for place, perturbation in enumerate(stack):
-            weight = _elementary_weight(perturbation, e, backward, source)
+            weight = elementary_weight(perturbation, e, backward, source)
             if weight:
                 factor = list(constant_jet(flint.fmpq(1), len(stack)))
                 factor[1 << place] = flint.fmpq(weight.numerator, weight.denominator)
@@ -337,7 +337,7 @@ def rational_constant(node: Expression) -> Scalar:
     return None if exact is None else flint.fmpq(exact.numerator, exact.denominator)
 
 
-def _elementary_weight(
+def elementary_weight(
     perturbation: Perturbation, e: int, backward: bool, source: int
 ) -> Fraction | None:
     """Return the derivative of ln of a directed rate by an elementary perturbation."""
