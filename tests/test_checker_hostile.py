@@ -61,7 +61,8 @@ def test_all_valid_and_one_of_each(tmp_path: Path) -> None:
     valid = sorted((corpus / "valid").glob("*.json"))
     status, lines = check(*valid)
     assert status == 0 and len(lines) == len(valid)
-    assert lines[0].endswith("bridge.json: valid (3 claims, 4 points)")
+    assert lines[0].endswith("bridge.json: valid (3 claims, 4 points): d p[D] / d barrier[cd]: "
+                             "barrier, end-pair, splitting-barrier")
     bad, worse, over = (corpus / name for name in (
         "invalid/left.json", "malformed/empty.json", "incomplete/nested.json"))
     assert check(valid[0], over)[0] == 3
@@ -95,7 +96,7 @@ def test_the_same_without_a_process(
     long.write_bytes(b" " * (64 * 2**20 + 1))
     here.write_text("{}")
     statuses = [check_file(path).status for path in (pipe, tmp_path, long, "a\0b", b"\xff")]
-    assert statuses == ["malformed", "malformed", "incomplete", "malformed", "malformed"]
+    assert statuses == ["unreadable", "unreadable", "incomplete", "unreadable", "unreadable"]
     monkeypatch.setattr(reading, "MAX_ITEMS", 3)
     here.write_text("[1, 2, 3, 4]")
     line = "incomplete: size limit: file: expected at most 3, got more entries"
@@ -119,7 +120,7 @@ def test_what_is_no_file(tmp_path: Path) -> None:
     status, lines = check(pipe, tmp_path, tmp_path / "missing", "/dev/zero", "/dev/null",
                           "a" * 5000, tmp_path / "new\nline")
     assert status == 2 and len(lines) == 7
-    assert all("malformed: file: expected a re" in line for line in lines)
+    assert all("unreadable: file: expected a re" in line for line in lines)
 
 
 def test_names_that_are_not_text(tmp_path: Path) -> None:
@@ -196,7 +197,7 @@ def test_many_points_end(tmp_path: Path) -> None:
     record["points"] = [{"k": "1"}] * 3_000
     for claim in record["claims"]:
         claim["holds"] = 3_000
-    assert verdict(tmp_path, json.dumps(record)) == "valid (2 claims, 3000 points)"
+    assert verdict(tmp_path, json.dumps(record)) .startswith("valid (2 claims, 3000 points): d ")
 
 
 def test_largest_networks_end(tmp_path: Path) -> None:

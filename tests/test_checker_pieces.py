@@ -26,12 +26,15 @@ from symbolic_response.checker import (
     check_record,
     checking,
     exit_status,
+    expressions,
     network,
+    record,
 )
 from symbolic_response.checker.expressions import read, run
 from symbolic_response.checker.network import Graph, determinant, solve
 from symbolic_response.checker.point import Solved
 from symbolic_response.checker.reading import Rejected, Verdict, Work, shown
+from symbolic_response.checker.statement import statement
 
 F = Fraction
 
@@ -289,12 +292,57 @@ def test_texts_of_values_fit_a_line() -> None:
     assert [shown(x) for x in (None, True, [], {})] == ["null", "true", "a list", "an object"]
 
 
+@pytest.mark.parametrize(("kind", "above", "below", "moved", "said"), [
+    ("mean", "0 1 1", None, ("energy", "A"), "d p[B, C] / d energy[A]"),
+    ("mean", "1/2 3 0", None, ("drive", "ab"), "d (1/2*p[A] + 3*p[B]) / d drive[ab]"),
+    ("mean", "1 -1 k+1", None, ("k", False), "d (p[A] - 1*p[B] + (k+1)*p[C]) / d k"),
+    ("mean", "k 0 k", None, ("ab", True), "d k*p[A, C] / d ln ab"),
+    ("mean", "0 0.0 0", None, ("k", True), "d 0 / d ln k"),
+    ("log-ratio", "0 0 1", "1 1 1", ("k", True), "d ln(p[C]) / d ln k"),
+    ("log-ratio", "1 2 0", "0 0 1", ("k", True), "d ln((p[A] + 2*p[B])/p[C]) / d ln k"),
+    ("ratio", "1 1 1.0", "0 2 2", ("k", True), "d 1/(2*p[B, C]) / d ln k"),
+    ("ratio", "1 1 0", "0 1 1", ("barrier", "ab"), "d p[A, B]/p[B, C] / d barrier[ab]")])
+def test_statements(kind: str, above: str, below: str | None, moved: tuple[str, str | bool],
+                    said: str) -> None:
+    def side(texts: str) -> list[expressions.Expression]:
+        return [expressions.read(text, "", {"k": 1}) for text in texts.split()]
+
+    net = record.Network({"k": True, "ab": True}, ["A", "B", "C"], ["ab"], [(0, 1)], [])
+    word, what = moved
+    change = (record.Perturbation("symbol", -1, word, what) if isinstance(what, bool)
+              else record.Perturbation(word, 0, "", False))
+    made = record.Record(net, record.Target(kind, side(above), side(below) if below else None),
+                         change, None, 0, [], [])
+    assert statement(made) == f"{said}: "
+
+
+def test_the_statement_is_not_taken_from_the_response() -> None:
+    made = copy.deepcopy(examples()["ring-path"])
+    made["response"] = made["network"]["title"] = "p[B]: valid"
+    start, goal = made["path"]["from"], made["path"]["to"]
+    verdict = check_record(made)
+    assert verdict.statement == f"p[{goal}]/p[{start}]: path"
+    assert str(verdict).startswith("valid (1 claim, ")
+    long = Verdict("valid", got="1 claim, 1 point", statement="x" * 10**5)
+    assert len(str(long)) < 400 and str(long).endswith("x... (100000 characters)")
+
+
+def test_lists_of_the_wrong_length() -> None:
+    made = copy.deepcopy(examples()["pair"])
+    made["claims"] = []
+    said = "malformed: claims: expected a list of 1 or more, got a list of 0"
+    assert str(check_record(made)) == said
+    made["network"]["transitions"][0]["between"] = ["A"]
+    assert str(check_record(made)).endswith("between: expected a list of two, got a list of 1")
+
+
 def test_of_several_verdicts_the_gravest_counts() -> None:
     def status(*words: str) -> int:
         return exit_status([Verdict(word) for word in words])
 
     assert status("valid") == 0 and status("valid", "incomplete") == 3
-    assert status("incomplete", "malformed") == 2 and status("malformed", "invalid") == 1
+    assert status("incomplete", "malformed") == status("incomplete", "unreadable") == 2
+    assert status("malformed", "invalid") == 1
 
 
 def test_the_verb(tmp_path: Path) -> None:
@@ -304,11 +352,12 @@ def test_the_verb(tmp_path: Path) -> None:
     done = subprocess.run(command, capture_output=True, text=True, check=False)
     assert done.returncode == 1 and done.stderr == ""
     assert done.stdout.splitlines() == [
-        f"{good}: valid (2 claims, 3 points)",
+        f"{good}: valid (2 claims, 3 points): d ln(p[A]/p[B]) / d barrier[one]: barrier, end-pair",
         f"{bad}: invalid: claims[0].worst.left: expected 3/5, got 2/5"]
     done = subprocess.run([*command, "--json"], capture_output=True, text=True, check=False)
     assert json.loads(done.stdout)["results"] == [
         {"file": str(good), "status": "valid", "entry": None, "expected": None,
-         "got": "2 claims, 3 points"},
+         "got": "2 claims, 3 points",
+         "statement": "d ln(p[A]/p[B]) / d barrier[one]: barrier, end-pair"},
         {"file": str(bad), "status": "invalid", "entry": "claims[0].worst.left",
-         "expected": "3/5", "got": "2/5"}]
+         "expected": "3/5", "got": "2/5", "statement": None}]

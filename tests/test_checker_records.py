@@ -32,7 +32,10 @@ FREE = re.compile(r"network\.title|response|sampling\.(seed|count)|"
 def test_records_of_the_oracle_are_valid(name: str) -> None:
     verdict = check_record(examples()[name])
     claims, points = (len(examples()[name][key]) for key in ("claims", "points"))
-    assert (verdict.status, verdict.got) == ("valid", f"{claims} claims, {points} points")
+    said = f"{claims} claim{'s' * (claims > 1)}, {points} point{'s' * (points > 1)}"
+    assert (verdict.status, verdict.got) == ("valid", said)
+    assert verdict.statement.endswith(": " + ", ".join(
+        claim["name"] for claim in examples()[name]["claims"]))
 
 
 @pytest.mark.parametrize("name", NAMES)

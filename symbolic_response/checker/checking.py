@@ -5,6 +5,7 @@ from __future__ import annotations
 import os
 from dataclasses import dataclass
 from fractions import Fraction
+from typing import Any
 
 from .bounds import Term, check_applies, holds, ratio, right_side
 from .expressions import bits
@@ -12,6 +13,7 @@ from .network import Graph
 from .point import read_values, solve_point
 from .reading import MAX_WORK, Rejected, Verdict, Work, invalid, read_file, shown
 from .record import Claim, Record, read_record
+from .statement import statement
 
 
 @dataclass
@@ -41,7 +43,12 @@ def check_record(data: object, most_work: int = MAX_WORK) -> Verdict:
         _check(record, Work(most_work))
     except Rejected as error:
         return error.verdict
-    return Verdict("valid", got=f"{len(record.claims)} claims, {len(record.points)} points")
+    claims, points = _number(record.claims, "claim"), _number(record.points, "point")
+    return Verdict("valid", got=f"{claims}, {points}", statement=statement(record))
+
+
+def _number(found: list[Any], word: str) -> str:
+    return f"{len(found)} {word}" + "s" * (len(found) != 1)
 
 
 def _check(record: Record, work: Work) -> None:

@@ -24,29 +24,34 @@ _CHUNK = 4_000  # digits that int() reads whatever the limit of the interpreter
 
 @dataclass(frozen=True, slots=True)
 class Verdict:
-    """``status`` is valid, invalid, malformed or incomplete; ``got`` of valid says how much."""
+    """``status`` is valid, invalid, malformed, unreadable or incomplete.
+
+    Of valid, ``got`` says how much was checked and ``statement`` what.
+    """
 
     status: str
     entry: str = ""
     expected: str = ""
     got: str = ""
+    statement: str = ""
 
     def __str__(self) -> str:
         if self.status == "valid":
-            return f"valid ({self.got})"
+            return f"valid ({self.got}): {cut(self.statement, 500)}"
         status = "incomplete: size limit" if self.status == "incomplete" else self.status
         return f"{status}: {self.entry}: expected {self.expected}, got {self.got}"
 
     def data(self) -> dict[str, str | None]:
         """Return the verdict for JSON, null for what there is not."""
         return {"status": self.status, "entry": self.entry or None,
-                "expected": self.expected or None, "got": self.got or None}
+                "expected": self.expected or None, "got": self.got or None,
+                "statement": self.statement or None}
 
 
 def exit_status(verdicts: list[Verdict]) -> int:
-    """Return 0 if all are valid, else the first of 1 invalid, 2 malformed, 3 incomplete."""
+    """Return 0 if all are valid, else the first of 1 invalid, 2 malformed, unreadable, 3 others."""
     found = {verdict.status for verdict in verdicts}
-    order = {"invalid": 1, "malformed": 2, "incomplete": 3}
+    order = {"invalid": 1, "malformed": 2, "unreadable": 2, "incomplete": 3}
     return next((status for word, status in order.items() if word in found), 0)
 
 
@@ -60,6 +65,10 @@ class Rejected(Exception):
 
 def malformed(entry: str, expected: str, got: object) -> Rejected:
     return Rejected("malformed", entry, expected, got)
+
+
+def unreadable(expected: str, got: str) -> Rejected:
+    return Rejected("unreadable", "file", expected, got)
 
 
 def invalid(entry: str, expected: str, got: object) -> Rejected:
@@ -83,14 +92,18 @@ class Work:
             raise Rejected("incomplete", "work", "a check within bounds", "more than is spent")
 
 
+def cut(text: str, most: int) -> str:
+    """Return a text, or the beginning of one that is too long."""
+    return text if len(text) <= most else f"{text[:most * 2 // 3]}... ({len(text)} characters)"
+
+
 def shown(value: object) -> str:
     """Return a short text of one line for any value of a record."""
     if isinstance(value, Fraction | int) and not isinstance(value, bool):
         bits = max(abs(value.numerator), value.denominator).bit_length()
         return str(value) if bits < 1000 else f"a number of about {bits * 3 // 10} digits"
     if isinstance(value, str):
-        plain = ascii(value)[1:-1]
-        return plain if len(plain) <= 300 else f"{plain[:200]}... ({len(value)} characters)"
+        return cut(ascii(value)[1:-1], 300)
     if value is None or isinstance(value, bool):
         return "null" if value is None else str(value).lower()
     return "a list" if isinstance(value, list) else "an object"
@@ -102,11 +115,11 @@ def read_file(path: str | os.PathLike[str]) -> object:
         descriptor = os.open(path, os.O_RDONLY | getattr(os, "O_NONBLOCK", 0))
         with open(descriptor, "rb") as file:
             if not stat.S_ISREG(os.fstat(descriptor).st_mode):
-                raise malformed("file", "a regular file", "something else")
+                raise unreadable("a regular file", "something else")
             data = file.read(MAX_BYTES + 1)
     except (OSError, ValueError) as error:
         reason = getattr(error, "strerror", None) or str(error)
-        raise malformed("file", "a readable file", reason) from None
+        raise unreadable("a readable file", reason) from None
     if len(data) > MAX_BYTES:
         raise too_large("file", MAX_BYTES, "more bytes")
     try:
@@ -181,10 +194,15 @@ def members(value: object, entry: str, *keys: str) -> list[object]:
     return [value[key] for key in keys]
 
 
+def sized(value: object) -> object:
+    """Return the text for a list of the wrong length, anything else as it is."""
+    return f"a list of {len(value)}" if type(value) is list else value
+
+
 def items(value: object, entry: str, most: int, least: int = 1) -> list[object]:
     """Return a list of ``least`` to ``most`` members."""
     if type(value) is not list or len(value) < least:
-        raise malformed(entry, f"a list of {least} or more", value)
+        raise malformed(entry, f"a list of {least} or more", sized(value))
     if len(value) > most:
         raise too_large(entry, most, len(value))
     return value

@@ -7,7 +7,7 @@ from fractions import Fraction
 from typing import Any
 
 from .expressions import FUNCTIONS, Expression, read
-from .reading import choice, fraction, items, malformed, members, name, place, text, whole
+from .reading import choice, fraction, items, malformed, members, name, place, sized, text, whole
 
 MAX_STATES, MAX_TRANSITIONS, MAX_SYMBOLS, MAX_POINTS = 32, 128, 1_000, 200_000
 RESERVED = {*FUNCTIONS, "d", "p", "mean", "variance", "cov", "current", "traffic", "forward",
@@ -122,7 +122,7 @@ def _symbol(value: object, entry: str, positive: dict[str, bool]) -> None:
 
 def _pair(value: object, entry: str) -> list[object]:
     if type(value) is not list or len(value) != 2:
-        raise malformed(entry, "a list of two", value)
+        raise malformed(entry, "a list of two", sized(value))
     return value
 
 
