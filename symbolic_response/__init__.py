@@ -13,8 +13,10 @@ from typing import TYPE_CHECKING, Any
 
 if TYPE_CHECKING:
     from symbolic_response.appendix import write_appendix
+    from symbolic_response.bounds.report import bound
     from symbolic_response.certificates.certify import Certificate, Refutation, certify
     from symbolic_response.certificates.record import write_certificate
+    from symbolic_response.checker import check_file as recheck
     from symbolic_response.network import (
         Barrier,
         Network,
@@ -36,6 +38,8 @@ _HOMES = {
     "write_appendix": "appendix",
     **dict.fromkeys(("Certificate", "Refutation", "certify"), "certificates.certify"),
     "write_certificate": "certificates.record",
+    "bound": "bounds.report",
+    "recheck": "checker",
     **dict.fromkeys(
         ("Barrier", "Network", "Rates", "build_network", "from_generator_matrix", "from_networkx",
          "generator_matrix", "read_network", "read_network_text", "to_networkx",
@@ -57,6 +61,7 @@ __all__ = [
     "Refutation",
     "Survey",
     "Value",
+    "bound",
     "build_network",
     "certify",
     "derive",
@@ -65,6 +70,7 @@ __all__ = [
     "generator_matrix",
     "read_network",
     "read_network_text",
+    "recheck",
     "survey",
     "to_networkx",
     "with_substitution",
@@ -77,7 +83,8 @@ def __getattr__(name: str) -> Any:
     """Import a public name where it is first used, so that starting up stays quick."""
     if name not in _HOMES:
         raise AttributeError(f"module {__name__!r} has no attribute {name!r}")
-    return getattr(import_module(f"{__name__}.{_HOMES[name]}"), name)
+    inner = {"recheck": "check_file"}.get(name, name)
+    return getattr(import_module(f"{__name__}.{_HOMES[name]}"), inner)
 
 
 def __dir__() -> list[str]:

@@ -57,7 +57,7 @@ def test_the_network_file_of_the_readme_is_read(tmp_path: Path) -> None:
     from symbolic_response.network import read_network_text
 
     (text,) = re.findall(r"```toml\n(.*?)```", README, re.DOTALL)
-    assert read_network_text(text).title == "Three-state rectifier"
+    assert read_network_text(text).title == "Two-state rectifier"
 
 
 def test_there_are_exactly_two_set_up_commands() -> None:

@@ -8,6 +8,7 @@ from symbolic_response.appendix.formulas import filled
 from symbolic_response.appendix.paper import Paper
 from symbolic_response.bounds.claim import Claim, CycleMaximum, EndPair, OneCycle, Term
 from symbolic_response.bounds.registry import applicable
+from symbolic_response.bounds.sides import force_side
 from symbolic_response.bounds.target import Absolute, Extreme
 from symbolic_response.bounds.topological import cycles_through
 from symbolic_response.expressions.breaking import (
@@ -96,6 +97,9 @@ def _definitions(paper: Paper, claims: Sequence[Claim]) -> str:
                     r"state and not its second, $S$ and the other states each being connected; "
                     r"$\mathrm{Cov}(q, 1_S) = \langle q 1_S \rangle - \langle q \rangle "
                     r"@probability@_S$.")
+    if any("range" in claim.data for claim in claims):
+        text.append("Where the range of an observable limits its response, its values are rescaled "
+                    "affinely to $[0, 1]$.")
     if any(claim.name in ("parameter", "support") for claim in claims):
         text.append("A parameter is resolved into energies, which change all rates out of a state "
                     "alike, barriers, and single rates.")
@@ -107,8 +111,9 @@ def _group(paper: Paper, quantity: Expression, claims: Sequence[Claim]) -> str:
     words: list[str] = []
     for claim in claims:
         equation = _equation(paper, claim)
-        if equation in equations:
-            words[equations.index(equation)] += f", or {_cited(claim)}"
+        alike = [place for place, other in enumerate(equations) if _same(equation, other)]
+        if alike:
+            words[alike[0]] += f", or {_cited(claim)}"
             continue
         equations.append(equation)
         words.append(_cited(claim))
@@ -118,6 +123,12 @@ def _group(paper: Paper, quantity: Expression, claims: Sequence[Claim]) -> str:
         align(equations, paper.width),
         _data(paper, claims),
     ])
+
+
+def _same(one: Equation, other: Equation) -> bool:
+    """Return whether two inequalities are the same up to the order of their factors."""
+    parts = [sorted(" ".join(piece.body for piece in e.pieces).split()) for e in (one, other)]
+    return parts[0] == parts[1] and one.relation == other.relation
 
 
 def _equation(paper: Paper, claim: Claim) -> Equation:
@@ -179,7 +190,7 @@ def _factors(paper: Paper, term: Term) -> list[str]:
         printed = [side_latex(paper, multiply([part])) for part in parts]
         printed = [f"({text})" if isinstance(part, Sum) else text
                    for part, text in zip(parts, printed, strict=True)]
-    if term.force is None:
+    if term.force is None or force_side(term.force, paper.analysis) is None:
         return printed
     tanh = rf"\tanh \frac{{{_force(paper, term.force)}}}{{{term.divisor}}}"
     if plain == "1":
@@ -218,9 +229,7 @@ def _leaf(paper: Paper, part: Expression) -> str | None:
         case Extreme("max", parts) if _covariance_of(parts) is not None:
             observable = _covariance_of(parts)
             assert observable is not None
-            inner = side_latex(paper, observable).replace(r"\langle ", "").replace(
-                r" \rangle", "")
-            return rf"\max_{{S}} |\mathrm{{Cov}}({inner}, 1_S)|"
+            return rf"\max_{{S}} |\mathrm{{Cov}}({_function(paper, observable)}, 1_S)|"
         case Extreme(name, parts):
             shown = ", ".join(side_latex(paper, inner) for inner in parts)
             return rf"\{name}\{{{shown}\}}"
@@ -229,6 +238,14 @@ def _leaf(paper: Paper, part: Expression) -> str | None:
         case Symbol() | Number():
             return None
     return quantity_in(paper.notation, part)
+
+
+def _function(paper: Paper, mean: Expression) -> str:
+    """Return the function of the state whose mean is given: 1_A for a probability."""
+    if isinstance(mean, Probability):
+        inside = ",".join(paper.notation.states[k] for k in mean.states)
+        return f"1_{{{inside}}}" if len(mean.states) == 1 else rf"1_{{\{{{inside}\}}}}"
+    return side_latex(paper, mean).replace(r"\langle ", "").replace(r" \rangle", "")
 
 
 def _covariance_of(parts: Sequence[Expression]) -> Expression | None:
@@ -246,9 +263,6 @@ def _covariance_of(parts: Sequence[Expression]) -> Expression | None:
 def _data(paper: Paper, claims: Sequence[Claim]) -> str:
     """Return which cycles and splittings compete, once for each transition."""
     sentences: list[str] = []
-    if any("range" in claim.data for claim in claims):
-        sentences.append("The values of the observable are rescaled affinely to 0..1 where its "
-                         "range limits the response.")
     for claim in claims:
         for term in claim.right:
             if isinstance(term.force, CycleMaximum):

@@ -116,6 +116,7 @@ def _preamble(network: Network, width: float) -> str:
 \usepackage{{array,booktabs,longtable}}
 {geometry}\allowdisplaybreaks
 \setlength{{\emergencystretch}}{{0.3\textwidth}}
+\renewcommand{{\arraystretch}}{{1.2}}
 \begin{{document}}
 \begin{{center}}
 {{\Large {escaped(network.title)}\par}}

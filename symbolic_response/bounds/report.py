@@ -31,9 +31,16 @@ from symbolic_response.expressions.tree import (
     power,
     substitute,
 )
+from symbolic_response.network.model import Network
 from symbolic_response.network.quantity_reader import read_quantity
-from symbolic_response.response.analysis import Analysis
-from symbolic_response.response.deriving import check_values, derive_quantity, gathered_logarithm
+from symbolic_response.response.analysis import Analysis, as_analysis
+from symbolic_response.response.deriving import (
+    Given,
+    check_values,
+    derive_quantity,
+    gathered_logarithm,
+    given,
+)
 from symbolic_response.response.forces import force_of
 from symbolic_response.response.survey import cycle_path, force_text
 from symbolic_response.response.values import NO_SYMBOLS, Point
@@ -79,9 +86,9 @@ class BoundReport:
 
 
 def bound(
-    analysis: Analysis,
+    subject: Network | Analysis,
     text: str,
-    at: Mapping[str, Expression] | None = None,
+    at: Mapping[str, Given] | None = None,
     only: str | None = None,
 ) -> BoundReport:
     """Return every inequality of the catalogue that applies to a response.
@@ -89,10 +96,11 @@ def bound(
     ``at`` gives every symbol an exact value, or is left out; ``only`` names one inequality.
     Raises QuantityError, AssignmentError, EvaluationError, SizeLimitError.
     """
+    analysis = as_analysis(subject)
     network = analysis.network
     quantity = read_quantity(text, network)
     claims = claims_for(quantity, analysis, only)
-    values = dict(at or {})
+    values = given(at)
     if values:
         check_values(values, network)
         missing = [entry.name for entry in network.symbols if entry.name not in values]

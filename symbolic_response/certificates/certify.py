@@ -32,7 +32,7 @@ from symbolic_response.expressions.tree import Expression, Function
 from symbolic_response.network.model import Network
 from symbolic_response.network.quantities import Response
 from symbolic_response.network.quantity_reader import read_quantity
-from symbolic_response.response.analysis import Analysis
+from symbolic_response.response.analysis import Analysis, as_analysis
 
 COUNT = 1000
 STRETCH = 125
@@ -94,7 +94,7 @@ def values_text(values: Values) -> str:
 
 
 def certify(
-    analysis: Analysis,
+    subject: Network | Analysis,
     text: str,
     *,
     only: str | None = None,
@@ -112,6 +112,7 @@ def certify(
     EvaluationError (no point within the ranges), UndecidedError, SizeLimitError.
     """
     check_seed(seed)
+    analysis = as_analysis(subject)
     quantity = read_quantity(text, analysis.network)
     claims = claims_for(quantity, analysis, only)
     if not isinstance(quantity, Response):

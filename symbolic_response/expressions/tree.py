@@ -129,7 +129,9 @@ def multiply(factors: Iterable[Expression]) -> Expression:
 
 
 def negate(term: Expression) -> Expression:
-    """Return minus ``term``."""
+    """Return minus ``term``, a sum term by term."""
+    if isinstance(term, Sum):
+        return add([negate(part) for part in term.terms])
     return multiply([Number(Fraction(-1)), term])
 
 

@@ -212,6 +212,11 @@ class Analysis:
         return tuple(fundamental_cycles(self.graph))
 
 
+def as_analysis(subject: Network | Analysis) -> Analysis:
+    """Return the analysis itself, or a new one of a network."""
+    return subject if isinstance(subject, Analysis) else Analysis(subject)
+
+
 def graph_of(network: Network) -> Graph:
     """Return the graph of a network."""
     return Graph(

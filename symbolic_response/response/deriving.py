@@ -40,7 +40,7 @@ from symbolic_response.network.model import Network
 from symbolic_response.network.quantities import BySymbol, Response
 from symbolic_response.network.quantity_reader import read_quantity
 from symbolic_response.network.substitution import with_substitution
-from symbolic_response.response.analysis import Analysis
+from symbolic_response.response.analysis import Analysis, as_analysis
 from symbolic_response.response.closed_form import ClosedForm, closed_form
 from symbolic_response.response.existence import require_existence, require_inner_existence
 from symbolic_response.response.placing import placed, placed_as_it_stands
@@ -149,16 +149,21 @@ def derive(
     >>> derive(pair, "d p[B] / d ln c", at={"c": "1/2", "k": 3}).value.exact
     Fraction(2, 9)
     """
-    analysis = subject if isinstance(subject, Analysis) else Analysis(subject)
+    analysis = as_analysis(subject)
     quantity = read_quantity(text, analysis.network)
     if put:
-        changes = {name: _given(name, value) for name, value in put.items()}
+        changes = given(put)
         analysis = Analysis(with_substitution(analysis.network, changes))
         quantity = replaced(quantity, changes, text)
-    values = {name: _given(name, value) for name, value in (at or {}).items()}
+    values = given(at)
     if put:
         check_not_replaced(values, changes, analysis.network)
     return derive_quantity(analysis, quantity, text, values)
+
+
+def given(values: Mapping[str, Given] | None) -> dict[str, Expression]:
+    """Return values or expressions of symbols, given as text or exact numbers, as trees."""
+    return {name: _given(name, value) for name, value in (values or {}).items()}
 
 
 def _given(name: str, value: Given) -> Expression:

@@ -8,7 +8,7 @@ from fractions import Fraction
 from symbolic_response.errors import SizeLimitError
 from symbolic_response.expressions.text import expression_text, fraction_text
 from symbolic_response.network.model import Network
-from symbolic_response.response.analysis import Analysis
+from symbolic_response.response.analysis import Analysis, as_analysis
 from symbolic_response.response.forces import (
     CycleForce,
     detailed_balance_holds,
@@ -77,8 +77,9 @@ def cycle_path(cycle: Cycle, network: Network) -> str:
     return "".join(steps)
 
 
-def survey(analysis: Analysis) -> Survey:
+def survey(subject: Network | Analysis) -> Survey:
     """Return what a network is; what exceeds a limit is left out and named in ``beyond``."""
+    analysis = as_analysis(subject)
     graph, beyond = analysis.graph, []
     cycle_forces = independent = cuts = None
     relations: tuple[ForceRelation, ...] = ()
