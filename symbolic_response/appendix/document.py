@@ -26,6 +26,7 @@ from symbolic_response.response.quantity_latex import notation_of
 
 TEXT_WIDTH = 345.0
 
+# Volumes and pages recalled, not checked against the papers: kirchhoff, hill, chaiken, maes.
 SOURCES = {
     "kirchhoff": r"G. Kirchhoff, Ann. Phys. Chem. \textbf{72}, 497 (1847).",
     "hill": r"T. L. Hill, J. Theor. Biol. \textbf{10}, 442 (1966).",
