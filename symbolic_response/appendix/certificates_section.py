@@ -49,8 +49,8 @@ def certificates_section(
         if digests:
             text = record_text(record_of(found, paper.analysis))
             digest = hashlib.sha256(text.encode()).hexdigest()
-            hashes.append(f"{_shown(paper, quantity, number)}: \\texttt{{{digest[:32]}}} "
-                          f"\\texttt{{{digest[32:]}}}.")
+            hashes.append(f"{_shown(paper, quantity, number)} & \\texttt{{{digest[:32]}}} "
+                          f"\\texttt{{{digest[32:]}}}")
     if not rows and not left_out:
         return ""
     return "\n\n".join(part for part in [
@@ -100,4 +100,7 @@ def _left_out(names: Sequence[str]) -> str:
 
 
 def _digests(hashes: Sequence[str]) -> str:
-    return ("SHA-256 digests of the certificate records. " + " ".join(hashes)) if hashes else ""
+    if not hashes:
+        return ""
+    columns = r"l>{\raggedright\arraybackslash}p{0.52\linewidth}"
+    return table(columns, "Quantity & SHA-256 of the certificate record", hashes)
