@@ -104,9 +104,14 @@ def _power(node: Any) -> Expression:
     import sympy
 
     base, exponent = node.args
+    if exponent.is_number and not isinstance(exponent, sympy.Rational) and exponent.has(
+        sympy.Float, sympy.zoo, sympy.oo, sympy.nan
+    ):
+        raise ExpressionError("a SymPy power has an exponent that is not exact; write a Rational")
     if not isinstance(exponent, sympy.Rational) or not exponent.is_finite:
-        raise ExpressionError("a SymPy power has an exponent that is not a rational number; "
-                              "write exp(n*log(x)) for x to the power n")
+        # SymPy itself writes exp(n*log(x)) as x**n
+        return function("exp", multiply([_from_sympy(exponent),
+                                         function("ln", _from_sympy(base))]))
     exact = _fraction(exponent)
     if abs(exact) > MAX_EXPONENT or exact.denominator > MAX_EXPONENT:
         raise ExpressionError(f"a SymPy power has an exponent larger than {MAX_EXPONENT}, in size "

@@ -129,9 +129,7 @@ def multiply(factors: Iterable[Expression]) -> Expression:
 
 
 def negate(term: Expression) -> Expression:
-    """Return minus ``term``, a sum term by term."""
-    if isinstance(term, Sum):
-        return add([negate(part) for part in term.terms])
+    """Return minus ``term``."""
     return multiply([Number(Fraction(-1)), term])
 
 

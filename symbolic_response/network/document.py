@@ -15,6 +15,7 @@ from symbolic_response.expressions.tree import (
     ZERO,
     Expression,
     Number,
+    Sum,
     add,
     divide,
     function,
@@ -90,11 +91,16 @@ def energy_rates(
     first: Expression, second: Expression, barrier: Expression, drive: Expression | None
 ) -> tuple[Expression, Expression]:
     """Return exp(E_first - B + F/2) and exp(E_second - B - F/2); a drive of None is 0."""
+    raised = _negated_terms(barrier)
     half = ZERO if drive is None else divide(drive, number(2))
     return (
-        function("exp", add([first, negate(barrier), half])),
-        function("exp", add([second, negate(barrier), negate(half)])),
+        function("exp", add([first, *raised, half])),
+        function("exp", add([second, *raised, *_negated_terms(half)])),
     )
+
+
+def _negated_terms(node: Expression) -> list[Expression]:
+    return [negate(term) for term in (node.terms if isinstance(node, Sum) else (node,))]
 
 
 def _tables(document: Table, section: str) -> Iterable[tuple[str, object]]:
