@@ -109,7 +109,7 @@ def _power(node: Any) -> Expression:
     ):
         raise ExpressionError("a SymPy power has an exponent that is not exact; write a Rational")
     if not isinstance(exponent, sympy.Rational) or not exponent.is_finite:
-        # SymPy itself writes exp(n*log(x)) as x**n
+        # SymPy itself writes exp(exp(2)*log(x)) as x**exp(2)
         return function("exp", multiply([_from_sympy(exponent),
                                          function("ln", _from_sympy(base))]))
     exact = _fraction(exponent)
