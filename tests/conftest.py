@@ -6,6 +6,12 @@ import os
 import shutil
 
 import pytest
+from hypothesis import settings
+
+# Random examples are new at every run, except in CI, where a run must be repeatable.
+settings.register_profile("repeatable", derandomize=True)
+if os.environ.get("CI"):
+    settings.load_profile("repeatable")
 
 
 @pytest.fixture
