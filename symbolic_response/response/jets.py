@@ -24,11 +24,6 @@ def constant_jet(value: Scalar, order: int) -> Jet:
     return (value, *[flint.fmpq(0)] * (2**order - 1))
 
 
-def raised_order(jet: Jet) -> Jet:
-    """Return the same jet with one more eps, on which it does not depend."""
-    return (*jet, *[flint.fmpq(0)] * len(jet))
-
-
 def scalar_product(a: Scalar, b: Scalar) -> Scalar:
     """Return a product in which zero wins over an unknown factor."""
     if a is None:
