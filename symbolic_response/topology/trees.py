@@ -175,10 +175,13 @@ def _join(parts: list[_Partial]) -> _Partial:
     )
 
 
-def rooted(trees: SpanningTrees, root: int) -> tuple[Masks, Masks]:
+def rooted(
+    trees: SpanningTrees, root: int, allowed_back: int | None = None
+) -> tuple[Masks, Masks]:
     """Spanning trees directed towards ``root``: (forward uint64[T_k], backward uint64[T_k]).
 
-    Only those that run no one-way transition backwards, in the order of ``trees.masks``.
+    Only those that run no one-way transition backwards (other than ``allowed_back``), in the order
+    of ``trees.masks``.
     N_k = sum over them of the product of their rates; T_k = ``count_rooted_trees(graph, root)``.
 
     >>> ring = Graph(3, ((0, 1), (1, 2), (2, 0)), (False, False, True))
@@ -188,7 +191,10 @@ def rooted(trees: SpanningTrees, root: int) -> tuple[Masks, Masks]:
     """
     forward = trees.forward[root]
     backward = trees.masks & ~forward
-    allowed = (backward & _one_way_mask(trees.graph)) == 0
+    barred = _one_way_mask(trees.graph)
+    if allowed_back is not None:
+        barred &= ~np.uint64(1 << allowed_back)
+    allowed = (backward & barred) == 0
     return forward[allowed], backward[allowed]
 
 

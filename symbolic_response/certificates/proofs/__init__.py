@@ -1,0 +1,1 @@
+"""Proofs for all positive rates: finite exact data from which inequalities follow."""
