@@ -14,7 +14,8 @@ from typing import TYPE_CHECKING, Any
 if TYPE_CHECKING:
     from symbolic_response.appendix import write_appendix
     from symbolic_response.bounds.report import bound
-    from symbolic_response.certificates.certify import Certificate, Refutation, certify
+    from symbolic_response.certificates.certify import Certificate, certify
+    from symbolic_response.certificates.points import Refutation
     from symbolic_response.certificates.record import write_certificate
     from symbolic_response.checker import check_file as recheck
     from symbolic_response.network import (
@@ -36,7 +37,8 @@ if TYPE_CHECKING:
 
 _HOMES = {
     "write_appendix": "appendix",
-    **dict.fromkeys(("Certificate", "Refutation", "certify"), "certificates.certify"),
+    **dict.fromkeys(("Certificate", "certify"), "certificates.certify"),
+    "Refutation": "certificates.points",
     "write_certificate": "certificates.record",
     "bound": "bounds.report",
     "recheck": "checker",

@@ -17,7 +17,8 @@ import pytest
 from symbolic_response.bounds import registry
 from symbolic_response.bounds.barrier import barrier
 from symbolic_response.bounds.claim import Claim, CycleMaximum, Question, Term
-from symbolic_response.certificates.certify import Certificate, certify, certify_claims
+from symbolic_response.bounds.curves import Tanh
+from symbolic_response.certificates.points import PointCertificate, certify_claims, certify_points
 from symbolic_response.certificates.record import record_of, record_text, write_certificate
 from symbolic_response.certificates.report import certificate_text, ratio_text
 from symbolic_response.checker import check_file
@@ -39,7 +40,7 @@ TIDE = Path(__file__).parent.parent / "worked_cases" / "tide_lamp" / "network.to
 BARRIER = "d ln(p[s1]/p[s2]) / d barrier[e1_2]"
 
 
-def text_of(made: Certificate, analysis: Analysis) -> str:
+def text_of(made: PointCertificate, analysis: Analysis) -> str:
     return record_text(record_of(made, analysis))
 
 
@@ -49,14 +50,14 @@ def test_the_same_seed_gives_the_same_bytes(count: int) -> None:
     texts = []
     for workers in (1, 2, 1):
         analysis = Analysis(network)
-        texts.append(text_of(certify(analysis, BARRIER, count=count, workers=workers), analysis))
+        texts.append(text_of(certify_points(analysis, BARRIER, count=count, workers=workers), analysis))
     assert texts[0] == texts[1] == texts[2]
     analysis = Analysis(network)
     with ThreadPoolExecutor(1) as executor:
-        made = certify(analysis, BARRIER, count=count, executor=executor)
+        made = certify_points(analysis, BARRIER, count=count, executor=executor)
         assert executor.submit(int).result() == 0  # left running
     assert text_of(made, analysis) == texts[0]
-    other = text_of(certify(analysis, BARRIER, count=count, seed="1", workers=1), analysis)
+    other = text_of(certify_points(analysis, BARRIER, count=count, seed="1", workers=1), analysis)
     assert json.loads(other)["points"] != json.loads(texts[0])["points"]
 
 
@@ -91,7 +92,7 @@ CASES = [
 @pytest.mark.parametrize(("name", "text"), CASES)
 def test_records_pass_the_independent_check(name: str, text: str, tmp_path: Path) -> None:
     analysis = Analysis(NETWORKS[name])
-    made = certify(analysis, text, count=12, workers=1)
+    made = certify_points(analysis, text, count=12, workers=1)
     assert made.refuted is None and len(made.claims) >= 1
     file = tmp_path / "record.json"
     write_certificate(made, analysis, file)
@@ -104,7 +105,7 @@ def test_records_pass_the_independent_check(name: str, text: str, tmp_path: Path
 
 def test_a_changed_record_is_not_accepted(tmp_path: Path) -> None:
     analysis = Analysis(NETWORKS["tide"])
-    record: Any = record_of(certify(analysis, CASES[0][1], count=6, workers=1), analysis)
+    record: Any = record_of(certify_points(analysis, CASES[0][1], count=6, workers=1), analysis)
     file = tmp_path / "record.json"
     record["claims"][0]["worst"]["left"] = "1"
     file.write_text(record_text(record), encoding="utf-8")
@@ -113,7 +114,7 @@ def test_a_changed_record_is_not_accepted(tmp_path: Path) -> None:
 
 def test_the_record_is_as_specified() -> None:
     analysis = Analysis(NETWORKS["energy"])
-    made = certify(analysis, "d p[A] / d F", count=5, seed="any text", workers=1)
+    made = certify_points(analysis, "d p[A] / d F", count=5, seed="any text", workers=1)
     text = text_of(made, analysis)
     record = json.loads(text)
     assert list(record) == ["format", "version", "kind", "network", "response", "domain", "target",
@@ -134,7 +135,7 @@ def test_the_record_is_as_specified() -> None:
 
 def test_the_ratio_is_that_of_the_specification() -> None:
     analysis = Analysis(NETWORKS["tide"])
-    made = certify(analysis, CASES[0][1], only="barrier", count=9, workers=1)
+    made = certify_points(analysis, CASES[0][1], only="barrier", count=9, workers=1)
     record: Any = record_of(made, analysis)
     worst = record["claims"][0]["worst"]
     low = Fraction(0)
@@ -163,7 +164,7 @@ def false_barrier(question: Question) -> Claim | None:
 def test_a_refuted_claim_has_no_certificate(tmp_path: Path) -> None:
     analysis = Analysis(square_with_chord())
     quantity = read_quantity(BARRIER, analysis.network)
-    claim = Claim("false", quantity, (Term(ONE, CycleMaximum(0), 5),), {}, "", "")
+    claim = Claim("false", quantity, (Term(ONE, CycleMaximum(0), Tanh(5)),), {}, "", "")
     made = certify_claims(analysis, quantity, [claim], text=BARRIER, count=300, workers=2)
     serial = certify_claims(analysis, quantity, [claim], text=BARRIER, count=300, workers=1)
     assert made.refuted is not None and made.refuted == serial.refuted
@@ -254,18 +255,18 @@ def test_undecided_exits_3(tmp_path: Path, capsys: pytest.CaptureFixture[str]) -
 def test_errors_from_python() -> None:
     analysis = Analysis(NETWORKS["tide"])
     with pytest.raises(AssignmentError):
-        certify(analysis, CASES[0][1], seed="\ud800", count=1)
+        certify_points(analysis, CASES[0][1], seed="\ud800", count=1)
     never = build_network("never", states="A B", transitions=[("A", "B", "k1 - k2", "k2", "e")],
                           symbols={"k1": {"range": ["1", "2"]}, "k2": {"range": ["3", "4"]}})
     with pytest.raises(EvaluationError, match="200 draws"):
-        certify(Analysis(never), "d p[A] / d energy[A]", count=300, workers=2)
+        certify_points(Analysis(never), "d p[A] / d energy[A]", count=300, workers=2)
     inside = build_network("inside", states="A B", transitions=[("A", "B", "exp(F)", "1", "e")],
                            symbols={"F": "real"}, observables={"q": {"A": "F**2"}})
     with pytest.raises(UndecidedError, match="inside and outside"):
-        certify(Analysis(inside), "d mean[q] / d barrier[e]", count=1)
-    assert certify(Analysis(inside), "d p[A] / d energy[A]", count=1).refuted is None
+        certify_points(Analysis(inside), "d mean[q] / d barrier[e]", count=1)
+    assert certify_points(Analysis(inside), "d p[A] / d energy[A]", count=1).refuted is None
     with pytest.raises(OutputError):
-        write_certificate(certify(analysis, CASES[0][1], count=1, workers=1), analysis,
+        write_certificate(certify_points(analysis, CASES[0][1], count=1, workers=1), analysis,
                           "/no/such/folder/file.json")
 
 
@@ -273,16 +274,16 @@ def test_the_inverse_of_a_one_way_path() -> None:
     network = build_network("one-way", states="A B", transitions=[
         Rates("A", "B", "c", name="e"), Rates("A", "B", "k", "u", name="f")])
     analysis = Analysis(network)
-    assert certify(analysis, "p[A]/p[B]", count=3, workers=1).claims[0].claim.name == "path"
+    assert certify_points(analysis, "p[A]/p[B]", count=3, workers=1).claims[0].claim.name == "path"
     with pytest.raises(QuantityError, match="inverse"):
-        certify(analysis, "p[B]/p[A]", count=3, workers=1)
+        certify_points(analysis, "p[B]/p[A]", count=3, workers=1)
 
 
 def test_ratios_are_rounded_down() -> None:
     assert ratio_text(Fraction(1) - Fraction(1, 10**12)) == "0.99999999"
     assert ratio_text(Fraction(1)) == "1.00000000"
     analysis = Analysis(NETWORKS["numbers"])
-    made = certify(analysis, "d p[A] / d energy[B]", count=1, workers=1)
+    made = certify_points(analysis, "d p[A] / d energy[B]", count=1, workers=1)
     assert "the only point" in certificate_text(made, None)
 
 
@@ -290,10 +291,10 @@ def test_a_script_needs_no_guard(tmp_path: Path) -> None:
     script = tmp_path / "script.py"
     script.write_text(
         "import symbolic_response as sr\n"
-        "from symbolic_response.certificates.certify import certify\n"
+        "from symbolic_response.certificates.points import certify_points\n"
         "net = sr.build_network('pair', states='A B', transitions=[('A', 'B', 'k*c', 'k', 'e'),"
         " ('A', 'B', 'u', 'c', 'f')])\n"
-        "print(certify(sr.Analysis(net), 'd p[A] / d barrier[e]', count=300, workers=2)"
+        "print(certify_points(sr.Analysis(net), 'd p[A] / d barrier[e]', count=300, workers=2)"
         ".claims[0].holds)\n", encoding="utf-8")
     done = subprocess.run([sys.executable, str(script)], capture_output=True, text=True,
                           check=False, timeout=120)

@@ -11,11 +11,12 @@ import numpy as np
 import pytest
 
 from symbolic_response.bounds.claim import Claim, CycleMaximum, OneCycle, Term
+from symbolic_response.bounds.curves import Tanh
 from symbolic_response.bounds.evaluate import ClaimPoint
 from symbolic_response.bounds.registry import claims_for
 from symbolic_response.certificates.axes import value_text
-from symbolic_response.certificates.certify import Refutation, certify_claims
 from symbolic_response.certificates.construct import constructed
+from symbolic_response.certificates.points import Refutation, certify_claims
 from symbolic_response.certificates.sampling import Sampler
 from symbolic_response.certificates.search import Found, search
 from symbolic_response.expressions.text import expression_text
@@ -181,7 +182,7 @@ def barrier_claim(network: Network, text: str) -> Claim:
 def test_a_fifth_instead_of_a_quarter(count: int) -> None:
     network = square_with_chord()
     base = barrier_claim(network, "d ln(p[s1]/p[s2]) / d barrier[e1_2]")
-    found = refuted(network, replace(base, right=(Term(ONE, CycleMaximum(0), 5),)), count)
+    found = refuted(network, replace(base, right=(Term(ONE, CycleMaximum(0), Tanh(5)),)), count)
     (term,) = found.place.right
     assert term.divisor == 5 and term.g is not None
     left = response(network, dict(found.values), 0, lambda p, _: mpmath.log(p[0] / p[1]))

@@ -10,7 +10,7 @@ from typing import Any
 import pytest
 
 import symbolic_response as sr
-from symbolic_response.certificates.certify import certify
+from symbolic_response.certificates.points import certify_points
 from symbolic_response.certificates.record import record_of, record_text
 from symbolic_response.checker import check_record
 
@@ -31,7 +31,7 @@ ASKED = [
 
 def written(case: str, asked: str) -> Any:
     analysis = sr.Analysis(sr.read_network(CASES / case / "network.toml"))
-    certificate = certify(analysis, asked, count=12, workers=1)
+    certificate = certify_points(analysis, asked, count=12, workers=1)
     return json.loads(record_text(record_of(certificate, analysis)))
 
 

@@ -10,8 +10,8 @@ from symbolic_response.appendix.bounds_section import WORDS
 from symbolic_response.appendix.paper import Paper
 from symbolic_response.appendix.tables import table
 from symbolic_response.bounds.registry import applicable
-from symbolic_response.certificates.certify import Certificate, certify_claims
-from symbolic_response.certificates.record import record_of, record_text
+from symbolic_response.certificates.points import PointCertificate, certify_claims
+from symbolic_response.certificates.record import point_record, record_text
 from symbolic_response.certificates.report import ratio_text
 from symbolic_response.errors import RefutedError, UndecidedError
 from symbolic_response.expressions.tree import Expression
@@ -35,7 +35,7 @@ def certificates_section(
     hashes: list[str] = []
     left_out: list[str] = []
     for number, quantity in enumerate(quantities, start=1):
-        claims = applicable(quantity, paper.analysis)
+        claims = [claim for claim in applicable(quantity, paper.analysis) if claim.has_points]
         if not claims:
             continue
         try:
@@ -47,7 +47,7 @@ def certificates_section(
             raise RefutedError(found.refuted.message())
         rows += _rows(paper, quantity, number, found)
         if digests:
-            text = record_text(record_of(found, paper.analysis))
+            text = record_text(point_record(found, paper.analysis))
             digest = hashlib.sha256(text.encode()).hexdigest()
             hashes.append(f"{_shown(paper, quantity, number)} & \\texttt{{{digest[:32]}}} "
                           f"\\texttt{{{digest[32:]}}}")
@@ -69,7 +69,7 @@ def _words(count: int) -> str:
 
 
 def _rows(
-    paper: Paper, quantity: Expression, number: int, found: Certificate
+    paper: Paper, quantity: Expression, number: int, found: PointCertificate
 ) -> list[str]:
     rows = []
     for place, entry in enumerate(found.claims):

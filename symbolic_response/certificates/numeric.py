@@ -12,9 +12,19 @@ from functools import reduce
 import numpy as np
 from numpy.typing import NDArray
 
-from symbolic_response.bounds.claim import Claim, CycleMaximum, EndPair, Force, OneCycle, Term
-from symbolic_response.bounds.target import Absolute, Extreme
-from symbolic_response.bounds.topological import cycles_through
+from symbolic_response.bounds.claim import (
+    Claim,
+    CycleMaximum,
+    EndPair,
+    Force,
+    LargestForce,
+    MixedCycles,
+    OneCycle,
+    Term,
+)
+from symbolic_response.bounds.curves import Curve, FiniteChange, LocalChange, Tanh
+from symbolic_response.bounds.target import Absolute, Extreme, ShareWithout
+from symbolic_response.bounds.topological import competing
 from symbolic_response.errors import UndecidedError
 from symbolic_response.expressions.derivative import by_symbol
 from symbolic_response.expressions.tree import (
@@ -49,17 +59,17 @@ SMALLEST = 1e-4
 
 
 class CycleSteps:
-    """For each transition the cycles through it as a matrix: transitions by cycles, +1, -1 or 0."""
+    """For each largest force its cycles as a matrix: transitions by cycles, +1, -1 or 0."""
 
     def __init__(self, analysis: Analysis) -> None:
         self.analysis = analysis
-        self._matrices: dict[int, Floats | None] = {}
+        self._matrices: dict[LargestForce, Floats | None] = {}
 
-    def through(self, e: int) -> Floats | None:
-        """Return the matrix, None where a cycle through the transition has infinite force."""
-        if e not in self._matrices:
-            self._matrices[e] = self._matrix(cycles_through(e, self.analysis))
-        return self._matrices[e]
+    def of(self, force: LargestForce) -> Floats | None:
+        """Return the matrix, None where one of the cycles has an infinite force."""
+        if force not in self._matrices:
+            self._matrices[force] = self._matrix(competing(force, self.analysis))
+        return self._matrices[force]
 
     def _matrix(self, cycles: Sequence[Cycle]) -> Floats | None:
         matrix = np.zeros((len(self.analysis.graph.ends), len(cycles)))
@@ -116,7 +126,7 @@ class NumericPoints:
             return factor
         force = self.force(term.force)
         # near balance both sides are noise: such points are left aside
-        share = np.where(force > SMALLEST, np.tanh(force / term.divisor), np.nan)
+        share = np.where(force > SMALLEST, _curve(term.curve, force), np.nan)
         return np.asarray(factor * share, dtype=np.float64)
 
     # -- forces ----------------------------------------------------------------------------
@@ -124,8 +134,8 @@ class NumericPoints:
     def force(self, force: Force) -> Floats:
         """Return a force."""
         match force:
-            case CycleMaximum(e):
-                matrix = self.cycles.through(e)
+            case CycleMaximum() | MixedCycles():
+                matrix = self.cycles.of(force)
                 if matrix is None:
                     return np.full(self.count, np.inf)
                 # one-way transitions are on none of these cycles
@@ -147,14 +157,23 @@ class NumericPoints:
         return np.abs(total)
 
     def _end_pair(self, e: int) -> Floats:
-        first, second = self.analysis.graph.ends[e]
         generator = self._generator(without=e)
-        sides = []
-        for root, rate in ((first, self.rates[e][0]), (second, self.rates[e][1])):
-            kept = [k for k in range(self.analysis.graph.size) if k != root]
-            minor = np.linalg.det(-generator[:, kept][:, :, kept]) if kept else np.ones(self.count)
-            sides.append(rate * minor)
+        sides = [rate * self._trees(generator, root)
+                 for root, rate in zip(self.analysis.graph.ends[e], self.rates[e], strict=True)]
         return np.asarray(np.abs(np.log(sides[0]) - np.log(sides[1])), dtype=np.float64)
+
+    def _trees(self, generator: Floats, root: int) -> Floats:
+        kept = [k for k in range(self.analysis.graph.size) if k != root]
+        return np.asarray(np.linalg.det(-generator[:, kept][:, :, kept]), dtype=np.float64)
+
+    def _share(self, e: int) -> Floats:
+        """Return the share of the rooted trees, by weight, that do not use a transition."""
+        free, every = (
+            sum((self._trees(generator, root) for root in range(self.analysis.graph.size)),
+                np.zeros(self.count))
+            for generator in (self._generator(without=e), self._generator())
+        )
+        return free / every
 
     # -- the steady state ------------------------------------------------------------------
 
@@ -264,6 +283,8 @@ class NumericPoints:
                 return reduce(choose, [self._dual(part, by)[0] for part in parts]), zero
             case Absolute(inner):
                 return np.abs(self._dual(inner, by)[0]), zero
+            case ShareWithout(e):
+                return self._share(e), zero
             case Response(inner, perturbation) if by is None:
                 return self._dual(inner, perturbation)[1], zero
         return self._atom(node, by)
@@ -305,6 +326,20 @@ class NumericPoints:
         ahead = _product(self._rate(e, False, by), self._state(transition.first, by))
         back = _product(self._rate(e, True, by), self._state(transition.second, by))
         return ahead[0] + sign * back[0], ahead[1] + sign * back[1]
+
+
+def _curve(curve: Curve, force: Floats) -> Floats:
+    match curve:
+        case Tanh(divisor):
+            return np.tanh(force / divisor)
+        case LocalChange():
+            u, v = float(curve.larger), float(curve.smaller)
+            ratio = np.exp(force)
+            above = np.maximum(np.sqrt(v * ratio) - np.sqrt(u), 0)
+            found = np.where(np.isinf(ratio), u, u - v + above**2 / (ratio - 1))
+            return np.asarray(found, dtype=np.float64)
+        case FiniteChange():
+            raise UndecidedError("no arithmetic for a finite change")
 
 
 def _product(a: Dual, b: Dual) -> Dual:

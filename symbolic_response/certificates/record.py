@@ -6,6 +6,7 @@ import contextlib
 import json
 import os
 import tempfile
+from collections.abc import Sequence
 from fractions import Fraction
 from pathlib import Path
 
@@ -14,7 +15,10 @@ from symbolic_response.bounds.parameter import Decomposition, decompose
 from symbolic_response.bounds.registry import PATH
 from symbolic_response.bounds.target import Absolute, Extreme, target_of
 from symbolic_response.certificates.axes import value_text
-from symbolic_response.certificates.certify import Certificate, Certified
+from symbolic_response.certificates.certify import Certificate
+from symbolic_response.certificates.points import Certified, PointCertificate
+from symbolic_response.certificates.proofs.prove import Proved
+from symbolic_response.certificates.proofs.record import proof_data, trees_data
 from symbolic_response.certificates.sampling import RULE
 from symbolic_response.errors import OutputError, QuantityError
 from symbolic_response.expressions.text import expression_text, fraction_text
@@ -33,34 +37,70 @@ from symbolic_response.network.quantities import BarrierOf, BySymbol, DriveOf, E
 from symbolic_response.response.analysis import Analysis
 from symbolic_response.response.closed_trees import rate_changes
 
-FORMAT, VERSION, KIND = "symbolic-response-certificate", 1, "points"
-DOMAIN = "all admissible values of the symbols"
+FORMAT = {"format": "symbolic-response-certificate", "version": 1}
+ADMISSIBLE = "all admissible values of the symbols"
+ALL_RATES = "all positive rates"
 
 Data = dict[str, object]
 
 
 def record_of(certificate: Certificate, analysis: Analysis) -> Data:
-    """Return the record as plain data; QuantityError for a certificate that was refuted."""
+    """Return the record as plain data: of proofs, of points, or of both.
+
+    QuantityError for a certificate that was refuted or holds nothing.
+    """
+    records: list[Data] = []
+    if certificate.proved.claims:
+        records.append(proof_record(certificate, certificate.proved, analysis))
+    if certificate.points is not None:
+        records.append(point_record(certificate.points, analysis))
+    if not records:
+        raise QuantityError("nothing was certified: " + certificate.without[0][1])
+    return records[0] if len(records) == 1 else {**FORMAT, "kind": "several", "records": records}
+
+
+def proof_record(certificate: Certificate, proved: Proved, analysis: Analysis) -> Data:
+    """Return the record of proofs."""
+    network, quantity = certificate.network, certificate.quantity
+    return {
+        **_head("proof", network, certificate.response, ALL_RATES),
+        **_subject(network, quantity, proved.claims),
+        "trees": trees_data(proved.proofs, analysis),
+        "proofs": [proof_data(proof, analysis) for proof in proved.proofs],
+        "claims": [{"name": claim.name, "parts": _parts(claim, quantity, analysis)}
+                   for claim in proved.claims],
+    }
+
+
+def point_record(certificate: PointCertificate, analysis: Analysis) -> Data:
+    """Return the record of points; QuantityError for a certificate that was refuted."""
     if certificate.refuted is not None:
         raise QuantityError("a refuted inequality has no certificate: "
                             + certificate.refuted.message())
     network, quantity = certificate.network, certificate.quantity
-    asked = isinstance(quantity, Response)
     return {
-        "format": FORMAT,
-        "version": VERSION,
-        "kind": KIND,
-        "network": _network(network),
-        "response": certificate.response,
-        "domain": DOMAIN,
-        "target": _target(quantity, network),
-        "perturbation": _perturbation(quantity, network) if asked else None,
-        "path": None if asked else _path(certificate.claims),
+        **_head("points", network, certificate.response, ADMISSIBLE),
+        **_subject(network, quantity, [entry.claim for entry in certificate.claims]),
         "sampling": {"rule": RULE, "seed": certificate.seed, "count": certificate.count},
         "points": [{name: value_text(value) for name, value in values.items()}
                    for values in certificate.points],
         "claims": [_claim(entry, quantity, analysis) for entry in certificate.claims],
     }
+
+
+def _head(kind: str, network: Network, response: str, domain: str) -> Data:
+    return {**FORMAT, "kind": kind, "network": _network(network), "response": response,
+            "domain": domain}
+
+
+def _subject(network: Network, quantity: Expression, claims: Sequence[Claim]) -> Data:
+    """Return what the claims are about."""
+    if claims[0].name == PATH:
+        data = claims[0].data
+        return {"target": None, "perturbation": None,
+                "path": {"from": data["from"], "to": data["to"]}}
+    return {"target": _target(quantity, network), "perturbation": _perturbation(quantity, network),
+            "path": None}
 
 
 def _network(network: Network) -> Data:
@@ -107,11 +147,6 @@ def _perturbation(response: Expression, network: Network) -> Data:
             return {"kind": "drive", "transition": network.transitions[e].name}
         case BySymbol(name, logarithmic):
             return {"kind": "symbol", "symbol": name, "logarithmic": logarithmic}
-
-
-def _path(claims: tuple[Certified, ...]) -> Data:
-    data = next(entry.claim.data for entry in claims if entry.claim.name == PATH)
-    return {"from": data["from"], "to": data["to"]}
 
 
 def _claim(entry: Certified, quantity: Expression, analysis: Analysis) -> Data:

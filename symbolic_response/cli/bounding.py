@@ -70,6 +70,8 @@ def bound(
               help="Any text; the same text draws the same points.")
 @click.option("--workers", type=click.IntRange(min=1), metavar="N",
               help="Use N processes (default: all cores).")
+@click.option("--proof-only", "method", flag_value="proof", help="No points.")
+@click.option("--points-only", "method", flag_value="points", help="No proofs.")
 @click.option("-o", "--output", type=click.Path(), metavar="FILE", help="Write the certificate.")
 @json_option
 @quiet_option
@@ -80,11 +82,14 @@ def certify(
     points: int,
     seed: str,
     workers: int | None,
+    method: str | None,
     output: str | None,
     as_json: bool,
     quiet: bool,
 ) -> int:
-    """Try every inequality that limits a response at many exact points, and where it is tight.
+    """Prove every inequality that limits a response for all positive rates of the network.
+
+    What has no proof is tried at many exact points, and where it is tight.
 
     \b
     Names: energy-covariance, energy-range, splitting-end-pair, end-pair,
@@ -103,16 +108,19 @@ def certify(
     with Progress(quiet) as progress:
         progress.stage(f"certifying {response}")
         analysis = analysis_of(read(network), lambda done, total: None)
-        made = make_certificate(analysis, response, only=only, count=points, seed=seed,
-                                workers=workers, progress=progress)
-    written = output if made.refuted is None else None
+        made = make_certificate(analysis, response, only=only, method=method or "strongest",
+                                count=points, seed=seed, workers=workers, progress=progress)
+    anything = made.proved.claims or made.points is not None
+    written = output if made.refuted is None and anything else None
     if written is not None:
         write_certificate(made, analysis, written)
     if as_json:
         click.echo(json.dumps(certificate_data(made, written), indent=1))
     elif made.refuted is None:
         click.echo(certificate_text(made, written))
-    return 0 if made.refuted is None else fail(made.refuted.message(), REFUTED)
+    if made.refuted is not None:
+        return fail(made.refuted.message(), REFUTED)
+    return UNDECIDED if made.without else 0
 
 
 @click.command(short_help="The independent check of certificates.")

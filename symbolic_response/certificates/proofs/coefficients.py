@@ -15,6 +15,7 @@ from fractions import Fraction
 from flint import fmpz_mat
 
 from symbolic_response.errors import SizeLimitError
+from symbolic_response.network.model import Network
 from symbolic_response.response.analysis import Analysis
 from symbolic_response.topology.graph import Graph
 
@@ -27,6 +28,10 @@ class CoefficientsProof:
 
     low: Fraction
     high: Fraction
+
+    def subject(self, network: Network) -> str:
+        """Return what the proof is about in the words of the file."""
+        return f"{self.low} to {self.high}"
 
 
 def coefficients_proof(

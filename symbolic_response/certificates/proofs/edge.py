@@ -22,6 +22,7 @@ from symbolic_response.certificates.proofs.rows import (
     undirected,
 )
 from symbolic_response.expressions.ring import Poly
+from symbolic_response.network.model import Network
 from symbolic_response.response.analysis import Analysis
 from symbolic_response.topology.trees import count_undirected_trees, rooted
 
@@ -37,6 +38,10 @@ class EdgeProof:
     transition: int
     expanded: bool
     rows: tuple[Row, ...]
+
+    def subject(self, network: Network) -> str:
+        """Return what the proof is about in the words of the file."""
+        return network.transitions[self.transition].name
 
 
 def edge_proof(analysis: Analysis, e: int) -> EdgeProof:

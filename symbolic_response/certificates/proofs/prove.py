@@ -44,10 +44,12 @@ class NoProofError(Exception):
 class Proved:
     """Claims that hold for all positive rates, with the proofs they follow from.
 
+    ``needs``: for each claim the proofs it follows from; ``proofs``: each of them once.
     ``without``: the claims that have no proof, each with the reason.
     """
 
     claims: tuple[Claim, ...]
+    needs: tuple[tuple[Proof, ...], ...]
     proofs: tuple[Proof, ...]
     without: tuple[tuple[Claim, str], ...]
 
@@ -65,15 +67,17 @@ def prove(
     """
     work = _Work(analysis, quantity)
     proved: list[Claim] = []
+    needs: list[tuple[Proof, ...]] = []
     without: list[tuple[Claim, str]] = []
     for done, claim in enumerate(claims):
         step(done, len(claims))
         try:
-            work.prove(claim)
+            needs.append(work.prove(claim))
             proved.append(claim)
         except (NoProofError, SizeLimitError) as error:
             without.append((claim, str(error)))
-    return Proved(tuple(proved), tuple(work.used.values()), tuple(without))
+    proofs = tuple(dict.fromkeys(proof for each in needs for proof in each))
+    return Proved(tuple(proved), tuple(needs), proofs, tuple(without))
 
 
 class _Work:
@@ -84,16 +88,14 @@ class _Work:
         self.quantity = quantity
         self.known = applicable(quantity, analysis)
         self.made: dict[Key, Proof] = {}
-        self.used: dict[Key, Proof] = {}
 
-    def prove(self, claim: Claim) -> None:
-        """Make the proofs that a claim needs, all or none; NoProofError says why there are none."""
+    def prove(self, claim: Claim) -> tuple[Proof, ...]:
+        """Return the proofs that a claim needs; NoProofError says why there are none."""
         if claim not in self.known:
             raise NoProofError("it is not an inequality of the catalogue for this quantity")
         self._require_positive_rates()
         self._require_signs()
-        needed = self._needed(claim)
-        self.used.update({key: self.made[key] for key in needed})
+        return tuple(self._needed(claim))
 
     def _require_positive_rates(self) -> None:
         network = self.analysis.network
@@ -115,7 +117,7 @@ class _Work:
                 raise NoProofError("the form of an observable does not show that it is not negative"
                                    " for all values of the symbols")
 
-    def _needed(self, claim: Claim) -> list[Key]:
+    def _needed(self, claim: Claim) -> list[Proof]:
         if claim.name == "path":
             return [self._paths(claim)]
         if claim.name in BY_COEFFICIENTS:
@@ -131,28 +133,28 @@ class _Work:
             return [self._edge(e), self._splitting(e)]
         return [self._edge(e)]
 
-    def _keep(self, key: Key, make: Callable[[], Proof]) -> Key:
+    def _keep(self, key: Key, make: Callable[[], Proof]) -> Proof:
         if key not in self.made:
             self.made[key] = make()
-        return key
+        return self.made[key]
 
-    def _edge(self, e: int) -> Key:
+    def _edge(self, e: int) -> Proof:
         return self._keep(("edge", e), lambda: edge_proof(self.analysis, e))
 
-    def _splitting(self, e: int) -> Key:
+    def _splitting(self, e: int) -> Proof:
         return self._keep(("splitting", e), lambda: splitting_proof(self.analysis, e))
 
-    def _coefficients(self) -> Key:
+    def _coefficients(self) -> Proof:
         return self._keep(("coefficients", -1),
                           lambda: coefficients_proof(self.analysis, self._changes()))
 
-    def _paths(self, claim: Claim) -> Key:
+    def _paths(self, claim: Claim) -> Proof:
         names = [state.name for state in self.analysis.network.states]
         start, goal = names.index(str(claim.data["from"])), names.index(str(claim.data["to"]))
         return self._keep(("paths", -1),
                           lambda: paths_proof(self.analysis.graph, start, goal))
 
-    def _bundle(self, claim: Claim) -> Key:
+    def _bundle(self, claim: Claim) -> Proof:
         transitions = tuple(sorted({e for e, _ in self._changes()}))
         cycles = mixed_cycles(self.analysis, transitions)
         if claim.right[0].force is None or not all(
@@ -175,13 +177,13 @@ class _Work:
                 found[rates.directions()[place]] = change.value
             return found
         for e, backward in rates.directions():
-            change = logarithmic_change(self.analysis.rate_expression(e, backward), by)
-            if change is None:
+            v = logarithmic_change(self.analysis.rate_expression(e, backward), by)
+            if v is None:
                 name = self.analysis.network.transitions[e].name
                 raise NoProofError(f"a rate of transition {name!r} does not change by a constant"
                                    f" factor with {by.name}")
-            if change:
-                found[e, backward] = change
+            if v:
+                found[e, backward] = v
         return found
 
     def _transition(self) -> int:

@@ -18,14 +18,17 @@ Data = dict[str, object]
 
 def trees_data(proofs: Sequence[Proof], analysis: Analysis) -> list[int] | None:
     """Return all spanning trees as masks if a proof needs them, else None."""
-    if any(isinstance(proof, TransportProof) or expanded(proof) for proof in proofs):
+    if any(isinstance(proof, TransportProof) or form_of(proof) == "expanded" for proof in proofs):
         return [int(mask) for mask in analysis.trees.masks]
     return None
 
 
-def expanded(proof: Proof) -> bool | None:
-    """Return whether a proof is expanded, None for a kind that has one form only."""
-    return getattr(proof, "expanded", None)
+def form_of(proof: Proof) -> str | None:
+    """Return whether a proof is expanded or compact, None for a kind that has one form only."""
+    match proof:
+        case EdgeProof() | SplittingProof() | PathsProof():
+            return "expanded" if proof.expanded else "compact"
+    return None
 
 
 def kind_of(proof: Proof) -> str:
@@ -48,33 +51,27 @@ def proof_data(proof: Proof, analysis: Analysis) -> Data:
     names = [transition.name for transition in analysis.network.transitions]
     kind: Data = {"kind": kind_of(proof)}
     match proof:
-        case EdgeProof(e, is_expanded, rows):
-            return {**kind, "transition": names[e], "form": _form(is_expanded),
-                    "cycles": _rows(rows)}
-        case SplittingProof(e, is_expanded, sides):
-            return {**kind, "transition": names[e], "form": _form(is_expanded),
+        case EdgeProof(e, _, rows):
+            return {**kind, "transition": names[e], "form": form_of(proof), "cycles": _rows(rows)}
+        case SplittingProof(e, _, sides):
+            return {**kind, "transition": names[e], "form": form_of(proof),
                     "splittings": [{"side": one.mask, "weight": one.weight} for one in sides]}
         case CoefficientsProof(low, high):
             return {**kind, "low": fraction_text(low), "high": fraction_text(high)}
-        case PathsProof(start, goal, is_expanded, rows):
-            return {**kind, "from": states[start], "to": states[goal], "form": _form(is_expanded),
+        case PathsProof(start, goal, _, rows):
+            return {**kind, "from": states[start], "to": states[goal], "form": form_of(proof),
                     "paths": _rows(rows)}
-        case TransportProof(transitions, cycles, pairs):
-            return {
-                **kind,
-                "transitions": [names[e] for e in transitions],
-                "cycles": [list(cycle) for cycle in cycles],
-                "pairs": [
-                    {"states": [states[i], states[j]],
-                     "moves": [{"cycle": move.cycle, "rest": list(move.rest), "times": move.times}
-                               for move in moves]}
-                    for i, j, moves in pairs
-                ],
-            }
-
-
-def _form(is_expanded: bool) -> str:
-    return "expanded" if is_expanded else "compact"
+    return {
+        **kind,
+        "transitions": [names[e] for e in proof.transitions],
+        "cycles": [list(cycle) for cycle in proof.cycles],
+        "pairs": [
+            {"states": [states[i], states[j]],
+             "moves": [{"cycle": move.cycle, "rest": list(move.rest), "times": move.times}
+                       for move in moves]}
+            for i, j, moves in proof.pairs
+        ],
+    }
 
 
 def _rows(rows: Sequence[Row]) -> list[Data]:

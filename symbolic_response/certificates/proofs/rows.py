@@ -11,6 +11,7 @@ from dataclasses import dataclass
 
 from flint import fmpz_mat
 
+from symbolic_response.network.model import Network
 from symbolic_response.topology.graph import Graph
 from symbolic_response.topology.paths import Step, simple_paths
 from symbolic_response.topology.trees import count_undirected_trees
@@ -76,6 +77,10 @@ class PathsProof:
     goal: int
     expanded: bool
     rows: tuple[Row, ...]
+
+    def subject(self, network: Network) -> str:
+        """Return what the proof is about in the words of the file."""
+        return f"{network.states[self.start].name} to {network.states[self.goal].name}"
 
 
 def paths_proof(graph: Graph, start: int, goal: int) -> PathsProof:

@@ -11,6 +11,7 @@ from __future__ import annotations
 from dataclasses import dataclass
 
 from symbolic_response.certificates.proofs.rows import EXPANDED_TREES, undirected
+from symbolic_response.network.model import Network
 from symbolic_response.response.analysis import Analysis
 from symbolic_response.topology import splittings
 from symbolic_response.topology.graph import Graph
@@ -37,6 +38,10 @@ class SplittingProof:
     transition: int
     expanded: bool
     sides: tuple[Side, ...]
+
+    def subject(self, network: Network) -> str:
+        """Return what the proof is about in the words of the file."""
+        return network.transitions[self.transition].name
 
 
 def splitting_proof(analysis: Analysis, e: int) -> SplittingProof:

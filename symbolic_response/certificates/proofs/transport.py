@@ -14,6 +14,7 @@ from dataclasses import dataclass
 from itertools import combinations
 
 from symbolic_response.errors import SizeLimitError
+from symbolic_response.network.model import Network
 from symbolic_response.response.analysis import Analysis
 from symbolic_response.topology.cycles import Cycle, can_run_against, can_run_along
 from symbolic_response.topology.trees import rooted
@@ -41,6 +42,10 @@ class TransportProof:
     transitions: tuple[int, ...]
     cycles: tuple[tuple[int, ...], ...]
     pairs: tuple[tuple[int, int, tuple[Move, ...]], ...]
+
+    def subject(self, network: Network) -> str:
+        """Return what the proof is about in the words of the file."""
+        return ", ".join(network.transitions[e].name for e in self.transitions)
 
 
 def transport_proof(
@@ -159,7 +164,9 @@ def match(above: Products, below: Products, turns: list[_Turn]) -> list[tuple[in
                          " this bundle")
 
 
-def _flow(above: Products, below: Products, turns: list[_Turn]) -> list[tuple[int, int, int]] | None:
+def _flow(
+    above: Products, below: Products, turns: list[_Turn]
+) -> list[tuple[int, int, int]] | None:
     import networkx as nx
 
     links: dict[tuple[int, int], int] = {}
