@@ -1,7 +1,7 @@
 """Proofs for all rates: their data against brute force, and what must never be proved.
 
-Oracles: enumeration of trees state by state (tests/proof_networks.py), networkx for paths, SymPy for
-derivatives, exact linear algebra for the identities. The identities themselves follow from the
+Oracles: enumeration of trees state by state (tests/proof_networks.py), networkx for paths, SymPy
+for derivatives, exact linear algebra for the identities. They follow from the
 all-minors theorem (Chaiken, SIAM J. Algebraic Discrete Methods 3, 319 (1982)).
 """
 
