@@ -7,6 +7,7 @@ from pathlib import Path
 
 import pytest
 
+from symbolic_response.bounds.curves import Tanh
 from symbolic_response.bounds.decide import Weighted, holds, tanh_bounds
 from symbolic_response.bounds.registry import CATALOGUE, claims_for
 from symbolic_response.bounds.report import bound
@@ -42,13 +43,17 @@ def names(network: Network, text: str) -> list[str]:
     ("d ln p[A] / d c", ["parameter", "support"]),
     ("ln(p[A]/p[B])", ["path", "path"]),
     ("p[A]/p[B]", ["path", "path"]),
+    ("d current[bind] / d barrier[bind]", ["current-exact", "current-range"]),
+    ("d current[flip] / d drive[flip]", ["current-exact", "current-range"]),
 ])
 def test_which_bounds_apply(text: str, expected: list[str]) -> None:
     assert names(RING, text) == expected
 
 
 @pytest.mark.parametrize("text", [
-    "p[A]", "current[bind]", "d current[bind] / d barrier[bind]", "d mean[moving] / d c",
+    "p[A]", "current[bind]", "d current[bind] / d barrier[flip]", "d mean[moving] / d c",
+    "d current[bind] / d ln c", "d current[bind] / d energy[A]",
+    "d 2*current[bind] / d drive[bind]",
     "d (d p[A] / d c) / d c", "d p[A]*p[B] / d c", "d ln mean[q] / d barrier[bind]",
 ])
 def test_what_the_catalogue_does_not_speak_of(text: str) -> None:
@@ -211,7 +216,7 @@ def test_a_false_claim_fails_at_an_irrational_point() -> None:
     analysis = Analysis(read_network(FERRY))
     (claim,) = claims_for(read_quantity("d ln(p[east]/p[west]) / d barrier[ferry]",
                                         analysis.network), analysis, "barrier")
-    false = replace(claim, right=(replace(claim.right[0], divisor=5),))
+    false = replace(claim, right=(replace(claim.right[0], curve=Tanh(5)),))
     at = {name: read_expression(value)
           for name, value in (text.split("=") for text in [*REST, "F=4", "E_e=1"])}
     assert enclose(claim, analysis, at).holds is True
@@ -225,7 +230,7 @@ def test_a_false_claim_fails_at_an_irrational_point() -> None:
 def test_messages_say_what_the_catalogue_speaks_of() -> None:
     analysis = Analysis(RING)
     for text, words in [
-        ("d current[bind] / d barrier[bind]", "the catalogue speaks of responses"),
+        ("d current[bind] / d barrier[flip]", "the catalogue speaks of responses"),
         ("d mean[moving] / d c", "depends on c"),
         ("d ln mean[q] / d barrier[bind]", "may be negative"),
     ]:

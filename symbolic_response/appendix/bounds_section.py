@@ -6,11 +6,21 @@ from collections.abc import Sequence
 
 from symbolic_response.appendix.formulas import filled
 from symbolic_response.appendix.paper import Paper
-from symbolic_response.bounds.claim import Claim, CycleMaximum, EndPair, OneCycle, Term
+from symbolic_response.bounds.claim import (
+    Claim,
+    CycleMaximum,
+    EndPair,
+    Force,
+    LargestForce,
+    MixedCycles,
+    OneCycle,
+    Term,
+)
+from symbolic_response.bounds.curves import Curve, FiniteChange, LocalChange, Tanh
 from symbolic_response.bounds.registry import applicable
 from symbolic_response.bounds.sides import force_side
-from symbolic_response.bounds.target import Absolute, Extreme
-from symbolic_response.bounds.topological import cycles_through
+from symbolic_response.bounds.target import Absolute, Extreme, ShareWithout, absolute
+from symbolic_response.bounds.topological import competing
 from symbolic_response.expressions.breaking import (
     Equation,
     Piece,
@@ -19,7 +29,7 @@ from symbolic_response.expressions.breaking import (
     line_limit,
     product_pieces,
 )
-from symbolic_response.expressions.latex import expression_latex
+from symbolic_response.expressions.latex import expression_latex, fraction_latex
 from symbolic_response.expressions.tree import (
     ZERO,
     Expression,
@@ -56,11 +66,13 @@ WORDS = {
     "parameter": "by energies, barriers and single rates",
     "support": "by the number of states whose rates the parameter multiplies",
     "path": "by the paths between the states",
+    "current-exact": "exactly, by the trees that do not use the transition",
+    "current-range": "by the current or the traffic itself",
 }
 SOURCE_KEYS = {
     "energy-covariance": "owen", "energy-range": "owen", "barrier": "owen", "drive": "owen",
     "splitting-barrier": "martins", "splitting-drive": "martins", "parameter": "owen",
-    "support": "support", "path": "maes,liang",
+    "support": "support", "path": "maes,liang", "current-range": "aslyamov",
 }
 
 
@@ -92,6 +104,10 @@ def _definitions(paper: Paper, claims: Sequence[Claim]) -> str:
                     r"cycles through $e$, so that $|\ln r_e| \le @force@_{\max}(e)$. The responses "
                     r"of all $\ln @probability@_k$ to the barrier lie between those of $m$ and "
                     r"$n$, which gives the bounds by the ends of the transition.")
+    if any(claim.name == "current-exact" for claim in claims):
+        text.append(r"In the exact response of the current of a transition to its own barrier or "
+                    r"drive, $a_k$ is the part of $@tree sum@_k$ from trees that do not use the "
+                    r"transition.")
     if any("splitting" in claim.name for claim in claims):
         text.append(r"A splitting $S$ of a transition is a set of states that contains its first "
                     r"state and not its second, $S$ and the other states each being connected; "
@@ -190,21 +206,44 @@ def _factors(paper: Paper, term: Term) -> list[str]:
         printed = [side_latex(paper, multiply([part])) for part in parts]
         printed = [f"({text})" if isinstance(part, Sum) else text
                    for part, text in zip(parts, printed, strict=True)]
-    if term.force is None or force_side(term.force, paper.analysis) is None:
+    if term.force is None:
         return printed
-    tanh = rf"\tanh \frac{{{_force(paper, term.force)}}}{{{term.divisor}}}"
+    finite = force_side(term.force, paper.analysis) is not None
+    curve = _curve(paper, term.curve, _force(paper, term.force) if finite else None)
+    if curve == "1":
+        return printed
     if plain == "1":
-        return [tanh]
-    return [*([f"({plain})"] if isinstance(term.factor, Sum) else printed), tanh]
+        return [curve]
+    return [*([f"({plain})"] if isinstance(term.factor, Sum) else printed), curve]
 
 
-def _force(paper: Paper, force: CycleMaximum | EndPair | OneCycle) -> str:
+def _curve(paper: Paper, curve: Curve, force: str | None) -> str:
+    """Return a curve of a force, None standing for an infinite one."""
+    match curve:
+        case Tanh(divisor):
+            return "1" if force is None else rf"\tanh \frac{{{force}}}{{{divisor}}}"
+        case LocalChange(u, v):
+            if force is None:
+                return fraction_latex(u)
+            return rf"\psi_{{{fraction_latex(u)},{fraction_latex(v)}}}({force})"
+        case FiniteChange(amount):
+            size = side_latex(paper, absolute(amount))
+            if force is None:
+                return size
+            return (rf"2 \ln \frac{{\cosh(({force} + {size})/4)}}"
+                    rf"{{\cosh(({force} - {size})/4)}}")
+
+
+def _force(paper: Paper, force: Force) -> str:
     notation = paper.notation
     match force:
         case CycleMaximum(e):
             return rf"{notation.letters['force']}_{{\max}}({notation.transitions[e]})"
         case EndPair(e):
             return rf"|\ln r_{{{notation.transitions[e]}}}|"
+        case MixedCycles(transitions):
+            names = ",".join(notation.transitions[e] for e in transitions)
+            return rf"{notation.letters['force']}_{{\max}}(\{{{names}\}})"
         case OneCycle(cycle):
             number = paper.analysis.cycles.index(cycle) + 1
             return f"|{notation.indexed('force', str(number))}|"
@@ -235,6 +274,8 @@ def _leaf(paper: Paper, part: Expression) -> str | None:
             return rf"\{name}\{{{shown}\}}"
         case Absolute(inner):
             return f"|{side_latex(paper, inner)}|"
+        case ShareWithout():
+            return rf"\frac{{\sum_k a_k}}{{{paper.notation.letters['normalisation']}}}"
         case Symbol() | Number():
             return None
     return quantity_in(paper.notation, part)
@@ -265,30 +306,29 @@ def _data(paper: Paper, claims: Sequence[Claim]) -> str:
     sentences: list[str] = []
     for claim in claims:
         for term in claim.right:
-            if isinstance(term.force, CycleMaximum):
-                sentences.append(_cycles(paper, term.force.transition))
+            if isinstance(term.force, CycleMaximum | MixedCycles):
+                sentences.append(_cycles(paper, term.force))
         cuts = claim.data.get("splittings")
         if isinstance(cuts, list):
             sentences.append(_splittings(paper, cuts))
     return " ".join(dict.fromkeys(sentences))
 
 
-def _cycles(paper: Paper, e: int) -> str:
+def _cycles(paper: Paper, force: LargestForce) -> str:
     notation, analysis = paper.notation, paper.analysis
-    name = notation.transitions[e]
-    letter = notation.letters["force"]
-    through = cycles_through(e, analysis)
-    if not through:
-        return f"The transition ${name}$ is in no cycle: its force is zero."
+    name = _force(paper, force)
+    through = competing(force, analysis)
+    if not through and isinstance(force, CycleMaximum):
+        transition = notation.transitions[force.transition]
+        return f"The transition ${transition}$ is in no cycle: its force is zero."
     if any(analysis.graph.one_way[step] for cycle in through for step in cycle.transitions):
-        return rf"$@force@_{{\max}}({name}) = \infty$.".replace("@force@", letter)
+        return rf"${name} = \infty$."
     if len(through) > MAX_LISTED_CYCLES:
-        return rf"$@force@_{{\max}}({name})$ is the largest over {len(through)} cycles.".replace(
-            "@force@", letter)
+        return f"${name}$ is the largest over {len(through)} cycles."
     numbers = [analysis.cycles.index(cycle) + 1 for cycle in through]
     shown = [f"$|{notation.indexed('force', str(n))}|$" for n in numbers]
     value = shown[0] if len(shown) == 1 else f"the largest of {', '.join(shown)}"
-    return rf"${letter}_{{\max}}({name})$ is {value}."
+    return f"${name}$ is {value}."
 
 
 def _splittings(paper: Paper, cuts: Sequence[Sequence[str]]) -> str:

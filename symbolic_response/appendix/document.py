@@ -37,6 +37,7 @@ SOURCES = {
     "martins": r"G. Fernandes Martins and J. M. Horowitz, Phys. Rev. E \textbf{108}, 044113 "
                "(2023).",
     "support": r"J. A. Owen and J. M. Horowitz, Nat. Commun. \textbf{14}, 1280 (2023).",
+    "aslyamov": r"T. Aslyamov and M. Esposito, Phys. Rev. Lett. \textbf{132}, 037101 (2024).",
     "maes": r"C. Maes and K. Neto\v{c}n\'y, Ann. Henri Poincar\'e \textbf{14}, 1193 (2013).",
     "liang": r"S. Liang, P. De Los Rios, and D. M. Busiello, Phys. Rev. Lett. \textbf{132}, 228402 "
              "(2024).",

@@ -1,9 +1,10 @@
-"""A claim: |response| <= sum of factors, some of them times tanh(force/4)."""
+"""A claim: |response| <= sum of factors, some of them times a curve of a force."""
 
 from __future__ import annotations
 
 from dataclasses import dataclass
 
+from symbolic_response.bounds.curves import TANH, Curve
 from symbolic_response.bounds.target import Target
 from symbolic_response.expressions.tree import Expression
 from symbolic_response.network.quantities import Response
@@ -32,19 +33,24 @@ class OneCycle:
     cycle: Cycle
 
 
-Force = CycleMaximum | EndPair | OneCycle
+@dataclass(frozen=True, slots=True)
+class MixedCycles:
+    """The largest |force| over the cycles with transitions both inside and outside a set."""
+
+    transitions: tuple[int, ...]
+
+
+LargestForce = CycleMaximum | MixedCycles
+Force = LargestForce | EndPair | OneCycle
 
 
 @dataclass(frozen=True, slots=True)
 class Term:
-    """``factor``, or ``factor * tanh(force/divisor)``; the factor is a non-negative quantity.
-
-    The theorems have 4 for the divisor; other values serve to test conjectures.
-    """
+    """``factor``, or ``factor * curve(force)``; the factor is a non-negative quantity."""
 
     factor: Expression
     force: Force | None = None
-    divisor: int = 4
+    curve: Curve = TANH
 
 
 @dataclass(frozen=True, slots=True)
@@ -53,7 +59,8 @@ class Claim:
 
     ``left`` is the quantity whose absolute value is bounded; ``data`` what in the topology sets the
     limit, in the words of the file; ``hypotheses`` what was checked before the bound was offered.
-    ``equality``: the statement is an identity.
+    ``equality``: the statement is an identity. ``has_points``: a record of exact points can hold
+    the claim; else only a proof can.
     """
 
     name: str
@@ -63,6 +70,7 @@ class Claim:
     hypotheses: str
     source: str
     equality: bool = False
+    has_points: bool = True
 
 
 @dataclass(frozen=True, slots=True)

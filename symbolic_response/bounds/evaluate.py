@@ -7,10 +7,20 @@ from fractions import Fraction
 
 import flint
 
-from symbolic_response.bounds.claim import Claim, CycleMaximum, EndPair, Force, OneCycle
+from symbolic_response.bounds.claim import (
+    Claim,
+    CycleMaximum,
+    EndPair,
+    Force,
+    LargestForce,
+    MixedCycles,
+    OneCycle,
+    Term,
+)
+from symbolic_response.bounds.curves import FiniteChange, weighted
 from symbolic_response.bounds.decide import Weighted, holds, right_bounds
-from symbolic_response.bounds.target import Absolute, Extreme
-from symbolic_response.bounds.topological import cycles_through
+from symbolic_response.bounds.target import Absolute, Extreme, ShareWithout
+from symbolic_response.bounds.topological import competing
 from symbolic_response.errors import EvaluationError
 from symbolic_response.expressions.tree import Expression, Number, Power, Product, Sum
 from symbolic_response.response.analysis import Analysis
@@ -65,17 +75,18 @@ class ClaimPoint:
         Raises IrrationalError where a side is not rational at the point.
         """
         left = abs(self.value(claim.left))
-        right = tuple(
-            Weighted(
-                self.value(term.factor),
-                None if term.force is None else self.force(term.force),
-                term.divisor,
-            )
-            for term in claim.right
-        )
+        right = tuple(part for term in claim.right for part in self._weighted(term))
         if claim.equality:
             return Evaluated(left, right, left == sum((w.factor for w in right), Fraction(0)))
         return Evaluated(left, right, holds(left, right))
+
+    def _weighted(self, term: Term) -> list[Weighted]:
+        factor = self.value(term.factor)
+        if term.force is None:
+            return [Weighted(factor)]
+        if isinstance(term.curve, FiniteChange):
+            raise IrrationalError
+        return weighted(term.curve, factor, self.force(term.force))
 
     def value(self, node: Expression) -> Fraction:
         """Return the value of a quantity in which maxima and absolute values may occur."""
@@ -101,6 +112,8 @@ class ClaimPoint:
                 for factor in factors:
                     result *= self.value(factor)
                 return result
+            case ShareWithout(e):
+                return self._all_trees(e) / self._all_trees(None)
             case Power(base, exponent) if exponent.denominator == 1:
                 inner_value = self.value(base)
                 if inner_value == 0 and exponent < 0:
@@ -121,21 +134,21 @@ class ClaimPoint:
 
     def _force(self, force: Force) -> Fraction | None:
         match force:
-            case CycleMaximum(e):
-                return self._largest_cycle(e)[0]
+            case CycleMaximum() | MixedCycles():
+                return self._largest_cycle(force)[0]
             case OneCycle(cycle):
                 g = self.cycle_ratio(cycle)
                 return None if g is None else max(g, 1 / g)
             case EndPair(e):
                 return self._end_pair(e)
 
-    def cycle_in_force(self, transition: int) -> Cycle | None:
-        """Return the cycle that gives F_max, None for a bridge."""
-        return self._largest_cycle(transition)[1]
+    def cycle_in_force(self, force: LargestForce) -> Cycle | None:
+        """Return the cycle that gives a largest force, None where there are no cycles."""
+        return self._largest_cycle(force)[1]
 
-    def _largest_cycle(self, transition: int) -> tuple[Fraction | None, Cycle | None]:
+    def _largest_cycle(self, force: LargestForce) -> tuple[Fraction | None, Cycle | None]:
         largest, winner = Fraction(1), None
-        for cycle in cycles_through(transition, self.analysis):
+        for cycle in competing(force, self.analysis):
             g = self.cycle_ratio(cycle)
             if g is None:
                 return None, cycle
@@ -175,7 +188,12 @@ class ClaimPoint:
             return None
         return max(above / below, below / above)
 
-    def _trees_without(self, without: int, root: int) -> Fraction:
+    def _all_trees(self, without: int | None) -> Fraction:
+        """Return the sum over all rooted trees, those that use a transition left out."""
+        roots = range(self.analysis.graph.size)
+        return sum((self._trees_without(without, root) for root in roots), Fraction(0))
+
+    def _trees_without(self, without: int | None, root: int) -> Fraction:
         """Return the sum over trees towards ``root`` that do not use a transition, by a minor."""
         size = self.analysis.graph.size
         matrix = [[Fraction(0)] * size for _ in range(size)]

@@ -7,6 +7,7 @@ from dataclasses import replace
 
 from symbolic_response.bounds.barrier import barrier
 from symbolic_response.bounds.claim import Claim, Question
+from symbolic_response.bounds.currents import current_exact, current_range
 from symbolic_response.bounds.drive import drive
 from symbolic_response.bounds.end_pair import end_pair
 from symbolic_response.bounds.energy import energy_covariance, energy_range
@@ -27,7 +28,11 @@ from symbolic_response.response.analysis import Analysis
 
 Rule = Callable[[Question], Claim | None]
 
-CATALOGUE: dict[str, Rule] = {
+ABOUT_CURRENTS: dict[str, Rule] = {
+    "current-exact": current_exact,
+    "current-range": current_range,
+}
+ABOUT_STATES: dict[str, Rule] = {
     "energy-covariance": energy_covariance,
     "energy-range": energy_range,
     "splitting-end-pair": splitting_end_pair,
@@ -39,10 +44,12 @@ CATALOGUE: dict[str, Rule] = {
     "parameter": parameter,
     "support": support,
 }
+CATALOGUE: dict[str, Rule] = {**ABOUT_STATES, **ABOUT_CURRENTS}
 PATH = "path"
 SPEAKS_OF = (
     "the catalogue speaks of responses d X / d PERTURBATION, X a probability p[A], a set p[A, B], a"
-    " mean, a ratio of two of them or its ln; and, for the path bound, of p[A]/p[B] and its ln"
+    " mean, a ratio of two of them or its ln; of d current[e] / d barrier[e] and / d drive[e], the"
+    " same transition; and, for the path bound, of p[A]/p[B] and its ln"
 )
 BY_RANGE = ("energy-range", "end-pair", "barrier", "drive", "parameter", "support")
 
@@ -91,14 +98,17 @@ def applicable(quantity: Expression, analysis: Analysis) -> list[Claim]:
     if target is None:
         return []
     question = Question(analysis, quantity, target)
-    found = [claim for rule in CATALOGUE.values() if (claim := rule(question)) is not None]
+    rules = ABOUT_CURRENTS if target.asked.kind == "current" else ABOUT_STATES
+    found = [claim for rule in rules.values() if (claim := rule(question)) is not None]
     return [_with_range(claim, target, analysis) for claim in found]
 
 
 def _with_range(claim: Claim, target: Target, analysis: Analysis) -> Claim:
     """Say so where a mean was rescaled affinely to 0 .. 1."""
+    if claim.name not in BY_RANGE or target.below is not None:
+        return claim
     low, high = extreme("min", target.values), extreme("max", target.values)
-    if claim.name not in BY_RANGE or target.below is not None or (low, high) == (ZERO, ONE):
+    if (low, high) == (ZERO, ONE):
         return claim
     shown = [quantity_text(end, analysis.network) for end in (low, high)]
     words = f"; its values, from {shown[0]} to {shown[1]}, are rescaled affinely to 0 .. 1"

@@ -10,12 +10,14 @@ from typing import Any
 
 import flint
 
-from symbolic_response.bounds.claim import Claim, CycleMaximum
+from symbolic_response.bounds.balls import BallPoint
+from symbolic_response.bounds.claim import Claim, CycleMaximum, LargestForce, MixedCycles
 from symbolic_response.bounds.decide import Weighted
-from symbolic_response.bounds.enclose import PRECISIONS, BallPoint, Enclosed, enclose
+from symbolic_response.bounds.enclose import PRECISIONS, Enclosed, enclose
 from symbolic_response.bounds.evaluate import ClaimPoint, Evaluated, IrrationalError
 from symbolic_response.bounds.registry import claims_for
 from symbolic_response.bounds.sides import left_text, right_text
+from symbolic_response.bounds.topological import force_label
 from symbolic_response.errors import AssignmentError, SizeLimitError, UndecidedError
 from symbolic_response.expressions.enclosure import decimal_enclosure
 from symbolic_response.expressions.normal_form import normal_form
@@ -143,16 +145,15 @@ def _row_at(claim: Claim, analysis: Analysis, place: ClaimPoint) -> BoundRow:
 
 def _in_force(
     claim: Claim,
-    winner: Callable[[int], Cycle | None],
+    winner: Callable[[LargestForce], Cycle | None],
     analysis: Analysis,
     force: Callable[[Cycle], str],
 ) -> dict[str, tuple[str, str] | None]:
     found: dict[str, tuple[str, str] | None] = {}
     for term in claim.right:
-        if isinstance(term.force, CycleMaximum):
-            e = term.force.transition
-            cycle = winner(e)
-            found[analysis.network.transitions[e].name] = None if cycle is None else (
+        if isinstance(term.force, CycleMaximum | MixedCycles):
+            cycle = winner(term.force)
+            found[force_label(term.force, analysis)] = None if cycle is None else (
                 cycle_path(cycle, analysis.network), force(cycle)
             )
     return found

@@ -2,12 +2,23 @@
 
 from __future__ import annotations
 
-from symbolic_response.bounds.claim import Claim, CycleMaximum, EndPair, Force, OneCycle, Term
-from symbolic_response.bounds.target import Absolute, Extreme, absolute, extreme
-from symbolic_response.bounds.topological import cycles_through
+from symbolic_response.bounds.claim import (
+    Claim,
+    CycleMaximum,
+    EndPair,
+    Force,
+    LargestForce,
+    MixedCycles,
+    OneCycle,
+    Term,
+)
+from symbolic_response.bounds.curves import FiniteChange, LocalChange, Tanh
+from symbolic_response.bounds.target import Absolute, Extreme, ShareWithout, absolute, extreme
+from symbolic_response.bounds.topological import competing, force_label
 from symbolic_response.expressions.ring import Polynomial
-from symbolic_response.expressions.text import expression_text
+from symbolic_response.expressions.text import expression_text, fraction_text
 from symbolic_response.expressions.tree import (
+    ONE,
     ZERO,
     Expression,
     Number,
@@ -17,6 +28,7 @@ from symbolic_response.expressions.tree import (
     divide,
     function,
     multiply,
+    negate,
     number,
     rebuild,
 )
@@ -59,15 +71,50 @@ def right_side(claim: Claim, analysis: Analysis) -> Expression:
 
 
 def _term(term: Term, analysis: Analysis) -> Expression:
+    factor = with_shares(term.factor, analysis)
     if term.force is None:
-        return term.factor
-    force = force_side(term.force, analysis)
-    if force is None:
-        return term.factor
-    if force == ZERO:
-        return ZERO
-    part = quantity_text(divide(force, number(term.divisor)), analysis.network)
-    return multiply([term.factor, Symbol(f"tanh({part})")])
+        return factor
+    return multiply([factor, _curve(term, force_side(term.force, analysis), analysis.network)])
+
+
+def _curve(term: Term, force: Expression | None, network: Network) -> Expression:
+    """Return the curve of a term at a force, None standing for an infinite one."""
+    match term.curve:
+        case Tanh(divisor):
+            if force is None or force == ZERO:
+                return ONE if force is None else ZERO
+            return Symbol(f"tanh({quantity_text(divide(force, number(divisor)), network)})")
+        case LocalChange(u, v):
+            if force is None or force == ZERO:
+                return number(u if force is None else u - v)
+            sizes = ", ".join(fraction_text(x) for x in (u, v))
+            return Symbol(f"psi({sizes}, {quantity_text(force, network)})")
+        case FiniteChange(amount):
+            size = absolute(amount)
+            if force is None or force == ZERO:
+                return size if force is None else ZERO
+            rise, fall = (
+                quantity_text(divide(add([force, part]), number(4)), network)
+                for part in (size, negate(size))
+            )
+            return Symbol(f"2*ln(cosh({rise})/cosh({fall}))")
+
+
+def with_shares(factor: Expression, analysis: Analysis) -> Expression:
+    """Return a factor with S_a/D written out over the rates."""
+
+    def leaf(part: Expression) -> Expression:
+        if not isinstance(part, ShareWithout):
+            return part
+        ring, roots = analysis.rates.ring, range(analysis.graph.size)
+        free = sum((analysis.tree_sum_without(root, part.transition) for root in roots),
+                   ring.constant(0))
+        if not len(free):
+            return ZERO  # a bridge
+        share = divide(Polynomial(ring, free), Polynomial(ring, analysis.normalisation))
+        return analysis.simplified(share).expression()
+
+    return rebuild(factor, leaf)
 
 
 def force_side(force: Force, analysis: Analysis) -> Expression | None:
@@ -78,21 +125,19 @@ def force_side(force: Force, analysis: Analysis) -> Expression | None:
         case OneCycle(cycle):
             found = force_of(cycle, analysis).force
             return None if found is None else absolute(found)
-        case CycleMaximum():
-            return _cycle_maximum(force, analysis)
+        case CycleMaximum() | MixedCycles():
+            return _largest(force, analysis)
 
 
-def _cycle_maximum(force: CycleMaximum, analysis: Analysis) -> Expression | None:
-    forces = [force_of(cycle, analysis).force
-              for cycle in cycles_through(force.transition, analysis)]
+def _largest(force: LargestForce, analysis: Analysis) -> Expression | None:
+    forces = [force_of(cycle, analysis).force for cycle in competing(force, analysis)]
     finite = [found for found in forces if found is not None]
     if len(finite) < len(forces):
         return None
     if not finite:
         return ZERO
     if len(finite) > MAX_CYCLES_SHOWN:
-        name = analysis.network.transitions[force.transition].name
-        return Symbol(f"force_max[{name}]")
+        return Symbol(f"force_max[{force_label(force, analysis)}]")
     return extreme("max", tuple(absolute(found) for found in finite))
 
 

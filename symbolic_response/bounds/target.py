@@ -1,4 +1,4 @@
-"""What a response is a response of: a linear combination of probabilities, or a ratio of two.
+"""What a response is a response of: a combination of probabilities, a ratio of two, a current.
 
 With u_k the response of ln p_k, d<Q> = Cov(Q, u) and d ln(<Q>/<R>) is a difference of weighted
 means of u. Hence every bound on the spread max u - min u, or on a covariance, turns into a bound on
@@ -31,7 +31,7 @@ from symbolic_response.expressions.tree import (
     walk,
 )
 from symbolic_response.network.model import Network
-from symbolic_response.network.quantities import Mean, Probability
+from symbolic_response.network.quantities import Current, Mean, Probability
 
 Values = tuple[Expression, ...]
 """One value for each state, in the symbols of the file."""
@@ -39,11 +39,15 @@ Values = tuple[Expression, ...]
 
 @dataclass(frozen=True, slots=True)
 class Asked:
-    """``kind`` is ``mean`` (<Q>), ``ratio`` (<Q>/<R>) or ``log-ratio`` (ln(<Q>/<R>))."""
+    """``kind`` is ``mean`` (<Q>), ``ratio`` (<Q>/<R>) or ``log-ratio`` (ln(<Q>/<R>)).
+
+    Or ``current``, of a ``transition``, without Q and R.
+    """
 
     kind: str
     above: Values
     below: Values | None
+    transition: int | None = None
 
 
 @dataclass(frozen=True, slots=True)
@@ -51,7 +55,8 @@ class Target:
     """The response of a quantity is ``prefactor`` times that of <Q>, or of ln(<Q>/<R>).
 
     ``values``: Q; ``below``: R, None where the target is <Q> itself. ``mean``: <Q> as a quantity.
-    ``asked``: the quantity as it was asked for: <Q>, <Q>/<R> or ln(<Q>/<R>), with its Q and R.
+    ``asked``: the quantity as it was asked for: <Q>, <Q>/<R> or ln(<Q>/<R>), with its Q and R. The
+    target of a current has no values: only the claims about currents speak of it.
     """
 
     prefactor: Expression
@@ -63,6 +68,8 @@ class Target:
 
 def target_of(quantity: Expression, network: Network) -> Target | None:
     """Return the target of a quantity, None where no bound of the catalogue speaks of it."""
+    if isinstance(quantity, Current):
+        return Target(ONE, (), None, quantity, Asked("current", (), None, quantity.transition))
     linear = linear_values(quantity, network)
     if linear is not None:
         return Target(ONE, linear, None, quantity, Asked("mean", linear, None))
@@ -226,6 +233,13 @@ class Absolute(Expression):
     """The absolute value of a quantity."""
 
     inner: Expression
+
+
+@dataclass(frozen=True, slots=True)
+class ShareWithout(Expression):
+    """S_a/D: the share of the rooted spanning trees, by weight, that do not use a transition."""
+
+    transition: int
 
 
 def extreme(name: str, parts: tuple[Expression, ...]) -> Expression:

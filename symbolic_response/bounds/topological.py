@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from symbolic_response.bounds.claim import CycleMaximum, LargestForce, MixedCycles
 from symbolic_response.response.analysis import Analysis
 from symbolic_response.response.forces import force_of
 from symbolic_response.response.survey import cycle_path, force_text
@@ -14,18 +15,40 @@ def cycles_through(e: int, analysis: Analysis) -> tuple[Cycle, ...]:
     return tuple(cycle for cycle in analysis.cycles if e in cycle.transitions)
 
 
+def competing(force: LargestForce, analysis: Analysis) -> tuple[Cycle, ...]:
+    """Return the cycles of which a force is the largest."""
+    if isinstance(force, CycleMaximum):
+        return cycles_through(force.transition, analysis)
+    inside = set(force.transitions)
+    return tuple(
+        cycle for cycle in analysis.cycles
+        if inside & set(cycle.transitions) and set(cycle.transitions) - inside
+    )
+
+
+def force_label(force: LargestForce, analysis: Analysis) -> str:
+    """Return the transitions that a largest force is about, by name."""
+    chosen = force.transitions if isinstance(force, MixedCycles) else (force.transition,)
+    return ", ".join(analysis.network.transitions[e].name for e in chosen)
+
+
 def cycle_data(e: int, analysis: Analysis) -> dict[str, object]:
     """Return the cycles that compete for F_max(e), each with its force."""
     return {
         "transition": analysis.network.transitions[e].name,
-        "cycles": [
-            {
-                "cycle": cycle_path(cycle, analysis.network),
-                "force": force_text(force_of(cycle, analysis)),
-            }
-            for cycle in cycles_through(e, analysis)
-        ],
+        "cycles": cycles_shown(CycleMaximum(e), analysis),
     }
+
+
+def cycles_shown(force: LargestForce, analysis: Analysis) -> list[dict[str, str]]:
+    """Return the cycles of which a force is the largest, each with its own."""
+    return [
+        {
+            "cycle": cycle_path(cycle, analysis.network),
+            "force": force_text(force_of(cycle, analysis)),
+        }
+        for cycle in competing(force, analysis)
+    ]
 
 
 def end_pair_data(e: int, analysis: Analysis) -> dict[str, object]:
