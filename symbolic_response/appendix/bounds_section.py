@@ -43,6 +43,7 @@ from symbolic_response.expressions.tree import (
 from symbolic_response.expressions.widths import formula_width
 from symbolic_response.network.quantities import (
     BarrierOf,
+    BarriersOf,
     BySymbol,
     DriveOf,
     EnergyOf,
@@ -168,6 +169,9 @@ def _heading(paper: Paper, quantity: Expression) -> str:
             what = f"the energy of ${notation.states[state]}$"
         case BarrierOf(e):
             what = f"the barrier of ${notation.transitions[e]}$"
+        case BarriersOf(transitions):
+            listed = ", ".join(f"${notation.transitions[e]}$" for e in transitions)
+            what = f"the barriers of {listed} together"
         case DriveOf(e):
             what = f"the drive of ${notation.transitions[e]}$"
         case BySymbol(name, logarithmic):

@@ -22,7 +22,7 @@ def introduction(paper: Paper, kind: str, definitions: Sequence[NamedSum]) -> st
     """Return the general formula of a group of results, in a sentence."""
     words = _INTRODUCTIONS.get(kind)
     text = words(paper) if words is not None else ""
-    if kind in ("barrier", "drive", "symbol") and any(
+    if kind in ("barrier", "barriers", "drive", "symbol") and any(
         d.kind in ("forest", "mean forest") for d in definitions
     ):
         text += _mean_forests(paper, definitions)
@@ -110,6 +110,16 @@ with $@current numerator@_e = @rate@^+_e @tree sum@_m - @rate@^-_e @tree sum@_n$
 the current; it vanishes with the current. """ + _forest(paper))
 
 
+def _barriers(paper: Paper) -> str:
+    return filled(paper, r"""The response to several barriers raised together is the sum of the
+responses to each,
+\begin{equation}
+\frac{\partial @probability@_k}{\partial @barrier@_{\{\ldots\}}}
+ = -\sum_{e \in \{\ldots\}} \frac{@current numerator@_e @forest@_{k,e}}{@normalisation@^2} .
+\end{equation}
+""" + _forest(paper))
+
+
 def _drive(paper: Paper) -> str:
     return filled(paper, r"""The response of a probability to a drive is
 \begin{equation}
@@ -143,6 +153,7 @@ _INTRODUCTIONS = {
     "entropy": _entropy,
     "energy": _energy,
     "barrier": _barrier,
+    "barriers": _barriers,
     "drive": _drive,
     "symbol": _symbol,
 }

@@ -13,6 +13,7 @@ from symbolic_response.expressions.tree import ZERO, Expression, Sum
 from symbolic_response.expressions.widths import DISPLAY, formula_width
 from symbolic_response.network.quantities import (
     BarrierOf,
+    BarriersOf,
     DriveOf,
     EnergyOf,
     Response,
@@ -64,6 +65,8 @@ _ACTIONS = {
               r"out of $j$ by $e^{\epsilon}$",
     BarrierOf: r"raising the barrier $@barrier@_e$ of a transition by $\epsilon$ multiplies both "
                r"its rates by $e^{-\epsilon}$",
+    BarriersOf: r"raising several barriers together, $@barrier@_{\{\ldots\}}$, by $\epsilon$ "
+                r"multiplies all rates of these transitions by $e^{-\epsilon}$",
     DriveOf: r"raising the drive $@drive@_e$ of a transition by $\epsilon$ multiplies "
              r"$@rate@^+_e$ by $e^{\epsilon/2}$ and $@rate@^-_e$ by $e^{-\epsilon/2}$",
 }

@@ -35,6 +35,7 @@ from symbolic_response.expressions.tree import (
 from symbolic_response.expressions.widths import formula_width
 from symbolic_response.network.quantities import (
     BarrierOf,
+    BarriersOf,
     BySymbol,
     Current,
     DriveOf,
@@ -82,6 +83,7 @@ HEADINGS = {
     "entropy": "Entropy production",
     "energy": "Responses to energies",
     "barrier": "Responses to barriers",
+    "barriers": "Responses to several barriers raised together",
     "drive": "Responses to drives",
     "symbol": "Responses to parameters",
     "other": "Further quantities",
@@ -105,6 +107,8 @@ def kind_of(quantity: Expression) -> str:
             return "energy"
         case Response(_, BarrierOf()):
             return "barrier"
+        case Response(_, BarriersOf()):
+            return "barriers"
         case Response(_, DriveOf()):
             return "drive"
         case Response(_, BySymbol()):

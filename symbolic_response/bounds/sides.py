@@ -35,6 +35,7 @@ from symbolic_response.expressions.tree import (
 from symbolic_response.network.model import Network
 from symbolic_response.network.quantities import (
     BarrierOf,
+    BarriersOf,
     Current,
     DirectedRate,
     DriveOf,
@@ -204,6 +205,9 @@ def perturbation_text(perturbation: Perturbation, network: Network) -> str:
             return f"energy[{network.states[state].name}]"
         case BarrierOf(e):
             return f"barrier[{network.transitions[e].name}]"
+        case BarriersOf(transitions):
+            names = [network.transitions[e].name for e in transitions]
+            return f"barrier[{', '.join(names)}]"
         case DriveOf(e):
             return f"drive[{network.transitions[e].name}]"
     return f"ln {perturbation.name}" if perturbation.logarithmic else perturbation.name

@@ -39,6 +39,7 @@ from symbolic_response.expressions.tree import (
 )
 from symbolic_response.network.quantities import (
     BarrierOf,
+    BarriersOf,
     BySymbol,
     Current,
     DirectedRate,
@@ -229,6 +230,8 @@ class NumericPoints:
                 return rate * float(state == source)
             case BarrierOf(which):
                 return -rate * float(which == e)
+            case BarriersOf(several):
+                return -rate * float(e in several)
             case DriveOf(which):
                 return rate * (0.5 - backward) * float(which == e)
             case BySymbol():

@@ -68,6 +68,16 @@ class BarrierOf:
 
 
 @dataclass(frozen=True, slots=True)
+class BarriersOf:
+    """Raising the barriers of several transitions by eps multiplies all their rates by e^-eps.
+
+    Two or more different transitions, in file order.
+    """
+
+    transitions: tuple[int, ...]
+
+
+@dataclass(frozen=True, slots=True)
 class DriveOf:
     """Raising ``drive[transition]`` by eps multiplies its rates by e^(eps/2) and e^(-eps/2)."""
 
@@ -82,7 +92,7 @@ class BySymbol:
     logarithmic: bool = False
 
 
-Perturbation = EnergyOf | BarrierOf | DriveOf | BySymbol
+Perturbation = EnergyOf | BarrierOf | BarriersOf | DriveOf | BySymbol
 
 
 @dataclass(frozen=True, slots=True)

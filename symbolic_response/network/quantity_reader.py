@@ -17,6 +17,7 @@ from symbolic_response.expressions.tree import Expression, function, power, symb
 from symbolic_response.network.model import Network, nearest
 from symbolic_response.network.quantities import (
     BarrierOf,
+    BarriersOf,
     BySymbol,
     Current,
     DirectedRate,
@@ -169,13 +170,7 @@ class _Reader:
         if first.text in ("energy", "barrier", "drive"):
             names, after = _names_in_brackets(tokens, 1, first.text)
             _expect_end(tokens, after)
-            if len(names) != 1:
-                raise ExpressionError(f"{first.text}[...] takes one name", first.position)
-            self.check_kind(first, names[0])
-            if first.text == "energy":
-                return EnergyOf(self.network.state_index(names[0]))
-            transition = self.network.transition_index(names[0])
-            return BarrierOf(transition) if first.text == "barrier" else DriveOf(transition)
+            return self.elementary(first, names)
         logarithmic = first.text == "ln"
         rest = tokens[1:] if logarithmic else tokens
         if logarithmic and rest[0].text == "(" and len(rest) > 2 and rest[2].text == ")":
@@ -185,12 +180,28 @@ class _Reader:
             raise ExpressionError(f"write d / d ln {named}, not log", first.position)
         if rest[0].kind != "name":
             raise ExpressionError(
-                "a perturbation is energy[state], barrier[transition], drive[transition],"
-                " a symbol, or ln of a positive symbol",
+                "a perturbation is energy[state], barrier[transition], barrier[several, of, them],"
+                " drive[transition], a symbol, or ln of a positive symbol",
                 rest[0].position,
             )
         _expect_end(rest, 1)
         return self.symbol_perturbation(rest[0], logarithmic)
+
+    def elementary(self, kind: Token, names: list[str]) -> Perturbation:
+        """Return the energy, barrier or drive that is named, or several barriers together."""
+        for name in names:
+            self.check_kind(kind, name)
+        if kind.text != "barrier" and len(names) != 1:
+            hint = "; barriers are raised together by barrier[a, b]" if kind.text == "drive" else ""
+            raise ExpressionError(f"{kind.text}[...] takes one name{hint}", kind.position)
+        if kind.text == "energy":
+            return EnergyOf(self.network.state_index(names[0]))
+        chosen = sorted(self.network.transition_index(name) for name in names)
+        if kind.text == "drive":
+            return DriveOf(chosen[0])
+        if len(set(chosen)) != len(chosen):
+            raise ExpressionError("a transition is named twice", kind.position)
+        return BarrierOf(chosen[0]) if len(chosen) == 1 else BarriersOf(tuple(chosen))
 
     def check_kind(self, kind: Token, name: str) -> None:
         """Say so where a state stands for a transition or the other way round."""

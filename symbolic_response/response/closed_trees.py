@@ -35,6 +35,7 @@ from symbolic_response.expressions.tree import (
 )
 from symbolic_response.network.quantities import (
     BarrierOf,
+    BarriersOf,
     BySymbol,
     Current,
     DirectedRate,
@@ -177,6 +178,11 @@ def rate_changes(perturbation: Perturbation, analysis: Analysis) -> RateChanges:
             }
         case BarrierOf(e):
             pair = ((rates.forward[e], number(-1)), (rates.backward[e], number(-1)))
+        case BarriersOf(transitions):
+            return {
+                place: number(-1)
+                for place, (e, _) in enumerate(rates.directions()) if e in transitions
+            }
         case DriveOf(e):
             pair = ((rates.forward[e], number(half)), (rates.backward[e], number(-half)))
         case BySymbol(name, _):

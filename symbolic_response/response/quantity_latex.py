@@ -25,6 +25,7 @@ from symbolic_response.network.checks import expressions_of
 from symbolic_response.network.model import Network
 from symbolic_response.network.quantities import (
     BarrierOf,
+    BarriersOf,
     BySymbol,
     Current,
     DirectedRate,
@@ -157,6 +158,9 @@ def _generic_perturbation(notation: Notation, perturbation: Perturbation) -> str
             return notation.indexed("energy", notation.states[state])
         case BarrierOf(e):
             return notation.indexed("barrier", notation.transitions[e])
+        case BarriersOf(transitions):
+            inside = ",".join(notation.transitions[e] for e in transitions)
+            return notation.indexed("barrier", rf"\{{{inside}\}}")
         case DriveOf(e):
             return notation.indexed("drive", notation.transitions[e])
         case BySymbol(name, logarithmic):

@@ -38,6 +38,7 @@ from symbolic_response.expressions.tree import (
 from symbolic_response.network.model import Network, Transition
 from symbolic_response.network.quantities import (
     BarrierOf,
+    BarriersOf,
     BySymbol,
     Current,
     DirectedRate,
@@ -345,6 +346,8 @@ def elementary_weight(
         case EnergyOf(state) if state == source:
             return Fraction(1)
         case BarrierOf(transition) if transition == e:
+            return Fraction(-1)
+        case BarriersOf(transitions) if e in transitions:
             return Fraction(-1)
         case DriveOf(transition) if transition == e:
             return Fraction(-1, 2) if backward else Fraction(1, 2)
