@@ -43,7 +43,8 @@ def certificate_text(certificate: Certificate, file: str | None) -> str:
 
 def _proof_lines(proved: Proved, network: Network) -> list[str]:
     rows = [("bound", "proved by")]
-    rows += [(claim.name, ", ".join(proof_text(proof, network) for proof in proofs))
+    rows += [(claim.name, ", ".join(proof_text(proof, network) for proof in proofs)
+              or "its pieces")
              for claim, proofs in zip(proved.claims, proved.needs, strict=True)]
     lines = _columns(rows)
     lines.append("each holds for all positive rates of the network")

@@ -1,0 +1,105 @@
+"""Which inequalities get a proof, and that false or unfit ones never do."""
+
+from __future__ import annotations
+
+from collections import Counter
+from dataclasses import replace
+
+import pytest
+
+from symbolic_response.bounds.claim import Claim, CycleMaximum, Term
+from symbolic_response.bounds.curves import Tanh
+from symbolic_response.bounds.registry import claims_for
+from symbolic_response.certificates.certify import certify
+from symbolic_response.certificates.proofs.prove import Proved, prove
+from symbolic_response.certificates.proofs.record import kind_of
+from symbolic_response.certificates.record import record_of
+from symbolic_response.errors import QuantityError
+from symbolic_response.expressions.tree import ONE, divide
+from symbolic_response.network import Network, Rates, build_network
+from symbolic_response.network.quantity_reader import read_quantity
+from symbolic_response.response.analysis import Analysis
+from tests.benchmarks.networks import square_with_chord
+
+RATIO = "d ln(p[s1]/p[s2]) / d barrier[e1_2]"
+
+
+def proved(network: Network, text: str, *claims: Claim) -> Proved:
+    analysis = Analysis(network)
+    quantity = read_quantity(text, network)
+    return prove(analysis, quantity, claims or claims_for(quantity, analysis))
+
+
+def test_what_a_barrier_needs() -> None:
+    found = proved(square_with_chord(), "d p[s1] / d barrier[e1_2]")
+    assert not found.without
+    needs = {claim.name: [kind_of(proof) for proof in proofs]
+             for claim, proofs in zip(found.claims, found.needs, strict=True)}
+    assert needs == {"splitting-end-pair": ["edge", "splitting"], "end-pair": ["edge"],
+                     "splitting-barrier": ["edge", "splitting"], "barrier": ["edge"]}
+    assert Counter(map(kind_of, found.proofs)) == {"edge": 1, "splitting": 1}  # each once
+
+
+@pytest.mark.parametrize("divisor", [5, 3])
+def test_another_divisor_is_never_proved(divisor: int) -> None:
+    """tanh(F/5) is false, tanh(F/3) true but no theorem here: neither gets a certificate."""
+    analysis = Analysis(square_with_chord())
+    (claim,) = claims_for(read_quantity(RATIO, analysis.network), analysis, "barrier")
+    (term,) = claim.right
+    other = replace(claim, right=(replace(term, curve=Tanh(divisor)),))
+    found = proved(analysis.network, RATIO, other)
+    assert not found.claims and not found.proofs
+    ((_, why),) = found.without
+    assert "not an inequality of the catalogue" in why
+
+
+def test_false_statements_about_currents_are_never_proved() -> None:
+    """|d J_a/d J_e| <= 1 and |d ln tau_e/d barrier[e]| <= 1 (both false: see mutual linearity,
+    Harunari et al., Phys. Rev. Lett. 133, 047401 (2024), for the slope dJ_a/dJ_e)."""
+    network = square_with_chord()
+    analysis = Analysis(network)
+    slope = divide(read_quantity("d current[e2_3] / d barrier[e1_2]", network),
+                   read_quantity("d current[e1_2] / d barrier[e1_2]", network))
+    traffic = read_quantity("d ln traffic[e1_2] / d barrier[e1_2]", network)
+    for left in (slope, traffic):
+        for name in ("current-range", "barrier"):
+            claim = Claim(name, left, (Term(ONE),), {}, "", "")
+            assert not prove(analysis, left, [claim]).claims
+        with pytest.raises(QuantityError):
+            claims_for(left, analysis)
+    shorter = Claim("barrier", read_quantity(RATIO, network),
+                    (Term(ONE, CycleMaximum(1)),), {}, "", "")  # the cycles of another transition
+    assert not proved(network, RATIO, shorter).claims
+
+
+def ring(rate: str, **observables: dict[str, str]) -> Network:
+    return build_network("ring", states="A B C", transitions=[
+        Rates("A", "B", rate, "k", name="ab"), Rates("B", "C", "m", "2", name="bc"),
+        Rates("C", "A", "m", "k", name="ca")], observables=observables)
+
+
+@pytest.mark.parametrize(("network", "text", "why"), [
+    (ring("k*c - m"), "d p[A] / d barrier[ab]", "need not be positive"),
+    (ring("k*(1 + c)"), "d p[A] / d ln c", "does not change by a constant factor with c"),
+    (ring("k*c", q={"A": "(c + 1)*(c - 1) + 1 + c", "B": "1"}), "d ln mean[q] / d barrier[ab]",
+     "not negative"),
+])
+def test_the_reason_is_given(network: Network, text: str, why: str) -> None:
+    analysis = Analysis(network)
+    quantity = read_quantity(text, network)
+    found = prove(analysis, quantity, claims_for(quantity, analysis))
+    assert not found.claims and all(why in reason for _, reason in found.without)
+
+
+def test_methods() -> None:
+    network = ring("k*(1 + c)")
+    text = "d p[A] / d ln c"
+    strongest = certify(network, text, count=5, workers=1)
+    assert strongest.points is not None and not strongest.without
+    only = certify(network, text, method="proof")
+    assert only.points is None and len(only.without) == len(strongest.points.claims)
+    with pytest.raises(QuantityError, match="nothing was certified"):
+        record_of(only, Analysis(network))
+    assert certify(network, "d p[A] / d barrier[ab]", count=5).points is None
+    with pytest.raises(QuantityError, match="there is no method"):
+        certify(network, text, method="guess")
