@@ -39,8 +39,9 @@ def names(network: Network, text: str) -> list[str]:
      ["splitting-end-pair", "end-pair", "splitting-barrier", "barrier"]),
     ("d (p[A] + p[B]) / d drive[bind]", ["splitting-drive", "drive"]),
     ("d p[A]/p[B] / d barrier[bind]", ["end-pair", "barrier"]),
-    ("d mean[q] / d ln c", ["parameter", "support"]),
-    ("d ln p[A] / d c", ["parameter", "support"]),
+    ("d mean[q] / d ln c", ["local-change", "parameter", "directed-bundle", "support"]),
+    ("d ln p[A] / d c", ["parameter", "directed-bundle", "support"]),
+    ("d ln p[A] / d barrier[bind, flip]", ["bundle", "parameter", "directed-bundle"]),
     ("ln(p[A]/p[B])", ["path", "path"]),
     ("p[A]/p[B]", ["path", "path"]),
     ("d current[bind] / d barrier[bind]", ["current-exact", "current-range"]),
@@ -236,7 +237,7 @@ def test_messages_say_what_the_catalogue_speaks_of() -> None:
     ]:
         with pytest.raises(QuantityError, match=words):
             claims_for(read_quantity(text, RING), analysis)
-    with pytest.raises(QuantityError, match="those that apply: parameter, support"):
+    with pytest.raises(QuantityError, match="those that apply: parameter, directed-bundle"):
         claims_for(read_quantity("d p[A] / d c", RING), analysis, "barrier")
 
 

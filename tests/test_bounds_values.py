@@ -151,7 +151,7 @@ class Oracle:
     def moves(self, by: str) -> Moves:
         """Return d ln w/d theta of every directed rate."""
         found = [[Fraction(0), Fraction(0)] for _ in self.ends]
-        named = re.fullmatch(r"(energy|barrier|drive)\[(\w+)\]", by)
+        named = re.fullmatch(r"(energy|barrier|drive)\[(\w+(?:, \w+)*)\]", by)
         if named is None:
             for e, pair in enumerate(self.texts):
                 for side, text in enumerate(pair):
@@ -163,7 +163,7 @@ class Oracle:
                 if kind == "energy":
                     source = self.network.states[self.ends[e][side]].name
                     found[e][side] = Fraction(int(source == name))
-                elif transition.name == name:
+                elif transition.name in name.split(", "):
                     found[e][side] = (Fraction(-1) if kind == "barrier"
                                       else Fraction(1 - 2 * side, 2))
         return found
@@ -199,11 +199,12 @@ class Oracle:
             against *= self.rates[e][1 if ahead else 0]
         return along, against
 
-    def cycle_force(self, e: int) -> Fraction | None:
-        """Return exp(F_max(e)), None if infinite."""
+    def cycle_force(self, e: int | Callable[[set[int]], bool]) -> Fraction | None:
+        """Return exp(F_max(e)), or of the cycles that a condition accepts; None if infinite."""
         best = Fraction(1)
         for cycle in nx.simple_cycles(self.subdivided):
-            if ("t", e) not in cycle:
+            through = {node[1] for node in cycle if isinstance(node, tuple)}
+            if not (e(through) if callable(e) else e in through):
                 continue
             start = next(i for i, node in enumerate(cycle) if not isinstance(node, tuple))
             turned = cycle[start:] + cycle[:start]
@@ -272,9 +273,9 @@ class Oracle:
     def expected(self, name: str, target: Target, by: str) -> list[Weighted]:
         """Return the terms of the right side of a bound, from its statement."""
         y, s, q = target.factors(self)
-        kind, _, where = by.rstrip("]").partition("[")
+        _, _, where = by.rstrip("]").partition("[")
         names = [t.name for t in self.network.transitions]
-        e = names.index(where) if kind in ("barrier", "drive") else -1
+        e = names.index(where) if where in names else -1
         centred = [p * (value - self.mean(q)) for p, value in zip(self.p, q, strict=True)]
         if name == "energy-covariance":
             j = [state.name for state in self.network.states].index(where)
@@ -283,6 +284,10 @@ class Oracle:
             return [Weighted(y)]
         if name in ("parameter", "support"):
             return self.of_parameter(name, y, self.moves(by))
+        if name.endswith("bundle"):
+            return [self.of_bundle(name, y, self.moves(by))]
+        if name.startswith("local"):
+            return self.of_local(name, y, self.moves(by))
         factor = y
         if name.startswith("splitting"):
             factor = s * max(abs(sum(centred[k] for k in side)) for side in self.splittings(e))
@@ -290,6 +295,51 @@ class Oracle:
             return [Weighted(factor / 2 if self.texts[e][1] is None else factor)]
         force = self.cross_ratio(e) if name.endswith("end-pair") else self.cycle_force(e)
         return [Weighted(factor, force)]
+
+    def all_trees(self) -> Iterator[tuple[int, ...]]:
+        """Yield every spanning tree that can be directed to some root, by trying all sets."""
+        for chosen in combinations(range(len(self.ends)), self.size - 1):
+            graph = nx.MultiGraph([self.ends[e] for e in chosen])
+            if len(graph) == self.size and nx.is_connected(graph):
+                yield chosen
+
+    def of_bundle(self, name: str, y: Fraction, moves: Moves) -> Weighted:
+        """Derived here; bundles by counting in all trees, forces over all cycles."""
+        moved = {(e, side): v for e, pair in enumerate(moves) for side, v in enumerate(pair) if v}
+        (kappa,) = {abs(v) for v in moved.values()}
+        inside = {e for e, _ in moved}
+        if name == "bundle":
+            uses = [len(inside & set(tree)) for tree in self.all_trees()]
+            assert max(uses) - min(uses) <= 1
+            if max(uses) == min(uses):
+                return Weighted(Fraction(0))
+            return Weighted(y * kappa, self.cycle_force(
+                lambda cycle: bool(inside & cycle) and bool(cycle - inside)))
+        uses = []
+        for tree in self.all_trees():
+            for root_state in range(self.size):
+                graph = nx.Graph([self.ends[e] for e in tree])
+                sides = [(e, 0 if nx.shortest_path_length(graph, self.ends[e][1], root_state)
+                          < nx.shortest_path_length(graph, self.ends[e][0], root_state) else 1)
+                         for e in tree]
+                if all(self.texts[e][side] is not None for e, side in sides):
+                    uses.append(sum(step in moved for step in sides))
+        return Weighted(y * kappa * (max(uses) - min(uses)))
+
+    def of_local(self, name: str, y: Fraction, moves: Moves) -> list[Weighted]:
+        """Derived here; psi as the largest of its own variational form, by its closed form."""
+        (e,) = {e for e, pair in enumerate(moves) if any(pair)}
+        u, v = sorted(map(abs, moves[e]), reverse=True)
+        if moves[e][0] * moves[e][1] <= 0:
+            return [Weighted(y * (u + v))]
+        r = self.cross_ratio(e) if name == "local-end-pair" else self.cycle_force(e)
+        if r is None:
+            return [Weighted(y * u)]
+        if r == 1 or v * r <= u:
+            return [Weighted(y * (u - v))]
+        if u == v:
+            return [Weighted(y * u, r)]
+        return [Weighted(y * (u - v)), Weighted(y * (v * r - u) / (r - 1), v * r / u)]
 
     def of_parameter(self, name: str, y: Fraction, moves: Moves) -> list[Weighted]:
         leaving: dict[int, list[Fraction]] = {k: [] for k in range(self.size)}
@@ -302,6 +352,11 @@ class Oracle:
             (size,) = {abs(v) for k in moved for v in leaving[k] if v}
             return [Weighted(y * size * len(moved))]
         heights = [leaving[k][0] if len(set(leaving[k])) == 1 else Fraction(0) for k in leaving]
+        options = [self.pieces(y, moves, h) for h in (heights, [Fraction(0)] * self.size)]
+        totals = [sum((t.factor for t in option), Fraction(0)) for option in options]
+        return options[1] if len(options[1]) > 1 and totals[1] <= totals[0] else options[0]
+
+    def pieces(self, y: Fraction, moves: Moves, heights: list[Fraction]) -> list[Weighted]:
         fixed, shared = max(heights) - min(heights), []
         for e, (first, second) in enumerate(self.ends):
             x, z = moves[e][0] - heights[first], moves[e][1] - heights[second]
@@ -400,6 +455,13 @@ NETWORKS: dict[str, Callable[[], Network]] = {
     "tree": lambda: _net("tree", "A B C D", [
         Rates("A", "B", "c", "k", name="e"), Rates("A", "C", "u", "c**2", name="f"),
         Rates("D", "A", "v", "w", name="g")]),
+    "scaled": lambda: _net("scaled", "A B C D", [
+        Rates("A", "B", "c*k", "c*u", name="e"), Rates("B", "C", "v*k**2", "k", name="f"),
+        Rates("C", "A", "c", name="g"), Rates("C", "D", "u", "v", name="h"),
+        Rates("C", "D", "v**3*u", "v", name="i")]),
+    "two powers": lambda: _net("two powers", "A B C", [
+        Rates("A", "B", "2*c**2", "c", name="e"), Rates("B", "C", "k/3", "5*k**2", name="f"),
+        Rates("C", "A", "u**2", "u/7", name="g"), Rates("A", "C", "1", "3", name="h")]),
     "roots": lambda: _net("roots", "A B C", [
         Rates("A", "B", "sqrt(c)", "k", name="e"), Rates("B", "C", "k*sqrt(u)", "c", name="f"),
         Rates("C", "A", "u", "v/c**2", name="g")]),
@@ -432,6 +494,9 @@ def perturbations(network: Network) -> list[str]:
     found = ["energy[A]", "energy[B]"]
     for transition in network.transitions[:3]:
         found += [f"barrier[{transition.name}]", f"drive[{transition.name}]"]
+    chosen = [transition.name for transition in network.transitions]
+    found += [f"barrier[{', '.join(part)}]" for part in (chosen[:2], chosen[1:], chosen)
+              if len(part) > 1]
     for entry in network.symbols[:3]:
         found.append(f"ln {entry.name}" if entry.positive else entry.name)
     return found

@@ -67,6 +67,10 @@ WORDS = {
     "parameter": "by energies, barriers and single rates",
     "support": "by the number of states whose rates the parameter multiplies",
     "path": "by the paths between the states",
+    "local-change": "by the largest cycle force, both rates changing by powers of their own",
+    "local-end-pair": "by the ends of the transition, both rates changing by powers of their own",
+    "bundle": "by the cycles that leave the set of transitions",
+    "directed-bundle": "by how many of the rates spanning trees use",
     "current-exact": "exactly, by the trees that do not use the transition",
     "current-range": "by the current or the traffic itself",
 }
@@ -109,6 +113,19 @@ def _definitions(paper: Paper, claims: Sequence[Claim]) -> str:
         text.append(r"In the exact response of the current of a transition to its own barrier or "
                     r"drive, $a_k$ is the part of $@tree sum@_k$ from trees that do not use the "
                     r"transition.")
+    if any(isinstance(force, MixedCycles) for force in forces):
+        text.append(r"$@force@_{\max}(\{\ldots\})$, of a set of transitions such that all spanning "
+                    r"trees use $r$ or $r + 1$ of them, is the largest $|@force@_c|$ of the cycles "
+                    r"with transitions both inside and outside the set: all $@tree sum@_k$ are "
+                    r"$z^r (a_k + z b_k)$ in a common factor $z$ of their rates.")
+    if any(isinstance(term.curve, LocalChange) for claim in claims for term in claim.right):
+        text.append(r"For rates of one transition that change by powers $u \ge v \ge 0$ of one "
+                    r"sign, $\psi_{u,v}(x) = (\sqrt{u\,e^{x}} - \sqrt{v})^2/(e^{x} - 1)$ where "
+                    r"$v\,e^{x} \ge u$ and $x > 0$, else $u - v$; $\psi_{u,u}(x) = u \tanh(x/4)$.")
+    if any(claim.name == "directed-bundle" for claim in claims):
+        text.append(r"Where a parameter $z$ is a factor of some of the rates, the responses of all "
+                    r"$\ln @tree sum@_k$ to $\ln z$ lie between the least and the largest number "
+                    r"of these rates in a directed spanning tree.")
     if any("splitting" in claim.name for claim in claims):
         text.append(r"A splitting $S$ of a transition is a set of states that contains its first "
                     r"state and not its second, $S$ and the other states each being connected; "

@@ -29,7 +29,8 @@ TANH = Tanh()
 class LocalChange:
     """psi(u, v, F) for u = ``larger`` >= v = ``smaller`` >= 0.
 
-    (sqrt(u R) - sqrt(v))^2/(R - 1) where v R >= u and R > 1, u where R is infinite, else u - v.
+    (sqrt(u R) - sqrt(v))^2/(R - 1) where v R >= u and R > 1, u where R is infinite, else u - v;
+    u tanh(F/4) for u = v.
     """
 
     larger: Fraction

@@ -1,4 +1,4 @@
-"""Responses to a control parameter that enters several rates."""
+"""Responses to a control parameter that enters several rates, or to several barriers."""
 
 from __future__ import annotations
 
@@ -13,12 +13,13 @@ from symbolic_response.expressions.signs import certain_sign
 from symbolic_response.expressions.tree import (
     ZERO,
     Expression,
+    Number,
     add,
     multiply,
     negate,
     number,
 )
-from symbolic_response.network.quantities import BySymbol
+from symbolic_response.network.quantities import BarriersOf, BySymbol
 from symbolic_response.response.analysis import Analysis
 from symbolic_response.response.closed_trees import RateChanges, rate_changes, uniform_states
 
@@ -43,13 +44,36 @@ class Decomposition:
 
 
 def decompose(changes: RateChanges, analysis: Analysis) -> Decomposition:
-    """Return the decomposition of the changes of the logarithms of the rates."""
+    """Return the decomposition of the changes of the logarithms of the rates.
+
+    With the energies of all states whose rates change alike, or with barriers and single rates
+    alone where that limits the response no less, however large the forces.
+    """
     left = dict(changes)
     energies: list[Expression] = [ZERO] * analysis.graph.size
     for state, change, leaving in uniform_states(changes, analysis):
         energies[state] = change
         for place in leaving:
             del left[place]
+    first = _with_energies(energies, left, analysis)
+    other = _with_energies([ZERO] * analysis.graph.size, changes, analysis)
+    size, other_size = _largest(first), _largest(other)
+    if not other.barriers or size is None or other_size is None:
+        return first
+    return other if other_size <= size else first
+
+
+def _largest(parts: Decomposition) -> Fraction | None:
+    """Return H where every tanh is one, None if a piece is not a number."""
+    fixed = [extreme("max", parts.energies), negate(extreme("min", parts.energies))]
+    total = add([*fixed, *parts.barriers.values(), *parts.singles.values()])
+    return total.value if isinstance(total, Number) else None
+
+
+def _with_energies(
+    energies: list[Expression], left: RateChanges, analysis: Analysis
+) -> Decomposition:
+    """Return the decomposition, given the energies and the changes that are left."""
     barriers: dict[int, Expression] = {}
     singles: dict[int, Expression] = {}
     for e, forward in enumerate(analysis.rates.forward):
@@ -68,21 +92,21 @@ def _shared(
     ahead: Expression, behind: Expression, positive: frozenset[str]
 ) -> tuple[Expression, Expression]:
     """Return the sizes of the barrier part and of the rest of two changes."""
-    difference = _size(add([ahead, negate(behind)]), positive)
+    difference = size_of(add([ahead, negate(behind)]), positive)
     if ahead == behind:
-        return _size(ahead, positive), ZERO
+        return size_of(ahead, positive), ZERO
     if ZERO in (ahead, behind):
         return ZERO, difference
     signs = certain_sign(ahead, positive), certain_sign(behind, positive)
     if None not in signs and signs[0] == signs[1]:
-        return extreme("min", (_size(ahead, positive), _size(behind, positive))), difference
+        return extreme("min", (size_of(ahead, positive), size_of(behind, positive))), difference
     if None not in signs:
         return ZERO, difference
     half = multiply([number(Fraction(1, 2)), add([ahead, behind])])
     return absolute(half), difference
 
 
-def _size(node: Expression, positive: frozenset[str]) -> Expression:
+def size_of(node: Expression, positive: frozenset[str]) -> Expression:
     """Return the absolute value of an expression of symbols, its sign used where it is certain."""
     sign = certain_sign(node, positive)
     if sign is None:
@@ -97,7 +121,9 @@ def parameter(question: Question) -> Claim | None:
     rates written as energies a, barriers b and single rates, of which each counts at most 1.
     """
     perturbation, analysis = question.response.perturbation, question.analysis
-    if not isinstance(perturbation, BySymbol) or depends_on(question.target, perturbation.name):
+    if not isinstance(perturbation, BySymbol | BarriersOf):
+        return None
+    if isinstance(perturbation, BySymbol) and depends_on(question.target, perturbation.name):
         return None
     parts = decompose(rate_changes(perturbation, analysis), analysis)
     factor = spread_factor(question.target)
@@ -144,7 +170,7 @@ def support(question: Question) -> Claim | None:
         analysis.graph.ends[directions[place][0]][1 if directions[place][1] else 0]
         for place in changes
     })
-    power = _size(next(iter(changes.values())), analysis.domain.positive)
+    power = size_of(next(iter(changes.values())), analysis.domain.positive)
     factor = multiply([number(len(sources)), power, spread_factor(question.target)])
     names = [analysis.network.states[k].name for k in sources]
     return Claim(

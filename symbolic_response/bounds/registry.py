@@ -6,11 +6,13 @@ from collections.abc import Callable
 from dataclasses import replace
 
 from symbolic_response.bounds.barrier import barrier
+from symbolic_response.bounds.bundle import bundle, directed_bundle
 from symbolic_response.bounds.claim import Claim, Question
 from symbolic_response.bounds.currents import current_exact, current_range
 from symbolic_response.bounds.drive import drive
 from symbolic_response.bounds.end_pair import end_pair
 from symbolic_response.bounds.energy import energy_covariance, energy_range
+from symbolic_response.bounds.local import local_change, local_end_pair
 from symbolic_response.bounds.parameter import parameter, support
 from symbolic_response.bounds.path import path_bounds
 from symbolic_response.bounds.sides import quantity_text
@@ -41,7 +43,11 @@ ABOUT_STATES: dict[str, Rule] = {
     "barrier": barrier,
     "splitting-drive": splitting_drive,
     "drive": drive,
+    "local-end-pair": local_end_pair,
+    "local-change": local_change,
+    "bundle": bundle,
     "parameter": parameter,
+    "directed-bundle": directed_bundle,
     "support": support,
 }
 CATALOGUE: dict[str, Rule] = {**ABOUT_STATES, **ABOUT_CURRENTS}
@@ -51,7 +57,10 @@ SPEAKS_OF = (
     " mean, a ratio of two of them or its ln; of d current[e] / d barrier[e] and / d drive[e], the"
     " same transition; and, for the path bound, of p[A]/p[B] and its ln"
 )
-BY_RANGE = ("energy-range", "end-pair", "barrier", "drive", "parameter", "support")
+BY_RANGE = (
+    "energy-range", "end-pair", "barrier", "drive", "local-end-pair", "local-change", "bundle",
+    "parameter", "directed-bundle", "support",
+)
 
 
 def claims_for(

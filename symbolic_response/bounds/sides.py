@@ -14,7 +14,7 @@ from symbolic_response.bounds.claim import (
 )
 from symbolic_response.bounds.curves import FiniteChange, LocalChange, Tanh
 from symbolic_response.bounds.target import Absolute, Extreme, ShareWithout, absolute, extreme
-from symbolic_response.bounds.topological import competing, force_label
+from symbolic_response.bounds.topological import competing, force_names
 from symbolic_response.expressions.ring import Polynomial
 from symbolic_response.expressions.text import expression_text, fraction_text
 from symbolic_response.expressions.tree import (
@@ -138,7 +138,7 @@ def _largest(force: LargestForce, analysis: Analysis) -> Expression | None:
     if not finite:
         return ZERO
     if len(finite) > MAX_CYCLES_SHOWN:
-        return Symbol(f"force_max[{force_label(force, analysis)}]")
+        return Symbol(f"force_max[{force_names(force, analysis)}]")
     return extreme("max", tuple(absolute(found) for found in finite))
 
 

@@ -27,6 +27,12 @@ def competing(force: LargestForce, analysis: Analysis) -> tuple[Cycle, ...]:
 
 
 def force_label(force: LargestForce, analysis: Analysis) -> str:
+    """Return what the cycles of a largest force run through, in words."""
+    names = force_names(force, analysis)
+    return f"{names} and others" if isinstance(force, MixedCycles) else names
+
+
+def force_names(force: LargestForce, analysis: Analysis) -> str:
     """Return the transitions that a largest force is about, by name."""
     chosen = force.transitions if isinstance(force, MixedCycles) else (force.transition,)
     return ", ".join(analysis.network.transitions[e].name for e in chosen)
