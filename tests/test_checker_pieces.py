@@ -262,7 +262,7 @@ def test_a_rate_that_is_no_text_and_ties_of_constant_observables() -> None:
 def test_cycles_of_equal_force_and_cycles_that_cannot_be_run() -> None:
     def force(ends: list[tuple[int, int]], one_way: list[bool], rates: list[F]) -> F | None:
         graph = Graph(1 + max(map(max, ends)), ends, one_way, work())
-        return bounds._largest_force(graph, 0, Solved("", {}, rates, [], []), work())
+        return bounds._largest_force(graph, graph.cycles(0), Solved("", {}, rates, [], []), work())
 
     double = [(0, 1), (0, 1), (0, 1)]
     two = F(2)
@@ -310,7 +310,7 @@ def test_statements(kind: str, above: str, below: str | None, moved: tuple[str, 
     net = record.Network({"k": True, "ab": True}, ["A", "B", "C"], ["ab"], [(0, 1)], [])
     word, what = moved
     change = (record.Perturbation("symbol", -1, word, what) if isinstance(what, bool)
-              else record.Perturbation(word, 0, "", False))
+              else record.Perturbation(word, 0, "", False, (0,)))
     made = record.Record(net, record.Target(kind, side(above), side(below) if below else None),
                          change, None, 0, [], [])
     assert statement(made) == f"{said}: "

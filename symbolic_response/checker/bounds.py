@@ -1,50 +1,21 @@
-"""The claims: the right side of each, whether it holds at a point, and the ratio of the sides."""
+"""The claims at a point: the right side of each, whether it holds, and the ratio of the sides."""
 
 from __future__ import annotations
 
 from fractions import Fraction
 from math import isqrt, prod
 
-from .expressions import HALF, ONE, ZERO, Expression
-from .network import Graph, Path, determinant, generator
-from .point import Solved, dot, evaluate
+from .changes import bundle, check_pieces, directed, support
+from .claims import EQUALITIES, constant
+from .expressions import HALF, ONE, ZERO
+from .network import Graph, Path, determinant, generator, minor
+from .point import Solved, dot, pieces
 from .reading import Work, invalid
 from .record import Claim, Record, Target
 
 Term = tuple[Fraction, Fraction | None]  # factor, and g of tanh(ln(g)/4): None where tanh is 1
 PRECISIONS = (128, 512, 4096)
 RATIO_BITS = 128
-APPLIES = {
-    "path": ("path",),
-    "energy": ("energy-covariance", "energy-range"),
-    "barrier": ("barrier", "end-pair", "splitting-barrier", "splitting-end-pair"),
-    "drive": ("drive", "splitting-drive"),
-    "symbol": ("parameter", "support"),
-}
-
-
-def check_applies(record: Record) -> None:
-    """Check what does not depend on a point: which claims there can be, and the observables."""
-    kind = record.perturbation.kind if record.perturbation else "path"
-    for i, claim in enumerate(record.claims):
-        if claim.name not in APPLIES[kind]:
-            raise invalid(f"claims[{i}].name", "one of " + ", ".join(APPLIES[kind]), claim.name)
-        if record.target and claim.name.startswith(("energy-covariance", "splitting")):
-            both = (record.target.above, record.target.below)
-            if record.target.kind != "mean" and not any(_constant(one) for one in both):
-                raise invalid(f"claims[{i}].name", "above or below the same for every state",
-                              claim.name)
-    if kind == "symbol" and record.target and record.perturbation:
-        for entry, side in (("above", record.target.above), ("below", record.target.below)):
-            for state, one in zip(record.network.states, side or (), strict=False):
-                if record.perturbation.symbol in one.symbols:
-                    raise invalid(f"target.{entry}.{state}",
-                                  "no symbol that is the perturbation", one.text[:80])
-
-
-def _constant(side: list[Expression] | None) -> bool:
-    return side is not None and len({one.text for one in side}) == 1
-
 
 class Scale:
     """Y, S and the deviations of the observable that S goes with, of a target at a point."""
@@ -53,9 +24,9 @@ class Scale:
         values, self.s, known = at.above, ONE, True
         if target.kind != "mean":
             above, below = dot(at.above, at.p), dot(at.below, at.p)
-            if _constant(target.below):
+            if constant(target.below):
                 self.s = 1 / above
-            elif _constant(target.above):
+            elif constant(target.above):
                 values, self.s = at.below, 1 / below
             else:
                 known = False
@@ -74,7 +45,10 @@ def right_side(record: Record, i: int, at: Solved, graph: Graph, work: Work) -> 
     if record.path is not None:
         return [(_path_product(graph, record.path, at, f"claims[{i}].name"), None)]
     assert record.target is not None and record.perturbation is not None
-    scale, e = Scale(record.target, at), record.perturbation.place
+    e, entry, where = record.perturbation.place, f"claims[{i}].name", f" at {at.where}"
+    if record.target.kind == "current":
+        return [(_current(claim, record.perturbation.kind, e, at, graph, work), None)]
+    scale = Scale(record.target, at)
     if claim.name == "energy-covariance":
         return [(scale.s * abs(scale.deviations[e]), None)]
     if claim.name == "energy-range":
@@ -82,14 +56,33 @@ def right_side(record: Record, i: int, at: Solved, graph: Graph, work: Work) -> 
     if claim.name == "parameter":
         return _parameter(record, i, at, scale.y, graph, work)
     if claim.name == "support":
-        return [(scale.y * _support(graph, at, f"claims[{i}].name"), None)]
+        return [(scale.y * support(at.moves, graph, entry, where), None)]
+    if claim.name == "directed-bundle":
+        return [(scale.y * directed(at.moves, graph, entry, where), None)]
+    if claim.name == "bundle":
+        kappa, chosen = bundle(at.moves, graph, entry, where)
+        cycles = graph.mixed_cycles(chosen)
+        return [(scale.y * kappa, _largest_force(graph, cycles, at, work) if kappa else None)]
     factor = scale.y
     if claim.name.startswith("splitting"):
         factor = scale.s * _largest_covariance(graph.splittings(e), scale.deviations, work)
     if record.perturbation.kind == "drive":
         return [(factor * HALF if graph.one_way[e] else factor, None)]
-    strength = _end_pair if claim.name.endswith("end-pair") else _largest_force
-    return [(factor, strength(graph, e, at, work))]
+    if claim.name.endswith("end-pair"):
+        return [(factor, _end_pair(graph, e, at, work))]
+    return [(factor, _largest_force(graph, graph.cycles(e), at, work))]
+
+
+def _current(claim: Claim, kind: str, e: int, at: Solved, graph: Graph, work: Work) -> Fraction:
+    """Return the right side of a claim about a current: all trees are one determinant."""
+    first, second = graph.ends[e]
+    along, back = at.rates[2 * e] * at.p[first], at.rates[2 * e + 1] * at.p[second]
+    value = abs(along - back) if kind == "barrier" else (along + back) / 2
+    if claim.name == "current-range":
+        return value
+    sums = [determinant([*generator(graph.states, graph.ends, at.rates, without)[1:],
+                         [ONE] * graph.states], work) for without in (e, -1)]
+    return value * sums[0] / sums[1]
 
 
 def _largest_covariance(splittings: list[int], deviations: list[Fraction],
@@ -109,10 +102,10 @@ def _run_ratio(path: Path, at: Solved, work: Work) -> tuple[int, int]:
     return above, below
 
 
-def _largest_force(graph: Graph, e: int, at: Solved, work: Work) -> Fraction | None:
-    """Return exp(F_max(e)), None where it is infinite."""
+def _largest_force(graph: Graph, cycles: list[Path], at: Solved, work: Work) -> Fraction | None:
+    """Return exp of the largest force of cycles, None where it is infinite."""
     best = (1, 1)
-    for cycle in graph.cycles(e):
+    for cycle in cycles:
         along, against = graph.can_run(cycle), graph.can_run(tuple(j ^ 1 for j in cycle))
         if along != against:
             return None
@@ -129,78 +122,39 @@ def _end_pair(graph: Graph, e: int, at: Solved, work: Work) -> Fraction | None:
     sides = []
     matrix = generator(graph.states, graph.ends, at.rates, without=e)
     for direction, root in enumerate(graph.ends[e]):
-        minor = [[-x for j, x in enumerate(row) if j != root]
-                 for i, row in enumerate(matrix) if i != root]
-        sides.append(at.rates[2 * e + direction] * determinant(minor, work))
+        sides.append(at.rates[2 * e + direction] * determinant(minor(matrix, 1 << root), work))
     if not any(sides):
         return ONE
     return max(sides) / min(sides) if all(sides) else None
 
 
 def _path_product(graph: Graph, ends: tuple[int, int], at: Solved, entry: str) -> Fraction:
-    best = ZERO
-    for path in graph.paths_between(*ends):
-        if graph.can_run(path):
-            if not graph.can_run(tuple(j ^ 1 for j in path)):
-                raise invalid(entry, "only paths that can be run both ways, or against",
-                              "a path that can be run along only")
-            best = max(best, Fraction(*_run_ratio(path, at, graph.work)))
-    return best
+    return max((Fraction(*_run_ratio(path, at, graph.work))
+                for path in paths_along(graph, ends, entry)), default=ZERO)
 
 
-def _support(graph: Graph, at: Solved, entry: str) -> Fraction:
-    """Return m kappa; the rates that leave one state must change alike."""
-    leaving: dict[int, set[Fraction]] = {}
-    for e, ends in enumerate(graph.ends):
-        for direction, state in enumerate(ends):
-            if move := at.moves[2 * e + direction]:
-                leaving.setdefault(state, set()).add(move)
-    sizes = {abs(move) for moves in leaving.values() for move in moves}
-    if len(sizes) > 1 or any(len(moves) > 1 for moves in leaving.values()):
-        raise invalid(entry, f"rates that change alike at {at.where}",
-                      ", ".join(sorted(str(size) for size in sizes)[:4]))
-    return len(leaving) * (sizes.pop() if sizes else ZERO)
+def paths_along(graph: Graph, ends: tuple[int, int], entry: str) -> list[Path]:
+    """Return the paths that can be run along: it must be possible to run them against too."""
+    found = [path for path in graph.paths_between(*ends) if graph.can_run(path)]
+    if not all(graph.can_run(i ^ 1 for i in path) for path in found):
+        raise invalid(entry, "only paths that can be run both ways, or against",
+                      "a path that can be run along only")
+    return found
 
 
 def _parameter(record: Record, i: int, at: Solved, y: Fraction, graph: Graph,
                work: Work) -> list[Term]:
     """Check the decomposition of the changes of rates, and return the terms it gives."""
-    parts = record.claims[i].parts
-    assert parts is not None
-    found = []
-    for key, known, given in zip(
-            ("energies", "barriers", "singles"),
-            (record.network.states, record.network.transitions, record.network.transitions),
-            parts, strict=True):
-        found.append({k: evaluate(one, f"claims[{i}].parts.{key}.{known[k]}", at.where,
-                                  at.symbols, work)[0] for k, one in given.items()})
-        if key != "energies":
-            for k, value in found[-1].items():
-                if value < 0:
-                    raise invalid(f"claims[{i}].parts.{key}.{known[k]}",
-                                  f"no negative value at {at.where}", value)
+    found = pieces(record, record.claims[i], f"claims[{i}].parts", at.where, at.symbols, work)
     energies, barriers, singles = found
-    for e, (first, second) in enumerate(graph.ends):
-        x = at.moves[2 * e] - energies.get(first, ZERO)
-        z = at.moves[2 * e + 1] - energies.get(second, ZERO)
-        rest = None if graph.one_way[e] else z
-        if not _covered(x, rest, barriers.get(e, ZERO), singles.get(e, ZERO)):
-            raise invalid(f"claims[{i}].parts",
-                          f"pieces that give the changes of {record.network.transitions[e]}"
-                          f" at {at.where}", "others")
+    check_pieces(at.moves, graph, found, record.network.transitions, f"claims[{i}].parts",
+                 f" at {at.where}")
     heights = [energies.get(k, ZERO) for k in range(graph.states)]
     first_factor = max(heights) - min(heights) + sum(singles.values(), ZERO)
     terms: list[Term] = [(y * first_factor, None)]
     for e in sorted(barriers):
-        terms.append((y * barriers[e], _largest_force(graph, e, at, work)))
+        terms.append((y * barriers[e], _largest_force(graph, graph.cycles(e), at, work)))
     return terms
-
-
-def _covered(x: Fraction, y: Fraction | None, barrier: Fraction, single: Fraction) -> bool:
-    if y is None:
-        return abs(x) <= single
-    return any(abs(x - b) + abs(y - b) <= single or (x + y == 2 * b and abs(x - y) <= single)
-               for b in (barrier, -barrier))
 
 
 def decide(left: Fraction, terms: list[Term]) -> bool | None:
@@ -265,6 +219,6 @@ def ratio(left: Fraction, terms: list[Term]) -> Fraction | None:
 
 def holds(claim: Claim, left: Fraction, terms: list[Term]) -> bool | None:
     """Decide a claim at a point."""
-    if claim.name == "energy-covariance":
+    if claim.name in EQUALITIES:
         return left == terms[0][0]
     return decide(left, terms)

@@ -3,16 +3,32 @@
 from __future__ import annotations
 
 import os
+from collections.abc import Callable
 from dataclasses import dataclass
 from fractions import Fraction
+from random import SystemRandom
 from typing import Any
 
-from .bounds import Term, check_applies, holds, ratio, right_side
+from .algebra import PRIME
+from .bounds import Term, holds, ratio, right_side
+from .claims import EQUALITIES, check_applies
 from .expressions import bits
+from .needs import check_proof
 from .network import Graph
 from .point import read_values, solve_point
-from .reading import MAX_WORK, Rejected, Verdict, Work, invalid, read_file, shown
-from .record import Claim, Record, read_record
+from .reading import (
+    MAX_WORK,
+    Rejected,
+    Verdict,
+    Work,
+    choice,
+    invalid,
+    items,
+    members,
+    read_file,
+    shown,
+)
+from .record import HEAD, KINDS, Proof, Record, Worst, check_head, read_proof, read_record
 from .statement import statement
 
 
@@ -36,15 +52,59 @@ def check_file(path: str | os.PathLike[str]) -> Verdict:
         return Verdict("incomplete", "file", "a record that fits into memory", "another")
 
 
-def check_record(data: object, most_work: int = MAX_WORK) -> Verdict:
-    """Check a record that was read from JSON."""
+def random_residue() -> int:
+    """Return a random value of a rate modulo the prime, from the operating system."""
+    return 1 + SystemRandom().randrange(PRIME - 1)
+
+
+def check_record(data: object, most_work: int = MAX_WORK,
+                 draw: Callable[[], int] = random_residue) -> Verdict:
+    """Check a record that was read from JSON; ``draw`` gives the random point of compact proofs."""
     try:
-        record = read_record(data)
-        _check(record, Work(most_work))
+        return _check_any(data, KINDS, Work(most_work), draw)
     except Rejected as error:
         return error.verdict
+
+
+def _check_any(data: object, kinds: tuple[str, ...], work: Work,
+               draw: Callable[[], int]) -> Verdict:
+    kind = data.get("kind") if type(data) is dict else "points"
+    if kind not in kinds:
+        choice(kind, "kind", *kinds)
+    if kind == "several":
+        return _check_several(data, work, draw)
+    if kind == "proof":
+        proof = read_proof(data)
+        said = check_proof(proof, _graph(proof, work), draw)
+        return Verdict("valid", got=said, statement=statement(proof))
+    record = read_record(data)
+    _check(record, work)
     claims, points = _number(record.claims, "claim"), _number(record.points, "point")
     return Verdict("valid", got=f"{claims}, {points}", statement=statement(record))
+
+
+def _check_several(data: object, work: Work, draw: Callable[[], int]) -> Verdict:
+    *head, records = members(data, "", *HEAD, "records")
+    check_head(*head)
+    found = []
+    for k, one in enumerate(items(records, "records", 4)):
+        try:
+            found.append(_check_any(one, KINDS[:-1], work, draw))
+        except Rejected as error:
+            wrong = error.verdict
+            raise Rejected(wrong.status, f"records[{k}].{wrong.entry}", wrong.expected,
+                           wrong.got) from None
+    return Verdict("valid", got="; ".join(one.got for one in found),
+                   statement="; ".join(one.statement for one in found))
+
+
+def _graph(record: Record | Proof, work: Work) -> Graph:
+    network = record.network
+    one_way = [backward is None for _, backward in network.rates]
+    graph = Graph(len(network.states), network.ends, one_way, work)
+    if not graph.strongly_connected():
+        raise invalid("network.transitions", "every state within reach of every other", "others")
+    return graph
 
 
 def _number(found: list[Any], word: str) -> str:
@@ -52,16 +112,13 @@ def _number(found: list[Any], word: str) -> str:
 
 
 def _check(record: Record, work: Work) -> None:
-    network, points = record.network, len(record.points)
+    points = len(record.points)
     for k in range(points):
         read_values(record, k, work)
-    one_way = [backward is None for _, backward in network.rates]
-    graph = Graph(len(network.states), network.ends, one_way, work)
-    if not graph.strongly_connected():
-        raise invalid("network.transitions", "every state within reach of every other", "others")
+    graph = _graph(record, work)
     if record.count > points:
         raise invalid("sampling.count", f"at most {points}", record.count)
-    check_applies(record)
+    check_applies(record, record.claims)
     for i, claim in enumerate(record.claims):
         if claim.holds != points:
             raise invalid(f"claims[{i}].holds", str(points), claim.holds)
@@ -80,7 +137,7 @@ def _check(record: Record, work: Work) -> None:
         _compare(claim, f"claims[{i}].worst", place)
 
 
-def _settle(claim: Claim, i: int, k: int, left: Fraction, terms: list[Term],
+def _settle(claim: Worst, i: int, k: int, left: Fraction, terms: list[Term],
             work: Work) -> Fraction:
     """Return the ratio of the sides at a point where the claim holds."""
     work.charge(100, 0)
@@ -91,13 +148,13 @@ def _settle(claim: Claim, i: int, k: int, left: Fraction, terms: list[Term],
         right = " + ".join(shown(f) + ("" if g is None else f"*tanh(ln({shown(g)})/4)")
                            for f, g in terms[:4])
         status = "undecided" if verdict is not False else "it does not"
-        relation = "=" if claim.name == "energy-covariance" else "<="
+        relation = "=" if claim.name in EQUALITIES else "<="
         raise invalid(f"claims[{i}].holds", f"{claim.name} holds at points[{k}]",
                       f"{status}: {shown(left)} {relation} {right}")
     return share
 
 
-def _compare(claim: Claim, entry: str, place: Place) -> None:
+def _compare(claim: Worst, entry: str, place: Place) -> None:
     """Compare the worst place of a claim with what was found."""
     pairs: list[tuple[str, object, object]] = [
         ("point", place.point, claim.point), ("left", place.left, claim.left),

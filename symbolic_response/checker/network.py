@@ -6,14 +6,16 @@ opposite of i. Sets of states are bit masks.
 
 from __future__ import annotations
 
-from collections.abc import Sequence
+from collections.abc import Iterable, Sequence
 from fractions import Fraction
 from math import lcm
+from typing import TypeVar
 
 from .reading import Work, too_large
 
 MAX_LISTED = 200_000  # paths, cycles and splittings of one record, together
 Path = tuple[int, ...]
+Number = TypeVar("Number", int, Fraction)
 
 
 class Graph:
@@ -79,9 +81,36 @@ class Graph:
             self._paths[start, goal] = self.paths(start, goal)
         return self._paths[start, goal]
 
-    def can_run(self, path: Path) -> bool:
+    def can_run(self, path: Iterable[int]) -> bool:
         """Has every step of the path a rate?"""
         return not any(i & 1 and self.one_way[i >> 1] for i in path)
+
+    def step(self, i: int) -> tuple[int, int]:
+        """Return the states that rate i leads from and to."""
+        first, second = self.ends[i >> 1]
+        return (second, first) if i & 1 else (first, second)
+
+    def visited(self, path: Path) -> int:
+        """Return the states on a path, its first one included."""
+        mask = 1 << self.step(path[0])[0]
+        for i in path:
+            mask |= 1 << self.step(i)[1]
+        return mask
+
+    def rates(self) -> list[int]:
+        """Return the numbers of the rates there are."""
+        return [i for i in range(2 * len(self.ends)) if self.can_run((i,))]
+
+    def inner(self, side: int) -> list[int]:
+        """Return the numbers of the rates within a set of states and within the rest."""
+        return [2 * e + k for e, (a, b) in enumerate(self.ends) for k in (0, 1)
+                if side >> a & 1 == side >> b & 1]
+
+    def mixed_cycles(self, chosen: Iterable[int]) -> list[Path]:
+        """Return the cycles that have transitions inside and outside a set of transitions."""
+        inside = set(chosen)
+        return [cycle for e in sorted(inside) for cycle in self.cycles(e)
+                if any(i >> 1 not in inside for i in cycle)]
 
     def splittings(self, e: int) -> list[int]:
         """Return the sets with the first end of e, without its second, connected like the rest."""
@@ -132,16 +161,38 @@ def reached(masks: list[int], start: int, within: int) -> int:
     return found
 
 
-def generator(states: int, ends: Sequence[tuple[int, int]], rates: Sequence[Fraction],
-              without: int = -1) -> list[list[Fraction]]:
+def rank(states: int, ends: Iterable[tuple[int, int]]) -> int:
+    """Return how many of these transitions a forest can have."""
+    ahead, found = list(range(states)), 0
+
+    def top(k: int) -> int:
+        while ahead[k] != k:
+            ahead[k] = k = ahead[ahead[k]]
+        return k
+
+    for a, b in ends:
+        a, b = top(a), top(b)
+        found += a != b
+        ahead[a] = b
+    return found
+
+
+def generator(states: int, ends: Sequence[tuple[int, int]], rates: Sequence[Number],
+              without: int = -1) -> list[list[Number]]:
     """Return W with W[i][j] the rate from j to i, its columns summing to 0."""
-    matrix = [[Fraction(0)] * states for _ in range(states)]
+    matrix = [[rates[0] * 0] * states for _ in range(states)]
     for e, (first, second) in enumerate(ends):
         if e != without:
             for a, b, rate in ((first, second, rates[2 * e]), (second, first, rates[2 * e + 1])):
                 matrix[b][a] += rate
                 matrix[a][a] -= rate
     return matrix
+
+
+def minor(matrix: list[list[Number]], roots: int) -> list[list[Number]]:
+    """Return -W without some states: its determinant is the sum over forests that lead to them."""
+    kept = [k for k in range(len(matrix)) if not roots >> k & 1]
+    return [[-matrix[i][j] for j in kept] for i in kept]
 
 
 def eliminate(rows: list[list[int]], work: Work) -> int:
@@ -166,12 +217,12 @@ def eliminate(rows: list[list[int]], work: Work) -> int:
     return sign
 
 
-def _whole_row(row: list[Fraction]) -> tuple[list[int], int]:
+def _whole_row(row: Sequence[int | Fraction]) -> tuple[list[int], int]:
     scale = lcm(*(x.denominator for x in row))
     return [x.numerator * (scale // x.denominator) for x in row], scale
 
 
-def determinant(matrix: list[list[Fraction]], work: Work) -> Fraction:
+def determinant(matrix: Sequence[Sequence[int | Fraction]], work: Work) -> Fraction:
     """Return the determinant (1 of an empty matrix)."""
     scaled = [_whole_row(row) for row in matrix]
     rows, scale = [row for row, _ in scaled], 1

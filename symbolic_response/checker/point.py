@@ -6,10 +6,11 @@ import re
 from dataclasses import dataclass, field
 from fractions import Fraction
 
-from .expressions import HALF, ONE, ZERO, Dual, Expression, Inexact, bits, log, times
+from .changes import elementary
+from .expressions import ONE, ZERO, Dual, Expression, Inexact, bits, log, times
 from .network import Graph, generator, solve
 from .reading import Work, fraction, invalid, malformed, members
-from .record import Network, Perturbation, Record
+from .record import Asked, Claim, Network, Record
 
 _LOGARITHM = re.compile(r"(-?[1-9][0-9]*)\*ln\(([^()]*)\)")
 
@@ -48,7 +49,7 @@ def solve_point(record: Record, k: int, graph: Graph, work: Work) -> Solved:
         symbols[moved.symbol] = value, value if moved.logarithmic else ONE
     made.rates, made.moves = _rates(network, where, symbols, work)
     if moved is not None:
-        _elementary(made.moves, graph, moved)
+        elementary(made.moves, graph, moved)
     rows = generator(graph.states, graph.ends, made.rates)[:-1]
     reduced = [row[:-1] for row in rows]
     weights = [*solve(reduced, [-row[-1] for row in rows], work), ONE]
@@ -101,18 +102,17 @@ def _rates(network: Network, where: str, symbols: dict[str, Dual],
     return rates, moves
 
 
-def _elementary(moves: list[Fraction], graph: Graph, perturbation: Perturbation) -> None:
-    """Put the effect of an energy, barrier or drive on the logarithms of the rates."""
-    e = perturbation.place
-    if perturbation.kind == "barrier":
-        moves[2 * e] = moves[2 * e + 1] = -ONE
-    elif perturbation.kind == "drive":
-        moves[2 * e], moves[2 * e + 1] = HALF, -HALF
-    elif perturbation.kind == "energy":
-        for i, ends in enumerate(graph.ends):
-            for direction in (0, 1):
-                if ends[direction] == e:
-                    moves[2 * i + direction] = ONE
+def pieces(record: Asked, claim: Claim, entry: str, where: str, symbols: dict[str, Dual],
+           work: Work) -> list[dict[int, Fraction]]:
+    """Return the values of energies, barriers and singles of a claim."""
+    network, found = record.network, []
+    for key, known, given in zip(
+            ("energies", "barriers", "singles"),
+            (network.states, network.transitions, network.transitions),
+            claim.parts or (), strict=True):
+        found.append({k: evaluate(one, f"{entry}.{key}.{known[k]}", where, symbols, work)[0]
+                      for k, one in given.items()})
+    return found
 
 
 def _derivative(made: Solved, graph: Graph, reduced: list[list[Fraction]],
@@ -134,6 +134,11 @@ def _observe(made: Solved, record: Record, change: list[Fraction], work: Work) -
     """Evaluate the observables, check their signs, and find abs(dX/d theta)."""
     target, states = record.target, record.network.states
     assert target is not None
+    if target.kind == "current":
+        flows = [made.rates[i] * (made.moves[i] * made.p[k] + change[k])
+                 for i, k in enumerate(record.network.ends[target.place], 2 * target.place)]
+        made.left = abs(flows[0] - flows[1])
+        return
     sides = [("target.above", target.above)]
     if target.below is not None:
         sides.append(("target.below", target.below))

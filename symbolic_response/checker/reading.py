@@ -8,12 +8,14 @@ import re
 import stat
 from dataclasses import dataclass
 from fractions import Fraction
+from itertools import pairwise
 from math import gcd
 
 MAX_BYTES = 64 * 2**20
 MAX_ITEMS = 4_000_000  # commas and opening brackets of a file
 MAX_NESTING = 40
 MAX_DIGITS = 20_000
+MAX_NUMBERS = 1_000  # in a list of rates
 MAX_WORK = 2_000_000_000  # about microseconds
 
 _NAME = re.compile(r"[A-Za-z][A-Za-z0-9_]*")
@@ -215,6 +217,13 @@ def text(value: object, entry: str) -> str:
     return value
 
 
+def pair(value: object, entry: str) -> list[object]:
+    """Return a list of two."""
+    if type(value) is not list or len(value) != 2:
+        raise malformed(entry, "a list of two", sized(value))
+    return value
+
+
 def choice(value: object, entry: str, *known: str) -> str:
     """Return a text that is one of those known."""
     if type(value) is not str or value not in known:
@@ -236,11 +245,30 @@ def place(value: object, entry: str, known: list[str]) -> int:
     return known.index(choice(value, entry, *known))
 
 
+def places(value: object, entry: str, known: list[str], least: int) -> tuple[int, ...]:
+    """Return the places of names that come in the order of a list of names."""
+    found = tuple(place(one, f"{entry}[{k}]", known)
+                  for k, one in enumerate(items(value, entry, len(known), least)))
+    if any(a >= b for a, b in pairwise(found)):
+        raise malformed(entry, "each once, in the order of the network", value)
+    return found
+
+
 def whole(value: object, entry: str) -> int:
     """Return an integer that is not negative."""
     if type(value) is not int or value < 0:
         raise malformed(entry, "an integer from 0", value)
     return value
+
+
+def numbers(value: object, entry: str, below: int, least: int = 1) -> tuple[int, ...]:
+    """Return a list of integers from 0 that are below a limit."""
+    found = tuple(whole(one, f"{entry}[{k}]")
+                  for k, one in enumerate(items(value, entry, MAX_NUMBERS, least)))
+    for k, one in enumerate(found):
+        if one >= below:
+            raise malformed(f"{entry}[{k}]", f"an integer below {below}", one)
+    return found
 
 
 def fraction(value: object, entry: str) -> Fraction:

@@ -7,7 +7,19 @@ from fractions import Fraction
 from typing import Any
 
 from .expressions import FUNCTIONS, Expression, read
-from .reading import choice, fraction, items, malformed, members, name, place, sized, text, whole
+from .reading import (
+    choice,
+    fraction,
+    items,
+    malformed,
+    members,
+    name,
+    pair,
+    place,
+    places,
+    text,
+    whole,
+)
 
 MAX_STATES, MAX_TRANSITIONS, MAX_SYMBOLS, MAX_POINTS = 32, 128, 1_000, 200_000
 RESERVED = {*FUNCTIONS, "d", "p", "mean", "variance", "cov", "current", "traffic", "forward",
@@ -29,6 +41,7 @@ class Target:
     kind: str
     above: list[Expression]
     below: list[Expression] | None
+    place: int = -1  # of the transition whose current it is
 
 
 @dataclass(frozen=True)
@@ -37,12 +50,20 @@ class Perturbation:
     place: int  # of the state or transition
     symbol: str
     logarithmic: bool
+    transitions: tuple[int, ...] = ()
+    amount: Expression | None = None  # of a finite change
 
 
 @dataclass(frozen=True)
 class Claim:
     name: str
     parts: tuple[dict[int, Expression], ...] | None  # energies, barriers, singles
+
+
+@dataclass(frozen=True)
+class Worst(Claim):
+    """A claim at points."""
+
     holds: int
     point: int
     left: Fraction
@@ -51,45 +72,89 @@ class Claim:
 
 
 @dataclass(frozen=True)
-class Record:
+class Asked:
+    """What claims are about."""
+
     network: Network
     target: Target | None
     perturbation: Perturbation | None
     path: tuple[int, int] | None
+
+
+@dataclass(frozen=True)
+class Record(Asked):
     count: int
     points: list[Any]
+    claims: list[Worst]
+
+
+@dataclass(frozen=True)
+class Proof(Asked):
+    trees: object
+    proofs: list[Any]
     claims: list[Claim]
 
 
-CLAIMS = ("energy-covariance", "energy-range", "barrier", "end-pair", "splitting-barrier",
-          "splitting-end-pair", "drive", "splitting-drive", "parameter", "support", "path")
+HEAD = ("format", "version", "kind")
+BODY = ("network", "response", "domain", "target", "perturbation", "path")
+POINTS = ("energy-covariance", "energy-range", "barrier", "end-pair", "splitting-barrier",
+          "splitting-end-pair", "drive", "splitting-drive", "parameter", "support", "path",
+          "current-exact", "current-range", "bundle", "directed-bundle")
+PROVEN = (*POINTS, "local-change", "local-end-pair", "second-order", "finite-change",
+          "finite-end-pair")
+KINDS = ("points", "proof", "several")
+SMOOTH = ("energy", "barrier", "drive", "bundle", "symbol")
+MAX_PROOFS = 2 * MAX_TRANSITIONS + 3
+
+
+def check_head(form: object, version: object, kind: object) -> None:
+    """Check the first entries of a record of any kind."""
+    choice(form, "format", "symbolic-response-certificate")
+    if whole(version, "version") != 1:
+        raise malformed("version", "1", version)
+    choice(kind, "kind", *KINDS)
 
 
 def read_record(data: object) -> Record:
-    """Read a whole record; points are read one by one later."""
-    top = members(data, "", "format", "version", "kind", "network", "response", "domain", "target",
-                  "perturbation", "path", "sampling", "points", "claims")
-    choice(top[0], "format", "symbolic-response-certificate")
-    if whole(top[1], "version") != 1:
-        raise malformed("version", "1", top[1])
-    choice(top[2], "kind", "points")
-    network = _network(top[3])
-    text(top[4], "response")
-    choice(top[5], "domain", "all admissible values of the symbols")
-    about_path = top[8] is not None
-    for entry, value in (("target", top[6]), ("perturbation", top[7])):
-        if (value is None) != about_path:
-            raise malformed(entry, "null exactly where path is not", value)
+    """Read a whole record of points; these are read one by one later."""
+    top = members(data, "", *HEAD, *BODY, "sampling", "points", "claims")
+    check_head(*top[:3])
+    asked = _asked(top[3:9], "all admissible values of the symbols", SMOOTH)
     rule, seed, count = members(top[9], "sampling", "rule", "seed", "count")
     choice(rule, "sampling.rule", "dyadic-strata-1")
     text(seed, "sampling.seed")
+    claims: list[Worst] = []
+    for i, value in enumerate(items(top[11], "claims", len(POINTS))):
+        claims.append(_worst(value, f"claims[{i}]", asked.network, {c.name for c in claims}))
+    return Record(**vars(asked), count=whole(count, "sampling.count"),
+                  points=items(top[10], "points", MAX_POINTS), claims=claims)
+
+
+def read_proof(data: object) -> Proof:
+    """Read a record of proofs; trees and proofs are read one by one later."""
+    top = members(data, "", *HEAD, *BODY, "trees", "proofs", "claims")
+    check_head(*top[:3])
+    asked = _asked(top[3:9], "all positive rates", (*SMOOTH, "second-barrier", "finite-barrier"))
     claims: list[Claim] = []
-    for i, value in enumerate(items(top[11], "claims", len(CLAIMS))):
-        claims.append(_claim(value, f"claims[{i}]", network, {claim.name for claim in claims}))
-    return Record(network, None if about_path else _target(top[6], network),
-                  None if about_path else _perturbation(top[7], network),
-                  _path(top[8], network) if about_path else None,
-                  whole(count, "sampling.count"), items(top[10], "points", MAX_POINTS), claims)
+    for i, value in enumerate(items(top[11], "claims", len(PROVEN))):
+        called, parts = members(value, f"claims[{i}]", "name", "parts")
+        claims.append(_claim(called, parts, f"claims[{i}]", asked.network, PROVEN,
+                             {c.name for c in claims}))
+    return Proof(**vars(asked), trees=top[9], proofs=items(top[10], "proofs", MAX_PROOFS),
+                 claims=claims)
+
+
+def _asked(values: list[object], domain: str, kinds: tuple[str, ...]) -> Asked:
+    network = _network(values[0])
+    text(values[1], "response")
+    choice(values[2], "domain", domain)
+    _, _, _, target, moved, path = values
+    for entry, value in (("target", target), ("perturbation", moved)):
+        if (value is None) != (path is not None):
+            raise malformed(entry, "null exactly where path is not", value)
+    if path is not None:
+        return Asked(network, None, None, _path(path, network))
+    return Asked(network, _target(target, network), _perturbation(moved, network, kinds), None)
 
 
 def _network(value: object) -> Network:
@@ -115,15 +180,9 @@ def _symbol(value: object, entry: str, positive: dict[str, bool]) -> None:
         raise malformed(f"{entry}.name", "a name that is not reserved", key)
     positive[key] = choice(sign, f"{entry}.sign", "positive", "real") == "positive"
     low, high = (fraction(limit, f"{entry}.range[{j}]")
-                 for j, limit in enumerate(_pair(limits, f"{entry}.range")))
+                 for j, limit in enumerate(pair(limits, f"{entry}.range")))
     if low > high:
         raise malformed(f"{entry}.range", "the lower limit first", f"{low} and {high}")
-
-
-def _pair(value: object, entry: str) -> list[object]:
-    if type(value) is not list or len(value) != 2:
-        raise malformed(entry, "a list of two", sized(value))
-    return value
 
 
 def _transition(value: object, entry: str, network: Network) -> None:
@@ -131,7 +190,7 @@ def _transition(value: object, entry: str, network: Network) -> None:
         value, entry, "name", "between", "forward", "backward")
     network.transitions.append(name(called, f"{entry}.name", network.transitions))
     first, second = (place(end, f"{entry}.between[{j}]", network.states)
-                     for j, end in enumerate(_pair(between, f"{entry}.between")))
+                     for j, end in enumerate(pair(between, f"{entry}.between")))
     if first == second:
         raise malformed(f"{entry}.between", "two different states", network.states[first])
     network.ends.append((first, second))
@@ -140,8 +199,11 @@ def _transition(value: object, entry: str, network: Network) -> None:
 
 
 def _target(value: object, network: Network) -> Target:
+    if type(value) is dict and value.get("kind") == "current":
+        _, where = members(value, "target", "kind", "transition")
+        return Target("current", [], None, place(where, "target.transition", network.transitions))
     kind, above, below = members(value, "target", "kind", "above", "below")
-    kind = choice(kind, "target.kind", "mean", "ratio", "log-ratio")
+    kind = choice(kind, "target.kind", "mean", "ratio", "log-ratio", "current")
     if (kind == "mean") != (below is None):
         raise malformed("target.below", "null for mean only", below)
     return Target(kind, _observable(above, "target.above", network),
@@ -154,11 +216,11 @@ def _observable(value: object, entry: str, network: Network) -> list[Expression]
             for one, state in zip(values, network.states, strict=True)]
 
 
-def _perturbation(value: object, network: Network) -> Perturbation:
+def _perturbation(value: object, network: Network, kinds: tuple[str, ...]) -> Perturbation:
     entry = "perturbation"
     if type(value) is not dict:
         raise malformed(entry, "an object", value)
-    kind = choice(value.get("kind"), f"{entry}.kind", "energy", "barrier", "drive", "symbol")
+    kind = choice(value.get("kind"), f"{entry}.kind", *kinds)
     if kind == "symbol":
         _, symbol, logarithmic = members(value, entry, "kind", "symbol", "logarithmic")
         symbol = choice(symbol, f"{entry}.symbol", *network.positive)
@@ -166,36 +228,55 @@ def _perturbation(value: object, network: Network) -> Perturbation:
             raise malformed(f"{entry}.logarithmic", "true (of a positive symbol) or false",
                             logarithmic)
         return Perturbation(kind, -1, symbol, logarithmic)
-    key = "state" if kind == "energy" else "transition"
-    known = network.states if kind == "energy" else network.transitions
-    _, where = members(value, entry, "kind", key)
-    return Perturbation(kind, place(where, f"{entry}.{key}", known), "", False)
+    if kind == "energy":
+        _, where = members(value, entry, "kind", "state")
+        return Perturbation(kind, place(where, f"{entry}.state", network.states), "", False)
+    if kind == "bundle":
+        _, where = members(value, entry, "kind", "transitions")
+        return Perturbation(kind, -1, "", False,
+                            places(where, f"{entry}.transitions", network.transitions, 2))
+    finite = ("amount",) * (kind == "finite-barrier")
+    _, where, *amount = members(value, entry, "kind", "transition", *finite)
+    e = place(where, f"{entry}.transition", network.transitions)
+    return Perturbation(kind, e, "", False, (e,), read(amount[0], f"{entry}.amount",
+                                                       network.positive) if finite else None)
 
 
 def _path(value: object, network: Network) -> tuple[int, int]:
-    start, goal = (place(end, f"path.{key}", network.states) for key, end in
-                   zip(("from", "to"), members(value, "path", "from", "to"), strict=True))
-    if start == goal:
-        raise malformed("path.to", "another state than path.from", network.states[goal])
-    return start, goal
+    start, goal = members(value, "path", "from", "to")
+    return read_ends(start, goal, "path", network)
 
 
-def _claim(value: object, entry: str, network: Network, taken: set[str]) -> Claim:
-    called, parts, holds, worst = members(value, entry, "name", "parts", "holds", "worst")
-    called = choice(called, f"{entry}.name", *CLAIMS)
+def read_ends(start: object, goal: object, entry: str, network: Network) -> tuple[int, int]:
+    """Return the ends of a path, which differ."""
+    first = place(start, f"{entry}.from", network.states)
+    last = place(goal, f"{entry}.to", network.states)
+    if first == last:
+        raise malformed(f"{entry}.to", f"another state than {entry}.from", network.states[last])
+    return first, last
+
+
+def _claim(called: object, parts: object, entry: str, network: Network, known: tuple[str, ...],
+           taken: set[str]) -> Claim:
+    called = choice(called, f"{entry}.name", *known)
     if called in taken:
         raise malformed(f"{entry}.name", "each claim once", called)
     if (called == "parameter") != (parts is not None):
         raise malformed(f"{entry}.parts", "null except for parameter", parts)
+    return Claim(called, None if parts is None else _parts(parts, f"{entry}.parts", network))
+
+
+def _worst(value: object, entry: str, network: Network, taken: set[str]) -> Worst:
+    called, parts, holds, worst = members(value, entry, "name", "parts", "holds", "worst")
+    claim = _claim(called, parts, entry, network, POINTS, taken)
     at, left, right, ratio = members(worst, f"{entry}.worst", "point", "left", "right", "ratio")
     terms: list[tuple[Fraction, Fraction | None]] = []
     for i, term in enumerate(items(right, f"{entry}.worst.right", MAX_TRANSITIONS + 1)):
         factor, g = members(term, f"{entry}.worst.right[{i}]", "factor", "g")
         terms.append((fraction(factor, f"{entry}.worst.right[{i}].factor"),
                       None if g is None else fraction(g, f"{entry}.worst.right[{i}].g")))
-    return Claim(called, None if parts is None else _parts(parts, f"{entry}.parts", network),
-                 whole(holds, f"{entry}.holds"), whole(at, f"{entry}.worst.point"),
-                 fraction(left, f"{entry}.worst.left"), terms,
+    return Worst(claim.name, claim.parts, whole(holds, f"{entry}.holds"),
+                 whole(at, f"{entry}.worst.point"), fraction(left, f"{entry}.worst.left"), terms,
                  fraction(ratio, f"{entry}.worst.ratio"))
 
 

@@ -5,31 +5,41 @@ from __future__ import annotations
 import re
 
 from .expressions import ONE, ZERO, Expression
-from .record import Perturbation, Record, Target
+from .record import Network, Perturbation, Proof, Record, Target
 
 _BARE = re.compile(r"-?[0-9.]+(/[0-9]+)?|[A-Za-z][A-Za-z0-9_]*", re.ASCII)
 
 
-def statement(record: Record) -> str:
+def statement(record: Record | Proof) -> str:
     """Return the quantity that is bounded and the names of the claims about it."""
     names, states = ", ".join(claim.name for claim in record.claims), record.network.states
     if record.path is not None:
         start, goal = (states[place] for place in record.path)
         return f"p[{goal}]/p[{start}]: {names}"
     assert record.target is not None and record.perturbation is not None
-    moved = _perturbation(record, record.perturbation)
-    return f"d {_target(record.target, states)} / d {moved}: {names}"
+    target, moved = _target(record.target, record.network), record.perturbation
+    where = _perturbation(record.network, moved)
+    if moved.amount is not None:
+        amount = " ".join(moved.amount.text.split())
+        return f"change of {target} where {where} rises by {amount}: {names}"
+    if moved.kind == "second-barrier":
+        return f"d^2 {target} / d {where}^2: {names}"
+    return f"d {target} / d {where}: {names}"
 
 
-def _perturbation(record: Record, perturbation: Perturbation) -> str:
-    if perturbation.kind == "symbol":
-        return "ln " * perturbation.logarithmic + perturbation.symbol
-    network = record.network
-    known = network.states if perturbation.kind == "energy" else network.transitions
-    return f"{perturbation.kind}[{known[perturbation.place]}]"
+def _perturbation(network: Network, moved: Perturbation) -> str:
+    if moved.kind == "symbol":
+        return "ln " * moved.logarithmic + moved.symbol
+    if moved.kind == "energy":
+        return f"energy[{network.states[moved.place]}]"
+    word = "drive" if moved.kind == "drive" else "barrier"
+    return f"{word}[{', '.join(network.transitions[e] for e in moved.transitions)}]"
 
 
-def _target(target: Target, states: list[str]) -> str:
+def _target(target: Target, network: Network) -> str:
+    states = network.states
+    if target.kind == "current":
+        return f"current[{network.transitions[target.place]}]"
     above = _mean(target.above, states)
     below = "1" if target.below is None else _mean(target.below, states)
     if below == "1":
