@@ -71,6 +71,7 @@ WORDS = {
     "local-end-pair": "by the ends of the transition, both rates changing by powers of their own",
     "bundle": "by the cycles that leave the set of transitions",
     "directed-bundle": "by how many of the rates spanning trees use",
+    "second-order": "since the ratio is linear in $e^{-b}$, $b$ the barrier, above and below",
     "current-exact": "exactly, by the trees that do not use the transition",
     "current-range": "by the current or the traffic itself",
 }

@@ -15,6 +15,7 @@ from symbolic_response.bounds.energy import energy_covariance, energy_range
 from symbolic_response.bounds.local import local_change, local_end_pair
 from symbolic_response.bounds.parameter import parameter, support
 from symbolic_response.bounds.path import path_bounds
+from symbolic_response.bounds.second_order import second_order
 from symbolic_response.bounds.sides import quantity_text
 from symbolic_response.bounds.splitting import (
     splitting_barrier,
@@ -30,11 +31,7 @@ from symbolic_response.response.analysis import Analysis
 
 Rule = Callable[[Question], Claim | None]
 
-ABOUT_CURRENTS: dict[str, Rule] = {
-    "current-exact": current_exact,
-    "current-range": current_range,
-}
-ABOUT_STATES: dict[str, Rule] = {
+CATALOGUE: dict[str, Rule] = {
     "energy-covariance": energy_covariance,
     "energy-range": energy_range,
     "splitting-end-pair": splitting_end_pair,
@@ -49,13 +46,18 @@ ABOUT_STATES: dict[str, Rule] = {
     "parameter": parameter,
     "directed-bundle": directed_bundle,
     "support": support,
+    "current-exact": current_exact,
+    "current-range": current_range,
 }
-CATALOGUE: dict[str, Rule] = {**ABOUT_STATES, **ABOUT_CURRENTS}
+ABOUT_CURRENTS = ("current-exact", "current-range")
+SECOND_ORDER = "second-order"
 PATH = "path"
+NAMES = (*CATALOGUE, SECOND_ORDER, PATH)
 SPEAKS_OF = (
     "the catalogue speaks of responses d X / d PERTURBATION, X a probability p[A], a set p[A, B], a"
     " mean, a ratio of two of them or its ln; of d current[e] / d barrier[e] and / d drive[e], the"
-    " same transition; and, for the path bound, of p[A]/p[B] and its ln"
+    " same transition; of the second derivative of ln of a ratio by one barrier; and, for the path"
+    " bound, of p[A]/p[B] and its ln"
 )
 BY_RANGE = (
     "energy-range", "end-pair", "barrier", "drive", "local-end-pair", "local-change", "bundle",
@@ -75,13 +77,12 @@ def claims_for(
     chosen = tuple(claim for claim in found if only is None or claim.name == only)
     if chosen:
         return chosen
-    names = [*CATALOGUE, PATH]
     those = ", ".join(dict.fromkeys(claim.name for claim in found))
     applying = f"; those that apply: {those}" if found else f"; {_why_none(quantity, analysis)}"
     if only is None:
         raise QuantityError(f"no bound of the catalogue applies to this quantity{applying}")
-    if only not in names:
-        raise QuantityError(f"there is no bound {only!r}{nearest(only, names)}{applying}")
+    if only not in NAMES:
+        raise QuantityError(f"there is no bound {only!r}{nearest(only, NAMES)}{applying}")
     raise QuantityError(f"the bound {only!r} does not apply to this quantity{applying}")
 
 
@@ -105,10 +106,12 @@ def applicable(quantity: Expression, analysis: Analysis) -> list[Claim]:
         return path_bounds(quantity, analysis)
     target = target_of(quantity.quantity, analysis.network)
     if target is None:
-        return []
+        return second_order(quantity, analysis)
     question = Question(analysis, quantity, target)
-    rules = ABOUT_CURRENTS if target.asked.kind == "current" else ABOUT_STATES
-    found = [claim for rule in rules.values() if (claim := rule(question)) is not None]
+    about_current = target.asked.kind == "current"
+    rules = [rule for name, rule in CATALOGUE.items()
+             if (name in ABOUT_CURRENTS) == about_current]
+    found = [claim for rule in rules if (claim := rule(question)) is not None]
     return [_with_range(claim, target, analysis) for claim in found]
 
 
