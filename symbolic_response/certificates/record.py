@@ -33,7 +33,14 @@ from symbolic_response.expressions.tree import (
     rebuild,
 )
 from symbolic_response.network.model import Network
-from symbolic_response.network.quantities import BarrierOf, BySymbol, DriveOf, EnergyOf, Response
+from symbolic_response.network.quantities import (
+    BarrierOf,
+    BarriersOf,
+    BySymbol,
+    DriveOf,
+    EnergyOf,
+    Response,
+)
 from symbolic_response.response.analysis import Analysis
 from symbolic_response.response.closed_trees import rate_changes
 
@@ -122,10 +129,14 @@ def _network(network: Network) -> Data:
     }
 
 
-def _target(quantity: Expression, network: Network) -> Data | None:
-    target = target_of(quantity.quantity, network) if isinstance(quantity, Response) else None
-    if target is None:
-        return None
+def _target(quantity: Expression, network: Network) -> Data:
+    inner = quantity
+    while isinstance(inner, Response):
+        inner = inner.quantity
+    target = target_of(inner, network)
+    assert target is not None
+    if target.asked.transition is not None:
+        return {"kind": "current", "transition": network.transitions[target.asked.transition].name}
     names = [state.name for state in network.states]
     above, below = target.asked.above, target.asked.below
     return {
@@ -138,13 +149,17 @@ def _target(quantity: Expression, network: Network) -> Data | None:
 
 def _perturbation(response: Expression, network: Network) -> Data:
     assert isinstance(response, Response)
+    names = [transition.name for transition in network.transitions]
     match response.perturbation:
         case EnergyOf(state):
             return {"kind": "energy", "state": network.states[state].name}
         case BarrierOf(e):
-            return {"kind": "barrier", "transition": network.transitions[e].name}
+            twice = isinstance(response.quantity, Response)
+            return {"kind": "second-barrier" if twice else "barrier", "transition": names[e]}
+        case BarriersOf(transitions):
+            return {"kind": "bundle", "transitions": [names[e] for e in transitions]}
         case DriveOf(e):
-            return {"kind": "drive", "transition": network.transitions[e].name}
+            return {"kind": "drive", "transition": names[e]}
         case BySymbol(name, logarithmic):
             return {"kind": "symbol", "symbol": name, "logarithmic": logarithmic}
 

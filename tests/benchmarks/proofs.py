@@ -169,7 +169,8 @@ def inequality(network: Network, name: str) -> Callable[[], object]:
                 along, against = (along * one, against * other) if ahead else (
                     along * other, against * one)
             conditions += [s * s * against >= along, s * s * along >= against]
-    conditions.append(response * (s + 1) > (s - 1) * whole[0] * whole[1])
+    most = (s - 1) * whole[0] * whole[1]
+    conditions.append(z3.Or(response * (s + 1) > most, -response * (s + 1) > most))
 
     def work() -> None:
         solver = z3.Tactic("qfnra-nlsat").solver()
