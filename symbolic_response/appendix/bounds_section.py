@@ -19,7 +19,7 @@ from symbolic_response.bounds.claim import (
 from symbolic_response.bounds.curves import Curve, FiniteChange, LocalChange, Tanh
 from symbolic_response.bounds.registry import applicable
 from symbolic_response.bounds.sides import force_side
-from symbolic_response.bounds.target import Absolute, Extreme, ShareWithout, absolute
+from symbolic_response.bounds.target import Absolute, Extreme, ShareWithout
 from symbolic_response.bounds.topological import competing
 from symbolic_response.expressions.breaking import (
     Equation,
@@ -45,6 +45,7 @@ from symbolic_response.network.quantities import (
     BarrierOf,
     BarriersOf,
     BySymbol,
+    Change,
     DriveOf,
     EnergyOf,
     Probability,
@@ -71,6 +72,8 @@ WORDS = {
     "local-end-pair": "by the ends of the transition, both rates changing by powers of their own",
     "bundle": "by the cycles that leave the set of transitions",
     "directed-bundle": "by how many of the rates spanning trees use",
+    "finite-change": "by the largest cycle force, for a finite change of the barrier",
+    "finite-end-pair": "by the ends of the transition, for a finite change of the barrier",
     "second-order": "since the ratio is linear in $e^{-b}$, $b$ the barrier, above and below",
     "current-exact": "exactly, by the trees that do not use the transition",
     "current-range": "by the current or the traffic itself",
@@ -168,7 +171,7 @@ def _same(one: Equation, other: Equation) -> bool:
 
 def _equation(paper: Paper, claim: Claim) -> Equation:
     inner = quantity_in(paper.notation, claim.left)
-    left = rf"\Bigl|{inner}\Bigr|" if isinstance(claim.left, Response) else inner
+    left = rf"\Bigl|{inner}\Bigr|" if isinstance(claim.left, Response | Change) else inner
     relation = "=" if claim.equality else r"\le"
     pieces = _right(paper, claim, line_limit(left, paper.width))
     return Equation(left, tuple(pieces), relation=relation)
@@ -177,6 +180,10 @@ def _equation(paper: Paper, claim: Claim) -> Equation:
 def _heading(paper: Paper, quantity: Expression) -> str:
     """Return what responds, and to what, in words."""
     notation = paper.notation
+    if isinstance(quantity, Change):
+        inner = quantity_in(notation, quantity.quantity)
+        transition = notation.transitions[quantity.transition]
+        return f"The change of ${inner}$ with the barrier of ${transition}$"
     if not isinstance(quantity, Response):
         return f"${quantity_in(notation, quantity)}$"
     inner = quantity_in(notation, quantity.quantity)
@@ -249,7 +256,7 @@ def _curve(paper: Paper, curve: Curve, force: str | None) -> str:
                 return fraction_latex(u)
             return rf"\psi_{{{fraction_latex(u)},{fraction_latex(v)}}}({force})"
         case FiniteChange(amount):
-            size = side_latex(paper, absolute(amount))
+            size = side_latex(paper, amount)
             if force is None:
                 return size
             return (rf"2 \ln \frac{{\cosh(({force} + {size})/4)}}"

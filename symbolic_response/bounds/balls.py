@@ -32,6 +32,7 @@ from symbolic_response.expressions.tree import (
 )
 from symbolic_response.network.quantities import (
     BySymbol,
+    Change,
     Current,
     DirectedRate,
     Mean,
@@ -40,6 +41,7 @@ from symbolic_response.network.quantities import (
     Response,
     Traffic,
 )
+from symbolic_response.network.raised import with_barrier_raised
 from symbolic_response.response.analysis import Analysis
 from symbolic_response.response.values import atomic, elementary_weight
 from symbolic_response.topology import Cycle, can_run_against, can_run_along
@@ -57,6 +59,7 @@ class BallPoint:
     def __init__(self, analysis: Analysis, values: Mapping[str, Expression]) -> None:
         self.analysis = analysis
         self.network = analysis.network
+        self.values = values
         self.symbols = {name: ball(value) for name, value in values.items()}
         self._size = len(self.network.states)
         self._inverse = self._solver()
@@ -139,6 +142,9 @@ class BallPoint:
                 return ball(node, self.symbols)
             case ShareWithout(e):
                 return self._all_trees(e) / self._all_trees(None)
+            case Change(inner, e, amount):
+                raised = Analysis(with_barrier_raised(self.network, e, amount))
+                return BallPoint(raised, self.values).value(inner) - self.value(inner)
         return self._response(node)
 
     def _response(self, node: Expression) -> flint.arb:
@@ -191,8 +197,8 @@ class BallPoint:
         if term.force is None:
             return factor
         curve = term.curve
-        amount = self.value(curve.amount) if isinstance(curve, FiniteChange) else None
-        return factor * curve_ball(curve, self.force(term.force), amount)
+        size = self.value(curve.size) if isinstance(curve, FiniteChange) else None
+        return factor * curve_ball(curve, self.force(term.force), size)
 
     def force(self, force: Force) -> flint.arb | None:
         """Return a force, None for an infinite one."""

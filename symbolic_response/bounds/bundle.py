@@ -13,8 +13,7 @@ from collections.abc import Iterable
 import flint
 
 from symbolic_response.bounds.claim import Claim, MixedCycles, Question, Term
-from symbolic_response.bounds.parameter import size_of
-from symbolic_response.bounds.target import depends_on, spread_factor
+from symbolic_response.bounds.target import depends_on, size_of, spread_factor
 from symbolic_response.bounds.topological import cycles_shown, force_label
 from symbolic_response.expressions.tree import ZERO, Expression, multiply, number
 from symbolic_response.network.quantities import BarriersOf, BySymbol

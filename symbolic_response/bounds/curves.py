@@ -39,9 +39,9 @@ class LocalChange:
 
 @dataclass(frozen=True, slots=True)
 class FiniteChange:
-    """2 ln(cosh((F + h)/4)/cosh((F - h)/4)), h the size of ``amount``; h where F is infinite."""
+    """2 ln(cosh((F + h)/4)/cosh((F - h)/4)), h = ``size`` >= 0; h where F is infinite."""
 
-    amount: Expression
+    size: Expression
 
 
 Curve = Tanh | LocalChange | FiniteChange
@@ -70,20 +70,19 @@ def weighted(curve: Tanh | LocalChange, factor: Fraction, g: Fraction | None) ->
 
 
 def curve_ball(
-    curve: Curve, force: flint.arb | None, amount: flint.arb | None = None
+    curve: Curve, force: flint.arb | None, size: flint.arb | None = None
 ) -> flint.arb:
-    """Return an enclosure of a curve; ``force`` None: infinite; ``amount``: that of the change."""
+    """Return an enclosure of a curve; ``force`` None: infinite; ``size``: that of a change."""
     match curve:
         case Tanh(divisor):
             return flint.arb(1) if force is None else (force / divisor).tanh()
         case LocalChange(larger, smaller):
             return _local_ball(larger, smaller, force)
         case FiniteChange():
-            assert amount is not None
+            assert size is not None
             if force is None:
-                return abs(amount)
-            rise, fall = force + abs(amount), force - abs(amount)
-            return 2 * ((rise / 4).cosh() / (fall / 4).cosh()).log()
+                return size
+            return 2 * (((force + size) / 4).cosh() / ((force - size) / 4).cosh()).log()
 
 
 def _local_ball(larger: Fraction, smaller: Fraction, force: flint.arb | None) -> flint.arb:

@@ -61,6 +61,22 @@ def _single(x: Fraction, term: Weighted) -> bool:
     return y >= x and (y + x) ** n <= term.g**2 * (y - x) ** n
 
 
+def change_holds(ratio: Fraction, factor: Fraction, g: Fraction | None) -> bool:
+    """Return whether |ln ratio| <= 2 ln(cosh((F + h)/4)/cosh((F - h)/4)), decided exactly.
+
+    h = |ln factor|, g = exp(F) >= 1, None for an infinite F. With q = exp|ln ratio|, H = exp(h):
+    sqrt(q) (sqrt(g) + sqrt(H)) <= sqrt(g H) + 1, both sides squared twice.
+
+    >>> change_holds(Fraction(4, 9), Fraction(4), Fraction(16))
+    True
+    """
+    q, h = max(ratio, 1 / ratio), max(factor, 1 / factor)
+    if g is None:
+        return q <= h
+    gap = g * h + 1 - q * (g + h)
+    return gap >= 0 and 4 * (q - 1) ** 2 * g * h <= gap**2
+
+
 def tanh_bounds(g: Fraction, divisor: int, bits: int) -> tuple[Fraction, Fraction]:
     """Return rational bounds of tanh(ln(g)/divisor), g >= 1; equal where the root is rational.
 

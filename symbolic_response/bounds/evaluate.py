@@ -18,12 +18,14 @@ from symbolic_response.bounds.claim import (
     Term,
 )
 from symbolic_response.bounds.curves import FiniteChange, weighted
-from symbolic_response.bounds.decide import Weighted, holds, right_bounds
+from symbolic_response.bounds.decide import Weighted, change_holds, holds, right_bounds
 from symbolic_response.bounds.target import Absolute, Extreme, ShareWithout
 from symbolic_response.bounds.topological import competing
 from symbolic_response.errors import EvaluationError
-from symbolic_response.expressions.tree import Expression, Number, Power, Product, Sum
+from symbolic_response.expressions.tree import Expression, Number, Power, Product, Sum, function
+from symbolic_response.network.quantities import Change
 from symbolic_response.response.analysis import Analysis
+from symbolic_response.response.direct import direct_value
 from symbolic_response.response.values import Point
 from symbolic_response.topology import Cycle, can_run_against, can_run_along
 
@@ -87,6 +89,27 @@ class ClaimPoint:
         if isinstance(term.curve, FiniteChange):
             raise IrrationalError
         return weighted(term.curve, factor, self.force(term.force))
+
+    def change_verdict(self, claim: Claim) -> bool | None:
+        """Return the exact verdict on a claim about a finite change of a logarithm.
+
+        None where a ratio, the factor of the rates or a force is not rational.
+        """
+        (term,), change = claim.right, claim.left
+        assert term.force is not None and isinstance(change, Change)
+        left = self.point.expression(change)
+        if left is None:
+            return None
+        ratio = direct_value(function("exp", left), {})
+        factor = direct_value(function("exp", change.amount), self.point.values)
+        if ratio is None or factor is None:
+            return None
+        try:
+            g = self.force(term.force)
+        except IrrationalError:
+            return None
+        exact = [Fraction(int(x.p), int(x.q)) for x in (ratio, factor)]
+        return change_holds(exact[0], exact[1], g)
 
     def value(self, node: Expression) -> Fraction:
         """Return the value of a quantity in which maxima and absolute values may occur."""

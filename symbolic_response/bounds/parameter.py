@@ -7,7 +7,7 @@ from fractions import Fraction
 
 from symbolic_response.bounds.claim import Claim, CycleMaximum, Question, Term
 from symbolic_response.bounds.sides import quantity_text
-from symbolic_response.bounds.target import absolute, depends_on, extreme, spread_factor
+from symbolic_response.bounds.target import absolute, depends_on, extreme, size_of, spread_factor
 from symbolic_response.bounds.topological import cycle_data
 from symbolic_response.expressions.signs import certain_sign
 from symbolic_response.expressions.tree import (
@@ -104,14 +104,6 @@ def _shared(
         return ZERO, difference
     half = multiply([number(Fraction(1, 2)), add([ahead, behind])])
     return absolute(half), difference
-
-
-def size_of(node: Expression, positive: frozenset[str]) -> Expression:
-    """Return the absolute value of an expression of symbols, its sign used where it is certain."""
-    sign = certain_sign(node, positive)
-    if sign is None:
-        return absolute(node)
-    return node if sign >= 0 else negate(node)
 
 
 def parameter(question: Question) -> Claim | None:

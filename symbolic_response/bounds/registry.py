@@ -12,6 +12,7 @@ from symbolic_response.bounds.currents import current_exact, current_range
 from symbolic_response.bounds.drive import drive
 from symbolic_response.bounds.end_pair import end_pair
 from symbolic_response.bounds.energy import energy_covariance, energy_range
+from symbolic_response.bounds.finite_change import finite_changes
 from symbolic_response.bounds.local import local_change, local_end_pair
 from symbolic_response.bounds.parameter import parameter, support
 from symbolic_response.bounds.path import path_bounds
@@ -26,7 +27,7 @@ from symbolic_response.bounds.target import Target, depends_on, extreme, may_be_
 from symbolic_response.errors import QuantityError
 from symbolic_response.expressions.names import nearest
 from symbolic_response.expressions.tree import ONE, ZERO, Expression
-from symbolic_response.network.quantities import BySymbol, Response
+from symbolic_response.network.quantities import BySymbol, Change, Response
 from symbolic_response.response.analysis import Analysis
 
 Rule = Callable[[Question], Claim | None]
@@ -50,14 +51,13 @@ CATALOGUE: dict[str, Rule] = {
     "current-range": current_range,
 }
 ABOUT_CURRENTS = ("current-exact", "current-range")
-SECOND_ORDER = "second-order"
 PATH = "path"
-NAMES = (*CATALOGUE, SECOND_ORDER, PATH)
+NAMES = (*CATALOGUE, "second-order", "finite-end-pair", "finite-change", PATH)
 SPEAKS_OF = (
     "the catalogue speaks of responses d X / d PERTURBATION, X a probability p[A], a set p[A, B], a"
     " mean, a ratio of two of them or its ln; of d current[e] / d barrier[e] and / d drive[e], the"
-    " same transition; of the second derivative of ln of a ratio by one barrier; and, for the path"
-    " bound, of p[A]/p[B] and its ln"
+    " same transition; of the second derivative of ln of a ratio by one barrier, and of its"
+    " change(..., barrier[e], AMOUNT); and, for the path bound, of p[A]/p[B] and its ln"
 )
 BY_RANGE = (
     "energy-range", "end-pair", "barrier", "drive", "local-end-pair", "local-change", "bundle",
@@ -102,6 +102,8 @@ def _why_none(quantity: Expression, analysis: Analysis) -> str:
 
 def applicable(quantity: Expression, analysis: Analysis) -> list[Claim]:
     """Return the inequalities that apply to a quantity, none if it is no such response."""
+    if isinstance(quantity, Change):
+        return finite_changes(quantity, analysis)
     if not isinstance(quantity, Response):
         return path_bounds(quantity, analysis)
     target = target_of(quantity.quantity, analysis.network)

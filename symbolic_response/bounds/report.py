@@ -12,6 +12,7 @@ import flint
 
 from symbolic_response.bounds.balls import BallPoint
 from symbolic_response.bounds.claim import Claim, CycleMaximum, LargestForce, MixedCycles
+from symbolic_response.bounds.curves import FiniteChange
 from symbolic_response.bounds.decide import Weighted
 from symbolic_response.bounds.enclose import PRECISIONS, Enclosed, enclose
 from symbolic_response.bounds.evaluate import ClaimPoint, Evaluated, IrrationalError
@@ -137,6 +138,9 @@ def _row_at(claim: Claim, analysis: Analysis, place: ClaimPoint) -> BoundRow:
     found = enclose(claim, analysis, values)
     if left == ZERO and not claim.equality:
         found = replace(found, left=("0", "0"), holds=True)  # a right side is not negative
+    if isinstance(claim.right[0].curve, FiniteChange):
+        exact = place.change_verdict(claim)
+        found = replace(found, holds=found.holds if exact is None else exact)
     with flint.ctx.workprec(PRECISIONS[0]):
         in_force = _in_force(claim, BallPoint(analysis, values).cycle_in_force, analysis,
                              lambda cycle: _force_at(cycle, analysis, values))

@@ -36,6 +36,7 @@ from symbolic_response.network.model import Network
 from symbolic_response.network.quantities import (
     BarrierOf,
     BarriersOf,
+    Change,
     Current,
     DirectedRate,
     DriveOf,
@@ -90,8 +91,7 @@ def _curve(term: Term, force: Expression | None, network: Network) -> Expression
                 return number(u if force is None else u - v)
             sizes = ", ".join(fraction_text(x) for x in (u, v))
             return Symbol(f"psi({sizes}, {quantity_text(force, network)})")
-        case FiniteChange(amount):
-            size = absolute(amount)
+        case FiniteChange(size):
             if force is None or force == ZERO:
                 return size if force is None else ZERO
             rise, fall = (
@@ -190,6 +190,9 @@ def _leaf_text(leaf: Expression, network: Network) -> str:
             return f"{'backward' if backward else 'forward'}[{names[e]}]"
         case EntropyProduction():
             return "entropy_production"
+        case Change(inner, e, amount):
+            entries = quantity_text(inner, network), quantity_text(amount, network)
+            return f"change({entries[0]}, barrier[{names[e]}], {entries[1]})"
         case Response(inner, perturbation):
             shown = quantity_text(inner, network)
             if isinstance(inner, Sum):

@@ -265,6 +265,14 @@ def absolute(inner: Expression) -> Expression:
     return inner if _plainly_positive(inner) or isinstance(inner, Absolute) else Absolute(inner)
 
 
+def size_of(node: Expression, positive: frozenset[str]) -> Expression:
+    """Return the absolute value of an expression of symbols, its sign used where it is certain."""
+    sign = certain_sign(node, positive)
+    if sign is None:
+        return absolute(node)
+    return node if sign >= 0 else negate(node)
+
+
 def _plainly_positive(node: Expression) -> bool:
     if isinstance(node, Number):
         return node.value > 0

@@ -103,9 +103,23 @@ class Response(Expression):
     perturbation: Perturbation
 
 
+@dataclass(frozen=True, slots=True)
+class Change(Expression):
+    """A quantity after a barrier has been raised by ``amount``, minus the quantity before.
+
+    The quantity holds no response and no change; the amount is made of numbers and symbols.
+    """
+
+    quantity: Expression
+    transition: int
+    amount: Expression
+
+
 def walk_quantity(node: Expression) -> Iterator[Expression]:
-    """Yield every node of a quantity, those inside responses included."""
+    """Yield every node of a quantity, those inside responses and changes included."""
     for part in walk(node):
         yield part
-        if isinstance(part, Response):
+        if isinstance(part, Response | Change):
             yield from walk_quantity(part.quantity)
+        if isinstance(part, Change):
+            yield from walk(part.amount)

@@ -2,23 +2,24 @@
 
 ``p[A, B]``, ``mean[name]``, ``current[e]``, ``traffic[e]``, ``forward[e]``, ``backward[e]``,
 ``entropy_production`` and expressions of them; ``d QUANTITY / d PERTURBATION`` for a response,
-which is the whole quantity or stands in parentheses.
+which is the whole quantity or stands in parentheses; ``change(QUANTITY, barrier[e], AMOUNT)``.
 """
 
 from __future__ import annotations
 
 from collections.abc import Callable
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from fractions import Fraction
 
 from symbolic_response.errors import ExpressionError, QuantityError, SymbolicResponseError
-from symbolic_response.expressions.reader import Token, read_tokens, tokenize
+from symbolic_response.expressions.reader import Token, no_atoms, read_tokens, tokenize
 from symbolic_response.expressions.tree import Expression, function, power, symbols_of
 from symbolic_response.network.model import Network, nearest
 from symbolic_response.network.quantities import (
     BarrierOf,
     BarriersOf,
     BySymbol,
+    Change,
     Current,
     DirectedRate,
     DriveOf,
@@ -29,6 +30,7 @@ from symbolic_response.network.quantities import (
     Probability,
     Response,
     Traffic,
+    walk_quantity,
 )
 
 MAX_RESPONSE_DEPTH = 6
@@ -76,6 +78,7 @@ def _excerpt(text: str, position: int | None) -> str:
 class _Reader:
     network: Network
     depth: int
+    in_change: bool = False
 
     def read(self, tokens: list[Token]) -> Expression:
         """Read a whole token list as a response or as an expression of atoms."""
@@ -99,6 +102,8 @@ class _Reader:
                 "a response is the whole quantity or stands in parentheses: (d ... / d ...)",
                 token.position,
             )
+        if token.text == "change" and tokens[index + 1].text == "(":
+            return self.change(tokens, index)
         if token.text == "entropy_production":
             self.check_reversible()
             return EntropyProduction(), index + 1
@@ -138,7 +143,30 @@ class _Reader:
         }
         return makers[kind](), after
 
+    def change(self, tokens: list[Token], index: int) -> tuple[Expression, int]:
+        """Read ``change(QUANTITY, barrier[e], AMOUNT)``."""
+        self.check_not_in_change(tokens[index])
+        closing = _matching(tokens, index + 1)
+        parts = _split_at_commas(tokens[index + 2 : closing], tokens[closing].position)
+        if len(parts) != 3:
+            raise ExpressionError("write change(QUANTITY, barrier[transition], AMOUNT)",
+                                  tokens[index].position)
+        quantity = replace(self, in_change=True).read(parts[0])
+        by = self.perturbation(parts[1])
+        if not isinstance(by, BarrierOf):
+            raise ExpressionError("the second entry of change(...) is one barrier:"
+                                  " barrier[transition]", parts[1][0].position)
+        amount = read_tokens(parts[2], no_atoms)
+        self.check_symbols(amount, parts[2])
+        return Change(quantity, by.transition, amount), closing + 1
+
+    def check_not_in_change(self, token: Token) -> None:
+        if self.in_change:
+            raise ExpressionError("change(...) takes a quantity without responses or changes",
+                                  token.position)
+
     def response(self, tokens: list[Token]) -> Expression:
+        self.check_not_in_change(tokens[0])
         if self.depth >= MAX_RESPONSE_DEPTH:
             raise ExpressionError(
                 f"responses nested more than {MAX_RESPONSE_DEPTH} deep", tokens[0].position
@@ -148,6 +176,9 @@ class _Reader:
         end = Token("end", "", tokens[slash].position)
         inner = _Reader(self.network, self.depth + 1)
         quantity = inner.numerator([*tokens[1:slash], end])
+        if any(isinstance(part, Change) for part in walk_quantity(quantity)):
+            raise ExpressionError("change(...) has no responses; ask for the change alone",
+                                  tokens[0].position)
         return Response(quantity, self.perturbation(tokens[slash + 2 :]))
 
     def numerator(self, tokens: list[Token]) -> Expression:
@@ -274,6 +305,20 @@ def _names_in_brackets(tokens: list[Token], index: int, kind: str) -> tuple[list
             return names, index + 1
         if tokens[index].text != ",":
             raise ExpressionError(f"{kind}[...] is not closed by ]", tokens[index].position)
+
+
+def _split_at_commas(tokens: list[Token], end: int) -> list[list[Token]]:
+    """Return what stands between the commas outside of all brackets, each closed by an end."""
+    parts: list[list[Token]] = [[]]
+    top = set(_top_level(tokens))
+    for place, token in enumerate(tokens):
+        if token.text == "," and place in top:
+            parts[-1].append(Token("end", "", token.position))
+            parts.append([])
+        else:
+            parts[-1].append(token)
+    parts[-1].append(Token("end", "", end))
+    return parts
 
 
 def _matching(tokens: list[Token], index: int) -> int:

@@ -37,6 +37,7 @@ from symbolic_response.network.quantities import (
     BarrierOf,
     BarriersOf,
     BySymbol,
+    Change,
     Current,
     DirectedRate,
     DriveOf,
@@ -77,7 +78,33 @@ def _closed_leaf(leaf: Expression, analysis: Analysis) -> Expression:
             return _entropy_production(analysis)
         case Response(inner, perturbation):
             return respond(inner, perturbation, analysis)
+        case Change(inner, e, amount):
+            return _change(closed_tree(inner, analysis), e, amount, analysis)
     return leaf
+
+
+def _change(before: Expression, e: int, amount: Expression, analysis: Analysis) -> Expression:
+    """Return a closed tree after raising the barrier of e, minus the tree itself.
+
+    A term of degree d in the rates of e is multiplied by exp(-d amount).
+    """
+    rates, ring = analysis.rates, analysis.rates.ring
+    own = [place for place in (rates.forward[e], rates.backward[e]) if place is not None]
+
+    def leaf(part: Expression) -> Expression:
+        if not isinstance(part, Polynomial):
+            return part
+        by_degree: dict[int, dict[tuple[int, ...], int]] = {}
+        for exponents, coefficient in part.poly.to_dict().items():
+            key = tuple(int(x) for x in exponents)
+            by_degree.setdefault(sum(key[place] for place in own), {})[key] = int(coefficient)
+        return add([
+            multiply([function("exp", multiply([number(-degree), amount])),
+                      _poly(ring.context.from_dict(terms), analysis)])
+            for degree, terms in by_degree.items()
+        ])
+
+    return add([rebuild(before, leaf), negate(before)])
 
 
 def _poly(poly: Poly, analysis: Analysis) -> Expression:

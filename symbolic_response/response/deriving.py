@@ -37,7 +37,7 @@ from symbolic_response.expressions.tree import (
     symbols_of,
 )
 from symbolic_response.network.model import Network
-from symbolic_response.network.quantities import BySymbol, Response
+from symbolic_response.network.quantities import BySymbol, Change, Response
 from symbolic_response.network.quantity_reader import read_quantity
 from symbolic_response.network.substitution import with_substitution
 from symbolic_response.response.analysis import Analysis, as_analysis
@@ -326,6 +326,9 @@ def replaced(quantity: Expression, changes: Mapping[str, Expression], label: str
                     f"{label!r} is a response to {by.name}, which a substitution replaces"
                 )
             return Response(rebuild(part.quantity, leaf), by)
+        if isinstance(part, Change):
+            inner, amount = rebuild(part.quantity, leaf), substitute(part.amount, dict(changes))
+            return Change(inner, part.transition, amount)
         return changes.get(part.name, part) if isinstance(part, Symbol) else part
 
     return rebuild(quantity, leaf)

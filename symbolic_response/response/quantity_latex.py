@@ -27,6 +27,7 @@ from symbolic_response.network.quantities import (
     BarrierOf,
     BarriersOf,
     BySymbol,
+    Change,
     Current,
     DirectedRate,
     DriveOf,
@@ -132,7 +133,9 @@ def quantity_in(notation: Notation, quantity: Expression) -> str:
     names = dict(notation.symbols)
 
     def leaf(part: Expression) -> Expression:
-        if isinstance(part, Response):
+        if isinstance(part, Change):
+            shown = _change(part, notation)
+        elif isinstance(part, Response):
             shown = rf"\Bigl({_response(part, notation)}\Bigr)"
         else:
             atom = _atom(part, notation)
@@ -185,6 +188,15 @@ def _atom(node: Expression, notation: Notation) -> str | None:
         case EntropyProduction():
             return notation.letters["entropy"]
     return None
+
+
+def _change(change: Change, notation: Notation) -> str:
+    """Return a difference between two values of a barrier in the notation of integrals."""
+    barrier = perturbation_in(notation, BarrierOf(change.transition))
+    amount = quantity_in(notation, change.amount)
+    plus = "" if amount.startswith("-") else "+ "
+    inner = quantity_in(notation, change.quantity)
+    return rf"\Bigl[{inner}\Bigr]_{{{barrier}}}^{{{barrier} {plus}{amount}}}"
 
 
 def _response(response: Response, notation: Notation) -> str:

@@ -40,6 +40,7 @@ from symbolic_response.network.quantities import (
     BarrierOf,
     BarriersOf,
     BySymbol,
+    Change,
     Current,
     DirectedRate,
     DriveOf,
@@ -51,6 +52,7 @@ from symbolic_response.network.quantities import (
     Response,
     Traffic,
 )
+from symbolic_response.network.raised import with_barrier_raised
 from symbolic_response.response.direct import direct_value
 from symbolic_response.response.jets import (
     Jet,
@@ -113,6 +115,7 @@ class Point:
         self.values = dict(values)
         self._probabilities: dict[tuple[Perturbation, ...], list[Jet] | None] = {}
         self._constants: dict[tuple[Expression, tuple[BySymbol, ...]], Scalar] = {}
+        self._raised: dict[tuple[int, Expression], Point] = {}
         self._inverse: flint.fmpq_mat | None = None
         self._check_rates()
 
@@ -137,10 +140,23 @@ class Point:
             return self.values[leaf.name]
         if isinstance(leaf, Number):
             return leaf
+        if isinstance(leaf, Change):
+            both = self.raised(leaf).expression(leaf.quantity), self.expression(leaf.quantity)
+            if both[0] is None or both[1] is None:
+                raise _NotRationalError
+            return add([both[0], multiply([number(-1), both[1]])])
         exact = self.value(leaf)
         if exact is None:
             raise _NotRationalError
         return number(exact)
+
+    def raised(self, change: Change) -> Point:
+        """Return the network after the change, at the same values."""
+        key = (change.transition, change.amount)
+        if key not in self._raised:
+            network = with_barrier_raised(self.network, *key)
+            self._raised[key] = Point(network, self.values)
+        return self._raised[key]
 
     def rate(self, transition: int, backward: bool) -> Fraction:
         """Return a directed rate; EvaluationError where it is not rational."""
@@ -290,6 +306,9 @@ class Point:
             case Response(inner, perturbation):
                 changed = self._jet(inner, (*stack, perturbation))
                 return changed[len(changed) // 2 :]
+            case Change(inner) if not stack:
+                before = scaled_jet(self._jet(inner, ()), flint.fmpq(-1))
+                return jet_sum([self.raised(node)._jet(inner, ()), before])
         return self._atom(node, stack)
 
     def _atom(self, node: Expression, stack: tuple[Perturbation, ...]) -> Jet:
