@@ -13,7 +13,7 @@ APPLIES = {
     "energy": ("energy-covariance", "energy-range"),
     "barrier": ("barrier", "end-pair", "splitting-barrier", "splitting-end-pair"),
     "drive": ("drive", "splitting-drive"),
-    "bundle": ("bundle", "directed-bundle"),
+    "bundle": ("parameter", "bundle", "directed-bundle"),
     "symbol": ("parameter", "support", "bundle", "directed-bundle", "local-change",
                "local-end-pair"),
     "second-barrier": ("second-order",),
