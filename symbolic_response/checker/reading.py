@@ -248,7 +248,7 @@ def place(value: object, entry: str, known: list[str]) -> int:
 def places(value: object, entry: str, known: list[str], least: int) -> tuple[int, ...]:
     """Return the places of names that come in the order of a list of names."""
     found = tuple(place(one, f"{entry}[{k}]", known)
-                  for k, one in enumerate(items(value, entry, len(known), least)))
+                  for k, one in enumerate(items(value, entry, MAX_NUMBERS, least)))
     if any(a >= b for a, b in pairwise(found)):
         raise malformed(entry, "each once, in the order of the network", value)
     return found

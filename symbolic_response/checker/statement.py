@@ -5,14 +5,15 @@ from __future__ import annotations
 import re
 
 from .expressions import ONE, ZERO, Expression
-from .record import Network, Perturbation, Proof, Record, Target
+from .record import Claim, Network, Perturbation, Proof, Record, Target, Worst
 
 _BARE = re.compile(r"-?[0-9.]+(/[0-9]+)?|[A-Za-z][A-Za-z0-9_]*", re.ASCII)
 
 
 def statement(record: Record | Proof) -> str:
     """Return the quantity that is bounded and the names of the claims about it."""
-    names, states = ", ".join(claim.name for claim in record.claims), record.network.states
+    names = ", ".join(_claim(claim, record.network) for claim in record.claims)
+    states = record.network.states
     if record.path is not None:
         start, goal = (states[place] for place in record.path)
         return f"p[{goal}]/p[{start}]: {names}"
@@ -25,6 +26,18 @@ def statement(record: Record | Proof) -> str:
     if moved.kind == "second-barrier":
         return f"d^2 {target} / d {where}^2: {names}"
     return f"d {target} / d {where}: {names}"
+
+
+def _claim(claim: Claim, network: Network) -> str:
+    """Return the name of a claim, of proofs with the parts that its right side is made of."""
+    if claim.parts is None or isinstance(claim, Worst):
+        return claim.name
+    known = (network.states, network.transitions, network.transitions)
+    parts = [f"{word} " + ", ".join(f"{names[k]} {' '.join(one.text.split())}"
+                                    for k, one in given.items())
+             for word, names, given in zip(("energies", "barriers", "singles"), known, claim.parts,
+                                           strict=True) if given]
+    return f"{claim.name} ({'; '.join(parts)})"
 
 
 def _perturbation(network: Network, moved: Perturbation) -> str:

@@ -26,7 +26,7 @@ def check_transport(trees: Polynomials, network: Network, values: list[object],
                           if use == min(uses) + more) for more in (0, 1)]
              for k in range(graph.states)]
     missing = {(i, j) for j in range(graph.states) for i in range(j)}
-    for k, one in enumerate(items(values[2], f"{entry}.pairs", len(missing), 0)):
+    for k, one in enumerate(items(values[2], f"{entry}.pairs", MAX_MOVES, 0)):
         here = f"{entry}.pairs[{k}]"
         states, moves = members(one, here, "states", "moves")
         i, j = places(pair(states, f"{here}.states"), f"{here}.states", network.states, 2)
