@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 
-from symbolic_response.appendix.formulas import filled
+from symbolic_response.appendix.bound_definitions import definitions
 from symbolic_response.appendix.paper import Paper
 from symbolic_response.bounds.claim import (
     Claim,
@@ -92,56 +92,10 @@ def bounds_section(paper: Paper, quantities: Sequence[Expression]) -> str:
     if not found:
         return ""
     every = [claim for _, claims in found for claim in claims]
-    parts = [r"\section{Bounds on the responses}", _definitions(paper, every)]
+    parts = [r"\section{Bounds on the responses}", definitions(paper, every)]
     for quantity, claims in found:
         parts.append(_group(paper, quantity, claims))
     return "\n\n".join(part for part in parts if part)
-
-
-def _definitions(paper: Paper, claims: Sequence[Claim]) -> str:
-    """Return the notions that the inequalities use, and only those."""
-    forces = [term.force for claim in claims for term in claim.right]
-    text = ["The inequalities below hold for all admissible values of the symbols."]
-    if any(isinstance(force, CycleMaximum) for force in forces):
-        text.append(r"$@force@_{\max}(e)$ is the largest $|@force@_c|$ of the cycles $c$ that "
-                    r"contain the transition $e$: zero if there are none, infinite if one of them "
-                    r"has a one-way step, $\tanh$ then being one.")
-    if any(isinstance(force, EndPair) for force in forces):
-        text.append(r"$r_e = @rate@^+_e a_m / (@rate@^-_e a_n)$, for $e$ from $m$ to $n$, with "
-                    r"$a_k$ the part of $@tree sum@_k$ from trees that do not use $e$; it is a "
-                    r"weighted mean of the ratios of the products of rates along and against the "
-                    r"cycles through $e$, so that $|\ln r_e| \le @force@_{\max}(e)$. The responses "
-                    r"of all $\ln @probability@_k$ to the barrier lie between those of $m$ and "
-                    r"$n$, which gives the bounds by the ends of the transition.")
-    if any(claim.name == "current-exact" for claim in claims):
-        text.append(r"In the exact response of the current of a transition to its own barrier or "
-                    r"drive, $a_k$ is the part of $@tree sum@_k$ from trees that do not use the "
-                    r"transition.")
-    if any(isinstance(force, MixedCycles) for force in forces):
-        text.append(r"$@force@_{\max}(\{\ldots\})$, of a set of transitions such that all spanning "
-                    r"trees use $r$ or $r + 1$ of them, is the largest $|@force@_c|$ of the cycles "
-                    r"with transitions both inside and outside the set: all $@tree sum@_k$ are "
-                    r"$z^r (a_k + z b_k)$ in a common factor $z$ of their rates.")
-    if any(isinstance(term.curve, LocalChange) for claim in claims for term in claim.right):
-        text.append(r"For rates of one transition that change by powers $u \ge v \ge 0$ of one "
-                    r"sign, $\psi_{u,v}(x) = (\sqrt{u\,e^{x}} - \sqrt{v})^2/(e^{x} - 1)$ where "
-                    r"$v\,e^{x} \ge u$ and $x > 0$, else $u - v$; $\psi_{u,u}(x) = u \tanh(x/4)$.")
-    if any(claim.name == "directed-bundle" for claim in claims):
-        text.append(r"Where a parameter $z$ is a factor of some of the rates, the responses of all "
-                    r"$\ln @tree sum@_k$ to $\ln z$ lie between the least and the largest number "
-                    r"of these rates in a directed spanning tree.")
-    if any("splitting" in claim.name for claim in claims):
-        text.append(r"A splitting $S$ of a transition is a set of states that contains its first "
-                    r"state and not its second, $S$ and the other states each being connected; "
-                    r"$\mathrm{Cov}(q, 1_S) = \langle q 1_S \rangle - \langle q \rangle "
-                    r"@probability@_S$.")
-    if any("range" in claim.data for claim in claims):
-        text.append("Where the range of an observable limits its response, its values are rescaled "
-                    "affinely to $[0, 1]$.")
-    if any(claim.name in ("parameter", "support") for claim in claims):
-        text.append("A parameter is resolved into energies, which change all rates out of a state "
-                    "alike, barriers, and single rates.")
-    return filled(paper, "\n".join(text))
 
 
 def _group(paper: Paper, quantity: Expression, claims: Sequence[Claim]) -> str:
@@ -231,7 +185,11 @@ def _factors(paper: Paper, term: Term) -> list[str]:
     parts = term.factor.factors if isinstance(term.factor, Product) else (term.factor,)
     plain = side_latex(paper, term.factor)
     printed = [plain]
-    if formula_width(plain) > paper.width / 3 and len(parts) > 1:
+    shares = [part for part in parts if isinstance(part, ShareWithout)]
+    if shares:
+        rest = multiply([part for part in parts if part not in shares])
+        printed = [side_latex(paper, rest), *(side_latex(paper, part) for part in shares)]
+    elif formula_width(plain) > paper.width / 3 and len(parts) > 1:
         printed = [side_latex(paper, multiply([part])) for part in parts]
         printed = [f"({text})" if isinstance(part, Sum) else text
                    for part, text in zip(parts, printed, strict=True)]

@@ -22,6 +22,7 @@ PSI = (
     "psi(u, v, F) = (sqrt(u*R) - sqrt(v))**2/(R - 1) with R = exp(F) where v*R >= u and R > 1, and"
     " u - v elsewhere"
 )
+HYPOTHESES = "the parameter changes the rates of this transition only, each by a constant power"
 Powers = tuple[int, Fraction, Fraction]
 
 
@@ -33,7 +34,9 @@ def local_change(question: Question) -> Claim | None:
     found = powers_of(question)
     if found is None:
         return None
-    e, _, _ = found
+    e, ahead, behind = found
+    if ahead * behind <= 0:
+        return _without_force(question, found)
     return _claim("local-change", question, found, CycleMaximum(e),
                   cycle_data(e, question.analysis))
 
@@ -66,6 +69,18 @@ def powers_of(question: Question) -> Powers | None:
     return touched.pop(), powers[0], powers[1]
 
 
+def _without_force(question: Question, powers: Powers) -> Claim:
+    """Return the claim for changes of opposite signs, or of one rate alone."""
+    e, ahead, behind = powers
+    factor = multiply([number(abs(ahead) + abs(behind)), spread_factor(question.target)])
+    return Claim(
+        "local-change", question.response, (Term(factor),),
+        {"transition": question.analysis.network.transitions[e].name,
+         "changes": [fraction_text(ahead), fraction_text(behind)]},
+        HYPOTHESES, SOURCE, has_points=False,
+    )
+
+
 def _claim(
     name: str,
     question: Question,
@@ -77,16 +92,12 @@ def _claim(
     larger, smaller = max(abs(ahead), abs(behind)), min(abs(ahead), abs(behind))
     factor = spread_factor(question.target)
     shown: dict[str, object] = {"changes": [fraction_text(ahead), fraction_text(behind)]}
-    if ahead * behind <= 0:
-        term = Term(multiply([number(larger + smaller), factor]))
-        data = {"transition": data["transition"]}
-    elif larger == smaller:
+    if larger == smaller:
         term = Term(multiply([number(larger), factor]), force)
     else:
         term = Term(factor, force, LocalChange(larger, smaller))
         shown["psi"] = PSI
     return Claim(
         name, question.response, (term,), {**data, **shown},
-        "the parameter changes the rates of this transition only, each by a constant power",
-        SOURCE, has_points=False,
+        HYPOTHESES, SOURCE, has_points=False,
     )
