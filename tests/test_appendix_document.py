@@ -224,13 +224,14 @@ def test_bad_sections_name_the_entry(
 def test_a_file_is_written_whole_or_not_at_all(tmp_path: Path) -> None:
     network = read_network_text(RING)
     target = tmp_path / "out.tex"
-    write_appendix(network, target)
-    assert target.read_text() == appendix_text(network)
+    record = tmp_path / "out.proofs.json"
+    assert write_appendix(network, target) == (target, record)
+    assert target.read_text() == appendix_text(network, proofs_file=record.name)
     before = target.read_text()
     with pytest.raises(QuantityError):
         write_appendix(network, target, quantities=["p[Z]"])
     assert target.read_text() == before
-    assert [path.name for path in tmp_path.iterdir()] == ["out.tex"]
+    assert sorted(path.name for path in tmp_path.iterdir()) == ["out.proofs.json", "out.tex"]
 
 
 def test_places_that_cannot_be_written(tmp_path: Path) -> None:

@@ -6,24 +6,20 @@ import hashlib
 from collections.abc import Sequence
 from fractions import Fraction
 
+from symbolic_response.appendix.bounded import Bounded, shown
 from symbolic_response.appendix.bounds_section import WORDS
 from symbolic_response.appendix.paper import Paper
-from symbolic_response.appendix.tables import table
-from symbolic_response.bounds.registry import applicable
+from symbolic_response.appendix.tables import table, wrapping_columns
 from symbolic_response.certificates.points import PointCertificate, certify_claims
 from symbolic_response.certificates.record import point_record, record_text
 from symbolic_response.certificates.report import ratio_text
 from symbolic_response.errors import RefutedError, UndecidedError
-from symbolic_response.expressions.tree import Expression
-from symbolic_response.expressions.widths import formula_width
-from symbolic_response.response.quantity_latex import quantity_in
 
 SEED = "0"
-MAX_WIDTH = 130.0
 
 
 def certificates_section(
-    paper: Paper, quantities: Sequence[Expression], count: int, digests: bool
+    paper: Paper, entries: Sequence[Bounded], count: int, digests: bool
 ) -> str:
     """Return the table for all responses that are bounded; empty if ``count`` is 0.
 
@@ -34,28 +30,29 @@ def certificates_section(
     rows: list[str] = []
     hashes: list[str] = []
     left_out: list[str] = []
-    for number, quantity in enumerate(quantities, start=1):
-        claims = [claim for claim in applicable(quantity, paper.analysis) if claim.has_points]
+    for entry in entries:
+        claims = [claim for claim in entry.claims if claim.has_points]
         if not claims:
             continue
+        name = shown(paper, entry)
         try:
-            found = certify_claims(paper.analysis, quantity, claims, count=count, seed=SEED)
+            found = certify_claims(paper.analysis, entry.quantity, claims, count=count, seed=SEED)
         except UndecidedError:
-            left_out.append(_shown(paper, quantity, number))
+            left_out.append(name)
             continue
         if found.refuted is not None:
             raise RefutedError(found.refuted.message())
-        rows += _rows(paper, quantity, number, found)
+        rows += _rows(name, found)
         if digests:
             text = record_text(point_record(found, paper.analysis))
             digest = hashlib.sha256(text.encode()).hexdigest()
-            hashes.append(f"{_shown(paper, quantity, number)} & \\texttt{{{digest[:32]}}} "
+            hashes.append(f"{name} & \\texttt{{{digest[:32]}}} "
                           f"\\texttt{{{digest[32:]}}}")
     if not rows and not left_out:
         return ""
     return "\n\n".join(part for part in [
         rf"\section{{Certificates}}{chr(10)}" + _words(count),
-        _table(rows), _left_out(left_out), _digests(hashes)] if part)
+        _table(paper, entries, rows), _left_out(left_out), _digests(hashes)] if part)
 
 
 def _words(count: int) -> str:
@@ -68,27 +65,21 @@ def _words(count: int) -> str:
             "side, rounded down: the closer to one, the tighter.")
 
 
-def _rows(
-    paper: Paper, quantity: Expression, number: int, found: PointCertificate
-) -> list[str]:
+def _rows(name: str, found: PointCertificate) -> list[str]:
     rows = []
     for place, entry in enumerate(found.claims):
-        shown = _shown(paper, quantity, number) if place == 0 else ""
         words = WORDS[entry.claim.name]
         ratio = ratio_text(entry.worst.ratio or Fraction(0))
-        rows.append(f"{shown} & {words} & {entry.holds} & {ratio}")
+        rows.append(f"{name if place == 0 else ''} & {words} & {entry.holds} & {ratio}")
     return rows
 
 
-def _shown(paper: Paper, quantity: Expression, number: int) -> str:
-    latex = quantity_in(paper.notation, quantity)
-    return f"${latex}$" if formula_width(latex) <= MAX_WIDTH else f"quantity {number}"
-
-
-def _table(rows: Sequence[str]) -> str:
+def _table(paper: Paper, entries: Sequence[Bounded], rows: Sequence[str]) -> str:
     if not rows:
         return ""
-    columns = r"l>{\raggedright\arraybackslash}p{0.42\linewidth}rr"
+    fixed = [[r"\mathrm{Quantity}", r"\mathrm{Points}", r"\mathrm{Largest\ ratio}"],
+             *([shown(paper, entry)[1:-1], "", ""] for entry in entries)]
+    columns = "l" + wrapping_columns(paper.width, fixed, (1.0,)) + "rr"
     return table(columns, "Quantity & Limited & Points & Largest ratio", rows)
 
 

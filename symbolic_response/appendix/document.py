@@ -4,21 +4,23 @@ from __future__ import annotations
 
 import os
 import re
-import tempfile
 from collections.abc import Sequence
 from pathlib import Path
 
+from symbolic_response.appendix.bounded import bounded
 from symbolic_response.appendix.bounds_section import bounds_section
 from symbolic_response.appendix.certificates_section import certificates_section
 from symbolic_response.appendix.cycles_section import cycles_section
 from symbolic_response.appendix.escape import escaped
+from symbolic_response.appendix.files import write_files
 from symbolic_response.appendix.model_section import model_section
 from symbolic_response.appendix.named_sums import NamedSums
 from symbolic_response.appendix.paper import Paper
+from symbolic_response.appendix.proofs_section import proofs_section
 from symbolic_response.appendix.requests import extras, requested
 from symbolic_response.appendix.results import results_section
 from symbolic_response.appendix.trees_section import trees_section
-from symbolic_response.errors import OutputError
+from symbolic_response.certificates.record import check_output
 from symbolic_response.expressions.tree import Expression
 from symbolic_response.network.model import Network
 from symbolic_response.response.analysis import Analysis
@@ -50,26 +52,16 @@ def appendix_text(
     quantities: Sequence[str | Expression] | None = None,
     analysis: Analysis | None = None,
     width: float = TEXT_WIDTH,
+    proofs_file: str | None = None,
 ) -> str:
     """Return a complete LaTeX document on a network.
 
     ``quantities`` (as text or read before) override those of the file; ``width`` is the width of
-    the text in pt. Raises QuantityError or NetworkError for what cannot be used of these, and
+    the text in pt; ``proofs_file`` the name under which the text speaks of the record of proofs,
+    None for not at all. Raises QuantityError or NetworkError for what cannot be used of these, and
     SizeLimitError past a limit of the analysis.
     """
-    request, wanted = requested(network, quantities), extras(network)
-    known = analysis if analysis is not None else Analysis(network)
-    notation = notation_of(network)
-    paper = Paper(network, known, notation, NamedSums(known, notation), width)
-    body = "\n\n".join([
-        model_section(paper, request.quantities),
-        cycles_section(paper),
-        trees_section(paper),
-        results_section(paper, request.quantities, request.note),
-        bounds_section(paper, request.quantities) if wanted.bounds else "",
-        certificates_section(paper, request.quantities, wanted.certificates, wanted.digests),
-    ])
-    return _preamble(network, width) + body + "\n\n" + _bibliography(body) + "\n\\end{document}\n"
+    return _made(network, quantities, analysis, width, proofs_file)[0]
 
 
 def write_appendix(
@@ -78,45 +70,62 @@ def write_appendix(
     *,
     quantities: Sequence[str | Expression] | None = None,
     analysis: Analysis | None = None,
-) -> None:
-    """Write the document of :func:`appendix_text` to a file, whole or not at all.
+) -> tuple[Path, ...]:
+    """Write the document of :func:`appendix_text` and the record of its proofs; return the files.
 
-    Raises OutputError where the file cannot be written.
+    The record of ``out.tex`` is ``out.proofs.json``; there is none where nothing is proved. Both
+    are written whole or not at all. Raises OutputError where that cannot be done.
     """
     target = Path(path)
-    _check_target(target)
-    text = appendix_text(network, quantities=quantities, analysis=analysis)
-    try:
-        handle, temporary = tempfile.mkstemp(dir=target.parent, prefix=f".{target.name}.")
-    except OSError as error:
-        raise OutputError(f"cannot write {str(target)!r}: {error.strerror}") from None
-    try:
-        with os.fdopen(handle, "w", encoding="ascii") as file:
-            file.write(text)
-        mask = os.umask(0)
-        os.umask(mask)
-        os.chmod(temporary, 0o666 & ~mask)
-        os.replace(temporary, target)
-    except BaseException as error:
-        os.unlink(temporary)
-        if isinstance(error, OSError):
-            raise OutputError(f"cannot write {str(target)!r}: {error.strerror}") from None
-        raise
+    beside = target.with_name(target.stem + ".proofs.json")
+    for file in (target, beside):
+        check_output(file)
+    text, record = _made(network, quantities, analysis, TEXT_WIDTH, beside.name)
+    texts = {target: text} | ({} if record is None else {beside: record})
+    write_files(texts)
+    return tuple(texts)
 
 
-def _check_target(target: Path) -> None:
-    if target.is_dir():
-        raise OutputError(f"{str(target)!r} is a folder; give the name of a file")
-    if not target.parent.is_dir():
-        raise OutputError(f"there is no folder {str(target.parent)!r}; make it first")
+def _made(
+    network: Network,
+    quantities: Sequence[str | Expression] | None,
+    analysis: Analysis | None,
+    width: float,
+    proofs_file: str | None,
+) -> tuple[str, str | None]:
+    """Return the document and the record of its proofs, None where nothing is proved."""
+    request, wanted = requested(network, quantities), extras(network)
+    known = analysis if analysis is not None else Analysis(network)
+    notation = notation_of(network)
+    paper = Paper(network, known, notation, NamedSums(known, notation), width)
+    sections = [
+        model_section(paper, request.quantities),
+        cycles_section(paper),
+        trees_section(paper),
+        results_section(paper, request.quantities, request.note),
+    ]
+    record = None
+    entries = bounded(paper, request.quantities)
+    if wanted.bounds:
+        sections.append(bounds_section(paper, request.quantities))
+    if wanted.proofs:
+        proofs = proofs_section(paper, entries, proofs_file, wanted.digests)
+        sections.append(proofs.section)
+        record = proofs.record
+    sections.append(certificates_section(paper, entries, wanted.certificates, wanted.digests))
+    body = "\n\n".join(section for section in sections if section)
+    text = _preamble(network, width, body) + body + "\n\n" + _bibliography(body)
+    return text + "\n\\end{document}\n", record
 
 
-def _preamble(network: Network, width: float) -> str:
+def _preamble(network: Network, width: float, body: str) -> str:
+    theorems = "\\usepackage{amsthm}\n\\newtheorem{theorem}{Theorem}\n"
+    theorems = theorems if r"\begin{theorem}" in body else ""
     geometry = "" if width == TEXT_WIDTH else f"\\usepackage[textwidth={width:g}pt]{{geometry}}\n"
     return rf"""\documentclass{{article}}
 \usepackage{{amsmath,amssymb}}
 \usepackage{{array,booktabs,longtable}}
-{geometry}\allowdisplaybreaks
+{theorems}{geometry}\allowdisplaybreaks
 \setlength{{\emergencystretch}}{{0.3\textwidth}}
 \renewcommand{{\arraystretch}}{{1.2}}
 \begin{{document}}

@@ -31,7 +31,7 @@ def introduction(paper: Paper, kind: str, definitions: Sequence[NamedSum]) -> st
 
 def filled(paper: Paper, text: str) -> str:
     r"""Return a text with letters put in: ``@current@`` becomes ``J``."""
-    for role, latex in paper.notation.letters.items():
+    for role, latex in paper.letters.items():
         text = text.replace(f"@{role}@", latex)
     return text
 

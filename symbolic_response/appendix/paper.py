@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Sequence
+from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, field
 from fractions import Fraction
 
@@ -14,6 +14,7 @@ from symbolic_response.algebra.factored import (
     monomial_of,
     product,
 )
+from symbolic_response.appendix.letters import letters_of
 from symbolic_response.appendix.named_sums import NamedSum, NamedSums, expanded
 from symbolic_response.expressions.breaking import (
     Piece,
@@ -44,7 +45,8 @@ MAX_PRINTED_TERMS = 2000
 class Paper:
     """One document in the making; ``defined`` holds the keys of sums defined so far.
 
-    ``explained`` holds the general notions a section has explained.
+    ``explained`` holds the general notions a section has explained; ``letters`` those of the
+    notation and of the proofs, by role.
     """
 
     network: Network
@@ -55,6 +57,10 @@ class Paper:
     room: int = MAX_PRINTED_TERMS
     defined: set[str] = field(default_factory=set)
     explained: set[str] = field(default_factory=set)
+    letters: Mapping[str, str] = field(init=False)
+
+    def __post_init__(self) -> None:
+        self.letters = letters_of(self.notation)
 
     def latex(self, node: Expression) -> str:
         """Return an expression in the user's symbols and named sums."""

@@ -21,7 +21,7 @@ from symbolic_response.network.quantities import (
 )
 from symbolic_response.network.quantity_reader import read_quantity
 
-KEYS = ("quantities", "bounds", "certificates", "digests")
+KEYS = ("quantities", "bounds", "proofs", "certificates", "digests")
 MAX_CERTIFICATE_POINTS = 100_000
 DEFAULT_RESULTS = 24
 MAX_FURTHER = 12
@@ -40,24 +40,33 @@ class Request:
 
 @dataclass(frozen=True, slots=True)
 class Extras:
-    """Whether bounds are stated, points of each certificate (0: none), whether digests are."""
+    """What else is printed: bounds, their proofs, certificates of so many points, digests."""
 
     bounds: bool = True
+    proofs: bool = True
     certificates: int = 0
     digests: bool = False
 
 
 def extras(network: Network) -> Extras:
-    """Return what else the file's [appendix] asks for; NetworkError for values of other types."""
+    """Return what else the file's [appendix] asks for; NetworkError for values of other types.
+
+    Bounds that are not stated are not proved either.
+    """
     section = network.appendix
-    for key in ("bounds", "digests"):
+    for key in ("bounds", "proofs", "digests"):
         if type(section.get(key, False)) is not bool:
             raise NetworkError(f"[appendix] {key} is not true or false")
     count = section.get("certificates", 0)
     if type(count) is not int or not 0 <= count <= MAX_CERTIFICATE_POINTS:
         raise NetworkError("[appendix] certificates is not a number of points from 0 to"
                            f" {MAX_CERTIFICATE_POINTS}; write certificates = 1000")
-    return Extras(bool(section.get("bounds", True)), count, bool(section.get("digests", False)))
+    bounds = bool(section.get("bounds", True))
+    proofs = bool(section.get("proofs", bounds))
+    if proofs and not bounds:
+        raise NetworkError("[appendix] proofs is true but bounds is false: what is not stated is"
+                           " not proved; write bounds = true, or leave proofs out")
+    return Extras(bounds, proofs, count, bool(section.get("digests", False)))
 
 
 def requested(network: Network, quantities: Sequence[str | Expression] | None) -> Request:

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 
-from symbolic_response.expressions.widths import TEXT, formula_width
+from symbolic_response.expressions.widths import DISPLAY, TEXT, formula_width
 
 COLUMN_GAP = 12.0
 """Twice LaTeX's tabcolsep, in pt."""
@@ -24,3 +24,13 @@ def table_width(rows: Sequence[Sequence[str]], *, style: int = TEXT) -> float:
     columns = list(zip(*rows, strict=True))
     widths = [max(formula_width(cell, style=style) for cell in column) for column in columns]
     return sum(widths) + COLUMN_GAP * (len(widths) - 1)
+
+
+def wrapping_columns(width: float, fixed: Sequence[Sequence[str]], shares: Sequence[float]) -> str:
+    """Return columns whose text wraps, for the room that columns of formulas leave.
+
+    ``fixed``: the rows of those columns, the head included; ``shares``: of the room, by column.
+    """
+    room = width - table_width(fixed, style=DISPLAY) - COLUMN_GAP * len(shares)
+    return "".join(rf">{{\raggedright\arraybackslash}}p{{{int(room * share)}pt}}"
+                   for share in shares)

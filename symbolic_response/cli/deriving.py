@@ -154,9 +154,11 @@ def appendix(
     trees: int | None,
     terms: int | None,
 ) -> int:
-    """Write a complete LaTeX document: model, cycles, trees, steady state, results.
+    """Write a complete LaTeX document: model, cycles, trees, steady state,
+    results, bounds with their proofs.
 
-    The [appendix] section of the network file chooses the quantities.
+    The [appendix] section of the network file chooses the quantities. The data of
+    the proofs is written to FILE.proofs.json, which recheck takes.
 
     \b
     Example:
@@ -168,9 +170,10 @@ def appendix(
     with Progress(quiet) as progress:
         progress.stage("writing the appendix")
         analysis = analysis_of(described, progress, trees, terms)
-        write_appendix(described, output, analysis=analysis)
+        files = [str(file) for file in write_appendix(described, output, analysis=analysis)]
     if as_json:
-        click.echo(json.dumps({"network": described.title, "file": output}))
+        proofs = files[1] if len(files) > 1 else None
+        click.echo(json.dumps({"network": described.title, "file": output, "proofs": proofs}))
     else:
-        click.echo(f"wrote {output}", err=True)
+        click.echo("\n".join(f"wrote {file}" for file in files), err=True)
     return 0

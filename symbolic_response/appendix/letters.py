@@ -1,0 +1,51 @@
+"""Letters of the proofs, none of them a symbol of the file nor a letter of the notation."""
+
+from __future__ import annotations
+
+import re
+from collections.abc import Mapping
+
+from symbolic_response.expressions.names import same_latex
+from symbolic_response.response.quantity_latex import Notation
+
+PROOF_LETTERS = {
+    "free": ("a", r"\alpha", r"\mathbf{a}"),
+    "ahead": ("f", r"\eta", r"\mathbf{f}"),
+    "back": ("b", r"\beta", r"\mathbf{b}"),
+    "pair": (r"\varphi", r"\chi", r"\phi"),
+    "cross ratio": ("r", r"\varrho", r"\mathbf{r}"),
+    "mixture": ("h", r"\mu", r"\mathbf{h}"),
+    "share ahead": ("s", r"\xi", r"\mathbf{s}"),
+    "share back": ("t", r"\zeta", r"\mathbf{t}"),
+    "into": (r"\Sigma", r"\Gamma", r"\Lambda"),
+    "cut": ("V", "L", r"\mathbf{V}"),
+    "coefficient": (r"\lambda", r"\kappa", r"\mathbf{l}"),
+    "end ratio": (r"\rho", r"\upsilon", r"\mathbf{x}"),
+    "response": ("u", r"\nu", r"\mathbf{u}"),
+    "parameter": (r"\theta", r"\vartheta", r"\mathbf{y}"),
+    "change": ("v", r"\iota", r"\mathbf{v}"),
+    "scale": ("z", r"\zeta", r"\mathbf{z}"),
+    "odds share": ("g", r"\gamma", r"\mathbf{g}"),
+    "largest": ("G", "K", r"\mathbf{G}"),
+}
+"""For each role in a proof the letters it may take, the first that is free being taken."""
+
+
+def proof_letters(notation: Notation) -> dict[str, str]:
+    """Return a letter for each role in the proofs.
+
+    Where all letters of a role are taken it is written as its name.
+    """
+    taken = {same_latex(re.split(r"[_^']", text)[0]) for text in notation.symbols.values()}
+    taken |= {same_latex(letter) for letter in notation.letters.values()}
+    chosen: dict[str, str] = {}
+    for role, letters in PROOF_LETTERS.items():
+        free = [letter for letter in letters if same_latex(letter) not in taken]
+        chosen[role] = free[0] if free else rf"\mathrm{{{role.split()[0]}}}"
+        taken.add(same_latex(chosen[role]))
+    return chosen
+
+
+def letters_of(notation: Notation) -> Mapping[str, str]:
+    """Return the letters of the notation and of the proofs by role."""
+    return dict(notation.letters) | proof_letters(notation)

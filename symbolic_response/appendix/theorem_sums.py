@@ -1,0 +1,134 @@
+"""What follows from sums over trees and over paths, each part where it is used."""
+
+from __future__ import annotations
+
+from symbolic_response.appendix.formulas import filled
+from symbolic_response.appendix.paper import Paper
+
+
+def observables(paper: Paper) -> str:
+    """Return how bounds on the responses of probabilities carry over to observables."""
+    return filled(paper, r"""\subsection{From probabilities to observables}
+Let $@response@_k = \partial \ln @probability@_k / \partial @parameter@$. For functions $q$ and $q'$
+of the state that do not depend on $@parameter@$, have no negative value and are not zero,
+\begin{equation}
+\frac{\partial}{\partial @parameter@} \ln \frac{\langle q \rangle}{\langle q' \rangle}
+ = \frac{\langle q \, @response@ \rangle}{\langle q \rangle}
+ - \frac{\langle q' @response@ \rangle}{\langle q' \rangle}
+\label{eq:observable}
+\end{equation}
+is a difference of two weighted means of the $@response@_k$. Its size is at most
+$\max_k @response@_k - \min_k @response@_k$, the largest response of a
+$\ln (@probability@_i / @probability@_j)$, which is what is limited below. The mean of a function
+$q$ with values from $0$ to $1$ follows with $q' = 1 - q$,
+\begin{equation}
+\frac{\partial \langle q \rangle}{\partial @parameter@}
+ = \langle q \rangle \bigl(1 - \langle q \rangle\bigr)
+ \frac{\partial}{\partial @parameter@} \ln \frac{\langle q \rangle}{1 - \langle q \rangle} ,
+\label{eq:mean}
+\end{equation}
+that of other functions by rescaling, and $\ln \langle q \rangle$ by division.""")
+
+
+def currents(paper: Paper) -> str:
+    """Return the exact responses of the current of a transition to its barrier and drive."""
+    return filled(paper, r"""\subsection{The current of a transition}
+Put into $@current numerator@_e = @rate@^+_e @tree sum@_m - @rate@^-_e @tree sum@_n$,
+Eq.~\eqref{eq:split} gives
+\begin{equation}
+@current numerator@_e = @rate@^+_e @free@_m - @rate@^-_e @free@_n .
+\label{eq:current}
+\end{equation}
+Raising the barrier takes both $@rate@^\pm_e$ down alike, and of
+$@normalisation@ = \sum_k @tree sum@_k$ all but $\sum_k @free@_k$, so that
+$\partial \ln |@current@_e| / \partial @barrier@_e = - \sum_k @free@_k / @normalisation@$. The
+response to the drive is
+\begin{equation}
+\frac{\partial @current@_e}{\partial @drive@_e}
+ = \frac{@traffic@_e}{2} \frac{\sum_k @free@_k}{@normalisation@} ,
+\label{eq:drive}
+\end{equation}
+as seen by differentiating $@current numerator@_e / @normalisation@$ with the sum of
+Eq.~\eqref{eq:free} over $k$ and
+$@traffic@_e @normalisation@ = @rate@^+_e @free@_m + @rate@^-_e @free@_n
++ 2 @rate@^+_e @rate@^-_e @pair@$. Both shares $\sum_k @free@_k / @normalisation@$ are at most
+one.""")
+
+
+def sums_over_trees(paper: Paper) -> str:
+    """Return the bound by the range of sums over the rates of a tree, for energies the identity."""
+    return filled(paper, r"""\subsection{Sums over trees}
+Let the logarithm of each directed rate $x$ change by a number,
+$@change@_x = \partial \ln x / \partial @parameter@$. Then
+$\partial \ln @tree sum@_k / \partial @parameter@$ is the weighted mean, over the trees directed
+towards $k$, of the sum of $@change@_x$ over the rates of the tree. If these sums lie between
+$@change@_{\min}$ and $@change@_{\max}$ for the trees towards all states, then
+\begin{equation}
+\Bigl| \frac{\partial}{\partial @parameter@} \ln \frac{@probability@_i}{@probability@_j} \Bigr|
+ \le @change@_{\max} - @change@_{\min} .
+\label{eq:trees}
+\end{equation}""")
+
+
+def energies(paper: Paper) -> str:
+    """Return the identity for a change of an energy."""
+    return filled(paper, r"""For the energy $@energy@_j$ the sum counts the transitions out of $j$:
+one in every tree not directed towards $j$, none in the others. Hence
+$\partial \ln @tree sum@_k / \partial @energy@_j = 1 - \delta_{jk}$ exactly, and with it
+$\partial \langle q \rangle / \partial @energy@_j
+= @probability@_j (\langle q \rangle - q_j)$.""")
+
+
+def drives(paper: Paper) -> str:
+    """Return the sums over trees for a drive."""
+    return filled(paper, r"""For a drive the sums are $1/2$, $-1/2$ or zero, since a tree uses a
+transition once at most.""")
+
+
+def bundles(paper: Paper) -> str:
+    """Return the bound for a set of transitions whose rates change alike."""
+    return filled(paper, r"""\subsection{Transitions changed together}
+Let $@scale@$ multiply all rates of a set $\mathcal{B}$ of transitions of which every spanning tree
+uses $x$ or $x + 1$. Then $@tree sum@_k = @scale@^x (@free@_k + @scale@ @back@_k)$ with sums
+$@free@_k$ and $@back@_k$ over the trees that use $x$ and $x + 1$ of them, and
+\begin{equation}
+\frac{\partial}{\partial \ln @scale@} \ln \frac{@probability@_i}{@probability@_j}
+ = \frac{@scale@ @back@_i}{@free@_i + @scale@ @back@_i}
+ - \frac{@scale@ @back@_j}{@free@_j + @scale@ @back@_j} .
+\label{eq:bundle}
+\end{equation}
+The odds of the two terms have the ratio $@back@_i @free@_j / (@free@_i @back@_j)$. If
+$@back@_i @free@_j \le @largest@ \, @free@_i @back@_j$ for all $i$ and $j$, the difference is at
+most $\tanh (\ln(@largest@)/4)$: for odds $e^x$ and $e^y$ it is
+$\sinh ((x - y)/2) / [\cosh ((x - y)/2) + \cosh ((x + y)/2)]$. A matching of the terms of
+$@back@_i @free@_j$ with those of $@free@_i @back@_j$ shows this for $\ln @largest@$ the largest
+$|@force@_c|$ of the cycles with transitions inside and outside of $\mathcal{B}$: the two terms of
+each pair are equal or differ by the reversal of one such cycle.""")
+
+
+def parameters(paper: Paper) -> str:
+    """Return the bound for a parameter resolved into energies, barriers and single rates."""
+    return filled(paper, r"""\subsection{Parameters}
+A parameter whose action on the logarithms of the rates is a sum of changes $x_k$ of energies,
+$y_e$ of barriers and of single rates has the sum of the responses to each. Every tree directed
+towards $k$ holds one transition out of each other state, so that the energies change
+$\ln (@probability@_i / @probability@_j)$ by $x_j - x_i$, at most
+$\max_k x_k - \min_k x_k$; a barrier changes it by at most
+$|y_e| \tanh (@force@_{\max}(e)/4)$, and a single rate by its own change, a tree using it once at
+most.""")
+
+
+def paths(paper: Paper) -> str:
+    """Return the bound on the ratio of two probabilities by the paths between them."""
+    return filled(paper, r"""\subsection{Paths between two states}
+For a simple path $P$ from $i$ to $j$ let $@rate@_P^+$ and $@rate@_P^-$ be the products of the rates
+along it and against it, and $@into@_P$ the sum of the weights of the spanning forests in which
+every state outside of $P$ is directed into $P$. Every tree directed towards $j$ holds one path from
+$i$, and its other transitions are such a forest; with the path reversed the tree is directed
+towards $i$. Hence
+\begin{equation}
+@tree sum@_j = \sum_P @rate@_P^+ @into@_P , \qquad @tree sum@_i = \sum_P @rate@_P^- @into@_P ,
+\label{eq:paths}
+\end{equation}
+and $@probability@_j / @probability@_i$, their mediant, is at most
+$\max_P @rate@_P^+ / @rate@_P^-$.""")
