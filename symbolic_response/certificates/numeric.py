@@ -23,7 +23,7 @@ from symbolic_response.bounds.claim import (
     Term,
 )
 from symbolic_response.bounds.curves import Curve, FiniteChange, LocalChange, Tanh
-from symbolic_response.bounds.target import Absolute, Extreme, ShareWithout
+from symbolic_response.bounds.target import Absolute, Extreme
 from symbolic_response.bounds.topological import competing
 from symbolic_response.errors import UndecidedError
 from symbolic_response.expressions.derivative import by_symbol
@@ -57,6 +57,7 @@ from symbolic_response.topology import Cycle, can_run_against, can_run_along
 Floats = NDArray[np.float64]
 Dual = tuple[Floats, Floats]
 SMALLEST = 1e-4
+SMALLEST_SHARE = 1e-7  # of the traffic: smaller currents are noise
 
 
 class CycleSteps:
@@ -166,15 +167,6 @@ class NumericPoints:
     def _trees(self, generator: Floats, root: int) -> Floats:
         kept = [k for k in range(self.analysis.graph.size) if k != root]
         return np.asarray(np.linalg.det(-generator[:, kept][:, :, kept]), dtype=np.float64)
-
-    def _share(self, e: int) -> Floats:
-        """Return the share of the rooted trees, by weight, that do not use a transition."""
-        free, every = (
-            sum((self._trees(generator, root) for root in range(self.analysis.graph.size)),
-                np.zeros(self.count))
-            for generator in (self._generator(without=e), self._generator())
-        )
-        return free / every
 
     # -- the steady state ------------------------------------------------------------------
 
@@ -286,8 +278,6 @@ class NumericPoints:
                 return reduce(choose, [self._dual(part, by)[0] for part in parts]), zero
             case Absolute(inner):
                 return np.abs(self._dual(inner, by)[0]), zero
-            case ShareWithout(e):
-                return self._share(e), zero
             case Response(inner, perturbation) if by is None:
                 return self._dual(inner, perturbation)[1], zero
         return self._atom(node, by)
@@ -307,7 +297,9 @@ class NumericPoints:
                 zero = np.zeros(self.count)
                 return sum((a for a, _ in pairs), zero), sum((b for _, b in pairs), zero)
             case Current(e):
-                return self._flow(e, -1, by)
+                found, slope = self._flow(e, -1, by)
+                trusted = np.abs(found) > SMALLEST_SHARE * self._flow(e, 1, by)[0]
+                return np.where(trusted, found, np.nan), np.where(trusted, slope, np.nan)
             case Traffic(e):
                 return self._flow(e, 1, by)
         raise UndecidedError(f"no arithmetic for {type(node).__name__}")
