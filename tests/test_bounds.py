@@ -237,6 +237,9 @@ def test_messages_say_what_the_catalogue_speaks_of() -> None:
         ("d current[bind] / d barrier[flip]", "the catalogue speaks of responses"),
         ("d mean[moving] / d c", "depends on c"),
         ("d ln mean[q] / d barrier[bind]", "may be negative"),
+        ("d (d ln mean[q] / d barrier[bind]) / d barrier[bind]", "may be negative"),
+        ("change(ln(mean[q]), barrier[bind], 1)", "may be negative"),
+        ("change(p[A], barrier[bind], 1)", "the catalogue speaks of responses"),
     ]:
         with pytest.raises(QuantityError, match=words):
             claims_for(read_quantity(text, RING), analysis)

@@ -88,15 +88,18 @@ def claims_for(
 
 def _why_none(quantity: Expression, analysis: Analysis) -> str:
     """Say which hypothesis fails, else what the catalogue speaks of."""
-    if isinstance(quantity, Response):
-        target, by = target_of(quantity.quantity, analysis.network), quantity.perturbation
-        if target is not None and isinstance(by, BySymbol) and depends_on(target, by.name):
-            return f"the observable itself depends on {by.name}, which no bound allows"
-        if target is None and may_be_negative(quantity.quantity, analysis.network):
-            return (
-                "a mean may be negative (or is zero): in a ratio or under ln an observable must be"
-                " certainly not negative in every state"
-            )
+    by = quantity.perturbation if isinstance(quantity, Response) else None
+    inner = quantity
+    while isinstance(inner, Response | Change):
+        inner = inner.quantity
+    target = target_of(inner, analysis.network)
+    if target is not None and isinstance(by, BySymbol) and depends_on(target, by.name):
+        return f"the observable itself depends on {by.name}, which no bound allows"
+    if target is None and inner != quantity and may_be_negative(inner, analysis.network):
+        return (
+            "a mean may be negative (or is zero): in a ratio or under ln an observable must be"
+            " certainly not negative in every state"
+        )
     return SPEAKS_OF
 
 
