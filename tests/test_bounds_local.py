@@ -180,6 +180,10 @@ def test_texts() -> None:
     (claim,) = (c for c in applicable(read_quantity("d ln(p[A]/p[B]) / d ln c", ring),
                                       Analysis(ring)) if c.name == "local-change")
     assert right_text(claim, Analysis(ring)) == "2" and "psi" not in claim.data
+    two = build_network("two", states="A B", transitions=[
+        Rates("A", "B", "c", "b", name="e"), Rates("A", "B", "c", "1", name="f")])
+    assert "local-change" not in {claim.name for claim in applicable(
+        read_quantity("d ln(p[A]/p[B]) / d ln c", two), Analysis(two))}
     assert claim.source == "derived here; see DEVELOPERS.md, The end-pair theorem"
 
 

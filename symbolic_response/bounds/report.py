@@ -303,7 +303,7 @@ def _cycle_lines(row: BoundRow) -> list[str]:
             lines.append(f"    and {len(cycles) - MOST_CYCLES} more")
     for name, winner in (row.in_force or {}).items():
         if winner is None:
-            lines.append(f"  limiting cycle for {name}: none")
+            lines.append(f"  limiting cycle for {name}: none (a bridge)")
         else:
             lines.append(f"  limiting cycle for {name}: {winner[0]}, force {winner[1]}")
     return lines
