@@ -12,7 +12,7 @@ from symbolic_response.expressions.tree import Expression
 from symbolic_response.expressions.widths import formula_width
 from symbolic_response.response.quantity_latex import quantity_in
 
-MAX_SHARE = 0.36
+MAX_SHARE = 0.27
 
 
 @dataclass(frozen=True, slots=True)
@@ -28,11 +28,17 @@ class Bounded:
 
 
 def bounded(paper: Paper, quantities: Sequence[Expression]) -> list[Bounded]:
-    """Return the entries of the quantities that are bounded, in their order."""
-    found = []
+    """Return the entries of the quantities that are bounded, in their order.
+
+    A ratio that several quantities bound, by itself or under ln, is one entry.
+    """
+    found: list[Bounded] = []
+    ratios = set()
     for number, quantity in enumerate(quantities, start=1):
         claims = applicable(quantity, paper.analysis)
-        found += [Bounded(number, quantity, (claim,)) for claim in claims if claim.name == PATH]
+        paths = [claim for claim in claims if claim.name == PATH and claim.left not in ratios]
+        found += [Bounded(number, quantity, (claim,)) for claim in paths]
+        ratios |= {claim.left for claim in paths}
         others = tuple(claim for claim in claims if claim.name != PATH)
         if others:
             found.append(Bounded(number, quantity, others))

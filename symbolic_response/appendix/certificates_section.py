@@ -9,7 +9,7 @@ from fractions import Fraction
 from symbolic_response.appendix.bounded import Bounded, shown
 from symbolic_response.appendix.bounds_section import WORDS
 from symbolic_response.appendix.paper import Paper
-from symbolic_response.appendix.tables import table, wrapping_columns
+from symbolic_response.appendix.tables import digest_latex, table, wrapping_columns
 from symbolic_response.certificates.points import PointCertificate, certify_claims
 from symbolic_response.certificates.record import point_record, record_text
 from symbolic_response.certificates.report import ratio_text
@@ -46,13 +46,13 @@ def certificates_section(
         if digests:
             text = record_text(point_record(found, paper.analysis))
             digest = hashlib.sha256(text.encode()).hexdigest()
-            hashes.append(f"{name} & \\texttt{{{digest[:32]}}} "
-                          f"\\texttt{{{digest[32:]}}}")
+            hashes.append(f"{name} & {digest_latex(digest)}")
     if not rows and not left_out:
         return ""
     return "\n\n".join(part for part in [
         rf"\section{{Certificates}}{chr(10)}" + _words(count),
-        _table(paper, entries, rows), _left_out(left_out), _digests(hashes)] if part)
+        _table(paper, entries, rows), _left_out(left_out),
+        _digests(paper, entries, hashes)] if part)
 
 
 def _words(count: int) -> str:
@@ -90,8 +90,9 @@ def _left_out(names: Sequence[str]) -> str:
             f"and outside of exponentials; left out: {', '.join(names)}.")
 
 
-def _digests(hashes: Sequence[str]) -> str:
+def _digests(paper: Paper, entries: Sequence[Bounded], hashes: Sequence[str]) -> str:
     if not hashes:
         return ""
-    columns = r"l>{\raggedright\arraybackslash}p{0.52\linewidth}"
+    fixed = [[r"\mathrm{Quantity}"], *([shown(paper, entry)[1:-1]] for entry in entries)]
+    columns = "l" + wrapping_columns(paper.width, fixed, (1.0,))
     return table(columns, "Quantity & SHA-256 of the certificate record", hashes)

@@ -8,7 +8,7 @@ from dataclasses import dataclass
 from symbolic_response.algebra.factored import Factored
 from symbolic_response.appendix.formulas import filled
 from symbolic_response.appendix.paper import Paper
-from symbolic_response.appendix.tables import table, table_width
+from symbolic_response.appendix.tables import table, table_width, wrapping_columns
 from symbolic_response.errors import SizeLimitError
 from symbolic_response.expressions.breaking import Equation, Piece, align, fits, line_limit
 from symbolic_response.expressions.tree import Expression, divide, function
@@ -99,7 +99,7 @@ def _listing(paper: Paper, entries: Sequence[_Entry]) -> str:
     if table_width([head, *rows]) <= paper.width:
         routes = _route_table(shown, rows)
     else:
-        routes = _wrapped_table(shown, rows)
+        routes = _wrapped_table(paper, shown, rows)
     verb = "The force is" if len(entries) == 1 else "The forces are"
     equations = [_equation(paper, entry) for entry in entries]
     return routes + note + f"\n{verb}\n" + align(equations, paper.width)
@@ -110,17 +110,17 @@ def _route_table(head: Sequence[str], rows: Sequence[Sequence[str]]) -> str:
     return table("l" * len(head), " & ".join(head), body)
 
 
-def _wrapped_table(head: Sequence[str], rows: Sequence[Sequence[str]]) -> str:
+def _wrapped_table(paper: Paper, head: Sequence[str], rows: Sequence[Sequence[str]]) -> str:
     """Return a table whose cells break over lines after arrows and commas."""
-    share = 0.8 / (len(head) - 1)
-    column = rf">{{\raggedright\arraybackslash}}p{{{share:.2f}\linewidth}}"
+    wrapped = len(head) - 1
+    columns = wrapping_columns(paper.width, [[r"\mathrm{Cycle\ }c"]], (1 / wrapped,) * wrapped)
     body = [
         " & ".join(
             f"${cell}$".replace(r" \to ", r" \to{}$ $").replace(",\\ ", ",$ $") for cell in row
         )
         for row in rows
     ]
-    return table("l" + (len(head) - 1) * column, " & ".join(head), body)
+    return table("l" + columns, " & ".join(head), body)
 
 
 def _row(paper: Paper, entry: _Entry, parallel: bool) -> list[str]:

@@ -38,7 +38,7 @@ def cycles_data(paper: Paper, proofs: Sequence[EdgeProof]) -> str:
     through = {proof.transition: [_place(every, proof.transition, row) for row in proof.rows]
                for proof in with_cycles} if every else {}
     used = sorted({place for places in through.values() for place in places})
-    if len(used) == 1:
+    if len(every) == 1:
         return _single(paper, every[used[0]], with_cycles[0].rows[0].weight)
     parts = [_completeness(paper)]
     if every and len(used) <= MAX_CYCLES:
@@ -73,13 +73,15 @@ def _require(paper: Paper, proof: EdgeProof) -> None:
 
 
 def _single(paper: Paper, cycle: Cycle, weight: int) -> str:
-    """Return the sum over forests of the only cycle, in a sentence."""
-    number = 1 + list(paper.analysis.cycles).index(cycle)
+    """Return the sum over forests of the only cycle of a network, in a sentence."""
     shown = _weight(paper, cycle.states, weight, ("", "", ""))
+    trees = "one spanning tree does" if weight == 1 else f"{weight:,} spanning trees do"
     noun = "forest" if weight == 1 else "forests"
-    value = f"= {shown}$, a sum over" if "terms" not in shown else "$ is a sum over"
-    return filled(paper, rf"For the only cycle $@into@_{number} {value} {weight:,} {noun}, as many "
-                  "as there are spanning trees that do not use a given transition of the cycle.")
+    printed = "terms" not in shown
+    value = "= 1$" if shown == "1" else f"= {shown}$, of" if printed else "$, a sum over"
+    value += "" if shown == "1" else f" {weight:,} {noun}"
+    return filled(paper, rf"The only cycle has $@into@_1 {value}, and {trees} not use a given "
+                  "transition of it: no cycle is missing.")
 
 
 def _completeness(paper: Paper) -> str:
@@ -96,8 +98,7 @@ def _weights(paper: Paper, cycles: Sequence[tuple[int, Cycle, int]]) -> str:
     head = [r"\mathrm{Cycle\ }c", letter, r"\mathrm{Forests}"]
     rows = [[f"{place + 1}", _weight(paper, cycle.states, weight, head), f"{weight:,}"]
             for place, cycle, weight in cycles]
-    body = [" & ".join(f"${cell}$" if not cell.startswith("$") else cell for cell in row)
-            for row in rows]
+    body = [" & ".join(f"${cell}$" for cell in row) for row in rows]
     return table("llr", f"Cycle $c$ & ${letter}$ & Forests", body)
 
 
@@ -109,7 +110,7 @@ def _weight(paper: Paper, states: Sequence[int], weight: int, head: Sequence[str
         shown = paper.latex(node)
         terms = len(latex_terms(node, paper.sums.names()))
         if terms <= MAX_WEIGHT_TERMS and formula_width(shown) <= room:
-            return rf"$\displaystyle {shown}$" if r"\frac" in shown else shown
+            return (r"\displaystyle " if r"\frac" in shown else "") + shown
     return rf"{weight:,}\ \mathrm{{terms}}"
 
 
@@ -204,8 +205,7 @@ def _paths(paper: Paper, proof: PathsProof) -> str:
     for row in proof.rows:
         route = _route(paper, proof.start, row)
         shown = _weight(paper, _visited(paper, proof.start, row), row.weight, head)
-        cell = shown if shown.startswith("$") else f"${shown}$"
-        rows.append(f"${route}$ & {cell} & {row.weight:,}")
+        rows.append(f"${route}$ & ${shown}$ & {row.weight:,}")
     columns = r">{\raggedright\arraybackslash}p{0.3\linewidth}lr"
     return (f"The {noun} {ends}; the numbers of forests add up to {total:,}, the number of "
             f"spanning trees, and none is missing:\n"

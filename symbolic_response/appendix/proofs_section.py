@@ -13,7 +13,7 @@ from symbolic_response.appendix.escape import escaped
 from symbolic_response.appendix.formulas import filled, is_one
 from symbolic_response.appendix.paper import Paper
 from symbolic_response.appendix.proofs_data import cycles_data, paths_data, splittings_data
-from symbolic_response.appendix.tables import table, wrapping_columns
+from symbolic_response.appendix.tables import digest_latex, table, wrapping_columns
 from symbolic_response.bounds.claim import Claim
 from symbolic_response.bounds.sides import quantity_text
 from symbolic_response.certificates.certify import Certificate
@@ -35,7 +35,7 @@ ENERGIES = frozenset(("energy-covariance", "energy-range"))
 DRIVES = frozenset(("drive", "splitting-drive"))
 
 EQUATIONS: dict[str, tuple[str, ...]] = {
-    "energy-covariance": (), "energy-range": ("trees",),
+    "energy-covariance": ("energy",), "energy-range": ("trees",),
     "end-pair": ("mixture", "tanh"), "barrier": ("mixture", "tanh", "mediant"),
     "splitting-end-pair": ("covariance", "tanh"),
     "splitting-barrier": ("covariance", "tanh", "mediant"),
@@ -45,7 +45,7 @@ EQUATIONS: dict[str, tuple[str, ...]] = {
     "bundle": ("bundle",), "directed-bundle": ("trees",), "support": ("trees",),
     "second-order": ("second",), "finite-end-pair": ("mixture", "finite"),
     "finite-change": ("mixture", "finite", "mediant"),
-    "parameter": (), "path": ("paths",),
+    "parameter": ("parameter",), "path": ("paths",),
 }
 """The equations that each inequality follows from."""
 
@@ -108,7 +108,7 @@ def _theory(paper: Paper, found: Sequence[Proved]) -> list[str]:
     parts = []
     if names - CURRENTS - {"path"}:
         parts.append(theorem_sums.observables(paper))
-    if any(isinstance(proof, CoefficientsProof) for proof in proofs):
+    if "parameter" in names or any(isinstance(proof, CoefficientsProof) for proof in proofs):
         parts.append(theorem_sums.sums_over_trees(paper))
         parts += [theorem_sums.energies(paper)] if names & ENERGIES else []
         parts += [theorem_sums.drives(paper)] if names & DRIVES else []
@@ -117,7 +117,7 @@ def _theory(paper: Paper, found: Sequence[Proved]) -> list[str]:
     if any(isinstance(proof, TransportProof) for proof in proofs):
         parts.append(theorem_sums.bundles(paper))
     if "parameter" in names:
-        parts.append(theorem_sums.parameters(paper))
+        parts.append(theorem_sums.parameters(paper, bool(edges)))
     if paths:
         parts += [theorem_sums.paths(paper), paths_data(paper, paths)]
     return parts
@@ -151,23 +151,31 @@ def _ends(
 
 
 def _listing(paper: Paper, proved: Sequence[tuple[Bounded, Proved]]) -> str:
-    """Return the table of responses, inequalities and proofs."""
+    """Return the table of responses, inequalities and proofs, equal rows put together."""
     forms = {form_of(proof) for _, found in proved for proof in found.proofs} - {None}
-    rows = []
+    alike: dict[tuple[str, ...], list[str]] = {}
     for entry, found in proved:
-        by_proofs: dict[tuple[Proof, ...], list[Claim]] = {}
-        for claim, needs in zip(found.claims, found.needs, strict=True):
-            by_proofs.setdefault(needs, []).append(claim)
-        for place, (needs, claims) in enumerate(by_proofs.items()):
-            name = shown(paper, entry) if place == 0 else ""
-            words = "; ".join(WORDS[claim.name] for claim in claims)
-            proofs = "; ".join(_words(paper, proof, len(forms) > 1) for proof in needs)
-            proofs = (proofs or "its parts") + _equations(needs, claims)
-            rows.append(f"{name} & {words} & {proofs}")
-    names = [[r"\mathrm{Quantity}"], *([shown(paper, entry)[1:-1]] for entry, _ in proved)]
-    columns = "l" + wrapping_columns(paper.width, names, (0.56, 0.43))
+        rows = tuple(_rows(paper, found, len(forms) > 1))
+        alike.setdefault(rows, []).append(shown(paper, entry))
+    lines = []
+    for rows, names in alike.items():
+        lines += [f"{', '.join(names)} & {rows[0]}", *(f" & {row}" for row in rows[1:])]
+    columns = wrapping_columns(paper.width, [[]], (0.3, 0.39, 0.31))
     return ("\\subsection{What is proved}\n" + _forms(forms)
-            + table(columns, "Quantity & Limited & Proof", rows))
+            + table(columns, "Quantity & Limited & Proof", lines))
+
+
+def _rows(paper: Paper, found: Proved, marked: bool) -> list[str]:
+    """Return what limits a response, and the proof, for all that have the same proof."""
+    by_proofs: dict[tuple[Proof, ...], list[Claim]] = {}
+    for claim, needs in zip(found.claims, found.needs, strict=True):
+        by_proofs.setdefault(needs, []).append(claim)
+    rows = []
+    for needs, claims in by_proofs.items():
+        words = "; ".join(WORDS[claim.name] for claim in claims)
+        proofs = [*(_words(paper, proof, marked) for proof in needs), _equations(needs, claims)]
+        rows.append(f"{words} & {'; '.join(proofs)}")
+    return rows
 
 
 def _equations(needs: Sequence[Proof], claims: Sequence[Claim]) -> str:
@@ -175,11 +183,8 @@ def _equations(needs: Sequence[Proof], claims: Sequence[Claim]) -> str:
     every = dict.fromkeys(label for claim in claims for label in EQUATIONS[claim.name])
     if any(isinstance(proof, CoefficientsProof) for proof in needs):
         every = {"trees" if label == "bundle" else label: None for label in every}
-    labels = list(every)
-    if not labels:
-        return ""
-    noun = "Eq." if len(labels) == 1 else "Eqs."
-    return f"; {noun}~" + ", ".join(rf"\eqref{{eq:{label}}}" for label in labels)
+    noun = "Eq." if len(every) == 1 else "Eqs."
+    return f"{noun}~" + ", ".join(rf"\eqref{{eq:{label}}}" for label in every)
 
 
 def _forms(forms: set[str | None]) -> str:
@@ -222,14 +227,14 @@ def _file(paper: Paper, file: str | None, record: str | None) -> str:
     name = escaped(file)
     text = rf"""The file \texttt{{{name}}} holds the data of these proofs. Either of
 \begin{{flushleft}}
-\quad\texttt{{symbolic-response recheck {name}}}\\
-\quad\texttt{{python -I -S symbolic\_response/checker {name}}}
+\texttt{{symbolic-response recheck {name}}}\\
+\texttt{{python -I -S symbolic\_response/checker {name}}}
 \end{{flushleft}}
 checks all of it; the second one shares no code with the program that made this document."""
     if record is not None:
         digest = hashlib.sha256(record.encode()).hexdigest()
-        text += (f" Its SHA-256 is\n\\begin{{flushleft}}\n\\quad\\texttt{{{digest[:32]}}}\\\\\n"
-                 f"\\quad\\texttt{{{digest[32:]}}}\n\\end{{flushleft}}")
+        text += (" Its SHA-256 is\n\\begin{flushleft}\n" + digest_latex(digest)
+                 + "\n\\end{flushleft}")
     return text
 
 

@@ -31,6 +31,15 @@ def wrapping_columns(width: float, fixed: Sequence[Sequence[str]], shares: Seque
 
     ``fixed``: the rows of those columns, the head included; ``shares``: of the room, by column.
     """
-    room = width - table_width(fixed, style=DISPLAY) - COLUMN_GAP * len(shares)
-    return "".join(rf">{{\raggedright\arraybackslash}}p{{{int(room * share)}pt}}"
-                   for share in shares)
+    gaps = COLUMN_GAP * (len(shares) + len(fixed[0]) - 1)
+    columns = zip(*fixed, strict=True)
+    taken = sum(max(formula_width(cell, style=DISPLAY) for cell in column) for column in columns)
+    room = width - gaps - taken
+    style = r"\raggedright\arraybackslash\lineskiplimit2pt\lineskip4pt"
+    return "".join(f">{{{style}}}p{{{int(room * share)}pt}}" for share in shares)
+
+
+def digest_latex(digest: str) -> str:
+    """Return a digest in hexadecimal digits, in pieces between which a line may end."""
+    pieces = [digest[start : start + 16] for start in range(0, len(digest), 16)]
+    return r"\allowbreak{}".join(rf"\texttt{{{piece}}}" for piece in pieces)

@@ -74,9 +74,12 @@ def energies(paper: Paper) -> str:
     """Return the identity for a change of an energy."""
     return filled(paper, r"""For the energy $@energy@_j$ the sum counts the transitions out of $j$:
 one in every tree not directed towards $j$, none in the others. Hence
-$\partial \ln @tree sum@_k / \partial @energy@_j = 1 - \delta_{jk}$ exactly, and with it
-$\partial \langle q \rangle / \partial @energy@_j
-= @probability@_j (\langle q \rangle - q_j)$.""")
+$\partial \ln @tree sum@_k / \partial @energy@_j = 1 - \delta_{jk}$ exactly, and
+\begin{equation}
+\frac{\partial \langle q \rangle}{\partial @energy@_j}
+ = @probability@_j \bigl(\langle q \rangle - q_j\bigr) .
+\label{eq:energy}
+\end{equation}""")
 
 
 def drives(paper: Paper) -> str:
@@ -106,16 +109,28 @@ $|@force@_c|$ of the cycles with transitions inside and outside of $\mathcal{B}$
 each pair are equal or differ by the reversal of one such cycle.""")
 
 
-def parameters(paper: Paper) -> str:
-    """Return the bound for a parameter resolved into energies, barriers and single rates."""
+def parameters(paper: Paper, barriers: bool) -> str:
+    """Return the bound for a parameter resolved into energies, single rates and maybe barriers."""
     return filled(paper, r"""\subsection{Parameters}
-A parameter whose action on the logarithms of the rates is a sum of changes $x_k$ of energies,
-$y_e$ of barriers and of single rates has the sum of the responses to each. Every tree directed
-towards $k$ holds one transition out of each other state, so that the energies change
-$\ln (@probability@_i / @probability@_j)$ by $x_j - x_i$, at most
-$\max_k x_k - \min_k x_k$; a barrier changes it by at most
-$|y_e| \tanh (@force@_{\max}(e)/4)$, and a single rate by its own change, a tree using it once at
-most.""")
+A parameter whose action on the logarithms of the rates is a sum of changes $x_k$ of the energies,
+$y_e$ of barriers and $z_e$ of single rates has the sum of the responses to each. Every tree
+directed towards $k$ holds one transition out of each other state, so that the energies change
+$\ln (@probability@_i / @probability@_j)$ by $x_j - x_i$; a barrier obeys Eq.~\eqref{eq:tanh}, and a
+single rate, which a tree uses once at most, Eq.~\eqref{eq:trees}. Altogether the response is at
+most
+\begin{equation}
+\max_k x_k - \min_k x_k + \sum_e |y_e| \tanh \frac{@force@_{\max}(e)}{4} + \sum_e |z_e| .
+\label{eq:parameter}
+\end{equation}""" if barriers else r"""\subsection{Parameters}
+A parameter whose action on the logarithms of the rates is a sum of changes $x_k$ of the energies
+and $z_e$ of single rates has the sum of the responses to each. Every tree directed towards $k$
+holds one transition out of each other state, so that the energies change
+$\ln (@probability@_i / @probability@_j)$ by $x_j - x_i$; a single rate is used once at most by a
+tree, so that Eq.~\eqref{eq:trees} limits its part. Altogether the response is at most
+\begin{equation}
+\max_k x_k - \min_k x_k + \sum_e |z_e| .
+\label{eq:parameter}
+\end{equation}""")
 
 
 def paths(paper: Paper) -> str:
