@@ -43,6 +43,14 @@ def parts(energies: Json, barriers: Json, singles: Json) -> Json:
     return {"energies": energies, "barriers": barriers, "singles": singles}
 
 
+def current(transition: str) -> Json:
+    return {"kind": "current", "transition": transition}
+
+
+def bundle(*transitions: str) -> Json:
+    return {"kind": "bundle", "transitions": list(transitions)}
+
+
 @functools.cache
 def examples() -> dict[str, Json]:
     """Return all valid records by name."""
@@ -88,7 +96,22 @@ def examples() -> dict[str, Json]:
             parts=parts({}, {}, {"low": "1"})),
         "bridge": record(BRIDGE, XY, ["barrier", "end-pair", "splitting-barrier"],
                          target("mean", {"A": "0", "B": "0", "C": "0", "D": "1"}), barrier("cd")),
+        "current-bridge": record(BRIDGE, XY, ["current-exact", "current-range"],
+                                 current("bc"), barrier("bc")),
+        "current-one-way": record(ONE_WAY, AB, ["current-range", "current-exact"],
+                                  current("burn"), drive("burn")),
+        "current-square": record(SQUARE, XY, ["current-exact"], current("ac"), drive("ac")),
+        "set-square": record(SQUARE, XY, ["bundle", "directed-bundle"], FOUR,
+                                bundle("ab", "bc")),
+        "set-one-way": record(ONE_WAY, AB, ["bundle"], MEAN, bundle("bind", "turn")),
+        "set-bridge": record(BRIDGE, XY[1::2], ["bundle"], FOUR, bundle("bc", "cd")),
+        "set-block": record(BRIDGE, XY, ["bundle", "directed-bundle"],
+                        target("ratio", dict(zip("ABCD", "1200", strict=True)),
+                               dict(zip("ABCD", "1111", strict=True))),
+                        bundle("ab", "bc", "ca")),
+        "set-pair": record(PAIR, [{"k": "2"}, {"k": "1/7"}],
+                              ["bundle", "directed-bundle"],
+                              target("log-ratio", {"A": "1", "B": "0"}, {"A": "0", "B": "1"}),
+                              symbol("k")),
+        "set-directed": record(RING, ABC, ["directed-bundle"], MIXED, symbol("b")),
     }
-
-
-

@@ -132,9 +132,10 @@ class Oracle:
     def elementary(self, name: str, source: int, first: bool, moved: Json) -> Fraction:
         if moved["kind"] == "energy":
             return Fraction(int(self.states[source] == moved["state"]))
-        if moved["kind"] == "symbol" or moved["transition"] != name:
+        if moved["kind"] == "symbol" or name not in moved.get("transitions",
+                                                              [moved.get("transition")]):
             return Fraction(0)
-        return Fraction(-1) if moved["kind"] == "barrier" else Fraction(1 if first else -1, 2)
+        return Fraction(-1) if moved["kind"] != "drive" else Fraction(1 if first else -1, 2)
 
     def trees(self, root: int, without: int = -1) -> tuple[Fraction, Fraction]:
         """Sum over trees towards the root of the product of rates, and its derivative."""
@@ -194,6 +195,8 @@ class Oracle:
             a, b = self.states.index(path["from"]), self.states.index(path["to"])
             return self.p[b] / self.p[a], [(self.largest_path(a, b), None)]
         assert aim is not None and moved is not None
+        if aim["kind"] == "current":
+            return self.current(name, aim["transition"], moved["kind"])
         left, y, s, q = self.scale(aim)
         if name == "energy-covariance":
             j = self.states.index(moved["state"])
@@ -204,6 +207,8 @@ class Oracle:
         if name == "support":
             leaving = {r[0] for r in self.rates if r[3]}
             return left, [(y * len(leaving) * max(abs(r[3]) for r in self.rates), None)]
+        if name.endswith("bundle"):
+            return left, self.bundle(name, y)
         if name == "parameter":
             assert parts is not None
             return left, self.pieces(y, parts)
@@ -215,6 +220,39 @@ class Oracle:
         if moved["kind"] == "drive":
             return left, [(factor / (1 if self.rates[2 * e + 1][2] else 2), None)]
         return left, [(factor, self.end_pair(e) if "end-pair" in name else self.force(e))]
+
+    def current(self, name: str, transition: str, kind: str) -> tuple[
+            Fraction, list[tuple[Fraction, Fraction | None]]]:
+        e = [t["name"] for t in self.net["transitions"]].index(transition)
+        (m, n, along, u), (_, _, back, v) = self.rates[2 * e : 2 * e + 2]
+        left = abs(along * (u * self.p[m] + self.dp[m]) - back * (v * self.p[n] + self.dp[n]))
+        flows = along * self.p[m], back * self.p[n]
+        right = abs(flows[0] - flows[1]) if kind == "barrier" else sum(flows) / 2
+        if name == "current-exact":
+            states = range(len(self.states))
+            right *= sum(self.trees(k, e)[0] for k in states) / sum(
+                self.trees(k)[0] for k in states)
+        return left, [(right, None)]
+
+    def bundle(self, name: str, y: Fraction) -> list[tuple[Fraction, Fraction | None]]:
+        """Count the rates that change in all trees, and try all cycles with others."""
+        kappa = max(abs(r[3]) for r in self.rates)
+        uses = set()
+        for root in range(len(self.states)):
+            others = [k for k in range(len(self.states)) if k != root]
+            for steps in itertools.product(*[[r for r in self.rates if r[0] == k and r[2]]
+                                             for k in others]):
+                ahead = {source: sink for source, sink, _, _ in steps}
+                if all(self.arrives(k, root, ahead) for k in others):
+                    uses.add(sum(r[3] != 0 for r in steps))
+        if name == "directed-bundle":
+            return [(y * kappa * (max(uses) - min(uses)), None)]
+        inside = {i // 2 for i, r in enumerate(self.rates) if r[3]}
+        assert max(uses) - min(uses) < 2
+        if max(uses) == min(uses):
+            return [(Fraction(0), None)]
+        forces = [self.force(e, inside) for e in inside]
+        return [(y * kappa, None if None in forces else max(f for f in forces if f is not None))]
 
     def pieces(self, y: Fraction, parts: Json) -> list[tuple[Fraction, Fraction | None]]:
         def found(text: str) -> Fraction:
@@ -259,9 +297,12 @@ class Oracle:
         return (math.prod((self.rates[i][2] for i in walk), start=Fraction(1)),
                 math.prod((self.rates[i ^ 1][2] for i in walk), start=Fraction(1)))
 
-    def force(self, e: int) -> Fraction | None:
+    def force(self, e: int, inside: set[int] | None = None) -> Fraction | None:
+        """Return exp(F_max) of e, of cycles that leave a set of transitions if one is given."""
         best = Fraction(1)
         for walk in self.walks(self.rates[2 * e][1], self.rates[2 * e][0], e):
+            if inside is not None and {i // 2 for i in walk} <= inside:
+                continue
             along, against = self.quotient([2 * e, *walk])
             if along and against:
                 best = max(best, along / against, against / along)

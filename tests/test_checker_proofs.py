@@ -1,8 +1,7 @@
-"""Records of proofs: right ones are valid, every change of one is refused or changes what is said."""
+"""Records of proofs: right ones are valid, every change is refused or changes what is said."""
 
 from __future__ import annotations
 
-import copy
 import json
 import re
 import sys
