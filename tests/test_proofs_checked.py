@@ -20,6 +20,9 @@ from symbolic_response.response.analysis import Analysis
 from symbolic_response.topology import Graph
 
 
+AMOUNTS = ("2", "-1/3", "2*ln(3/2)", "ln(u0)")
+
+
 @st.composite
 def questions(draw: st.DrawFn, graph: Graph) -> str:
     """Responses of every kind that proofs speak of."""
@@ -31,6 +34,7 @@ def questions(draw: st.DrawFn, graph: Graph) -> str:
              f"d {target} / d energy[s{i}]", f"d {target} / d ln u{e}",
              f"d current[t{e}] / d barrier[t{e}]", f"d current[t{e}] / d drive[t{e}]",
              f"d (d ln(p[s{i}]/p[s{j}]) / d barrier[t{e}]) / d barrier[t{e}]",
+             f"change(ln(p[s{i}]/p[s{j}]), barrier[t{e}], {draw(st.sampled_from(AMOUNTS))})",
              f"p[s{i}]/p[s{j}]"]
     if others:
         forms.append(f"d {target} / d barrier[t{e}, {draw(st.sampled_from(others))}]")

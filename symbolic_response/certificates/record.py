@@ -17,7 +17,7 @@ from symbolic_response.bounds.target import Absolute, Extreme, target_of
 from symbolic_response.certificates.axes import value_text
 from symbolic_response.certificates.certify import Certificate
 from symbolic_response.certificates.points import Certified, PointCertificate
-from symbolic_response.certificates.proofs.prove import Proved
+from symbolic_response.certificates.proofs.prove import Proved, innermost
 from symbolic_response.certificates.proofs.record import proof_data, trees_data
 from symbolic_response.certificates.sampling import RULE
 from symbolic_response.errors import OutputError, QuantityError
@@ -37,6 +37,7 @@ from symbolic_response.network.quantities import (
     BarrierOf,
     BarriersOf,
     BySymbol,
+    Change,
     DriveOf,
     EnergyOf,
     Response,
@@ -130,10 +131,7 @@ def _network(network: Network) -> Data:
 
 
 def _target(quantity: Expression, network: Network) -> Data:
-    inner = quantity
-    while isinstance(inner, Response):
-        inner = inner.quantity
-    target = target_of(inner, network)
+    target = target_of(innermost(quantity), network)
     assert target is not None
     if target.asked.transition is not None:
         return {"kind": "current", "transition": network.transitions[target.asked.transition].name}
@@ -147,14 +145,17 @@ def _target(quantity: Expression, network: Network) -> Data:
     }
 
 
-def _perturbation(response: Expression, network: Network) -> Data:
-    assert isinstance(response, Response)
+def _perturbation(quantity: Expression, network: Network) -> Data:
     names = [transition.name for transition in network.transitions]
-    match response.perturbation:
+    if isinstance(quantity, Change):
+        return {"kind": "finite-barrier", "transition": names[quantity.transition],
+                "amount": expression_text(quantity.amount)}
+    assert isinstance(quantity, Response)
+    match quantity.perturbation:
         case EnergyOf(state):
             return {"kind": "energy", "state": network.states[state].name}
         case BarrierOf(e):
-            twice = isinstance(response.quantity, Response)
+            twice = isinstance(quantity.quantity, Response)
             return {"kind": "second-barrier" if twice else "barrier", "transition": names[e]}
         case BarriersOf(transitions):
             return {"kind": "bundle", "transitions": [names[e] for e in transitions]}

@@ -27,7 +27,7 @@ from symbolic_response.certificates.proofs.transport import (
 from symbolic_response.errors import SizeLimitError
 from symbolic_response.expressions.signs import certain_sign
 from symbolic_response.expressions.tree import Expression, Number
-from symbolic_response.network.quantities import BySymbol, Perturbation, Response
+from symbolic_response.network.quantities import BySymbol, Change, Perturbation, Response
 from symbolic_response.response.analysis import Analysis
 from symbolic_response.response.closed_trees import rate_changes
 
@@ -80,6 +80,13 @@ def prove(
     return Proved(tuple(proved), tuple(needs), proofs, tuple(without))
 
 
+def innermost(quantity: Expression) -> Expression:
+    """Return what a response, a response of one or a change is of."""
+    while isinstance(quantity, Response | Change):
+        quantity = quantity.quantity
+    return quantity
+
+
 class _Work:
     """The proofs about one quantity; each is made once."""
 
@@ -106,10 +113,7 @@ class _Work:
                                        " positive for all values of the symbols")
 
     def _require_signs(self) -> None:
-        inner = self.quantity
-        while isinstance(inner, Response):
-            inner = inner.quantity
-        target = target_of(inner, self.analysis.network)
+        target = target_of(innermost(self.quantity), self.analysis.network)
         if target is None or target.asked.below is None:
             return
         for values in (target.asked.above, target.asked.below):
@@ -188,6 +192,8 @@ class _Work:
 
     def _transition(self) -> int:
         """Return the one transition whose rates change."""
+        if isinstance(self.quantity, Change):
+            return self.quantity.transition
         (e,) = {e for e, _ in self._changes()}
         return e
 
