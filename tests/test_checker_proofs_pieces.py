@@ -157,7 +157,7 @@ def test_the_random_point_is_a_parameter() -> None:
 def test_changes_by_a_logarithm(text: str, wanted: Any) -> None:
     known = {"x": True, "y": True, "r": False}
     moved = Perturbation("symbol", -1, "x", True)
-    assert forms.logarithmic_change(expressions.read(text, "", known), moved) == wanted
+    assert forms.logarithmic_change(expressions.read(text, "", known), moved, Work(10**6)) == wanted
 
 
 @pytest.mark.parametrize(("text", "wanted"), [
@@ -170,7 +170,7 @@ def test_changes_by_a_logarithm(text: str, wanted: Any) -> None:
 def test_changes_by_the_symbol_itself(text: str, wanted: Any) -> None:
     known = {"y": True, "r": False, "s": False}
     moved = Perturbation("symbol", -1, "r", False)
-    found = forms.logarithmic_change(expressions.read(text, "", known), moved)
+    found = forms.logarithmic_change(expressions.read(text, "", known), moved, Work(10**6))
     assert found == wanted
 
 
@@ -191,7 +191,8 @@ def test_changes_against_sympy(seed: int) -> None:
     tree = sympy.sympify(text, locals={"x": x})
     wanted = sympy.simplify(sympy.diff(tree, x) * x / tree)
     found = forms.logarithmic_change(
-        expressions.read(text, "", {"x": 1, "y": 1, "r": 0}), Perturbation("symbol", -1, "x", True))
+        expressions.read(text, "", {"x": 1, "y": 1, "r": 0}), Perturbation("symbol", -1, "x", True),
+        Work(10**6))
     assert found == F(int(wanted.p), int(wanted.q)), text
 
 
@@ -202,7 +203,7 @@ def test_changes_against_sympy(seed: int) -> None:
     ("2**(1/2)", 1), ("0**2", 0), ("-1*-1", 1), ("sqrt(x + 1/3)", 1), ("1/0", None)])
 def test_certain_signs(text: str, wanted: int | None) -> None:
     known = {"x": True, "y": True, "r": False}
-    assert forms.sign(expressions.read(text, "", known), known) == wanted
+    assert forms.sign(expressions.read(text, "", known), known, Work(10**6)) == wanted
 
 
 def complete(n: int) -> Json:
@@ -261,6 +262,16 @@ def test_changes_that_are_too_different() -> None:
                    trees=False)
     verdict = check_record(record)
     assert (verdict.status, verdict.entry) == ("incomplete", "network.transitions")
+
+
+@pytest.mark.parametrize("text", ["(7**64)**60*" * 90 + "x", "(7**64/5**64)**9*" * 9000 + "x"])
+def test_large_numbers_in_forms(text: str) -> None:
+    record = examples()["local"]
+    for key, value in (("network", {**record["network"], "transitions": [
+            {**record["network"]["transitions"][0], "forward": text},
+            *record["network"]["transitions"][1:]]}),
+            ("target", {**record["target"], "above": {"A": text, "B": "0", "C": "0"}})):
+        assert check_record({**record, key: value}).status == "incomplete"
 
 
 def test_proofs_are_checked_without_the_package(tmp_path: Path) -> None:

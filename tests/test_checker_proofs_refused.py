@@ -290,14 +290,14 @@ def test_wrong_spans() -> None:
 
 @pytest.mark.parametrize(("new", "entry"), [
     (lambda one: {**one, "kind": "some"}, "kind"), (lambda one: {**one, "records": []}, "records"),
-    (lambda one: {**one, "records": one["records"][:1] * 5}, "records"),
+    (lambda one: {**one, "records": one["records"][:1] * 1001}, "records"),
     (lambda one: {**one, "records": [one]}, "records[0].kind"),
     (lambda one: {**one, "records": [{}]}, "records[0].kind"),
     (lambda one: {**one, "records": [3]}, "records[0].file"),
     (lambda one: {**one, "version": 2}, "version"), (lambda one: {**one, "more": 2}, "file")])
 def test_several(new: Any, entry: str) -> None:
     verdict = check_record(new(examples()["several"]))
-    assert verdict.status == ("incomplete" if entry == "records" and verdict.got == "5" else
+    assert verdict.status == ("incomplete" if entry == "records" and verdict.got == "1001" else
                               "malformed") and verdict.entry == entry, verdict
 
 

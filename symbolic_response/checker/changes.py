@@ -31,8 +31,7 @@ def changes(network: Network, moved: Perturbation, graph: Graph) -> list[Fractio
     for i in graph.rates() if moved.symbol else ():
         expression = network.rates[i >> 1][i & 1]
         assert expression is not None
-        graph.work.charge(3 * len(expression.program), 0)
-        found = logarithmic_change(expression, moved)
+        found = logarithmic_change(expression, moved, graph.work)
         if found is None:
             raise invalid(f"network.transitions[{i >> 1}].{'backward' if i & 1 else 'forward'}",
                           "a form that shows how its logarithm changes", expression.text)

@@ -32,6 +32,9 @@ from .record import HEAD, KINDS, Proof, Record, Worst, check_head, read_proof, r
 from .statement import statement
 
 
+MAX_RECORDS = 1_000
+
+
 @dataclass
 class Place:
     """The place of the largest ratio so far."""
@@ -87,7 +90,7 @@ def _check_several(data: object, work: Work, draw: Callable[[], int]) -> Verdict
     *head, records = members(data, "", *HEAD, "records")
     check_head(*head)
     found = []
-    for k, one in enumerate(items(records, "records", 4)):
+    for k, one in enumerate(items(records, "records", MAX_RECORDS)):
         try:
             found.append(_check_any(one, KINDS[:-1], work, draw))
         except Rejected as error:

@@ -6,7 +6,8 @@ from collections.abc import Mapping
 from dataclasses import dataclass
 from fractions import Fraction
 
-from .expressions import ONE, ZERO, Expression, Inexact, raised
+from .expressions import ONE, ZERO, Expression, Inexact, bits, raised
+from .reading import Work
 from .record import Perturbation
 
 
@@ -19,7 +20,8 @@ class Form:
     slope: Fraction | None  # d a/d theta
 
 
-def logarithmic_change(expression: Expression, moved: Perturbation) -> Fraction | None:
+def logarithmic_change(expression: Expression, moved: Perturbation,
+                       work: Work) -> Fraction | None:
     """Return d ln w/d theta where the form of w shows that it is a number."""
     stack: list[Form] = []
     for operation, what in expression.program:
@@ -39,6 +41,7 @@ def logarithmic_change(expression: Expression, moved: Perturbation) -> Fraction 
         else:
             b, a = stack.pop(), stack.pop()
             new = _combined(operation, a, b)
+        work.charge(3, max(bits(x or ZERO) for x in (new.number, new.change, new.slope)))
         stack.append(new)
     return stack[0].change
 
@@ -71,7 +74,7 @@ def _power(a: Fraction | None, exponent: Fraction) -> Fraction | None:
         return None
 
 
-def sign(expression: Expression, positive: Mapping[str, bool]) -> int | None:
+def sign(expression: Expression, positive: Mapping[str, bool], work: Work) -> int | None:
     """Return 1 where the form shows that the value is positive, 0 that it is 0, else None."""
     stack: list[tuple[int | None, Fraction | None]] = []
     for operation, what in expression.program:
@@ -94,6 +97,7 @@ def sign(expression: Expression, positive: Mapping[str, bool]) -> int | None:
             if a is not None and b is not None:
                 found = {"+": max(a, b), "*": min(a, b), "/": a if b else None}.get(operation)
         if number is not None:
+            work.charge(3, bits(number))
             found = None if number < 0 else int(number > 0)
         stack.append((found, number))
     return stack[0][0]

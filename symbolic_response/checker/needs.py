@@ -13,14 +13,14 @@ from .forms import sign
 from .network import Graph
 from .point import pieces
 from .proof import Proofs
-from .reading import invalid
+from .reading import Work, invalid
 from .record import Claim, Perturbation, Proof
 
 
 def check_proof(record: Proof, graph: Graph, draw: Callable[[], int]) -> str:
     """Check a record of proofs, and return what was checked."""
     check_applies(record, record.claims)
-    _check_signs(record)
+    _check_signs(record, graph.work)
     moved = record.perturbation
     moves = changes(record.network, moved, graph) if moved else None
     proofs = Proofs(record.network, graph, moves, record.trees, draw)
@@ -34,13 +34,13 @@ def check_proof(record: Proof, graph: Graph, draw: Callable[[], int]) -> str:
     return proofs.said()
 
 
-def _check_signs(record: Proof) -> None:
+def _check_signs(record: Proof, work: Work) -> None:
     """Check that the observables of ratios show that they are not negative, and not all 0."""
     target = record.target
     if target is None or target.kind not in ("ratio", "log-ratio"):
         return
     for entry, side in (("above", target.above), ("below", target.below or [])):
-        signs = [sign(one, record.network.positive) for one in side]
+        signs = [sign(one, record.network.positive, work) for one in side]
         for state, found, one in zip(record.network.states, signs, side, strict=True):
             if found is None:
                 raise invalid(f"target.{entry}.{state}", "a form that shows no negative value",
