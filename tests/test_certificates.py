@@ -13,13 +13,16 @@ from typing import Any
 
 import mpmath
 import pytest
+from at_points import certify_points
 
 from symbolic_response.bounds import registry
 from symbolic_response.bounds.barrier import barrier
 from symbolic_response.bounds.claim import Claim, CycleMaximum, Question, Term
 from symbolic_response.bounds.curves import Tanh
-from symbolic_response.certificates.points import PointCertificate, certify_claims, certify_points
-from symbolic_response.certificates.record import record_of, record_text, write_certificate
+from symbolic_response.certificates.certify import Certificate, certify
+from symbolic_response.certificates.points import PointCertificate, certify_claims
+from symbolic_response.certificates.proofs.prove import Proved
+from symbolic_response.certificates.record import point_record, record_text, write_certificate
 from symbolic_response.certificates.report import certificate_text, ratio_text
 from symbolic_response.checker import check_file
 from symbolic_response.cli import run
@@ -37,11 +40,12 @@ from symbolic_response.response.analysis import Analysis
 from tests.benchmarks.networks import square_with_chord
 
 TIDE = Path(__file__).parent.parent / "worked_cases" / "tide_lamp" / "network.toml"
+NOTHING = Proved((), (), (), ())
 BARRIER = "d ln(p[s1]/p[s2]) / d barrier[e1_2]"
 
 
 def text_of(made: PointCertificate, analysis: Analysis) -> str:
-    return record_text(record_of(made, analysis))
+    return record_text(point_record(made, analysis))
 
 
 @pytest.mark.parametrize("count", [260])
@@ -50,7 +54,8 @@ def test_the_same_seed_gives_the_same_bytes(count: int) -> None:
     texts = []
     for workers in (1, 2, 1):
         analysis = Analysis(network)
-        texts.append(text_of(certify_points(analysis, BARRIER, count=count, workers=workers), analysis))
+        made = certify_points(analysis, BARRIER, count=count, workers=workers)
+        texts.append(text_of(made, analysis))
     assert texts[0] == texts[1] == texts[2]
     analysis = Analysis(network)
     with ThreadPoolExecutor(1) as executor:
@@ -92,10 +97,11 @@ CASES = [
 @pytest.mark.parametrize(("name", "text"), CASES)
 def test_records_pass_the_independent_check(name: str, text: str, tmp_path: Path) -> None:
     analysis = Analysis(NETWORKS[name])
-    made = certify_points(analysis, text, count=12, workers=1)
-    assert made.refuted is None and len(made.claims) >= 1
+    whole = certify(analysis, text, method="points", count=12, workers=1)
+    made = whole.points
+    assert made is not None and made.refuted is None and len(made.claims) >= 1
     file = tmp_path / "record.json"
-    write_certificate(made, analysis, file)
+    write_certificate(whole, analysis, file)
     verdict = check_file(str(file))
     assert verdict.status == "valid", str(verdict)
     assert f"{len(made.points)} point" in str(verdict)
@@ -105,7 +111,7 @@ def test_records_pass_the_independent_check(name: str, text: str, tmp_path: Path
 
 def test_a_changed_record_is_not_accepted(tmp_path: Path) -> None:
     analysis = Analysis(NETWORKS["tide"])
-    record: Any = record_of(certify_points(analysis, CASES[0][1], count=6, workers=1), analysis)
+    record: Any = point_record(certify_points(analysis, CASES[0][1], count=6, workers=1), analysis)
     file = tmp_path / "record.json"
     record["claims"][0]["worst"]["left"] = "1"
     file.write_text(record_text(record), encoding="utf-8")
@@ -136,7 +142,7 @@ def test_the_record_is_as_specified() -> None:
 def test_the_ratio_is_that_of_the_specification() -> None:
     analysis = Analysis(NETWORKS["tide"])
     made = certify_points(analysis, CASES[0][1], only="barrier", count=9, workers=1)
-    record: Any = record_of(made, analysis)
+    record: Any = point_record(made, analysis)
     worst = record["claims"][0]["worst"]
     low = Fraction(0)
     for term in worst["right"]:
@@ -158,7 +164,7 @@ def false_barrier(question: Question) -> Claim | None:
         return None
     (term,) = claim.right
     assert isinstance(term.force, CycleMaximum)
-    return replace(claim, right=(replace(term, divisor=5),))
+    return replace(claim, right=(replace(term, curve=Tanh(5)),))
 
 
 def test_a_refuted_claim_has_no_certificate(tmp_path: Path) -> None:
@@ -171,7 +177,8 @@ def test_a_refuted_claim_has_no_certificate(tmp_path: Path) -> None:
     assert "\n" not in made.refuted.message()
     file = tmp_path / "record.json"
     with pytest.raises(QuantityError, match="false is refuted at W_1_2 = "):
-        write_certificate(made, analysis, file)
+        write_certificate(Certificate(analysis.network, BARRIER, quantity, NOTHING, made), analysis,
+                          file)
     assert list(tmp_path.iterdir()) == []
 
 
@@ -181,7 +188,8 @@ def test_the_command_reports_a_refutation(
     monkeypatch.setitem(registry.CATALOGUE, "barrier", false_barrier)
     file = tmp_path / "record.json"
     status = run(["certify", str(TIDE), "d ln(p[idle]/p[lit]) / d barrier[fade]", "--bound",
-                  "barrier", "--points", "50", "--workers", "1", "-o", str(file), "--json"])
+                  "barrier", "--points-only", "--points", "50", "--workers", "1", "-o", str(file),
+                  "--json"])
     shown = capsys.readouterr()
     assert status == 1 and not file.exists()
     data = json.loads(shown.out)
@@ -196,8 +204,8 @@ def test_the_command_reports_a_refutation(
 
 def test_the_table(tmp_path: Path, capsys: pytest.CaptureFixture[str]) -> None:
     file = tmp_path / "record.json"
-    status = run(["certify", str(TIDE), CASES[0][1], "--points", "20", "-o", str(file), "--quiet",
-                  "--workers", "1", "--seed", "x"])
+    status = run(["certify", str(TIDE), CASES[0][1], "--points-only", "--points", "20", "-o",
+                  str(file), "--quiet", "--workers", "1", "--seed", "x"])
     shown = capsys.readouterr()
     assert status == 0 and shown.err == ""
     lines = shown.out.splitlines()
@@ -217,9 +225,10 @@ def test_without_a_file_nothing_is_written(
     tmp_path: Path, capsys: pytest.CaptureFixture[str], monkeypatch: pytest.MonkeyPatch
 ) -> None:
     monkeypatch.chdir(tmp_path)
-    assert run(["certify", str(TIDE), CASES[1][1], "--points", "5", "--json"]) == 0
+    assert run(["certify", str(TIDE), CASES[1][1], "--points-only", "--points", "5", "--json"]) == 0
     data = json.loads(capsys.readouterr().out)
-    assert [entry["name"] for entry in data["bounds"]] == ["parameter", "support"]
+    names = [entry["name"] for entry in data["bounds"]]
+    assert names == ["parameter", "directed-bundle", "support"]
     assert data["refuted"] is None and data["file"] is None and data["count"] == 5
     assert list(tmp_path.iterdir()) == []
 
@@ -227,7 +236,7 @@ def test_without_a_file_nothing_is_written(
 @pytest.mark.parametrize(("text", "more", "status", "said"), [
     ("d p[lit] / d barrier[fade]", ["--bound", "barrir"], 2, "did you mean 'barrier'"),
     ("d p[lit] / d barrier[fade]", ["--bound", "drive"], 2, "does not apply"),
-    ("d current[fade] / d barrier[fade]", [], 2, "no bound of the catalogue applies"),
+    ("d current[light] / d barrier[fade]", [], 2, "no bound of the catalogue applies"),
     ("d p[lit] / d barrier[fade]", ["-o", "missing/file.json"], 2, "no folder"),
     ("d p[lit] / d barrier[fade]", ["-o", "."], 2, "is a folder"),
     ("d p[lit] / d barrier[fade]", ["--points", "0"], 2, "--points"),
@@ -236,7 +245,8 @@ def test_without_a_file_nothing_is_written(
 def test_faults_are_one_line(
     text: str, more: list[str], status: int, said: str, capsys: pytest.CaptureFixture[str]
 ) -> None:
-    assert run(["certify", str(TIDE), text, "--points", "5", "--quiet", *more]) == status
+    assert run(["certify", str(TIDE), text, "--points-only", "--points", "5", "--quiet",
+                *more]) == status
     shown = capsys.readouterr()
     assert shown.out == ""
     (line,) = shown.err.strip().splitlines()
@@ -248,7 +258,7 @@ def test_undecided_exits_3(tmp_path: Path, capsys: pytest.CaptureFixture[str]) -
     file.write_text('title = "t"\n[symbols.F]\nsign = "real"\n[states.A]\n[states.B]\n'
                     '[[transitions]]\nname = "e"\nbetween = ["A", "B"]\n'
                     'rates = ["exp(F)", "F**2 + 1"]\n', encoding="utf-8")
-    assert run(["certify", str(file), "d p[A] / d barrier[e]", "--quiet"]) == 3
+    assert run(["certify", str(file), "d p[A] / d barrier[e]", "--points-only", "--quiet"]) == 3
     assert "inside and outside exponents" in capsys.readouterr().err
 
 
@@ -266,8 +276,7 @@ def test_errors_from_python() -> None:
         certify_points(Analysis(inside), "d mean[q] / d barrier[e]", count=1)
     assert certify_points(Analysis(inside), "d p[A] / d energy[A]", count=1).refuted is None
     with pytest.raises(OutputError):
-        write_certificate(certify_points(analysis, CASES[0][1], count=1, workers=1), analysis,
-                          "/no/such/folder/file.json")
+        write_certificate(certify(analysis, CASES[0][1]), analysis, "/no/such/folder/file.json")
 
 
 def test_the_inverse_of_a_one_way_path() -> None:
@@ -283,7 +292,7 @@ def test_ratios_are_rounded_down() -> None:
     assert ratio_text(Fraction(1) - Fraction(1, 10**12)) == "0.99999999"
     assert ratio_text(Fraction(1)) == "1.00000000"
     analysis = Analysis(NETWORKS["numbers"])
-    made = certify_points(analysis, "d p[A] / d energy[B]", count=1, workers=1)
+    made = certify(analysis, "d p[A] / d energy[B]", method="points", count=1, workers=1)
     assert "the only point" in certificate_text(made, None)
 
 
@@ -291,11 +300,10 @@ def test_a_script_needs_no_guard(tmp_path: Path) -> None:
     script = tmp_path / "script.py"
     script.write_text(
         "import symbolic_response as sr\n"
-        "from symbolic_response.certificates.points import certify_points\n"
         "net = sr.build_network('pair', states='A B', transitions=[('A', 'B', 'k*c', 'k', 'e'),"
         " ('A', 'B', 'u', 'c', 'f')])\n"
-        "print(certify_points(sr.Analysis(net), 'd p[A] / d barrier[e]', count=300, workers=2)"
-        ".claims[0].holds)\n", encoding="utf-8")
+        "print(sr.certify(sr.Analysis(net), 'd p[A] / d barrier[e]', method='points', count=300,"
+        " workers=2).points.claims[0].holds)\n", encoding="utf-8")
     done = subprocess.run([sys.executable, str(script)], capture_output=True, text=True,
                           check=False, timeout=120)
     assert done.returncode == 0 and int(done.stdout) >= 300, done.stderr

@@ -8,22 +8,22 @@ from pathlib import Path
 from typing import Any
 
 import pytest
+from at_points import certify_points
 
 import symbolic_response as sr
-from symbolic_response.certificates.points import certify_points
-from symbolic_response.certificates.record import record_of, record_text
+from symbolic_response.certificates.record import point_record, record_text
 from symbolic_response.checker import check_record
 
 CASES = Path(__file__).parent.parent / "worked_cases"
 ASKED = [
-    ("tide_lamp", "d mean[brightness] / d ln c", ["parameter", "support"]),
+    ("tide_lamp", "d mean[brightness] / d ln c", ["parameter", "directed-bundle", "support"]),
     ("tide_lamp", "d mean[brightness] / d barrier[fade]",
      ["splitting-end-pair", "end-pair", "splitting-barrier", "barrier"]),
     ("tide_lamp", "d ln(p[idle]/p[spent]) / d barrier[light]", ["end-pair", "barrier"]),
     ("turnstile", "d ln mean[occupied] / d drive[turn]", ["splitting-drive", "drive"]),
     ("turnstile", "d mean[occupied]/p[turned] / d energy[loaded]", ["energy-range"]),
     ("turnstile", "ln(p[open]/p[turned])", ["path"]),
-    ("stamp_press", "d p[loaded] / d ln s", ["parameter", "support"]),
+    ("stamp_press", "d p[loaded] / d ln s", ["parameter", "directed-bundle", "support"]),
     ("stamp_press", "d p[loaded] / d barrier[eject]",
      ["splitting-end-pair", "end-pair", "splitting-barrier", "barrier"]),
 ]
@@ -32,7 +32,7 @@ ASKED = [
 def written(case: str, asked: str) -> Any:
     analysis = sr.Analysis(sr.read_network(CASES / case / "network.toml"))
     certificate = certify_points(analysis, asked, count=12, workers=1)
-    return json.loads(record_text(record_of(certificate, analysis)))
+    return json.loads(record_text(point_record(certificate, analysis)))
 
 
 @pytest.mark.parametrize(("case", "asked", "names"), ASKED)

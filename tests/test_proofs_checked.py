@@ -19,7 +19,6 @@ from symbolic_response.network import Network
 from symbolic_response.response.analysis import Analysis
 from symbolic_response.topology import Graph
 
-
 AMOUNTS = ("2", "-1/3", "2*ln(3/2)", "ln(u0)")
 
 

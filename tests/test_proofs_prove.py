@@ -2,8 +2,10 @@
 
 from __future__ import annotations
 
+import json
 from collections import Counter
 from dataclasses import replace
+from pathlib import Path
 
 import pytest
 
@@ -14,6 +16,7 @@ from symbolic_response.certificates.certify import certify
 from symbolic_response.certificates.proofs.prove import Proved, prove
 from symbolic_response.certificates.proofs.record import kind_of
 from symbolic_response.certificates.record import record_of
+from symbolic_response.cli import run
 from symbolic_response.errors import QuantityError
 from symbolic_response.expressions.tree import ONE, divide
 from symbolic_response.network import Network, Rates, build_network
@@ -103,3 +106,42 @@ def test_methods() -> None:
     assert certify(network, "d p[A] / d barrier[ab]", count=5).points is None
     with pytest.raises(QuantityError, match="there is no method"):
         certify(network, text, method="guess")
+
+
+TIDE = str(Path(__file__).parent.parent / "worked_cases" / "tide_lamp" / "network.toml")
+
+
+def test_the_command_proves(tmp_path: Path, capsys: pytest.CaptureFixture[str]) -> None:
+    file = tmp_path / "record.json"
+    asked = "d p[lit] / d barrier[fade]"
+    assert run(["certify", TIDE, asked, "-o", str(file), "--quiet"]) == 0
+    lines = capsys.readouterr().out.splitlines()
+    assert lines[0].split() == ["bound", "proved", "by"]
+    assert lines[1].split(maxsplit=1) == ["splitting-end-pair",
+                                          "edge fade (expanded), splitting fade (expanded)"]
+    assert lines[-2:] == ["each holds for all positive rates of the network", f"written: {file}"]
+    assert run(["recheck", str(file)]) == 0
+    assert "for all positive rates" in capsys.readouterr().out
+    assert run(["certify", TIDE, asked, "--proof-only", "--json", "--quiet"]) == 0
+    data = json.loads(capsys.readouterr().out)
+    assert data["points"] is None and data["bounds"] == [] and data["not_certified"] == []
+    assert [entry["name"] for entry in data["proved"]] == [
+        "splitting-end-pair", "end-pair", "splitting-barrier", "barrier"]
+    assert data["proved"][1]["proofs"] == [{"kind": "edge", "form": "expanded", "subject": "fade"}]
+
+
+def test_what_has_no_proof_is_undecided(
+    tmp_path: Path, capsys: pytest.CaptureFixture[str]
+) -> None:
+    net, file = tmp_path / "net.toml", tmp_path / "record.json"
+    net.write_text('title = "t"\n[symbols.a]\n[symbols.b]\n[states.A]\n[states.B]\n'
+                   '[[transitions]]\nname = "e"\nbetween = ["A", "B"]\n'
+                   'rates = ["a + b - a*b/2000", "1"]\n', encoding="utf-8")
+    asked = ["certify", str(net), "d p[A] / d energy[A]", "--quiet", "-o", str(file)]
+    assert run([*asked, "--proof-only"]) == 3
+    assert "not certified: energy-range: a rate of transition 'e' need not be positive" in (
+        capsys.readouterr().out)
+    assert not file.exists()
+    assert run([*asked, "--points", "3"]) == 0
+    assert json.loads(file.read_text(encoding="utf-8"))["kind"] == "points"
+    assert run(["recheck", str(file)]) == 0

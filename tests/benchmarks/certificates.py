@@ -14,7 +14,7 @@ import sympy
 from symbolic_response.bounds.claim import Claim, CycleMaximum
 from symbolic_response.bounds.evaluate import ClaimPoint
 from symbolic_response.bounds.registry import claims_for
-from symbolic_response.certificates.points import certify_points
+from symbolic_response.certificates.certify import certify
 from symbolic_response.certificates.record import write_certificate
 from symbolic_response.certificates.report import ratio_text
 from symbolic_response.certificates.sampling import Sampler
@@ -111,7 +111,7 @@ def thousand_points() -> str:
     ):
         analysis = Analysis(network)
         start = time.perf_counter()
-        made = certify_points(analysis, text, only=only, count=1000, workers=1)
+        made = certify(analysis, text, only=only, method="points", count=1000, workers=1)
         generated = time.perf_counter() - start
         with tempfile.TemporaryDirectory() as folder:
             file = Path(folder) / "record.json"
