@@ -235,3 +235,11 @@ def test_texts_latex_and_the_appendix() -> None:
     document = appendix_text(NET, quantities=[text, "change(p[C], barrier[i], 1)"])
     assert r"\Bigl[\pi_{C}\Bigr]_{B_{\mathrm{i}}}^{B_{\mathrm{i}} + 1}" in document
     assert "The change of $" in document
+
+
+def test_substitutions_reach_into_a_change() -> None:
+    text = "change(c*p[A], barrier[e], ln(h))"
+    found = derive(NET, text, put={"c": "2*a", "h": "a"}, at={"a": 3, "b": 2}).value
+    other = derive(NET, text, at={"a": 3, "b": 2, "c": 6, "h": 3}).value
+    assert found is not None and other is not None and found.exact == other.exact
+    assert found.exact is not None and found.exact != 0
