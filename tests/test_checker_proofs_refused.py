@@ -18,6 +18,7 @@ from checker_records import barrier, drive, energy, network, symbol, target
 from test_checker_records import changed, get
 
 from symbolic_response.checker import check_record
+from symbolic_response.checker import proof as proofs_of
 
 SQUARE_EDGE, COMPACT = (f"square with chord-ac-barrier-{form}" for form in ("expanded", "compact"))
 TRANSPORT = "four in a ring-ab-cd"
@@ -286,6 +287,18 @@ def test_wrong_spans() -> None:
                                                                 1: Fraction(-1, 2)})],
                    MEANS[3], drive("ab"), trees=False)
     assert check_record(record).status == "valid"
+
+
+def test_a_range_of_coefficients_above_what_the_claim_says(
+        monkeypatch: pytest.MonkeyPatch) -> None:
+    for name, most in (("one-way ring-energy", "1"), ("ring-turn-drive", "1"),
+                       ("one-way ring-burn-drive", "1/2"), ("support", "3"), ("block", "0")):
+        record = examples()[name]
+        place = [one["kind"] for one in record["proofs"]].index("coefficients")
+        monkeypatch.setattr(proofs_of, "extremes", lambda *_: (Fraction(0), Fraction(7)))
+        for key, value in (("low", "0"), ("high", "7")):
+            record = changed(record, ("proofs", place, key), value)
+        refused(record, "invalid", "claims[0].name", f"differ by at most {most}")
 
 
 @pytest.mark.parametrize(("new", "entry"), [
