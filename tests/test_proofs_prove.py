@@ -11,7 +11,7 @@ import pytest
 
 from symbolic_response.bounds.claim import Claim, CycleMaximum, Term
 from symbolic_response.bounds.curves import Tanh
-from symbolic_response.bounds.registry import claims_for
+from symbolic_response.bounds.registry import NAMES, claims_for
 from symbolic_response.certificates.certify import certify
 from symbolic_response.certificates.proofs.prove import Proved, prove
 from symbolic_response.certificates.proofs.record import kind_of
@@ -145,3 +145,12 @@ def test_what_has_no_proof_is_undecided(
     assert run([*asked, "--points", "3"]) == 0
     assert json.loads(file.read_text(encoding="utf-8"))["kind"] == "points"
     assert run(["recheck", str(file)]) == 0
+
+
+@pytest.mark.parametrize("verb", ["bound", "certify"])
+def test_the_help_names_the_whole_catalogue(
+    verb: str, capsys: pytest.CaptureFixture[str]
+) -> None:
+    assert run([verb, "--help"]) == 0
+    listed = capsys.readouterr().out.split("Names:")[1].split("Example:")[0]
+    assert [name.strip() for name in listed.replace("\n", " ").split(",")] == list(NAMES)

@@ -40,7 +40,9 @@ def bound(
 
     \b
     Names: energy-covariance, energy-range, splitting-end-pair, end-pair,
-      splitting-barrier, barrier, splitting-drive, drive, parameter, support, path
+      splitting-barrier, barrier, splitting-drive, drive, local-end-pair,
+      local-change, bundle, parameter, directed-bundle, support, current-exact,
+      current-range, second-order, finite-end-pair, finite-change, path
 
     \b
     Example:
@@ -93,7 +95,9 @@ def certify(
 
     \b
     Names: energy-covariance, energy-range, splitting-end-pair, end-pair,
-      splitting-barrier, barrier, splitting-drive, drive, parameter, support, path
+      splitting-barrier, barrier, splitting-drive, drive, local-end-pair,
+      local-change, bundle, parameter, directed-bundle, support, current-exact,
+      current-range, second-order, finite-end-pair, finite-change, path
 
     \b
     Example:
