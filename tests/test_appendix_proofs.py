@@ -62,7 +62,8 @@ EVERY_KIND = [
     "d p[A] / d barrier[one]", "d mean[busy] / d drive[back]", "d p[D] / d energy[C]",
     "d p[B] / d barrier[side]", "d p[A] / d ln c", "d ln(p[A]/p[B]) / d ln x",
     "d current[next] / d barrier[next]", "d current[one] / d drive[one]",
-    "p[A]/p[B]", "d p[A] / d barrier[next, back]",
+    "p[A]/p[B]", "d p[A] / d barrier[next, back]", "change(ln(p[A]/p[C]), barrier[next], 1/2)",
+    "d (d ln(p[A]/p[B]) / d barrier[next]) / d barrier[next]",
 ]
 
 

@@ -77,9 +77,9 @@ def write_appendix(
     are written whole or not at all. Raises OutputError where that cannot be done.
     """
     target = Path(path)
+    check_output(target)
     beside = target.with_name(target.stem + ".proofs.json")
-    for file in (target, beside):
-        check_output(file)
+    check_output(beside)
     text, record = _made(network, quantities, analysis, TEXT_WIDTH, beside.name)
     texts = {target: text} | ({} if record is None else {beside: record})
     write_files(texts)

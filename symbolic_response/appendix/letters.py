@@ -20,12 +20,14 @@ PROOF_LETTERS = {
     "into": (r"\Sigma", r"\Gamma", r"\Lambda"),
     "cut": ("V", "L", r"\mathbf{V}"),
     "coefficient": (r"\lambda", r"\kappa", r"\mathbf{l}"),
-    "end ratio": (r"\rho", r"\upsilon", r"\mathbf{x}"),
+    "end ratio": (r"\rho", r"\upsilon", r"\mathbf{q}"),
     "response": ("u", r"\nu", r"\mathbf{u}"),
-    "parameter": (r"\theta", r"\vartheta", r"\mathbf{y}"),
+    "parameter": (r"\theta", r"\vartheta", r"\mathbf{p}"),
     "change": ("v", r"\iota", r"\mathbf{v}"),
     "scale": ("z", r"\zeta", r"\mathbf{z}"),
     "odds share": ("g", r"\gamma", r"\mathbf{g}"),
+    "one": ("x", r"\mathcal{X}", r"\mathbf{x}"),
+    "two": ("y", r"\mathcal{Y}", r"\mathbf{y}"),
     "largest": ("G", "K", r"\mathbf{G}"),
 }
 """For each role in a proof the letters it may take, the first that is free being taken."""

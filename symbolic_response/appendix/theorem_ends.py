@@ -51,13 +51,13 @@ $@rate@^-_e$ alone, are
 \end{align*}
 so that $@generator@' (@free@_m @back@ + @free@_n @ahead@) = 0$. If $@free@ = 0$,
 Eq.~\eqref{eq:free} is trivial. Else some state is within reach of all others without $e$, and the
-kernel of $@generator@'$ is spanned by $@free@$: $@free@_m @back@ + @free@_n @ahead@ = x @free@$
-with a number $x$. As every state reaches $m$ or $n$ without $e$, $@free@_m$ and $@free@_n$ do not
-both vanish; where one does not, the component at that state reads $@free@_m @pair@ = x @free@_m$ or
-$@free@_n @pair@ = x @free@_n$. Hence $x = @pair@$, which is Eq.~\eqref{eq:free}. Adding
-$@pair@ (@rate@^+_e @ahead@_k + @rate@^-_e @back@_k)$ to both sides, with
-$@tree sum@_m = @free@_m + @rate@^-_e @pair@$ and $@tree sum@_n = @free@_n + @rate@^+_e @pair@$,
-gives Eq.~\eqref{eq:ends}.
+kernel of $@generator@'$ is spanned by $@free@$: $@free@_m @back@ + @free@_n @ahead@ = @one@ @free@$
+with a number $@one@$. As every state reaches $m$ or $n$ without $e$, $@free@_m$ and $@free@_n$ do
+not both vanish; where one does not, the component at that state reads
+$@free@_m @pair@ = @one@ @free@_m$ or $@free@_n @pair@ = @one@ @free@_n$. Hence $@one@ = @pair@$,
+which is Eq.~\eqref{eq:free}. Adding $@pair@ (@rate@^+_e @ahead@_k + @rate@^-_e @back@_k)$ to both
+sides, with $@tree sum@_m = @free@_m + @rate@^-_e @pair@$ and
+$@tree sum@_n = @free@_n + @rate@^+_e @pair@$, gives Eq.~\eqref{eq:ends}.
 \end{proof}"""
 
 
@@ -105,12 +105,13 @@ and the odds of the two shares have the ratio
 
 def barrier(paper: Paper) -> str:
     """Return the bound on the response to a barrier."""
-    return filled(paper, r"""For the barrier, $@change@^\pm = -1$. Let $x$ and $y$ be the logarithms
-of the odds of $@share ahead@$ and $@share back@$, so that $x - y = \ln @cross ratio@_e$. Then
+    return filled(paper, r"""For the barrier, $@change@^\pm = -1$. Let $@one@$ and $@two@$ be the
+logarithms of the odds of $@share ahead@$ and $@share back@$, so that
+$@one@ - @two@ = \ln @cross ratio@_e$. Then
 \begin{align}
 |@share ahead@ - @share back@|
- &= \frac{\sinh (|x - y|/2)}{\cosh ((x - y)/2) + \cosh ((x + y)/2)} \notag\\*
- &\le \tanh \frac{|\ln @cross ratio@_e|}{4} ,
+ &= \frac{\sinh (|@one@ - @two@|/2)}{\cosh ((@one@ - @two@)/2) + \cosh ((@one@ + @two@)/2)}
+\notag\\*  &\le \tanh \frac{|\ln @cross ratio@_e|}{4} ,
 \label{eq:tanh}
 \end{align}
 with equality at $@share ahead@ = 1 - @share back@$; for a one-way transition $@share back@ = 0$ and
@@ -120,45 +121,46 @@ the limit is one.""")
 def local(paper: Paper) -> str:
     """Return the bound on the response to any other change of the rates of one transition."""
     return filled(paper, r"""For a parameter that changes the rates of $e$ alone, let
-$x \ge y \ge 0$ be $|@change@^+|$ and $|@change@^-|$ in order of size. For opposite signs
-Eq.~\eqref{eq:shares} is at most $x + y$ in size. For equal signs let
+$@one@ \ge @two@ \ge 0$ be $|@change@^+|$ and $|@change@^-|$ in order of size. For opposite signs
+Eq.~\eqref{eq:shares} is at most $@one@ + @two@$ in size. For equal signs let
 $@largest@ = \max(@cross ratio@_e, 1/@cross ratio@_e)$; by Eq.~\eqref{eq:odds} the larger share is
 $@largest@ @share back@ / (1 + (@largest@ - 1) @share back@)$ if $@share back@$ is the smaller one,
 and the largest value of
 \begin{equation*}
-\frac{x @largest@ @share back@}{1 + (@largest@ - 1) @share back@} - y @share back@ ,
+\frac{@one@ @largest@ @share back@}{1 + (@largest@ - 1) @share back@} - @two@ @share back@ ,
 \qquad 0 \le @share back@ \le 1 ,
 \end{equation*}
-is, where $y @largest@ \ge x$ and $@largest@ > 1$, taken at
-$1 + (@largest@ - 1) @share back@ = \sqrt{x @largest@ / y}$,
+is, where $@two@ @largest@ \ge @one@$ and $@largest@ > 1$, taken at
+$1 + (@largest@ - 1) @share back@ = \sqrt{@one@ @largest@ / @two@}$,
 \begin{equation}
-\frac{(\sqrt{x @largest@} - \sqrt{y})^2}{@largest@ - 1} ,
+\frac{(\sqrt{@one@ @largest@} - \sqrt{@two@})^2}{@largest@ - 1} ,
 \label{eq:local}
 \end{equation}
-and else, at $@share back@ = 1$, $x - y$; with $x$ and $y$ exchanged, or with the larger share in
-the other term, it is no larger. It grows with $@largest@$, towards $x$.""")
+and else, at $@share back@ = 1$, $@one@ - @two@$; with $@one@$ and $@two@$ exchanged, or with the
+larger share in the other term, it is no larger. It grows with $@largest@$, towards $@one@$.""")
 
 
 def finite(paper: Paper) -> str:
     """Return the bound on the change with a barrier raised by a finite amount."""
-    return filled(paper, r"""As the barrier is raised, $(x + y)/2$ falls by as much, since
-$e^x = @rate@^+_e @pair@ / @free@_n$ and $e^y = @rate@^-_e @pair@ / @free@_m$. The first line of
-Eq.~\eqref{eq:tanh}, integrated over an interval of $(x + y)/2$ of length $\ell$, is largest for the
-one centred at zero, so that raising the barrier by an amount of size $\ell$ changes
+    return filled(paper, r"""As the barrier is raised, $(@one@ + @two@)/2$ falls by as much, since
+$e^{@one@} = @rate@^+_e @pair@ / @free@_n$ and $e^{@two@} = @rate@^-_e @pair@ / @free@_m$. The first
+line of Eq.~\eqref{eq:tanh}, integrated over an interval of $(@one@ + @two@)/2$ of length $\ell$, is
+largest for the one centred at zero, so that raising the barrier by an amount of size $\ell$ changes
 $\ln @end ratio@$, and with it every $\ln (\langle q \rangle / \langle q' \rangle)$, by at most
 \begin{equation}
 2 \ln \frac{\cosh \bigl((|\ln @cross ratio@_e| + \ell)/4\bigr)}
 {\cosh \bigl((|\ln @cross ratio@_e| - \ell)/4\bigr)} .
 \label{eq:finite}
-\end{equation}""")
+\end{equation}
+which grows towards $\ell$ with $|\ln @cross ratio@_e|$.""")
 
 
 def second(paper: Paper) -> str:
     """Return the bound on the second derivative by a barrier."""
     return filled(paper, r"""Let $@scale@$ multiply both rates of $e$. By Eq.~\eqref{eq:split},
-$\langle q \rangle / \langle q' \rangle = (x + @scale@ y) / (x' + @scale@ y')$ with numbers that do
-not depend on $@scale@$ and are not negative. With $@odds share@ = @scale@ y / (x + @scale@ y)$, and
-$@odds share@'$ likewise,
+$\langle q \rangle / \langle q' \rangle = (@one@ + @scale@ @two@) / (@one@' + @scale@ @two@')$ with
+numbers that do not depend on $@scale@$ and are not negative. With
+$@odds share@ = @scale@ @two@ / (@one@ + @scale@ @two@)$, and $@odds share@'$ likewise,
 \begin{equation}
 \frac{\partial^2}{(\partial \ln @scale@)^2} \ln \frac{\langle q \rangle}{\langle q' \rangle}
  = @odds share@ (1 - @odds share@) - @odds share@' (1 - @odds share@') ,

@@ -58,10 +58,10 @@ one.""")
 def sums_over_trees(paper: Paper) -> str:
     """Return the bound by the range of sums over the rates of a tree, for energies the identity."""
     return filled(paper, r"""\subsection{Sums over trees}
-Let the logarithm of each directed rate $x$ change by a number,
-$@change@_x = \partial \ln x / \partial @parameter@$. Then
+Let the logarithm of each directed rate $@one@$ change by a number,
+$@change@_{@one@} = \partial \ln @one@ / \partial @parameter@$. Then
 $\partial \ln @tree sum@_k / \partial @parameter@$ is the weighted mean, over the trees directed
-towards $k$, of the sum of $@change@_x$ over the rates of the tree. If these sums lie between
+towards $k$, of the sum of $@change@_{@one@}$ over the rates of the tree. If these sums lie between
 $@change@_{\min}$ and $@change@_{\max}$ for the trees towards all states, then
 \begin{equation}
 \Bigl| \frac{\partial}{\partial @parameter@} \ln \frac{@probability@_i}{@probability@_j} \Bigr|
@@ -92,8 +92,8 @@ def bundles(paper: Paper) -> str:
     """Return the bound for a set of transitions whose rates change alike."""
     return filled(paper, r"""\subsection{Transitions changed together}
 Let $@scale@$ multiply all rates of a set $\mathcal{B}$ of transitions of which every spanning tree
-uses $x$ or $x + 1$. Then $@tree sum@_k = @scale@^x (@free@_k + @scale@ @back@_k)$ with sums
-$@free@_k$ and $@back@_k$ over the trees that use $x$ and $x + 1$ of them, and
+uses $@one@$ or $@one@ + 1$. Then $@tree sum@_k = @scale@^{@one@} (@free@_k + @scale@ @back@_k)$
+with sums $@free@_k$ and $@back@_k$ over the trees that use $@one@$ and $@one@ + 1$ of them, and
 \begin{equation}
 \frac{\partial}{\partial \ln @scale@} \ln \frac{@probability@_i}{@probability@_j}
  = \frac{@scale@ @back@_i}{@free@_i + @scale@ @back@_i}
@@ -102,33 +102,34 @@ $@free@_k$ and $@back@_k$ over the trees that use $x$ and $x + 1$ of them, and
 \end{equation}
 The odds of the two terms have the ratio $@back@_i @free@_j / (@free@_i @back@_j)$. If
 $@back@_i @free@_j \le @largest@ \, @free@_i @back@_j$ for all $i$ and $j$, the difference is at
-most $\tanh (\ln(@largest@)/4)$: for odds $e^x$ and $e^y$ it is
-$\sinh ((x - y)/2) / [\cosh ((x - y)/2) + \cosh ((x + y)/2)]$. A matching of the terms of
-$@back@_i @free@_j$ with those of $@free@_i @back@_j$ shows this for $\ln @largest@$ the largest
-$|@force@_c|$ of the cycles with transitions inside and outside of $\mathcal{B}$: the two terms of
-each pair are equal or differ by the reversal of one such cycle.""")
+most $\tanh (\ln(@largest@)/4)$: for odds $e^{@one@}$ and $e^{@two@}$ it is
+$\sinh ((@one@ - @two@)/2) / [\cosh ((@one@ - @two@)/2) + \cosh ((@one@ + @two@)/2)]$. A matching of
+the terms of $@back@_i @free@_j$ with those of $@free@_i @back@_j$ shows this for $\ln @largest@$
+the largest $|@force@_c|$ of the cycles with transitions inside and outside of $\mathcal{B}$: the
+two terms of each pair are equal or differ by the reversal of one such cycle.""")
 
 
 def parameters(paper: Paper, barriers: bool) -> str:
     """Return the bound for a parameter resolved into energies, single rates and maybe barriers."""
     return filled(paper, r"""\subsection{Parameters}
-A parameter whose action on the logarithms of the rates is a sum of changes $x_k$ of the energies,
-$y_e$ of barriers and $z_e$ of single rates has the sum of the responses to each. Every tree
-directed towards $k$ holds one transition out of each other state, so that the energies change
-$\ln (@probability@_i / @probability@_j)$ by $x_j - x_i$; a barrier obeys Eq.~\eqref{eq:tanh}, and a
-single rate, which a tree uses once at most, Eq.~\eqref{eq:trees}. Altogether the response is at
-most
+A parameter whose action on the logarithms of the rates is a sum of changes $@one@_k$ of the
+energies, $@two@_e$ of barriers and $@scale@_e$ of single rates has the sum of the responses to
+each. Every tree directed towards $k$ holds one transition out of each other state, so that the
+energies change $\ln (@probability@_i / @probability@_j)$ by $@one@_j - @one@_i$; a barrier obeys
+Eq.~\eqref{eq:tanh}, and a single rate, which a tree uses once at most, Eq.~\eqref{eq:trees}.
+Altogether the response is at most
 \begin{equation}
-\max_k x_k - \min_k x_k + \sum_e |y_e| \tanh \frac{@force@_{\max}(e)}{4} + \sum_e |z_e| .
+\max_k @one@_k - \min_k @one@_k + \sum_e |@two@_e| \tanh \frac{@force@_{\max}(e)}{4} + \sum_e
+|@scale@_e| .
 \label{eq:parameter}
 \end{equation}""" if barriers else r"""\subsection{Parameters}
-A parameter whose action on the logarithms of the rates is a sum of changes $x_k$ of the energies
-and $z_e$ of single rates has the sum of the responses to each. Every tree directed towards $k$
-holds one transition out of each other state, so that the energies change
-$\ln (@probability@_i / @probability@_j)$ by $x_j - x_i$; a single rate is used once at most by a
-tree, so that Eq.~\eqref{eq:trees} limits its part. Altogether the response is at most
+A parameter whose action on the logarithms of the rates is a sum of changes $@one@_k$ of the
+energies and $@scale@_e$ of single rates has the sum of the responses to each. Every tree directed
+towards $k$ holds one transition out of each other state, so that the energies change
+$\ln (@probability@_i / @probability@_j)$ by $@one@_j - @one@_i$; a single rate is used once at most
+by a tree, so that Eq.~\eqref{eq:trees} limits its part. Altogether the response is at most
 \begin{equation}
-\max_k x_k - \min_k x_k + \sum_e |z_e| .
+\max_k @one@_k - \min_k @one@_k + \sum_e |@scale@_e| .
 \label{eq:parameter}
 \end{equation}""")
 
