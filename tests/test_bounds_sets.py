@@ -11,7 +11,7 @@ from itertools import combinations
 import pytest
 from random_networks import Numbers, random_numbers, ring
 
-from symbolic_response.bounds.bundle import rank, used_by_trees
+from symbolic_response.bounds.bundle import rank
 from symbolic_response.bounds.claim import Claim
 from symbolic_response.bounds.decide import Weighted
 from symbolic_response.bounds.evaluate import ClaimPoint, Evaluated
@@ -25,6 +25,7 @@ from symbolic_response.response.analysis import Analysis, graph_of
 from symbolic_response.response.deriving import derive
 from symbolic_response.response.values import Point
 from symbolic_response.topology import Graph
+from symbolic_response.topology.tree_weights import tree_weights
 
 PAIR = Numbers(2, ((0, 1, Fraction(4), Fraction(1)), (0, 1, Fraction(1), Fraction(4))))
 
@@ -189,7 +190,7 @@ def test_ranks_and_numbers_of_rates_by_enumeration(seed: int) -> None:
                  if (t[3] or not back) and rng.random() < 0.5]
         places = {2 * e + back for e, back in rates}
         uses = [len(tree & places) for _, tree, _ in numbers.trees()]
-        assert used_by_trees(rates, graph) == (min(uses), max(uses))
+        assert tree_weights(graph, dict.fromkeys(rates, 1)) == (min(uses), max(uses))
 
 
 def test_large_networks_need_no_enumeration() -> None:
@@ -197,9 +198,9 @@ def test_large_networks_need_no_enumeration() -> None:
     ends = tuple(combinations(range(14), 2))
     graph = Graph(14, ends, (False,) * len(ends))
     star = [(e, pair[0] != 0) for e, pair in enumerate(ends) if 0 in pair]
-    assert used_by_trees([(e, not back) for e, back in star], graph) == (0, 13)
-    assert used_by_trees(star, graph) == (0, 1)  # the rates out of one state
-    assert used_by_trees([(e, back) for e, _ in star for back in (False, True)], graph) == (1, 13)
+    assert tree_weights(graph, {(e, not back): 1 for e, back in star}) == (0, 13)
+    assert tree_weights(graph, dict.fromkeys(star, 1)) == (0, 1)  # the rates out of one state
+    assert tree_weights(graph, {(e, back): 1 for e, _ in star for back in (False, True)}) == (1, 13)
     assert rank([e for e, _ in star], graph) == 13
 
 

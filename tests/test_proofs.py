@@ -19,7 +19,7 @@ from hypothesis import strategies as st
 from proof_networks import Rate, analysis_of, rooted_trees, strong_graphs, undirected_trees
 
 from symbolic_response.certificates.proofs.changes import logarithmic_change, shows_sign
-from symbolic_response.certificates.proofs.coefficients import coefficients_proof, tree_weights
+from symbolic_response.certificates.proofs.coefficients import coefficients_proof
 from symbolic_response.certificates.proofs.edge import edge_proof, require_identities
 from symbolic_response.certificates.proofs.rows import paths_proof
 from symbolic_response.certificates.proofs.splitting import splitting_proof
@@ -32,6 +32,7 @@ from symbolic_response.errors import SizeLimitError
 from symbolic_response.expressions.reader import read_expression
 from symbolic_response.network.quantities import BySymbol
 from symbolic_response.topology import Graph
+from symbolic_response.topology.tree_weights import tree_weights
 
 SQUARE = Graph(4, ((0, 1), (1, 2), (2, 3), (3, 0), (0, 2)), (False,) * 5)
 TWINS = Graph(2, ((0, 1), (1, 0)), (False, False))

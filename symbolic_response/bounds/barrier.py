@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from symbolic_response.bounds.claim import Claim, CycleMaximum, Question, Term
 from symbolic_response.bounds.target import spread_factor
-from symbolic_response.bounds.topological import cycle_data
+from symbolic_response.bounds.topological import transition_data
 from symbolic_response.network.quantities import BarrierOf
 
 
@@ -21,6 +21,6 @@ def barrier(question: Question) -> Claim | None:
     return Claim(
         "barrier", question.response,
         (Term(spread_factor(question.target), CycleMaximum(e)),),
-        cycle_data(e, question.analysis), "any network; a bridge has no response",
+        transition_data(e, question.analysis), "any network; a bridge has no response",
         "Owen, Gingrich & Horowitz, Phys. Rev. X 10, 011066 (2020)",
     )

@@ -10,19 +10,16 @@ from __future__ import annotations
 
 from collections.abc import Iterable
 
-import flint
-
 from symbolic_response.bounds.claim import Claim, MixedCycles, Question, Term
 from symbolic_response.bounds.target import depends_on, size_of, spread_factor
-from symbolic_response.bounds.topological import cycles_shown, force_label
 from symbolic_response.expressions.tree import ZERO, Expression, multiply, number
 from symbolic_response.network.quantities import BarriersOf, BySymbol
 from symbolic_response.response.analysis import Analysis
 from symbolic_response.response.closed_trees import RateChanges, rate_changes
 from symbolic_response.topology import Graph
+from symbolic_response.topology.tree_weights import tree_weights
 
 SOURCE = "derived here; see DEVELOPERS.md"
-Rates = Iterable[tuple[int, bool]]
 
 
 def bundle(question: Question) -> Claim | None:
@@ -46,7 +43,6 @@ def bundle(question: Question) -> Claim | None:
     if most > least:
         force = MixedCycles(transitions)
         term = Term(_factor(question, changes), force)
-        data["cycles"] = {force_label(force, analysis): cycles_shown(force, analysis)}
     return Claim(
         "bundle", question.response, (term,), data,
         "all rates of these transitions change by one common factor and no others; every spanning"
@@ -62,7 +58,7 @@ def directed_bundle(question: Question) -> Claim | None:
     analysis = question.analysis
     directions = analysis.rates.directions()
     rates = [directions[place] for place in changes]
-    least, most = used_by_trees(rates, analysis.graph)
+    least, most = tree_weights(analysis.graph, dict.fromkeys(rates, 1))
     names = [analysis.network.transitions[e].name for e, _ in rates]
     return Claim(
         "directed-bundle", question.response,
@@ -112,35 +108,3 @@ def rank(transitions: Iterable[int], graph: Graph) -> int:
             found += 1
             part = [second if own == first else own for own in part]
     return found
-
-
-def used_by_trees(rates: Rates, graph: Graph) -> tuple[int, int]:
-    """Return how many of some rates (transition, backward) a rooted tree uses: least and most.
-
-    From the determinant of the matrix-tree theorem with these rates a power of two that is larger
-    than the number of rooted trees, all others one: the trees that use j of them are digit j.
-
-    >>> used_by_trees([(0, False), (1, False)], Graph(3, ((0, 1), (1, 2), (2, 0)), (False,) * 3))
-    (0, 2)
-    """
-    digit = _all_trees(graph, set(), 0).bit_length()
-    total = _all_trees(graph, set(rates), digit)
-    return ((total & -total).bit_length() - 1) // digit, (total.bit_length() - 1) // digit
-
-
-def _all_trees(graph: Graph, chosen: set[tuple[int, bool]], digit: int) -> int:
-    """Return the sum over all rooted spanning trees at rates 2^digit where chosen, 1 elsewhere."""
-    size = graph.size
-    matrix = [[0] * size for _ in range(size)]
-    for e, (first, second) in enumerate(graph.ends):
-        for tail, head, backward in ((first, second, False), (second, first, True)):
-            if not (backward and graph.one_way[e]):
-                rate = 1 << digit if (e, backward) in chosen else 1
-                matrix[tail][tail] += rate
-                matrix[tail][head] -= rate
-    total = 0
-    for root in range(size):
-        kept = [k for k in range(size) if k != root]
-        entries = [matrix[row][column] for row in kept for column in kept]
-        total += int(flint.fmpz_mat(len(kept), len(kept), entries).det())
-    return total

@@ -11,7 +11,7 @@ from __future__ import annotations
 from symbolic_response.bounds.claim import Claim, CycleMaximum, EndPair, Term
 from symbolic_response.bounds.curves import FiniteChange
 from symbolic_response.bounds.target import size_of, target_of
-from symbolic_response.bounds.topological import cycle_data, end_pair_data
+from symbolic_response.bounds.topological import end_pair_data, transition_data
 from symbolic_response.expressions.tree import ONE
 from symbolic_response.network.quantities import Change
 from symbolic_response.response.analysis import Analysis
@@ -35,6 +35,6 @@ def finite_changes(quantity: Change, analysis: Analysis) -> list[Claim]:
               SOURCE, has_points=False)
         for name, force, data in (
             ("finite-end-pair", EndPair(e), end_pair_data(e, analysis)),
-            ("finite-change", CycleMaximum(e), cycle_data(e, analysis)),
+            ("finite-change", CycleMaximum(e), transition_data(e, analysis)),
         )
     ]

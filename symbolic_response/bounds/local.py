@@ -11,7 +11,7 @@ from fractions import Fraction
 from symbolic_response.bounds.claim import Claim, CycleMaximum, EndPair, Question, Term
 from symbolic_response.bounds.curves import LocalChange
 from symbolic_response.bounds.target import depends_on, spread_factor
-from symbolic_response.bounds.topological import cycle_data, end_pair_data
+from symbolic_response.bounds.topological import end_pair_data, transition_data
 from symbolic_response.expressions.text import fraction_text
 from symbolic_response.expressions.tree import Number, multiply, number
 from symbolic_response.network.quantities import BySymbol
@@ -38,7 +38,7 @@ def local_change(question: Question) -> Claim | None:
     if ahead * behind <= 0:
         return _without_force(question, found)
     return _claim("local-change", question, found, CycleMaximum(e),
-                  cycle_data(e, question.analysis))
+                  transition_data(e, question.analysis))
 
 
 def local_end_pair(question: Question) -> Claim | None:

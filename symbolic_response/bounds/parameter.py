@@ -8,7 +8,6 @@ from fractions import Fraction
 from symbolic_response.bounds.claim import Claim, CycleMaximum, Question, Term
 from symbolic_response.bounds.sides import quantity_text
 from symbolic_response.bounds.target import absolute, depends_on, extreme, size_of, spread_factor
-from symbolic_response.bounds.topological import cycle_data
 from symbolic_response.expressions.signs import certain_sign
 from symbolic_response.expressions.tree import (
     ZERO,
@@ -145,7 +144,6 @@ def _data(parts: Decomposition, analysis: Analysis) -> dict[str, object]:
         },
         "barriers": shown(parts.barriers),
         "single_rates": shown(parts.singles),
-        "cycles": {names[e]: cycle_data(e, analysis)["cycles"] for e in parts.barriers},
     }
 
 

@@ -6,7 +6,6 @@ from collections.abc import Callable, Mapping
 from dataclasses import dataclass, replace
 from decimal import Context, Decimal
 from fractions import Fraction
-from typing import Any
 
 import flint
 
@@ -18,7 +17,7 @@ from symbolic_response.bounds.enclose import PRECISIONS, Enclosed, enclose
 from symbolic_response.bounds.evaluate import ClaimPoint, Evaluated, IrrationalError
 from symbolic_response.bounds.registry import claims_for
 from symbolic_response.bounds.sides import left_text, right_text
-from symbolic_response.bounds.topological import force_label
+from symbolic_response.bounds.topological import Competing, competing_cycles, force_label
 from symbolic_response.errors import AssignmentError, SizeLimitError, UndecidedError
 from symbolic_response.expressions.enclosure import decimal_enclosure
 from symbolic_response.expressions.normal_form import normal_form
@@ -60,6 +59,7 @@ class BoundRow:
 
     ``in_force``: for each transition whose largest cycle force occurs, the cycle that gives it and
     its force there. ``left_value``: the left side at a point where it is irrational, if known.
+    ``cycles``: those that compete for each force, by what they run through.
     """
 
     claim: Claim
@@ -67,6 +67,7 @@ class BoundRow:
     right: str
     evaluated: Evaluated | Enclosed | None
     in_force: dict[str, tuple[str, str] | None] | None
+    cycles: dict[str, Competing]
     left_value: Expression | None = None
 
 
@@ -120,7 +121,8 @@ def bound(
 
 def _row(claim: Claim, analysis: Analysis) -> BoundRow:
     return BoundRow(
-        claim, left_text(claim, analysis.network), right_text(claim, analysis), None, None
+        claim, left_text(claim, analysis.network), right_text(claim, analysis), None, None,
+        competing_cycles(claim, analysis),
     )
 
 
@@ -218,6 +220,9 @@ def report_data(report: BoundReport) -> dict[str, object]:
 
 def _row_data(row: BoundRow) -> dict[str, object]:
     data = dict(row.claim.data)
+    if row.cycles:
+        data["cycles"] = {name: cycles.shown for name, cycles in row.cycles.items()}
+        data["numbers_of_cycles"] = {name: cycles.number for name, cycles in row.cycles.items()}
     found: dict[str, object] = {
         "name": row.claim.name, "left": row.left, "right": row.right,
         "left_value": None, "right_value": None, "holds": None,
@@ -296,19 +301,14 @@ def _sides_text(row: BoundRow) -> tuple[str, str]:
 
 def _cycle_lines(row: BoundRow) -> list[str]:
     lines = []
-    for name, cycles in _competing(row.claim).items():
-        lines.append(f"  cycles through {name} ({len(cycles)}), each with its force:")
-        lines += [f"    {one['cycle']}   {one['force']}" for one in cycles[:MOST_CYCLES]]
-        if len(cycles) > MOST_CYCLES:
-            lines.append(f"    and {len(cycles) - MOST_CYCLES} more")
+    for name, cycles in row.cycles.items():
+        lines.append(f"  cycles through {name} ({cycles.number}), each with its force:")
+        lines += [f"    {one['cycle']}   {one['force']}" for one in cycles.shown[:MOST_CYCLES]]
+        if cycles.number > MOST_CYCLES:
+            lines.append(f"    and {cycles.number - MOST_CYCLES} more")
     for name, winner in (row.in_force or {}).items():
         if winner is None:
             lines.append(f"  limiting cycle for {name}: none (a bridge)")
         else:
             lines.append(f"  limiting cycle for {name}: {winner[0]}, force {winner[1]}")
     return lines
-
-
-def _competing(claim: Claim) -> dict[str, list[dict[str, str]]]:
-    cycles: Any = claim.data.get("cycles", {})
-    return cycles if isinstance(cycles, dict) else {str(claim.data["transition"]): cycles}

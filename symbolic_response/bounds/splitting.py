@@ -6,7 +6,7 @@ from fractions import Fraction
 
 from symbolic_response.bounds.claim import Claim, CycleMaximum, EndPair, Question, Term
 from symbolic_response.bounds.target import Target, absolute, covariance, extreme
-from symbolic_response.bounds.topological import cycle_data, end_pair_data, splitting_data
+from symbolic_response.bounds.topological import end_pair_data, splitting_data, transition_data
 from symbolic_response.expressions.tree import Expression, multiply, number
 from symbolic_response.network.quantities import BarrierOf, DriveOf
 from symbolic_response.response.analysis import Analysis
@@ -32,7 +32,7 @@ def splitting_barrier(question: Question) -> Claim | None:
         return None
     e = perturbation.transition
     factor = largest_covariance(target, e, question.analysis)
-    data = {**cycle_data(e, question.analysis), **splitting_data(e, question.analysis)}
+    data = {**transition_data(e, question.analysis), **splitting_data(e, question.analysis)}
     return Claim(
         "splitting-barrier", question.response, (Term(factor, CycleMaximum(e)),), data,
         "any network; the observable does not depend on the barrier", SOURCE,

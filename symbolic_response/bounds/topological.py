@@ -2,12 +2,16 @@
 
 from __future__ import annotations
 
-from symbolic_response.bounds.claim import CycleMaximum, LargestForce, MixedCycles
+from dataclasses import dataclass
+
+from symbolic_response.bounds.claim import Claim, CycleMaximum, LargestForce, MixedCycles
 from symbolic_response.response.analysis import Analysis
 from symbolic_response.response.forces import force_of
 from symbolic_response.response.survey import cycle_path, force_text
 from symbolic_response.topology import Cycle, splittings
 from symbolic_response.topology.graph import members
+
+MOST_SHOWN = 1_000
 
 
 def cycles_through(e: int, analysis: Analysis) -> tuple[Cycle, ...]:
@@ -38,23 +42,31 @@ def force_names(force: LargestForce, analysis: Analysis) -> str:
     return ", ".join(analysis.network.transitions[e].name for e in chosen)
 
 
-def cycle_data(e: int, analysis: Analysis) -> dict[str, object]:
-    """Return the cycles that compete for F_max(e), each with its force."""
-    return {
-        "transition": analysis.network.transitions[e].name,
-        "cycles": cycles_shown(CycleMaximum(e), analysis),
-    }
+def transition_data(e: int, analysis: Analysis) -> dict[str, object]:
+    """Return the transition that a bound is about; its cycles are listed where they are shown."""
+    return {"transition": analysis.network.transitions[e].name}
 
 
-def cycles_shown(force: LargestForce, analysis: Analysis) -> list[dict[str, str]]:
-    """Return the cycles of which a force is the largest, each with its own."""
-    return [
-        {
-            "cycle": cycle_path(cycle, analysis.network),
-            "force": force_text(force_of(cycle, analysis)),
-        }
-        for cycle in competing(force, analysis)
-    ]
+@dataclass(frozen=True, slots=True)
+class Competing:
+    """How many cycles a force is the largest of, and the first 1,000 with their forces."""
+
+    number: int
+    shown: list[dict[str, str]]
+
+
+def competing_cycles(claim: Claim, analysis: Analysis) -> dict[str, Competing]:
+    """Return the cycles that compete for each force of a claim, by what they run through."""
+    found: dict[str, Competing] = {}
+    for term in claim.right:
+        if isinstance(term.force, LargestForce):
+            cycles = competing(term.force, analysis)
+            found[force_label(term.force, analysis)] = Competing(len(cycles), [
+                {"cycle": cycle_path(cycle, analysis.network),
+                 "force": force_text(force_of(cycle, analysis))}
+                for cycle in cycles[:MOST_SHOWN]
+            ])
+    return found
 
 
 def end_pair_data(e: int, analysis: Analysis) -> dict[str, object]:
