@@ -31,7 +31,6 @@ from .reading import (
 from .record import HEAD, KINDS, Proof, Record, Worst, check_head, read_proof, read_record
 from .statement import statement
 
-
 MAX_RECORDS = 1_000
 
 
