@@ -21,7 +21,7 @@ from symbolic_response.response.analysis import Analysis, graph_of
 from symbolic_response.response.closed_form import ClosedForm, closed_form
 from symbolic_response.response.values import Point
 from symbolic_response.topology import spanning_trees
-from tests.benchmarks import certificates
+from tests.benchmarks import certificates, proofs
 from tests.benchmarks.networks import complete, cube, ladder
 from tests.benchmarks.timing import CUT_OFF, Row, compare
 
@@ -125,6 +125,7 @@ def rows() -> list[Row]:
         compare("100 exact values on the cube", cube_points(box, response), "SymPy subs",
                 sympy_points(box, response), 100),
         certificates.row(),
+        *proofs.rows(),
     ]
 
 
@@ -161,6 +162,8 @@ def main() -> None:
     print(survey_figures())
     print(certificates.thousand_points())
     print(certificates.tightness())
+    print(proofs.edges(cube(), 12))
+    print(proofs.edges(complete(9), 3))
     peak = resource.getrusage(resource.RUSAGE_SELF).ru_maxrss / 1024
     print(f"rivals cut off at {CUT_OFF:.0f} s; whole table {time.perf_counter() - start:.0f} s,"
           f" {peak:.0f} MB")
