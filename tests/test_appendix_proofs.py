@@ -178,6 +178,14 @@ def test_the_file_is_written_and_valid(tmp_path: Path) -> None:
     assert digest in text.replace(r"}\allowbreak{}\texttt{", "")
 
 
+def test_the_record_of_every_kind_of_proof_is_valid(tmp_path: Path) -> None:
+    _, record = write_appendix(read_network_text(CHANNELS), tmp_path / "out.tex",
+                               quantities=EVERY_KIND)
+    verdict = check_file(record)
+    assert verdict.status == "valid", str(verdict)
+    assert len(json.loads(record.read_bytes())["records"]) == len(EVERY_KIND)
+
+
 def test_neither_file_is_changed_where_one_cannot_be_written(tmp_path: Path) -> None:
     (tmp_path / "out.proofs.json").mkdir()
     with pytest.raises(OutputError, match=r"out.proofs.json.*folder"):
