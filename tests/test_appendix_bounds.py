@@ -24,10 +24,10 @@ CASES = {
         r"and the barriers of $\mathrm{e}$, $\mathrm{f}$ together",
         r"\frac{\partial \pi_{A}}{\partial B_{\{\mathrm{e},\mathrm{f}\}}}"],
     "d current[e] / d barrier[e]": [
-        r"&= |J_{\mathrm{e}}| \, \frac{\sum_k a_k}{D}", r"&\le |J_{\mathrm{e}}|",
+        r"&= |J_{\mathrm{e}}| \, \frac{\sum_k \alpha_k}{D}", r"&\le |J_{\mathrm{e}}|",
         r"by the current or the traffic itself~\cite{aslyamov}", "In the exact response"],
     "d current[e] / d drive[e]": [
-        r"&= \frac{\tau_{\mathrm{e}}}{2} \, \frac{\sum_k a_k}{D}"],
+        r"&= \frac{\tau_{\mathrm{e}}}{2} \, \frac{\sum_k \alpha_k}{D}"],
     "d ln(p[A]/p[B]) / d ln y": [
         r"&\le \psi_{2,1}(|\ln r_{\mathrm{i}}|)",
         r"&\le \psi_{2,1}(\mathcal{F}_{\max}(\mathrm{i}))", r"$\psi_{u,v}(x) = "],

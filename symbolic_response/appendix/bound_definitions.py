@@ -41,19 +41,23 @@ NOTIONS: list[tuple[Occurs, str]] = [
      r"for an infinite force $2 \ln(\cosh \ldots / \cosh \ldots)$ is the size of the change of the "
      r"barrier."),
     (_has_force(EndPair),
-     r"$r_e = @rate@^+_e a_m / (@rate@^-_e a_n)$, for $e$ from $m$ to $n$, with $a_k$ the part of "
-     r"$@tree sum@_k$ from trees that do not use $e$; it is a weighted mean of the ratios of the "
-     r"products of rates along and against the cycles through $e$, so that $|\ln r_e| \le "
-     r"@force@_{\max}(e)$. The responses of all $\ln @probability@_k$ to the barrier lie between "
+     r"$@cross ratio@_e = @rate@^+_e @free@_m / (@rate@^-_e @free@_n)$, for $e$ from $m$ to $n$, "
+     r"with $@free@_k$ the part of $@tree sum@_k$ from trees that do not use $e$; it is a "
+     r"weighted mean of the ratios of the "
+     r"products of rates along and against the cycles through $e$, so that "
+     r"$|\ln @cross ratio@_e| \le @force@_{\max}(e)$. The responses of all $\ln @probability@_k$ "
+     r"to the barrier lie between "
      r"those of $m$ and $n$, which gives the bounds by the ends of the transition."),
     (_is_named("current-exact"),
-     r"In the exact response of the current of a transition to its own barrier or drive, $a_k$ is "
-     r"the part of $@tree sum@_k$ from trees that do not use the transition."),
+     r"In the exact response of the current of a transition to its own barrier or drive, "
+     r"$@free@_k$ is the part of $@tree sum@_k$ from trees that do not use the transition."),
     (_has_force(MixedCycles),
-     r"$@force@_{\max}(\{\ldots\})$, of a set of transitions such that all spanning trees use $r$ "
-     r"or $r + 1$ of them, is the largest $|@force@_c|$ of the cycles with transitions both inside "
-     r"and outside the set: all $@tree sum@_k$ are $z^r (a_k + z b_k)$ in a common factor $z$ of "
-     r"their rates."),
+     r"$@force@_{\max}(\{\ldots\})$, of a set of transitions such that all spanning trees use "
+     r"$@one@$ "
+     r"or $@one@ + 1$ of them, is the largest $|@force@_c|$ of the cycles with transitions both "
+     r"inside "
+     r"and outside the set: all $@tree sum@_k$ are $@scale@^{@one@} (@free@_k + @scale@ @back@_k)$ "
+     r"in a common factor $@scale@$ of their rates."),
     (_has_curve(LocalChange),
      r"For rates of one transition that change by powers $u \ge v \ge 0$ of one sign, "
      r"$\psi_{u,v}(x) = (\sqrt{u\,e^{x}} - \sqrt{v})^2/(e^{x} - 1)$ where $v\,e^{x} \ge u$ and "

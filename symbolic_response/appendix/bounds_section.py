@@ -227,7 +227,7 @@ def _force(paper: Paper, force: Force) -> str:
         case CycleMaximum(e):
             return rf"{notation.letters['force']}_{{\max}}({notation.transitions[e]})"
         case EndPair(e):
-            return rf"|\ln r_{{{notation.transitions[e]}}}|"
+            return rf"|\ln {paper.letters['cross ratio']}_{{{notation.transitions[e]}}}|"
         case MixedCycles(transitions):
             names = ",".join(notation.transitions[e] for e in transitions)
             return rf"{notation.letters['force']}_{{\max}}(\{{{names}\}})"
@@ -262,7 +262,7 @@ def _leaf(paper: Paper, part: Expression) -> str | None:
         case Absolute(inner):
             return f"|{side_latex(paper, inner)}|"
         case ShareWithout():
-            return rf"\frac{{\sum_k a_k}}{{{paper.notation.letters['normalisation']}}}"
+            return rf"\frac{{\sum_k {paper.letters['free']}_k}}{{{paper.letters['normalisation']}}}"
         case Symbol() | Number():
             return None
     return quantity_in(paper.notation, part)

@@ -1,0 +1,1 @@
+"""Control parameters: what a symbol that enters many rates can and cannot do."""

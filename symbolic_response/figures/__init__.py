@@ -1,0 +1,1 @@
+"""Plots, from plain data."""
