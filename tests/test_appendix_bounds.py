@@ -56,3 +56,15 @@ def test_what_stands_in_the_section(quantity: str) -> None:
 
 def test_it_compiles(tmp_path: Path, requires_latex: None) -> None:
     assert "Overfull" not in compiled(appendix_text(NET, quantities=list(CASES)), tmp_path)
+
+
+def test_many_paths_are_not_written_out(tmp_path: Path, requires_latex: None) -> None:
+    """Between two states of the complete graph on five there are 1 + 3 + 6 + 6 = 16 paths."""
+    names = "ABCDE"
+    rates = [Rates(a, b, f"u_{a}{b}", f"v_{a}{b}") for i, a in enumerate(names)
+             for b in names[i + 1:]]
+    network = build_network("complete", states=" ".join(names), transitions=rates)
+    text = appendix_text(network, quantities=["p[A]/p[B]"])
+    assert r"&\le \max_P \frac{w_P^+}{w_P^-}" in text
+    assert "$P$ runs over the 16 simple paths from $B$ to $A$" in text
+    assert "Overfull" not in compiled(text, tmp_path)

@@ -17,7 +17,7 @@ from symbolic_response.bounds.claim import (
     Term,
 )
 from symbolic_response.bounds.curves import Curve, FiniteChange, LocalChange, Tanh
-from symbolic_response.bounds.registry import applicable
+from symbolic_response.bounds.registry import PATH, applicable
 from symbolic_response.bounds.sides import force_side
 from symbolic_response.bounds.target import Absolute, Extreme, ShareWithout
 from symbolic_response.bounds.topological import competing
@@ -55,6 +55,7 @@ from symbolic_response.response.quantity_latex import quantity_in
 
 MAX_LISTED_CYCLES = 6
 MAX_LISTED_SPLITTINGS = 8
+MAX_LISTED_PATHS = 6
 
 WORDS = {
     "energy-covariance": "exactly, as a covariance",
@@ -164,6 +165,9 @@ def _cited(claim: Claim) -> str:
 
 
 def _right(paper: Paper, claim: Claim, limit: float) -> list[Piece]:
+    if _many_paths(claim):
+        rate = paper.letters["rate"]
+        return [Piece("", rf"\max_P \frac{{{rate}_P^+}}{{{rate}_P^-}}")]
     pieces: list[Piece] = []
     for term in claim.right:
         factors = _factors(paper, term)
@@ -176,6 +180,17 @@ def _right(paper: Paper, claim: Claim, limit: float) -> list[Piece]:
         else:
             pieces += product_pieces(factors, limit, sign)
     return pieces or [Piece("", "0")]
+
+
+def _many_paths(claim: Claim) -> bool:
+    """Return whether the paths of a path bound are too many to be written out."""
+    return claim.name == PATH and len(_paths(claim)) > MAX_LISTED_PATHS
+
+
+def _paths(claim: Claim) -> list[object]:
+    listed = claim.data["paths"]
+    assert isinstance(listed, list)
+    return listed
 
 
 def _factors(paper: Paper, term: Term) -> list[str]:
@@ -295,10 +310,20 @@ def _data(paper: Paper, claims: Sequence[Claim]) -> str:
         for term in claim.right:
             if isinstance(term.force, CycleMaximum | MixedCycles):
                 sentences.append(_cycles(paper, term.force))
+        if _many_paths(claim):
+            sentences.append(_path_words(paper, claim))
         cuts = claim.data.get("splittings")
         if isinstance(cuts, list):
             sentences.append(_splittings(paper, cuts))
     return " ".join(dict.fromkeys(sentences))
+
+
+def _path_words(paper: Paper, claim: Claim) -> str:
+    places = {state.name: paper.notation.states[k] for k, state in enumerate(paper.network.states)}
+    start, goal = (places[str(claim.data[key])] for key in ("from", "to"))
+    rate = paper.letters["rate"]
+    return (f"$P$ runs over the {len(_paths(claim)):,} simple paths from ${start}$ to ${goal}$;"
+            f" ${rate}_P^+$ and ${rate}_P^-$ are the products of the rates along it and against it.")
 
 
 def _cycles(paper: Paper, force: LargestForce) -> str:
