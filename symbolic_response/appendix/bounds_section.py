@@ -323,7 +323,7 @@ def _path_words(paper: Paper, claim: Claim) -> str:
     start, goal = (places[str(claim.data[key])] for key in ("from", "to"))
     rate = paper.letters["rate"]
     return (f"$P$ runs over the {len(_paths(claim)):,} simple paths from ${start}$ to ${goal}$;"
-            f" ${rate}_P^+$ and ${rate}_P^-$ are the products of the rates along it and against it.")
+            f" ${rate}_P^+$ and ${rate}_P^-$ are the products of the rates along and against it.")
 
 
 def _cycles(paper: Paper, force: LargestForce) -> str:
