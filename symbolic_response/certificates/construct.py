@@ -43,8 +43,13 @@ class Construction:
     skipped: str | None = None
 
 
-def constructed(claim: Claim, analysis: Analysis, sampler: Sampler) -> Construction:
-    """Return points at which a barrier-type claim is nearly an equality."""
+def constructed(
+    claim: Claim, analysis: Analysis, sampler: Sampler, strength: Fraction = FORCE
+) -> Construction:
+    """Return points at which a barrier-type claim is nearly an equality.
+
+    ``strength``: exp of the force on the transition.
+    """
     e = barrier_of(claim)
     if e is None:
         return Construction((), "the claim is not about one barrier")
@@ -60,14 +65,14 @@ def constructed(claim: Claim, analysis: Analysis, sampler: Sampler) -> Construct
     barrier = space.with_rates({e: 1})
     if barrier is None:
         return Construction((), "no symbols scale the two rates of the transition alone")
-    points = [space.tight_point(e, base, force, barrier, None)]
+    points = [space.tight_point(e, base, force, barrier, None, strength)]
     for side in splittings(analysis.graph, e)[:MAX_SIDES]:
         inside = set(members(int(side)))
         inner = {i: 1 for i, (a, b) in enumerate(analysis.graph.ends)
                  if i != e and (a in inside) == (b in inside)}
         stiff = space.with_rates(inner)
         if inner and stiff is not None:
-            points.append(space.tight_point(e, base, force, barrier, stiff))
+            points.append(space.tight_point(e, base, force, barrier, stiff, strength))
     return Construction(tuple(point for point in points if point is not None))
 
 
@@ -180,9 +185,11 @@ class _Logarithms:
         force: Vector,
         barrier: Vector,
         stiff: Vector | None,
+        strength: Fraction,
     ) -> Values | None:
-        """Return the point with force ln 16 on e and the best z, inner rates stiff or not."""
-        factors = self._raised(base, force, FORCE)
+        """Return the point with force ln(strength) on e and the best z, inner rates stiff or not.
+        """
+        factors = self._raised(base, force, strength)
         if stiff is not None:
             factors = self._raised(factors, stiff, INNER)
         values = self._values(factors)

@@ -10,7 +10,7 @@ from collections.abc import Callable, Iterable, Iterator, Sequence
 from concurrent.futures import Executor, Future, ProcessPoolExecutor
 from contextlib import contextmanager
 from dataclasses import dataclass, replace
-from typing import Any
+from typing import Any, TypeVar
 
 from symbolic_response.bounds.claim import Claim
 from symbolic_response.bounds.registry import PATH, claims_for
@@ -37,6 +37,7 @@ COUNT = 1000
 STRETCH = 125
 
 Step = Callable[[int, int], None]
+Result = TypeVar("Result")
 
 
 @dataclass(frozen=True, slots=True)
@@ -129,13 +130,13 @@ def certify_claims(
     """Try claims at ``count`` exact points and where they are tight; every verdict is exact.
 
     Conjectures can be tried as well. For the arguments and errors see ``certify``."""
-    expressions = tuple(_symbolic_parts(quantity, analysis.network))
+    expressions = tuple(symbolic_parts(quantity, analysis.network))
     Sampler(analysis, seed, expressions).point(0)  # refuses at once what cannot be sampled
     whole = Stretch(analysis.network, tuple(claims), expressions, seed, 0, count,
                     analysis.cycle_limit)
     total = count + len(claims)
     report = progress or (lambda done, total: None)
-    with _pool(workers, executor, count) as pool:
+    with process_pool(workers, executor, count) as pool:
         tried = _sample(whole, analysis, pool, lambda done: report(done, total))
         blank = PointCertificate(analysis.network, text, quantity, seed, count, tried.points, ())
         refuted = _first_failure(claims, tried)
@@ -201,8 +202,10 @@ def _refuse_undecided(claims: Sequence[Claim], tried: Tried) -> None:
 
 
 @contextmanager
-def _pool(workers: int | None, executor: Executor | None, count: int) -> Iterator[Executor | None]:
-    """Yield an executor, or None where the work is done here."""
+def process_pool(
+    workers: int | None, executor: Executor | None, count: int
+) -> Iterator[Executor | None]:
+    """Yield an executor, or None where the work at ``count`` points is done here."""
     size = workers or os.cpu_count() or 1
     if executor is not None or size == 1 or (workers is None and count < 2 * STRETCH):
         yield executor
@@ -241,7 +244,7 @@ def _sample(
                 break
     else:
         futures = [pool.submit(try_stretch, stretch) for stretch in stretches]
-        for stretch, part in zip(stretches, _results(futures), strict=False):
+        for stretch, part in zip(stretches, results_in_order(futures), strict=False):
             parts.append(part)
             report(stretch.stop)
             if any(tally.failing is not None for tally in part.tallies):
@@ -270,13 +273,13 @@ def _search(
         return found
     futures = [pool.submit(search_stretch, replace(whole, claims=(claim,)), start)
                for claim, start in zip(whole.claims, starts, strict=True)]
-    for result in _results(futures):
+    for result in results_in_order(futures):
         found.append(result)
         report(len(found))
     return found
 
 
-def _results(futures: Sequence[Future[Tried]] | Sequence[Future[Found]]) -> Iterator[Any]:
+def results_in_order(futures: Sequence[Future[Result]]) -> Iterator[Result]:
     """Yield results in order; when one fails the others are not begun."""
     try:
         for future in futures:
@@ -291,7 +294,7 @@ def _cancel(futures: Iterable[Future[Any]]) -> None:
         future.cancel()
 
 
-def _symbolic_parts(quantity: Expression, network: Network) -> Iterator[Expression]:
+def symbolic_parts(quantity: Expression, network: Network) -> Iterator[Expression]:
     """Yield the expressions of symbols that must be rational for a response to be."""
     if isinstance(quantity, Response):
         target = target_of(quantity.quantity, network)
