@@ -1,0 +1,95 @@
+"""Writing a figure: the kind by the suffix, the same bytes for the same data, whole or not at all.
+"""
+
+from __future__ import annotations
+
+import contextlib
+import io
+import os
+import tempfile
+from collections.abc import Iterator
+from pathlib import Path
+
+from matplotlib import style
+from matplotlib.figure import Figure
+
+from symbolic_response.certificates.record import check_output
+from symbolic_response.errors import OutputError
+
+METADATA: dict[str, dict[str, None]] = {
+    ".pdf": {"Creator": None, "Producer": None, "CreationDate": None},
+    ".png": {"Software": None},
+    ".svg": {"Creator": None, "Date": None},
+}
+WIDTHS = {"single": 3.4, "double": 7.0}
+"""Widths in inches: one column of a journal, or two."""
+DOTS = 300
+STYLE: dict[str, object] = {
+    "font.family": ["STIXGeneral", "DejaVu Sans"],
+    "mathtext.fontset": "stix",
+    "font.size": 8,
+    "axes.labelsize": 8,
+    "axes.linewidth": 0.6,
+    "legend.fontsize": 7.5,
+    "xtick.labelsize": 7.5,
+    "ytick.labelsize": 7.5,
+    "xtick.direction": "in",
+    "ytick.direction": "in",
+    "xtick.top": True,
+    "ytick.right": True,
+    "savefig.dpi": DOTS,
+    "svg.hashsalt": "symbolic-response",
+    "svg.fonttype": "path",
+    "pdf.fonttype": 42,
+}
+
+
+@contextlib.contextmanager
+def drawing() -> Iterator[None]:
+    """Set the one style of all figures for a while, whatever the user's own settings are."""
+    with style.context(["default", STYLE]):
+        yield
+
+
+def width_of(columns: str) -> float:
+    """Return the width of a figure in inches; OutputError unless ``single`` or ``double``."""
+    if columns not in WIDTHS:
+        raise OutputError(f"there is no width {columns!r}; there are {', '.join(WIDTHS)}")
+    return WIDTHS[columns]
+
+
+def check_figure_path(path: str | os.PathLike[str]) -> str:
+    """Return the suffix of a figure; OutputError where it or the place of the file is no good."""
+    suffix = Path(path).suffix.lower()
+    if suffix not in METADATA:
+        raise OutputError(f"{str(path)!r} has no suffix of a figure; write .pdf, .png or .svg")
+    check_output(path)
+    return suffix
+
+
+def write_figure(figure: Figure, path: str | os.PathLike[str]) -> None:
+    """Write a figure as PDF, PNG or SVG; OutputError where that cannot be done."""
+    suffix = check_figure_path(path)
+    made = io.BytesIO()
+    with drawing():
+        figure.savefig(made, format=suffix[1:], metadata=METADATA[suffix])
+    _write(Path(path), made.getvalue())
+
+
+def _write(target: Path, content: bytes) -> None:
+    temporary = None
+    try:
+        handle, temporary = tempfile.mkstemp(dir=target.parent, prefix=f".{target.name}.")
+        with os.fdopen(handle, "wb") as file:
+            file.write(content)
+        mask = os.umask(0)
+        os.umask(mask)
+        os.chmod(temporary, 0o666 & ~mask)
+        os.replace(temporary, target)
+    except BaseException as error:
+        if temporary is not None:
+            with contextlib.suppress(OSError):
+                os.unlink(temporary)
+        if isinstance(error, OSError):
+            raise OutputError(f"cannot write {str(target)!r}: {error.strerror}") from None
+        raise
