@@ -49,8 +49,8 @@ class Family:
         >>> from symbolic_response.network import Rates, build_network
         >>> network = build_network("pair", states=["A", "B"], symbols={"k": {}}, transitions=[
         ...     Rates("A", "B", "k", "1", name="one"), Rates("A", "B", "2", "1", name="two")])
-        >>> family_of(Analysis(network)).words()
-        'energies of the states; unions of blocks; all bundles; drives; sets of rates out of a state'
+        >>> family_of(Analysis(network), single=True, directed=False).words()
+        'energies of the states; unions of blocks; single transitions, no other bundles; drives'
         """
         count = len(self.bundles)
         if self.single:
@@ -61,7 +61,7 @@ class Family:
             bundles = (f"the first {count} bundles up to complements in their blocks, in the order"
                        " of their number of transitions, then of these in the file")
         parts = ["energies of the states", "unions of blocks", bundles, "drives"]
-        return "; ".join([*parts, *(["sets of rates out of a state"] if self.directed else [])])
+        return "; ".join([*parts, *(["sets of rates out of one state"] if self.directed else [])])
 
     def data(self) -> dict[str, object]:
         """Return the same as data."""

@@ -17,7 +17,7 @@ y out of a state, and the negative ones.
 from __future__ import annotations
 
 from collections.abc import Callable, Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from fractions import Fraction
 
 from symbolic_response.control.changes import Vector
@@ -63,7 +63,7 @@ def optimum(
         raise ValueError("one t between 0 and 1 for each bundle of the family")
     layout = _Layout.of(family, tuple(t), False)
     solution = solve(layout.program(change), floating=floating)
-    amounts = layout.amounts(solution.x)
+    amounts = _shared_as_energies(family, layout.amounts(solution.x))
     found = Optimum(amounts, solution.value, solution.dual[: len(family.rates)])
     if (total(family, amounts) != change or cost(family, amounts, t) != found.value
             or dual_value(family, change, found.dual, t) != found.value):
@@ -77,10 +77,23 @@ def sparse_amounts(family: Family, change: Vector) -> Amounts:
     Exactly least; a vertex of the linear program with all costs one, so few pieces.
     """
     layout = _Layout.of(family, (Fraction(1),) * len(family.bundles), True)
-    amounts = layout.amounts(solve(layout.program(change)).x)
+    amounts = _shared_as_energies(family, layout.amounts(solve(layout.program(change)).x))
     if total(family, amounts) != change:
         raise AssertionError("the pieces do not add up to the change")
     return amounts
+
+
+def _shared_as_energies(family: Family, amounts: Amounts) -> Amounts:
+    """Return the pieces with sets of all rates out of a state as energies, which cost no more."""
+    energies, directed = list(amounts.energies), list(amounts.directed)
+    for j in range(family.size):
+        own = [r for r, k in enumerate(family.sources) if k == j]
+        least, most = min(directed[r] for r in own), max(directed[r] for r in own)
+        shared = max(least, _ZERO) + min(most, _ZERO)
+        energies[j] += shared
+        for r in own:
+            directed[r] -= shared
+    return replace(amounts, energies=tuple(energies), directed=tuple(directed))
 
 
 def total(family: Family, amounts: Amounts) -> Vector:
