@@ -29,10 +29,16 @@ from symbolic_response.certificates.tally import Stretch
 from symbolic_response.control.curve_data import csv_text, decimal_text, logarithm
 from symbolic_response.errors import QuantityError, RefutedError
 from symbolic_response.expressions.text import fraction_text
-from symbolic_response.expressions.tree import ONE, ZERO, Expression, Symbol, divide, rebuild
+from symbolic_response.expressions.tree import ONE, ZERO, Expression, Sum, Symbol, divide, rebuild
+from symbolic_response.network.quantities import Response
 from symbolic_response.network.quantity_reader import read_quantity
 from symbolic_response.response.analysis import Analysis
-from symbolic_response.response.quantity_latex import Notation, notation_of, quantity_in
+from symbolic_response.response.quantity_latex import (
+    Notation,
+    notation_of,
+    perturbation_in,
+    quantity_in,
+)
 from symbolic_response.response.values import Point
 from symbolic_response.topology import can_run_against, can_run_along
 
@@ -201,11 +207,16 @@ def _point(
 
 
 def _value_latex(response: Expression, factor: Expression, notation: Notation) -> str:
-    """Return |response|/Y; maxima and absolute values in Y as functions."""
-    shown = rf"\left|{quantity_in(notation, response)}\right|"
+    """Return |response|/Y on one line; maxima and absolute values in Y as functions."""
+    assert isinstance(response, Response)
+    inner = quantity_in(notation, response.quantity)
+    inner = rf"\left({inner}\right)" if isinstance(response.quantity, Sum) else inner
+    inner = rf"\, {inner}" if inner.startswith(r"\ln") else inner
+    by = perturbation_in(notation, response.perturbation)
+    shown = rf"\left|\partial {inner} \, / \, \partial {by}\right|"
     if factor == ONE:
         return shown
-    return rf"{shown} / \left[{_factor_latex(factor, notation)}\right]"
+    return rf"{shown} \, / \, \left[{_factor_latex(factor, notation)}\right]"
 
 
 def _factor_latex(factor: Expression, notation: Notation) -> str:

@@ -13,12 +13,16 @@ from symbolic_response.figures.saving import STYLE
 
 _PLAINER = {
     r"\Bigl": r"\left", r"\Bigr": r"\right", r"\bigl": r"\left", r"\bigr": r"\right",
-    r"\tfrac": r"\frac", r"\lvert": "|", r"\rvert": "|",
+    r"\big": "", r"\Big": "", r"\tfrac": r"\frac", r"\stackrel": r"\overset",
+    r"\displaystyle": "", r"\textstyle": "", r"\scriptstyle": "", r"\scriptscriptstyle": "",
+    r"\mathstrut": "", r"\lvert": "|", r"\rvert": "|", r"\lVert": r"\Vert", r"\rVert": r"\Vert",
+    r"\le": r"\leq", r"\ge": r"\geq", r"\gets": r"\leftarrow",
     r"\textrm": r"\mathrm", r"\textup": r"\mathrm", r"\textnormal": r"\mathrm",
-    r"\textit": r"\mathit", r"\textbf": r"\mathbf", r"\textsf": r"\mathsf",
+    r"\textit": r"\mathit", r"\textbf": r"\mathbf", r"\textsf": r"\mathsf", r"\texttt": r"\mathtt",
 }
-"""Commands that differ from what can be set in size or spacing only."""
+"""Other names of commands, and those that differ in size or spacing only."""
 _NO_GLYPH = 0xA4
+_PLACE = "\N{OBJECT REPLACEMENT CHARACTER}"
 _FONTS = ("STIXGeneral", "DejaVu Sans")
 
 
@@ -34,7 +38,7 @@ def can_be_set(latex: str) -> bool:
     >>> [can_be_set(latex) for latex in (r"\frac{k_{on}}{2}", r"\rightleftdragon", "中", "", "$")]
     [True, False, False, False, False]
     """
-    if not latex.strip() or re.search(r"(?<!\\)\$", latex):
+    if not latex.strip() or not latex.isascii() or re.search(r"(?<!\\)\$", latex):
         return False
     font = FontProperties(family="STIXGeneral", math_fontfamily=str(STYLE["mathtext.fontset"]))
     try:
@@ -59,10 +63,10 @@ def with_about(label: str, about: str, width: int) -> str:
     """Return a label and what the file says about it, in lines of about ``width`` characters."""
     if not about.strip():
         return label
-    words = text_label(about)
-    if len(words) <= width // 2:
-        return f"{label} ({words})"
-    return "\n".join([label, *textwrap.wrap(f"({words})", width)])
+    letters = re.sub(r"\\(mathrm|[,;:! ])|[${}^_]", "", label)
+    place = _PLACE * len(re.sub(r"\\[A-Za-z]+", "x", letters))
+    lines = textwrap.wrap(f"{place} ({text_label(about)})", width, break_long_words=False)
+    return "\n".join(lines).replace(place, label, 1)
 
 
 @cache

@@ -54,13 +54,24 @@ class Panel:
     about: str
     lines: tuple[Line, ...]
 
+    @property
+    def top(self) -> float:
+        """The largest value, 1 where all are zero."""
+        values = [value for line in self.lines for value in line.values if value is not None]
+        return max(values) or 1.0
+
 
 @dataclass(frozen=True, slots=True)
 class Panels:
-    """The curve above, its sensitivity below; ``anchor``: where the saturating curve meets it."""
+    """The curve above, its sensitivity below.
+
+    ``anchor``: where the saturating curve meets the exact one, ``anchor_name`` what is said of it,
+    nothing where the curve is one half there.
+    """
 
     xs: tuple[float, ...]
     anchor: tuple[float, float]
+    anchor_name: str
     upper: Panel
     lower: Panel
 
@@ -76,17 +87,15 @@ def panels_of(data: CurveData) -> Panels:
     upper = Panel(rescaled_text(data, data.observable_latex),
                   rescaled_text(data, data.observable), data.observable_about, tuple(lines))
     return Panels(tuple(number_of(point.x) for point in data.points), best.anchor,
-                  upper, _lower(data))
+                  "" if best.crossings else "nearest one half", upper, _lower(data))
 
 
 def _references(data: CurveData, best: Reference) -> list[Line]:
-    where = "" if best.crossings else ", meets it nearest 1/2"
-    named = replace(SATURATING, name=SATURATING.name + where)
     if data.h0 is None:
-        return [Line(named, best.values)]
+        return [Line(SATURATING, best.values)]
     if _same(data):
-        return [Line(replace(named, name=named.name + " (driven or not)"), best.values)]
-    return [Line(named, best.values), Line(BALANCED, balanced(data, data.h0).values)]
+        return [Line(replace(SATURATING, name="saturating, driven or not"), best.values)]
+    return [Line(SATURATING, best.values), Line(BALANCED, balanced(data, data.h0).values)]
 
 
 def _same(data: CurveData) -> bool:
@@ -105,7 +114,7 @@ def _lower(data: CurveData) -> Panel:
                   for point in data.points)
     if any(value is not None for value in finer):
         lines.append(Line(COVARIANCE, finer))
-    by = rf"\ln {data.parameter_latex}" if data.logarithmic else data.parameter_latex
-    latex = (rf"\left|\partial {data.observable_latex} / \partial {by}\right|"
+    by = rf"\, \ln {data.parameter_latex}" if data.logarithmic else data.parameter_latex
+    latex = (rf"\left|\partial {data.observable_latex} \, / \, \partial {by}\right|"
              + divisor_text(data))
     return Panel(latex, f"abs({sensitivity_text(data)})", "", tuple(lines))

@@ -24,11 +24,12 @@ METADATA: dict[str, dict[str, None]] = {
 WIDTHS = {"single": 3.4, "double": 7.0}
 """Widths in inches: one column of a journal, or two."""
 DOTS = 300
+LABEL_SIZE = 8
 STYLE: dict[str, object] = {
     "font.family": ["STIXGeneral", "DejaVu Sans"],
     "mathtext.fontset": "stix",
-    "font.size": 8,
-    "axes.labelsize": 8,
+    "font.size": LABEL_SIZE,
+    "axes.labelsize": LABEL_SIZE,
     "axes.linewidth": 0.6,
     "legend.fontsize": 7.5,
     "xtick.labelsize": 7.5,
@@ -37,7 +38,6 @@ STYLE: dict[str, object] = {
     "ytick.direction": "in",
     "xtick.top": True,
     "ytick.right": True,
-    "savefig.dpi": DOTS,
     "svg.hashsalt": "symbolic-response",
     "svg.fonttype": "path",
     "pdf.fonttype": 42,
@@ -72,7 +72,7 @@ def write_figure(figure: Figure, path: str | os.PathLike[str]) -> None:
     suffix = check_figure_path(path)
     made = io.BytesIO()
     with drawing():
-        figure.savefig(made, format=suffix[1:], metadata=METADATA[suffix])
+        figure.savefig(made, format=suffix[1:], dpi=DOTS, metadata=METADATA[suffix])
     _write(Path(path), made.getvalue())
 
 
