@@ -151,7 +151,7 @@ def test_a_file_that_is_too_long(tmp_path: Path) -> None:
 
 def test_objects_just_below_the_limit_of_entries(tmp_path: Path) -> None:
     line = verdict(tmp_path, "[" + '{"a":[]},' * 1_300_000 + "1]")
-    assert line == "malformed: file: expected an object, got a list"
+    assert line == "malformed: file: expected an object, got a list of 1300001"
 
 
 @pytest.mark.parametrize("rate", [

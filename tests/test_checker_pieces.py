@@ -227,14 +227,14 @@ def test_known_value_of_two_parallel_transitions() -> None:
 
 @pytest.mark.parametrize(("forced", "status"), [(F(4), "it does not"), (F(1), "it does not")])
 def test_a_claim_that_fails(monkeypatch: pytest.MonkeyPatch, forced: F, status: str) -> None:
-    monkeypatch.setattr(bounds, "_largest_force", lambda graph, e, at, work: forced)
+    monkeypatch.setattr(bounds, "_largest_force", lambda graph, cycles, at: forced)
     verdict = check_record(examples()["pair"])
     assert (verdict.status, verdict.entry) == ("invalid", "claims[0].holds")
     assert verdict.got.startswith(status)
 
 
 def test_a_claim_that_is_not_decided(monkeypatch: pytest.MonkeyPatch) -> None:
-    monkeypatch.setattr(checking, "holds", lambda claim, left, terms: None)
+    monkeypatch.setattr(checking, "decide", lambda left, terms: None)
     verdict = check_record(examples()["pair"])
     assert (verdict.status, verdict.entry) == ("invalid", "claims[0].holds")
     assert verdict.got.startswith("undecided")
@@ -262,7 +262,7 @@ def test_a_rate_that_is_no_text_and_ties_of_constant_observables() -> None:
 def test_cycles_of_equal_force_and_cycles_that_cannot_be_run() -> None:
     def force(ends: list[tuple[int, int]], one_way: list[bool], rates: list[F]) -> F | None:
         graph = Graph(1 + max(map(max, ends)), ends, one_way, work())
-        return bounds._largest_force(graph, graph.cycles(0), Solved("", {}, rates, [], []), work())
+        return bounds._largest_force(graph, graph.cycles(0), Solved("", {}, rates, []))
 
     double = [(0, 1), (0, 1), (0, 1)]
     two = F(2)
@@ -289,7 +289,7 @@ def test_memory(monkeypatch: pytest.MonkeyPatch, tmp_path: Path) -> None:
 def test_texts_of_values_fit_a_line() -> None:
     assert shown(F(1, 10**5000)) == "a number of about 4983 digits"
     assert shown("a\nb\ud800") == "a\\nb\\ud800" and len(shown("x" * 10**5)) < 250
-    assert [shown(x) for x in (None, True, [], {})] == ["null", "true", "a list", "an object"]
+    assert [shown(x) for x in (None, True, [], {})] == ["null", "true", "a list of 0", "an object"]
 
 
 @pytest.mark.parametrize(("kind", "above", "below", "moved", "said"), [
@@ -309,10 +309,10 @@ def test_statements(kind: str, above: str, below: str | None, moved: tuple[str, 
 
     net = record.Network({"k": True, "ab": True}, ["A", "B", "C"], ["ab"], [(0, 1)], [])
     word, what = moved
-    change = (record.Perturbation("symbol", -1, word, what) if isinstance(what, bool)
-              else record.Perturbation(word, 0, "", False, (0,)))
-    made = record.Record(net, record.Target(kind, side(above), side(below) if below else None),
-                         change, None, 0, [], [])
+    change = (record.Perturbation("symbol", symbol=word, logarithmic=what)
+              if isinstance(what, bool) else record.Perturbation(word, 0, (0,)))
+    made = record.Record(net, record.Target(kind, side(above), side(below) if below else []),
+                         change, None, [], [], None, [])
     assert statement(made) == f"{said}: "
 
 
@@ -333,7 +333,7 @@ def test_lists_of_the_wrong_length() -> None:
     said = "malformed: claims: expected a list of 1 or more, got a list of 0"
     assert str(check_record(made)) == said
     made["network"]["transitions"][0]["between"] = ["A"]
-    assert str(check_record(made)).endswith("between: expected a list of two, got a list of 1")
+    assert str(check_record(made)).endswith("between: expected a list of 2, got a list of 1")
 
 
 def test_of_several_verdicts_the_gravest_counts() -> None:

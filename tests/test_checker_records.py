@@ -34,8 +34,8 @@ def test_records_of_the_oracle_are_valid(name: str) -> None:
     claims, points = (len(examples()[name][key]) for key in ("claims", "points"))
     said = f"{claims} claim{'s' * (claims > 1)}, {points} point{'s' * (points > 1)}"
     assert (verdict.status, verdict.got) == ("valid", said)
-    assert verdict.statement.endswith(": " + ", ".join(
-        claim["name"] for claim in examples()[name]["claims"]))
+    shown = re.sub(r" \((energies|barriers|singles) .*?\)(?=,|$)", "", verdict.statement)
+    assert shown.endswith(": " + ", ".join(claim["name"] for claim in examples()[name]["claims"]))
 
 
 @pytest.mark.parametrize("name", NAMES)
@@ -157,6 +157,8 @@ def test_values_of_another_type(name: str) -> None:
             if new == old or may_be(keys, old, new):
                 continue
             verdict = check_record(changed(record, keys, new))
+            if verdict.entry == "sampling.count" and keys == ("points",):
+                continue  # fewer points than are said to be drawn
             assert verdict.status == "malformed", (keys, new, verdict)
             top = re.escape(entry_of(keys))
             if keys[0] in ("target", "perturbation", "path"):  # null together, kinds with keys

@@ -6,16 +6,17 @@ from fractions import Fraction
 from math import isqrt, prod
 
 from .changes import bundle, check_pieces, directed, support
-from .claims import EQUALITIES, constant
 from .expressions import HALF, ONE, ZERO
-from .network import Graph, Path, determinant, generator, minor
-from .point import Solved, dot, pieces
+from .network import Graph, Path
+from .point import Solved, dot
 from .reading import Work, invalid
-from .record import Claim, Record, Target
+from .record import Claim, Network, Record, Target, constant
 
 Term = tuple[Fraction, Fraction | None]  # factor, and g of tanh(ln(g)/4): None where tanh is 1
+EQUALITIES = ("energy-covariance", "current-exact")
 PRECISIONS = (128, 512, 4096)
 RATIO_BITS = 128
+
 
 class Scale:
     """Y, S and the deviations of the observable that S goes with, of a target at a point."""
@@ -39,50 +40,51 @@ class Scale:
             self.y *= (mean - low) * (high - mean) / (high - low) if low < high else ZERO
 
 
-def right_side(record: Record, i: int, at: Solved, graph: Graph, work: Work) -> list[Term]:
-    """Return the terms of the right side of claim ``i`` at a point."""
-    claim = record.claims[i]
+def right_side(record: Record, claim: Claim, at: Solved, graph: Graph) -> list[Term]:
+    """Return the terms of the right side of a claim at a point."""
+    entry, where, name = f"{claim.entry}.name", f" at {at.where}", claim.name
     if record.path is not None:
-        return [(_path_product(graph, record.path, at, f"claims[{i}].name"), None)]
+        products = [Fraction(*_run_ratio(path, at, graph))
+                    for path in paths_along(graph, record.path, entry)]
+        return [(max(products, default=ZERO), None)]
     assert record.target is not None and record.perturbation is not None
-    e, entry, where = record.perturbation.place, f"claims[{i}].name", f" at {at.where}"
+    kind, e = record.perturbation.kind, record.perturbation.place
     if record.target.kind == "current":
-        return [(_current(claim, record.perturbation.kind, e, at, graph, work), None)]
+        return [(_current(name, kind, e, at, graph), None)]
     scale = Scale(record.target, at)
-    if claim.name == "energy-covariance":
+    if name == "energy-covariance":
         return [(scale.s * abs(scale.deviations[e]), None)]
-    if claim.name == "energy-range":
+    if name == "energy-range":
         return [(scale.y, None)]
-    if claim.name == "parameter":
-        return _parameter(record, i, at, scale.y, graph, work)
-    if claim.name == "support":
+    if name == "parameter":
+        return _parameter(record.network, claim, at, scale.y, graph)
+    if name == "support":
         return [(scale.y * support(at.moves, graph, entry, where), None)]
-    if claim.name == "directed-bundle":
+    if name == "directed-bundle":
         return [(scale.y * directed(at.moves, graph, entry, where), None)]
-    if claim.name == "bundle":
+    if name == "bundle":
         kappa, chosen = bundle(at.moves, graph, entry, where)
         cycles = graph.mixed_cycles(chosen)
-        return [(scale.y * kappa, _largest_force(graph, cycles, at, work) if kappa else None)]
+        return [(scale.y * kappa, _largest_force(graph, cycles, at) if kappa else None)]
     factor = scale.y
-    if claim.name.startswith("splitting"):
-        factor = scale.s * _largest_covariance(graph.splittings(e), scale.deviations, work)
-    if record.perturbation.kind == "drive":
+    if name.startswith("splitting"):
+        factor = scale.s * _largest_covariance(graph.splittings(e), scale.deviations, graph.work)
+    if kind == "drive":
         return [(factor * HALF if graph.one_way[e] else factor, None)]
-    if claim.name.endswith("end-pair"):
-        return [(factor, _end_pair(graph, e, at, work))]
-    return [(factor, _largest_force(graph, graph.cycles(e), at, work))]
+    if name.endswith("end-pair"):
+        return [(factor, _end_pair(graph, e, at))]
+    return [(factor, _largest_force(graph, graph.cycles(e), at))]
 
 
-def _current(claim: Claim, kind: str, e: int, at: Solved, graph: Graph, work: Work) -> Fraction:
-    """Return the right side of a claim about a current: all trees are one determinant."""
+def _current(name: str, kind: str, e: int, at: Solved, graph: Graph) -> Fraction:
+    """Return the right side of a claim about a current."""
     first, second = graph.ends[e]
     along, back = at.rates[2 * e] * at.p[first], at.rates[2 * e + 1] * at.p[second]
     value = abs(along - back) if kind == "barrier" else (along + back) / 2
-    if claim.name == "current-range":
+    if name == "current-range":
         return value
-    sums = [determinant([*generator(graph.states, graph.ends, at.rates, without)[1:],
-                         [ONE] * graph.states], work) for without in (e, -1)]
-    return value * sums[0] / sums[1]
+    avoiding = sum((graph.forests(at.rates, 1 << k, e) for k in range(graph.states)), ZERO)
+    return value * avoiding * at.p[0] / graph.forests(at.rates, 1)
 
 
 def _largest_covariance(splittings: list[int], deviations: list[Fraction],
@@ -93,67 +95,62 @@ def _largest_covariance(splittings: list[int], deviations: list[Fraction],
                for inside in splittings)
 
 
-def _run_ratio(path: Path, at: Solved, work: Work) -> tuple[int, int]:
+def _run_ratio(path: Path, at: Solved, graph: Graph) -> tuple[int, int]:
     """Return the product of rates along a path over that against it, as two integers."""
     along, against = [at.rates[j] for j in path], [at.rates[j ^ 1] for j in path]
     above = prod(x.numerator for x in along) * prod(x.denominator for x in against)
     below = prod(x.denominator for x in along) * prod(x.numerator for x in against)
-    work.charge(len(path), above.bit_length() + below.bit_length())
+    graph.work.charge(len(path), above.bit_length() + below.bit_length())
     return above, below
 
 
-def _largest_force(graph: Graph, cycles: list[Path], at: Solved, work: Work) -> Fraction | None:
+def _largest_force(graph: Graph, cycles: list[Path], at: Solved) -> Fraction | None:
     """Return exp of the largest force of cycles, None where it is infinite."""
     best = (1, 1)
     for cycle in cycles:
-        along, against = graph.can_run(cycle), graph.can_run(tuple(j ^ 1 for j in cycle))
-        if along != against:
+        below, above = sorted(_run_ratio(cycle, at, graph))
+        if above and not below:
             return None
-        if along:
-            above, below = _run_ratio(cycle, at, work)
-            above, below = max(above, below), min(above, below)
-            if above * best[1] > best[0] * below:
-                best = above, below
+        if above * best[1] > best[0] * below:
+            best = above, below
     return Fraction(*best)
 
 
-def _end_pair(graph: Graph, e: int, at: Solved, work: Work) -> Fraction | None:
+def _end_pair(graph: Graph, e: int, at: Solved) -> Fraction | None:
     """Return exp(abs(ln r)) for r = w+ a_m/(w- a_n), None where it is infinite."""
-    sides = []
-    matrix = generator(graph.states, graph.ends, at.rates, without=e)
-    for direction, root in enumerate(graph.ends[e]):
-        sides.append(at.rates[2 * e + direction] * determinant(minor(matrix, 1 << root), work))
-    if not any(sides):
+    low, high = sorted(at.rates[2 * e + direction] * graph.forests(at.rates, 1 << root, e)
+                       for direction, root in enumerate(graph.ends[e]))
+    if not high:
         return ONE
-    return max(sides) / min(sides) if all(sides) else None
-
-
-def _path_product(graph: Graph, ends: tuple[int, int], at: Solved, entry: str) -> Fraction:
-    return max((Fraction(*_run_ratio(path, at, graph.work))
-                for path in paths_along(graph, ends, entry)), default=ZERO)
+    return high / low if low else None
 
 
 def paths_along(graph: Graph, ends: tuple[int, int], entry: str) -> list[Path]:
     """Return the paths that can be run along: it must be possible to run them against too."""
-    found = [path for path in graph.paths_between(*ends) if graph.can_run(path)]
+    found = [path for path in graph.paths(*ends) if graph.can_run(path)]
     if not all(graph.can_run(i ^ 1 for i in path) for path in found):
         raise invalid(entry, "only paths that can be run both ways, or against",
                       "a path that can be run along only")
     return found
 
 
-def _parameter(record: Record, i: int, at: Solved, y: Fraction, graph: Graph,
-               work: Work) -> list[Term]:
+def read_pieces(claim: Claim, network: Network, at: Solved,
+                work: Work) -> dict[str, dict[int, Fraction]]:
+    """Return the values of energies, barriers and singles of a claim."""
+    return {key: {k: at.evaluate(one, f"{claim.entry}.parts.{key}.{network.names(key)[k]}", work)
+                  for k, one in given.items()} for key, given in claim.parts.items()}
+
+
+def _parameter(network: Network, claim: Claim, at: Solved, y: Fraction, graph: Graph) -> list[Term]:
     """Check the decomposition of the changes of rates, and return the terms it gives."""
-    found = pieces(record, record.claims[i], f"claims[{i}].parts", at.where, at.symbols, work)
-    energies, barriers, singles = found
-    check_pieces(at.moves, graph, found, record.network.transitions, f"claims[{i}].parts",
-                 f" at {at.where}")
+    found = read_pieces(claim, network, at, graph.work)
+    check_pieces(at.moves, graph, found, network, f"{claim.entry}.parts", f" at {at.where}")
+    energies, barriers, singles = found.values()
     heights = [energies.get(k, ZERO) for k in range(graph.states)]
     first_factor = max(heights) - min(heights) + sum(singles.values(), ZERO)
     terms: list[Term] = [(y * first_factor, None)]
     for e in sorted(barriers):
-        terms.append((y * barriers[e], _largest_force(graph, graph.cycles(e), at, work)))
+        terms.append((y * barriers[e], _largest_force(graph, graph.cycles(e), at)))
     return terms
 
 
@@ -215,10 +212,3 @@ def ratio(left: Fraction, terms: list[Term]) -> Fraction | None:
         return ZERO
     low, _ = sum_bounds(terms, RATIO_BITS)
     return left / low if low else None
-
-
-def holds(claim: Claim, left: Fraction, terms: list[Term]) -> bool | None:
-    """Decide a claim at a point."""
-    if claim.name in EQUALITIES:
-        return left == terms[0][0]
-    return decide(left, terms)

@@ -5,9 +5,9 @@ from __future__ import annotations
 from collections.abc import Sequence
 from fractions import Fraction
 
-from .coefficients import extremes
 from .expressions import HALF, ONE, ZERO
-from .forms import logarithmic_change
+from .extremes import extremes
+from .forms import read_form
 from .network import Graph, rank
 from .reading import invalid
 from .record import Network, Perturbation
@@ -17,7 +17,7 @@ Moves = Sequence[Fraction]  # v by number of the rate, 0 where there is no rate
 
 def elementary(moves: list[Fraction], graph: Graph, moved: Perturbation) -> None:
     """Put the effect of an energy, of barriers or of a drive on the logarithms of the rates."""
-    for i in graph.rates():
+    for i in graph.rates:
         if moved.kind == "energy" and graph.step(i)[0] == moved.place:
             moves[i] = ONE
         elif i >> 1 in moved.transitions:
@@ -26,15 +26,15 @@ def elementary(moves: list[Fraction], graph: Graph, moved: Perturbation) -> None
 
 def changes(network: Network, moved: Perturbation, graph: Graph) -> list[Fraction]:
     """Return v of each rate as it is for all values of the symbols."""
-    moves = [ZERO] * (2 * len(graph.ends))
+    moves = [ZERO] * len(graph.every)
     elementary(moves, graph, moved)
-    for i in graph.rates() if moved.symbol else ():
+    for i in graph.rates if moved.symbol else ():
         expression = network.rates[i >> 1][i & 1]
         assert expression is not None
-        found = logarithmic_change(expression, moved, graph.work)
+        found = read_form(expression, network.positive, moved, graph.work).change
         if found is None:
-            raise invalid(f"network.transitions[{i >> 1}].{'backward' if i & 1 else 'forward'}",
-                          "a form that shows how its logarithm changes", expression.text)
+            raise invalid(network.entry(i), "a form that shows how its logarithm changes",
+                          expression.text)
         moves[i] = found
     return moves
 
@@ -76,7 +76,7 @@ def directed(moves: Moves, graph: Graph, entry: str, where: str) -> Fraction:
 def bundle(moves: Moves, graph: Graph, entry: str, where: str) -> tuple[Fraction, list[int]]:
     """Return kappa and the transitions of a bundle: kappa 0 where every tree uses r of them."""
     kappa, chosen = abs(common(moves, entry, where)), changed(moves)
-    for i in graph.rates():
+    for i in graph.rates:
         if i >> 1 in chosen and not moves[i]:
             raise invalid(entry, f"transitions both of whose rates change{where}", f"rate {i}")
     inside = [graph.ends[e] for e in chosen]
@@ -88,19 +88,21 @@ def bundle(moves: Moves, graph: Graph, entry: str, where: str) -> tuple[Fraction
     return kappa * order, chosen
 
 
-def check_pieces(moves: Moves, graph: Graph, pieces: Sequence[dict[int, Fraction]],
-                 names: Sequence[str], entry: str, where: str) -> None:
+def check_pieces(moves: Moves, graph: Graph, pieces: dict[str, dict[int, Fraction]],
+                 network: Network, entry: str, where: str) -> None:
     """Check that energies, barriers and singles give the changes of the rates."""
-    energies, barriers, singles = pieces
-    for key, found in (("barriers", barriers), ("singles", singles)):
-        for e, value in found.items():
+    energies, barriers, singles = pieces.values()
+    for key in ("barriers", "singles"):
+        for e, value in pieces[key].items():
             if value < 0:
-                raise invalid(f"{entry}.{key}.{names[e]}", f"no negative value{where}", value)
+                raise invalid(f"{entry}.{key}.{network.transitions[e]}",
+                              f"no negative value{where}", value)
     for e, (first, second) in enumerate(graph.ends):
         x = moves[2 * e] - energies.get(first, ZERO)
         y = None if graph.one_way[e] else moves[2 * e + 1] - energies.get(second, ZERO)
         if not _covered(x, y, barriers.get(e, ZERO), singles.get(e, ZERO)):
-            raise invalid(entry, f"pieces that give the changes of {names[e]}{where}", "others")
+            raise invalid(entry, f"pieces that give the changes of {network.transitions[e]}{where}",
+                          "others")
 
 
 def _covered(x: Fraction, y: Fraction | None, barrier: Fraction, single: Fraction) -> bool:

@@ -4,44 +4,32 @@ from __future__ import annotations
 
 import os
 from collections.abc import Callable
-from dataclasses import dataclass
 from fractions import Fraction
 from random import SystemRandom
-from typing import Any
 
 from .algebra import PRIME
-from .bounds import Term, holds, ratio, right_side
-from .claims import EQUALITIES, check_applies
+from .bounds import EQUALITIES, Term, decide, ratio, right_side
 from .expressions import bits
-from .needs import check_proof
 from .network import Graph
-from .point import read_values, solve_point
+from .point import solve_point
+from .proof import check_proof
 from .reading import (
     MAX_WORK,
     Rejected,
     Verdict,
     Work,
     choice,
+    compare,
     invalid,
     items,
     members,
     read_file,
     shown,
 )
-from .record import HEAD, KINDS, Proof, Record, Worst, check_head, read_proof, read_record
+from .record import HEAD, KINDS, Claim, Record, check_head, read_record
 from .statement import statement
 
 MAX_RECORDS = 1_000
-
-
-@dataclass
-class Place:
-    """The place of the largest ratio so far."""
-
-    point: int
-    left: Fraction
-    terms: list[Term]
-    ratio: Fraction
 
 
 def check_file(path: str | os.PathLike[str]) -> Verdict:
@@ -63,26 +51,25 @@ def check_record(data: object, most_work: int = MAX_WORK,
                  draw: Callable[[], int] = random_residue) -> Verdict:
     """Check a record that was read from JSON; ``draw`` gives the random point of compact proofs."""
     try:
-        return _check_any(data, KINDS, Work(most_work), draw)
+        return _check(data, KINDS, Work(most_work), draw)
     except Rejected as error:
         return error.verdict
 
 
-def _check_any(data: object, kinds: tuple[str, ...], work: Work,
-               draw: Callable[[], int]) -> Verdict:
+def _check(data: object, kinds: tuple[str, ...], work: Work, draw: Callable[[], int]) -> Verdict:
     kind = data.get("kind") if type(data) is dict else "points"
     if kind not in kinds:
         choice(kind, "kind", *kinds)
     if kind == "several":
         return _check_several(data, work, draw)
-    if kind == "proof":
-        proof = read_proof(data)
-        said = check_proof(proof, _graph(proof, work), draw)
-        return Verdict("valid", got=said, statement=statement(proof))
-    record = read_record(data)
-    _check(record, work)
-    claims, points = _number(record.claims, "claim"), _number(record.points, "point")
-    return Verdict("valid", got=f"{claims}, {points}", statement=statement(record))
+    record = read_record(data, proof=kind == "proof")
+    network = record.network
+    graph = Graph(len(network.states), network.ends, [back is None for _, back in network.rates],
+                  work)
+    if not graph.strongly_connected():
+        raise invalid("network.transitions", "every state within reach of every other", "others")
+    got = check_proof(record, graph, draw) if kind == "proof" else _check_points(record, graph)
+    return Verdict("valid", got=got, statement=statement(record))
 
 
 def _check_several(data: object, work: Work, draw: Callable[[], int]) -> Verdict:
@@ -91,7 +78,7 @@ def _check_several(data: object, work: Work, draw: Callable[[], int]) -> Verdict
     found = []
     for k, one in enumerate(items(records, "records", MAX_RECORDS)):
         try:
-            found.append(_check_any(one, KINDS[:-1], work, draw))
+            found.append(_check(one, KINDS[:-1], work, draw))
         except Rejected as error:
             wrong = error.verdict
             raise Rejected(wrong.status, f"records[{k}].{wrong.entry}", wrong.expected,
@@ -100,69 +87,41 @@ def _check_several(data: object, work: Work, draw: Callable[[], int]) -> Verdict
                    statement="; ".join(one.statement for one in found))
 
 
-def _graph(record: Record | Proof, work: Work) -> Graph:
-    network = record.network
-    one_way = [backward is None for _, backward in network.rates]
-    graph = Graph(len(network.states), network.ends, one_way, work)
-    if not graph.strongly_connected():
-        raise invalid("network.transitions", "every state within reach of every other", "others")
-    return graph
-
-
-def _number(found: list[Any], word: str) -> str:
-    return f"{len(found)} {word}" + "s" * (len(found) != 1)
-
-
-def _check(record: Record, work: Work) -> None:
+def _check_points(record: Record, graph: Graph) -> str:
+    """Check claims about points, and return how many there are."""
     points = len(record.points)
+    for claim in record.claims:
+        compare(claim.holds, points, f"{claim.entry}.holds")
+    worst: dict[str, dict[str, object]] = {}
+    largest: dict[str, Fraction] = {}
     for k in range(points):
-        read_values(record, k, work)
-    graph = _graph(record, work)
-    if record.count > points:
-        raise invalid("sampling.count", f"at most {points}", record.count)
-    check_applies(record, record.claims)
-    for i, claim in enumerate(record.claims):
-        if claim.holds != points:
-            raise invalid(f"claims[{i}].holds", str(points), claim.holds)
-    worst: list[Place | None] = [None] * len(record.claims)
-    for k in range(points):
-        work.charge(300, 0)
-        solved = solve_point(record, k, graph, work)
-        for i, claim in enumerate(record.claims):
-            terms = right_side(record, i, solved, graph, work)
-            share = _settle(claim, i, k, solved.left, terms, work)
-            place = worst[i]
-            if place is None or share > place.ratio:
-                worst[i] = Place(k, solved.left, terms, share)
-    for i, (claim, place) in enumerate(zip(record.claims, worst, strict=True)):
-        assert place is not None
-        _compare(claim, f"claims[{i}].worst", place)
+        graph.work.charge(300, 0)
+        at = solve_point(record, k, graph)
+        for claim in record.claims:
+            terms = right_side(record, claim, at, graph)
+            share = _settle(claim, at.where, at.left, terms, graph.work)
+            if claim.name not in worst or share > largest[claim.name]:
+                largest[claim.name] = share
+                right = [{"factor": factor, "g": g} for factor, g in terms]
+                worst[claim.name] = {"point": k, "left": at.left, "right": right, "ratio": share}
+    for claim in record.claims:
+        compare(claim.worst, worst[claim.name], f"{claim.entry}.worst")
+    return ", ".join(f"{number} {word}" + "s" * (number != 1) for number, word in (
+        (len(record.claims), "claim"), (points, "point")))
 
 
-def _settle(claim: Worst, i: int, k: int, left: Fraction, terms: list[Term],
-            work: Work) -> Fraction:
+def _settle(claim: Claim, where: str, left: Fraction, terms: list[Term], work: Work) -> Fraction:
     """Return the ratio of the sides at a point where the claim holds."""
     work.charge(100, 0)
     for factor, g in terms:
         work.charge(8, max(bits(left), bits(factor), bits(g or factor)))
-    verdict, share = holds(claim, left, terms), ratio(left, terms)
-    if not verdict or share is None:
-        right = " + ".join(shown(f) + ("" if g is None else f"*tanh(ln({shown(g)})/4)")
-                           for f, g in terms[:4])
-        status = "undecided" if verdict is not False else "it does not"
-        relation = "=" if claim.name in EQUALITIES else "<="
-        raise invalid(f"claims[{i}].holds", f"{claim.name} holds at points[{k}]",
-                      f"{status}: {shown(left)} {relation} {right}")
+    equal = claim.name in EQUALITIES
+    holds = left == terms[0][0] if equal else decide(left, terms)
+    share = ratio(left, terms)
+    if not holds or share is None:
+        right = " + ".join(shown(factor) + ("" if g is None else f"*tanh(ln({shown(g)})/4)")
+                           for factor, g in terms[:4])
+        raise invalid(f"{claim.entry}.holds", f"{claim.name} holds at {where}",
+                      ("undecided" if holds is None else "it does not")
+                      + f": {shown(left)} {'=' if equal else '<='} {right}")
     return share
-
-
-def _compare(claim: Worst, entry: str, place: Place) -> None:
-    """Compare the worst place of a claim with what was found."""
-    pairs: list[tuple[str, object, object]] = [
-        ("point", place.point, claim.point), ("left", place.left, claim.left),
-        ("right", len(place.terms), len(claim.right))]
-    for j, (found, given) in enumerate(zip(place.terms, claim.right, strict=False)):
-        pairs += [(f"right[{j}].factor", found[0], given[0]), (f"right[{j}].g", found[1], given[1])]
-    for key, wanted, stated in [*pairs, ("ratio", place.ratio, claim.ratio)]:
-        if wanted != stated:
-            raise invalid(f"{entry}.{key}", shown(wanted), stated)

@@ -2,9 +2,10 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping
-from dataclasses import dataclass
+from collections.abc import Callable, Mapping
+from dataclasses import dataclass, replace
 from fractions import Fraction
+from operator import add, mul, sub
 
 from .expressions import ONE, ZERO, Expression, Inexact, bits, raised
 from .reading import Work
@@ -13,91 +14,75 @@ from .record import Perturbation
 
 @dataclass(frozen=True)
 class Form:
-    """Numbers that the form of an expression a shows, each None where it does not."""
+    """What the form of an expression a shows, each None where it does not."""
 
-    number: Fraction | None  # a
-    change: Fraction | None  # d ln a/d theta
-    slope: Fraction | None  # d a/d theta
+    number: Fraction | None = None  # a
+    sign: int | None = None  # 1 where a is positive, 0 where it is 0
+    change: Fraction | None = None  # d ln a/d theta
+    slope: Fraction | None = None  # d a/d theta
 
 
-def logarithmic_change(expression: Expression, moved: Perturbation,
-                       work: Work) -> Fraction | None:
-    """Return d ln w/d theta where the form of w shows that it is a number."""
+def read_form(expression: Expression, positive: Mapping[str, bool], moved: Perturbation,
+              work: Work) -> Form:
+    """Return what the form of an expression shows."""
     stack: list[Form] = []
     for operation, what in expression.program:
-        if isinstance(what, Fraction) and operation == "number":
-            new = Form(what, ZERO, ZERO)
-        elif operation == "symbol" and what == moved.symbol:
-            new = Form(None, ONE, None) if moved.logarithmic else Form(None, None, ONE)
-        elif operation == "symbol":
-            new = Form(None, ZERO, ZERO)
-        elif operation in ("exp", "ln", "**"):
+        if operation == "symbol":
+            new = _symbol(what == moved.symbol, moved.logarithmic, positive[str(what)])
+        elif isinstance(what, Fraction) and operation == "number":
+            new = Form(what, None, ZERO, ZERO)
+        elif operation in ("exp", "ln"):
             a = stack.pop()
-            still = ZERO if a.slope == 0 else None
-            if isinstance(what, Fraction):
-                new = Form(_power(a.number, what), _times(what, a.change), still)
-            else:
-                new = Form(None, a.slope if operation == "exp" else still, still)
+            still = _still(a)
+            new = (Form(None, 1, a.slope, still) if operation == "exp" else
+                   Form(None, None, still, still))
+        elif isinstance(what, Fraction):
+            new = _power(stack.pop(), what)
         else:
             b, a = stack.pop(), stack.pop()
-            new = _combined(operation, a, b)
+            new = (_product(a, _power(b, -ONE) if operation == "/" else b) if operation in "*/"
+                   else _sum(a, b, operation))
+        if new.number is not None:
+            new = replace(new, sign=None if new.number < 0 else int(new.number > 0))
         work.charge(3, max(bits(x or ZERO) for x in (new.number, new.change, new.slope)))
         stack.append(new)
-    return stack[0].change
+    return stack[0]
 
 
-def _combined(operation: str, a: Form, b: Form) -> Form:
-    if operation in "+-":
-        sign = ONE if operation == "+" else -ONE
-        change = a.change if a.change == b.change else None
-        return Form(_sum(a.number, _times(sign, b.number)), change,
-                    _sum(a.slope, _times(sign, b.slope)))
-    if operation == "/":
-        b = Form(_power(b.number, -ONE), _times(-ONE, b.change), ZERO if b.slope == 0 else None)
-    slope = ZERO if a.slope == b.slope == 0 else (
-        _times(a.number, b.slope) if b.slope else _times(a.slope, b.number))
-    return Form(_times(a.number, b.number), _sum(a.change, b.change), slope)
-
-
-def _sum(a: Fraction | None, b: Fraction | None) -> Fraction | None:
-    return None if a is None or b is None else a + b
-
-
-def _times(a: Fraction | None, b: Fraction | None) -> Fraction | None:
-    return None if a is None or b is None else a * b
-
-
-def _power(a: Fraction | None, exponent: Fraction) -> Fraction | None:
+def _known(operation: Callable[..., Fraction], *values: Fraction | None) -> Fraction | None:
+    """Return the result of an operation on values that are known, where there is one."""
     try:
-        return None if a is None else raised(a, exponent)
+        return None if None in values else operation(*values)
     except Inexact:
         return None
 
 
-def sign(expression: Expression, positive: Mapping[str, bool], work: Work) -> int | None:
-    """Return 1 where the form shows that the value is positive, 0 that it is 0, else None."""
-    stack: list[tuple[int | None, Fraction | None]] = []
-    for operation, what in expression.program:
-        number: Fraction | None = None
-        found: int | None = None
-        if operation == "symbol":
-            found = 1 if positive[str(what)] else None
-        elif operation == "number" and isinstance(what, Fraction):
-            number = what
-        elif operation == "**" and isinstance(what, Fraction):
-            base, known = stack.pop()
-            number, found = _power(known, what), 1 if base == 1 else None
-        elif operation in ("exp", "ln"):
-            stack.pop()
-            found = 1 if operation == "exp" else None
-        else:
-            (b, second), (a, first) = stack.pop(), stack.pop()
-            both = _combined(operation, Form(first, None, None), Form(second, None, None))
-            number = both.number
-            if a is not None and b is not None:
-                found = {"+": max(a, b), "*": min(a, b), "/": a if b else None}.get(operation)
-        if number is not None:
-            work.charge(3, bits(number))
-            found = None if number < 0 else int(number > 0)
-        stack.append((found, number))
-    return stack[0][0]
+def _still(a: Form) -> Fraction | None:
+    """Return the slope of a function of a: 0 where that of a is."""
+    return ZERO if a.slope == 0 else None
+
+
+def _symbol(moves: bool, logarithmic: bool, positive: bool) -> Form:
+    sign = 1 if positive else None
+    if not moves:
+        return Form(None, sign, ZERO, ZERO)
+    return Form(None, sign, ONE, None) if logarithmic else Form(None, sign, None, ONE)
+
+
+def _power(a: Form, exponent: Fraction) -> Form:
+    return Form(_known(raised, a.number, exponent), 1 if a.sign == 1 else None,
+                _known(mul, a.change, exponent), _still(a))
+
+
+def _sum(a: Form, b: Form, operation: str) -> Form:
+    function = add if operation == "+" else sub
+    sign = None if operation == "-" or a.sign is None or b.sign is None else max(a.sign, b.sign)
+    return Form(_known(function, a.number, b.number), sign,
+                a.change if a.change == b.change else None, _known(function, a.slope, b.slope))
+
+
+def _product(a: Form, b: Form) -> Form:
+    sign = None if a.sign is None or b.sign is None else min(a.sign, b.sign)
+    slope = ZERO if a.slope == b.slope == 0 else (
+        _known(mul, a.number, b.slope) if b.slope else _known(mul, a.slope, b.number))
+    return Form(_known(mul, a.number, b.number), sign, _known(add, a.change, b.change), slope)

@@ -8,6 +8,7 @@ from __future__ import annotations
 
 from collections.abc import Iterable, Sequence
 from fractions import Fraction
+from functools import cache
 from math import lcm
 from typing import TypeVar
 
@@ -24,62 +25,11 @@ class Graph:
     def __init__(self, states: int, ends: list[tuple[int, int]], one_way: list[bool],
                  work: Work) -> None:
         self.states, self.ends, self.one_way, self.work = states, ends, one_way, work
+        self.every = range(2 * len(ends))  # the rates, those of one-way transitions included
+        self.rates = [i for i in self.every if self.can_run((i,))]
         self.listed = 0
-        self._cycles: dict[int, list[Path]] = {}
-        self._paths: dict[tuple[int, int], list[Path]] = {}
-        self._splittings: dict[int, list[int]] = {}
-
-    def strongly_connected(self) -> bool:
-        """Can every state be reached from the first, and the first from every state?"""
-        ahead, behind = [0] * self.states, [0] * self.states
-        for (first, second), single in zip(self.ends, self.one_way, strict=True):
-            for a, b in [(first, second)] if single else [(first, second), (second, first)]:
-                ahead[a] |= 1 << b
-                behind[b] |= 1 << a
-        every = (1 << self.states) - 1
-        return reached(ahead, 0, every) == every == reached(behind, 0, every)
-
-    def neighbours(self, without: int = -1) -> list[int]:
-        """Return for each state the mask of the states that transitions join it to."""
-        masks = [0] * self.states
-        for e, (a, b) in enumerate(self.ends):
-            if e != without:
-                masks[a] |= 1 << b
-                masks[b] |= 1 << a
-        return masks
-
-    def paths(self, start: int, goal: int, without: int = -1) -> list[Path]:
-        """Return all simple paths, as the rates along them, that avoid one transition."""
-        steps: list[list[tuple[int, int]]] = [[] for _ in range(self.states)]
-        for e, (a, b) in enumerate(self.ends):
-            if e != without:
-                steps[a].append((2 * e, b))
-                steps[b].append((2 * e + 1, a))
-        masks, found = self.neighbours(without), []
-        waiting: list[tuple[int, int, Path]] = [(start, (1 << self.states) - 1, ())]
-        while waiting:
-            here, free, path = waiting.pop()
-            self.work.charge(self.states, 0)
-            if here == goal:
-                found.append(path)
-                self._count()
-            elif reached(masks, here, free) >> goal & 1:  # no search without a find
-                free &= ~(1 << here)
-                waiting += [(b, free, (*path, i)) for i, b in steps[here] if free >> b & 1]
-        return found
-
-    def cycles(self, e: int) -> list[Path]:
-        """Return the cycles through transition e, each once, along its forward direction."""
-        if e not in self._cycles:
-            first, second = self.ends[e]
-            self._cycles[e] = [(2 * e, *path) for path in self.paths(second, first, e)]
-        return self._cycles[e]
-
-    def paths_between(self, start: int, goal: int) -> list[Path]:
-        """Return all simple paths between two states, listed once."""
-        if (start, goal) not in self._paths:
-            self._paths[start, goal] = self.paths(start, goal)
-        return self._paths[start, goal]
+        self.paths, self.splittings = cache(self._paths), cache(self._splittings)
+        self.cycles = cache(self._cycles)
 
     def can_run(self, path: Iterable[int]) -> bool:
         """Has every step of the path a rate?"""
@@ -97,14 +47,42 @@ class Graph:
             mask |= 1 << self.step(i)[1]
         return mask
 
-    def rates(self) -> list[int]:
-        """Return the numbers of the rates there are."""
-        return [i for i in range(2 * len(self.ends)) if self.can_run((i,))]
+    def next_states(self, rates: Iterable[int]) -> list[int]:
+        """Return for each state the mask of the states that some rates lead to from there."""
+        masks = [0] * self.states
+        for i in rates:
+            a, b = self.step(i)
+            masks[a] |= 1 << b
+        return masks
 
-    def inner(self, side: int) -> list[int]:
-        """Return the numbers of the rates within a set of states and within the rest."""
-        return [2 * e + k for e, (a, b) in enumerate(self.ends) for k in (0, 1)
-                if side >> a & 1 == side >> b & 1]
+    def strongly_connected(self) -> bool:
+        """Can every state be reached from the first, and the first from every state?"""
+        every = (1 << self.states) - 1
+        return all(reached(self.next_states(i ^ back for i in self.rates), 0, every) == every
+                   for back in (0, 1))
+
+    def _paths(self, start: int, goal: int, without: int = -1) -> list[Path]:
+        """Return all simple paths, as the rates along them, that avoid one transition."""
+        usable = [i for i in self.every if i >> 1 != without]
+        steps = [[(i, b) for i in usable for a, b in [self.step(i)] if a == k]
+                 for k in range(self.states)]
+        masks, found = self.next_states(usable), []
+        waiting: list[tuple[int, int, Path]] = [(start, (1 << self.states) - 1, ())]
+        while waiting:
+            here, free, path = waiting.pop()
+            self.work.charge(self.states, 0)
+            if here == goal:
+                found.append(path)
+                self._count()
+            elif reached(masks, here, free) >> goal & 1:  # no search without a find
+                free &= ~(1 << here)
+                waiting += [(b, free, (*path, i)) for i, b in steps[here] if free >> b & 1]
+        return found
+
+    def _cycles(self, e: int) -> list[Path]:
+        """Return the cycles through transition e, each once, along its forward direction."""
+        first, second = self.ends[e]
+        return [(2 * e, *path) for path in self.paths(second, first, e)]
 
     def mixed_cycles(self, chosen: Iterable[int]) -> list[Path]:
         """Return the cycles that have transitions inside and outside a set of transitions."""
@@ -112,13 +90,10 @@ class Graph:
         return [cycle for e in sorted(inside) for cycle in self.cycles(e)
                 if any(i >> 1 not in inside for i in cycle)]
 
-    def splittings(self, e: int) -> list[int]:
+    def _splittings(self, e: int) -> list[int]:
         """Return the sets with the first end of e, without its second, connected like the rest."""
-        if e in self._splittings:
-            return self._splittings[e]
-        masks, (first, second) = self.neighbours(), self.ends[e]
-        every = (1 << self.states) - 1
-        found = self._splittings[e] = []
+        masks, (first, second) = self.next_states(self.every), self.ends[e]
+        every, found = (1 << self.states) - 1, []
         waiting = [(1 << first, 0)]
         while waiting:
             inside, outside = waiting.pop()
@@ -140,6 +115,26 @@ class Graph:
         self.listed += 1
         if self.listed > MAX_LISTED:
             raise too_large("network", MAX_LISTED, "more paths, cycles and splittings")
+
+    def generator(self, rates: Sequence[Number], without: int = -1) -> list[list[Number]]:
+        """Return W with W[i][j] the rate from j to i, its columns summing to 0."""
+        matrix = [[rates[0] * 0] * self.states for _ in range(self.states)]
+        for i in self.every:
+            if i >> 1 != without:
+                a, b = self.step(i)
+                matrix[b][a] += rates[i]
+                matrix[a][a] -= rates[i]
+        return matrix
+
+    def forests(self, rates: Sequence[Number], roots: int, without: int = -1) -> Fraction:
+        """Return the sum over spanning forests that lead into a set of states: a minor of -W."""
+        kept = [k for k in range(self.states) if not roots >> k & 1]
+        matrix = self.generator(rates, without)
+        return determinant([[-matrix[i][j] for j in kept] for i in kept], self.work)
+
+    def number_of_trees(self, without: int = -1, roots: int = 1) -> int:
+        """Return the number of spanning forests, directions left aside, with one root a tree."""
+        return int(self.forests([1] * len(self.every), roots, without))
 
 
 def union(masks: list[int], states: int) -> int:
@@ -163,36 +158,10 @@ def reached(masks: list[int], start: int, within: int) -> int:
 
 def rank(states: int, ends: Iterable[tuple[int, int]]) -> int:
     """Return how many of these transitions a forest can have."""
-    ahead, found = list(range(states)), 0
-
-    def top(k: int) -> int:
-        while ahead[k] != k:
-            ahead[k] = k = ahead[ahead[k]]
-        return k
-
+    parts = list(range(states))  # the part of the graph that each state is in
     for a, b in ends:
-        a, b = top(a), top(b)
-        found += a != b
-        ahead[a] = b
-    return found
-
-
-def generator(states: int, ends: Sequence[tuple[int, int]], rates: Sequence[Number],
-              without: int = -1) -> list[list[Number]]:
-    """Return W with W[i][j] the rate from j to i, its columns summing to 0."""
-    matrix = [[rates[0] * 0] * states for _ in range(states)]
-    for e, (first, second) in enumerate(ends):
-        if e != without:
-            for a, b, rate in ((first, second, rates[2 * e]), (second, first, rates[2 * e + 1])):
-                matrix[b][a] += rate
-                matrix[a][a] -= rate
-    return matrix
-
-
-def minor(matrix: list[list[Number]], roots: int) -> list[list[Number]]:
-    """Return -W without some states: its determinant is the sum over forests that lead to them."""
-    kept = [k for k in range(len(matrix)) if not roots >> k & 1]
-    return [[-matrix[i][j] for j in kept] for i in kept]
+        parts = [parts[b] if part == parts[a] else part for part in parts]
+    return states - len(set(parts))
 
 
 def eliminate(rows: list[list[int]], work: Work) -> int:

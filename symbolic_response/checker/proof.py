@@ -1,19 +1,23 @@
-"""The proofs of a record: each is read and checked, its kind in a file of its own."""
+"""The check of a record of proofs: each proof, then that claims have those they need."""
 
 from __future__ import annotations
 
 from collections.abc import Callable
 from fractions import Fraction
+from functools import cache
 from typing import Any
 
-from .algebra import Algebra, Residues
-from .coefficients import extremes
-from .edge import check_edge
+from .algebra import Residues
+from .bounds import paths_along, read_pieces
+from .changes import bundle, changed, changes, check_pieces, directed, support
+from .expressions import HALF, ONE, ZERO
+from .extremes import extremes
+from .forms import read_form
+from .identities import check_edge, check_paths, check_splitting, read_paths, read_sets
 from .network import Graph
-from .reading import choice, fraction, invalid, malformed, members, place, shown
-from .record import Network, read_ends
-from .rows import check_rows, read_rows
-from .splitting import check_splitting, read_splittings
+from .point import Solved
+from .reading import choice, compare, invalid, malformed, members, place
+from .record import Claim, Perturbation, Record, read_ends
 from .transport import check_transport
 from .trees import Polynomials, read_trees
 
@@ -24,22 +28,52 @@ ENTRIES = {
     "transport": ("transitions", "cycles", "pairs"),
     "paths": ("from", "to", "form", "paths"),
 }
+UNMOVED = Perturbation("none")
 CHANCE = "compact, at a random point modulo 2^61-1, chance of error below 1e-15"
 
 
-class Proofs:
-    """The proofs of a record that were found right."""
+def check_proof(record: Record, graph: Graph, draw: Callable[[], int]) -> str:
+    """Check a record of proofs, and return what was checked."""
+    _check_signs(record, graph)
+    proofs = Proofs(record, graph, draw)
+    for k, value in enumerate(record.proofs):
+        proofs.check(value, f"proofs[{k}]")
+    for i, claim in enumerate(record.claims):
+        if record.path is not None:
+            proofs.check_path(record.path, f"claims[{i}].name")
+        else:
+            proofs.check_claim(claim, f"claims[{i}].name")
+    return proofs.said()
 
-    def __init__(self, network: Network, graph: Graph, moves: list[Fraction] | None,
-                 trees: object, draw: Callable[[], int]) -> None:
-        self.network, self.graph, self.moves, self.draw = network, graph, moves, draw
-        self.trees = None if trees is None else read_trees(trees, graph)
+
+def _check_signs(record: Record, graph: Graph) -> None:
+    """Check that the observables of ratios show that they are not negative, and not all 0."""
+    target, network = record.target, record.network
+    if target is None or target.kind == "mean":
+        return
+    for entry, side in target.sides():
+        signs = [read_form(one, network.positive, UNMOVED, graph.work).sign for one in side]
+        for state, found, one in zip(network.states, signs, side, strict=True):
+            if found is None:
+                raise invalid(f"{entry}.{state}", "a form that shows no negative value",
+                              one.text[:80])
+        if not any(signs):
+            raise invalid(entry, "a value other than 0", "0 for every state")
+
+
+class Proofs:
+    """The proofs of a record that were found right, and what claims need of them."""
+
+    def __init__(self, record: Record, graph: Graph, draw: Callable[[], int]) -> None:
+        self.record, self.network, self.graph = record, record.network, graph
+        self.moves = changes(record.network, record.perturbation or UNMOVED, graph)
         self.forms: dict[tuple[str, int], str] = {}  # by kind and transition, "" where none
-        self.span = Fraction(0)  # high - low of coefficients
-        self.bundle: tuple[int, ...] = ()  # of transport
+        self.span = ZERO  # high - low of coefficients
+        self.bundle: list[int] = []  # of transport
         self.path = (-1, -1)
-        self._polynomials: Polynomials | None = None
-        self._residues: Residues | None = None
+        masks = [] if record.trees is None else read_trees(record.trees, graph)
+        self.residues = cache(lambda: Residues(graph, draw))
+        self.polynomials = cache(lambda: Polynomials(graph, masks))
 
     def check(self, value: object, entry: str) -> None:
         """Check one proof."""
@@ -50,52 +84,37 @@ class Proofs:
         e, form = -1, ""
         if "transition" in values:
             e = place(values["transition"], f"{entry}.transition", self.network.transitions)
-        if (kind, e) in self.forms:
-            raise malformed(entry, "each proof once", kind)
         if "form" in values:
             form = choice(values["form"], f"{entry}.form", "expanded", "compact")
+        if (kind, e) in self.forms:
+            raise malformed(entry, "each proof once", kind)
         self.forms[kind, e] = form
         if kind == "coefficients":
             self._check_coefficients(values, entry)
-        elif kind == "transport":
-            self.bundle = check_transport(self._expanded(entry), self.network, given, entry)
-        else:
-            algebra: Algebra[Any] = self._compact() if form == "compact" else self._expanded(entry)
-            self._check_identities(kind, e, values, algebra, entry)
-
-    def _check_identities(self, kind: str, e: int, values: dict[str, object],
-                          algebra: Algebra[Any], entry: str) -> None:
-        if kind == "edge":
+            return
+        if form != "compact" and self.record.trees is None:
+            raise malformed("trees", f"a list, as {entry} is expanded", None)
+        algebra: Any = self.residues() if form == "compact" else self.polynomials()
+        if kind == "transport":
+            self.bundle = check_transport(algebra, self.network, values, entry)
+        elif kind == "paths":
+            self.path = read_ends(given[:2], entry, self.network)
+            paths = read_paths(values["paths"], f"{entry}.paths", self.graph, *self.path)
+            check_paths(algebra, paths, *self.path, entry)
+        elif kind == "edge":
             goal, start = self.graph.ends[e]
-            rows = read_rows(values["cycles"], f"{entry}.cycles", self.graph, start, goal, e)
-            check_edge(algebra, e, rows, entry)
-        elif kind == "splitting":
-            sides = read_splittings(values["splittings"], f"{entry}.splittings", self.graph, e)
-            check_splitting(algebra, e, sides, entry)
+            cycles = read_paths(values["cycles"], f"{entry}.cycles", self.graph, start, goal, e)
+            check_edge(algebra, e, cycles, entry)
         else:
-            self.path = read_ends(values["from"], values["to"], entry, self.network)
-            rows = read_rows(values["paths"], f"{entry}.paths", self.graph, *self.path)
-            check_rows(algebra, rows, *self.path, entry)
+            sides = read_sets(values["splittings"], f"{entry}.splittings", self.graph, e)
+            check_splitting(algebra, e, sides, entry)
 
     def _check_coefficients(self, values: dict[str, object], entry: str) -> None:
-        low, high = (fraction(values[key], f"{entry}.{key}") for key in ("low", "high"))
-        if self.moves is None:
+        if self.record.path is not None:
             raise invalid(f"{entry}.kind", "a perturbation for coefficients", "a path")
-        least, most = extremes(self.graph, self.moves)
-        for key, wanted, stated in (("low", least, low), ("high", most, high)):
-            if wanted != stated:
-                raise invalid(f"{entry}.{key}", shown(wanted), stated)
-        self.span = most - least
-
-    def _expanded(self, entry: str) -> Polynomials:
-        if self.trees is None:
-            raise malformed("trees", f"a list, as {entry} is expanded", None)
-        self._polynomials = self._polynomials or Polynomials(self.graph, self.trees)
-        return self._polynomials
-
-    def _compact(self) -> Residues:
-        self._residues = self._residues or Residues(self.graph, self.draw)
-        return self._residues
+        low, high = extremes(self.graph, self.moves)
+        compare(values, {"low": low, "high": high}, entry)
+        self.span = high - low
 
     def said(self) -> str:
         """Return what was checked, for people."""
@@ -104,3 +123,66 @@ class Proofs:
             where = f" {self.network.transitions[e]}" if e >= 0 else ""
             found.append(kind + where + (f": {CHANCE if form == 'compact' else form}" * bool(form)))
         return "; ".join(["proof for all positive rates", *found])
+
+    def _need(self, kind: str, e: int, entry: str) -> None:
+        if (kind, e) not in self.forms:
+            where = f" for {self.network.transitions[e]}" if e >= 0 else ""
+            raise invalid(entry, f"a proof by {kind}{where}", "none")
+
+    def _need_span(self, most: Fraction, entry: str) -> None:
+        self._need("coefficients", -1, entry)
+        if self.span > most:
+            raise invalid(entry, f"coefficients that differ by at most {most}", self.span)
+
+    def check_path(self, path: tuple[int, int], entry: str) -> None:
+        """Check that a path has its proof."""
+        self._need("paths", -1, entry)
+        if self.path != path:
+            raise invalid(entry, "a proof for the ends of the path", "one for others")
+        paths_along(self.graph, path, entry)
+
+    def check_claim(self, claim: Claim, entry: str) -> None:
+        """Check that a claim about a perturbation has the proofs it needs."""
+        assert self.record.perturbation is not None
+        name, e = claim.name, self.record.perturbation.place
+        if name == "parameter":
+            self._check_parameter(claim)
+        elif name == "bundle":
+            self._check_bundle(entry)
+        elif name == "support":
+            self._need_span(support(self.moves, self.graph, entry, ""), entry)
+        elif name == "directed-bundle":
+            self._need_span(directed(self.moves, self.graph, entry, ""), entry)
+        elif name.startswith("energy"):
+            self._need_span(ONE, entry)
+        elif name in ("drive", "splitting-drive"):
+            self._need_span(HALF if self.graph.one_way[e] else ONE, entry)
+        else:
+            if name.startswith("local"):
+                e, *more = [*changed(self.moves), -1]
+                if len(more) != 1:
+                    raise invalid(entry, "one transition whose rates change", len(more))
+            self._need("edge", e, entry)
+        if name.startswith("splitting"):
+            self._need("splitting", e, entry)
+
+    def _check_parameter(self, claim: Claim) -> None:
+        for key, given in claim.parts.items():
+            for one in given.values():
+                if one.symbols:
+                    raise invalid(f"{claim.entry}.parts.{key}", "numbers", one.text[:80])
+        nowhere = Solved("any point", {}, [], [])
+        pieces = read_pieces(claim, self.network, nowhere, self.graph.work)
+        check_pieces(self.moves, self.graph, pieces, self.network, f"{claim.entry}.parts", "")
+        for e in sorted(pieces["barriers"]):
+            self._need("edge", e, f"{claim.entry}.parts")
+
+    def _check_bundle(self, entry: str) -> None:
+        kappa, chosen = bundle(self.moves, self.graph, entry, "")
+        if ("transport", -1) in self.forms and self.bundle == chosen:
+            return
+        if kappa and all(
+                self.graph.can_run(cycle) == self.graph.can_run(i ^ 1 for i in cycle)
+                for cycle in self.graph.mixed_cycles(chosen)):
+            raise invalid(entry, "a proof by transport of the transitions that change", "none")
+        self._need_span(kappa, entry)

@@ -6,10 +6,11 @@ import json
 import os
 import re
 import stat
+from collections.abc import Container
 from dataclasses import dataclass
 from fractions import Fraction
 from itertools import pairwise
-from math import gcd
+from math import gcd, inf
 
 MAX_BYTES = 64 * 2**20
 MAX_ITEMS = 4_000_000  # commas and opening brackets of a file
@@ -108,7 +109,7 @@ def shown(value: object) -> str:
         return cut(ascii(value)[1:-1], 300)
     if value is None or isinstance(value, bool):
         return "null" if value is None else str(value).lower()
-    return "a list" if isinstance(value, list) else "an object"
+    return f"a list of {len(value)}" if isinstance(value, list) else "an object"
 
 
 def read_file(path: str | os.PathLike[str]) -> object:
@@ -196,15 +197,10 @@ def members(value: object, entry: str, *keys: str) -> list[object]:
     return [value[key] for key in keys]
 
 
-def sized(value: object) -> object:
-    """Return the text for a list of the wrong length, anything else as it is."""
-    return f"a list of {len(value)}" if type(value) is list else value
-
-
 def items(value: object, entry: str, most: int, least: int = 1) -> list[object]:
     """Return a list of ``least`` to ``most`` members."""
-    if type(value) is not list or len(value) < least:
-        raise malformed(entry, f"a list of {least} or more", sized(value))
+    if type(value) is not list or len(value) < least or len(value) > most == least:
+        raise malformed(entry, f"a list of {least}" + " or more" * (most > least), value)
     if len(value) > most:
         raise too_large(entry, most, len(value))
     return value
@@ -217,13 +213,6 @@ def text(value: object, entry: str) -> str:
     return value
 
 
-def pair(value: object, entry: str) -> list[object]:
-    """Return a list of two."""
-    if type(value) is not list or len(value) != 2:
-        raise malformed(entry, "a list of two", sized(value))
-    return value
-
-
 def choice(value: object, entry: str, *known: str) -> str:
     """Return a text that is one of those known."""
     if type(value) is not str or value not in known:
@@ -231,11 +220,11 @@ def choice(value: object, entry: str, *known: str) -> str:
     return value
 
 
-def name(value: object, entry: str, taken: object = ()) -> str:
+def name(value: object, entry: str, taken: Container[str]) -> str:
     """Return a name that is not in ``taken`` yet."""
     if type(value) is not str or not _NAME.fullmatch(value):
         raise malformed(entry, "a name", value)
-    if isinstance(taken, list | set | dict | frozenset) and value in taken:
+    if value in taken:
         raise malformed(entry, "a name that is free", value)
     return value
 
@@ -245,30 +234,28 @@ def place(value: object, entry: str, known: list[str]) -> int:
     return known.index(choice(value, entry, *known))
 
 
-def places(value: object, entry: str, known: list[str], least: int) -> tuple[int, ...]:
+def places(value: object, entry: str, known: list[str], least: int,
+           most: int = MAX_NUMBERS) -> tuple[int, ...]:
     """Return the places of names that come in the order of a list of names."""
     found = tuple(place(one, f"{entry}[{k}]", known)
-                  for k, one in enumerate(items(value, entry, MAX_NUMBERS, least)))
+                  for k, one in enumerate(items(value, entry, most, least)))
     if any(a >= b for a, b in pairwise(found)):
         raise malformed(entry, "each once, in the order of the network", value)
     return found
 
 
-def whole(value: object, entry: str) -> int:
-    """Return an integer that is not negative."""
-    if type(value) is not int or value < 0:
-        raise malformed(entry, "an integer from 0", value)
+def whole(value: object, entry: str, below: float = inf, least: int = 0) -> int:
+    """Return an integer from ``least`` that is below a limit."""
+    if type(value) is not int or not least <= value < below:
+        raise malformed(entry, f"an integer from {least}" + f" below {below}" * (below < inf),
+                        value)
     return value
 
 
 def numbers(value: object, entry: str, below: int, least: int = 1) -> tuple[int, ...]:
     """Return a list of integers from 0 that are below a limit."""
-    found = tuple(whole(one, f"{entry}[{k}]")
-                  for k, one in enumerate(items(value, entry, MAX_NUMBERS, least)))
-    for k, one in enumerate(found):
-        if one >= below:
-            raise malformed(f"{entry}[{k}]", f"an integer below {below}", one)
-    return found
+    return tuple(whole(one, f"{entry}[{k}]", below)
+                 for k, one in enumerate(items(value, entry, MAX_NUMBERS, least)))
 
 
 def fraction(value: object, entry: str) -> Fraction:
@@ -281,3 +268,23 @@ def fraction(value: object, entry: str) -> Fraction:
     if leading or gcd(above, below) != 1:
         raise malformed(entry, "a fraction in lowest terms", value)
     return Fraction(above, below)
+
+
+def compare(value: object, wanted: object, entry: str) -> None:
+    """Refuse what is not the value found: an object, a list, null or a number of such."""
+    stated = value
+    if isinstance(wanted, dict):
+        for one, (key, inner) in zip(members(value, entry, *wanted), wanted.items(), strict=True):
+            compare(one, inner, f"{entry}.{key}")
+        return
+    if isinstance(wanted, list):
+        stated = items(value, entry, MAX_NUMBERS)
+        for k, (one, inner) in enumerate(zip(stated, wanted, strict=False)):
+            compare(one, inner, f"{entry}[{k}]")
+        stated, wanted = len(stated), len(wanted)
+    elif isinstance(wanted, int):
+        stated = whole(value, entry)
+    elif value is not None or not entry.endswith(".g"):  # which alone may be null
+        stated = fraction(value, entry)
+    if stated != wanted:
+        raise invalid(entry, shown(wanted), stated)

@@ -3,18 +3,16 @@
 from __future__ import annotations
 
 from dataclasses import dataclass
-from fractions import Fraction
-from typing import Any
 
 from .expressions import FUNCTIONS, Expression, read
 from .reading import (
     choice,
     fraction,
+    invalid,
     items,
     malformed,
     members,
     name,
-    pair,
     place,
     places,
     text,
@@ -22,6 +20,7 @@ from .reading import (
 )
 
 MAX_STATES, MAX_TRANSITIONS, MAX_SYMBOLS, MAX_POINTS = 32, 128, 1_000, 200_000
+MAX_CLAIMS = 20
 RESERVED = {*FUNCTIONS, "d", "p", "mean", "variance", "cov", "current", "traffic", "forward",
             "backward", "force", "energy", "barrier", "drive", "entropy_production", "force_max",
             "max_cov", "log", "tanh", "abs", "max", "min"}
@@ -29,81 +28,93 @@ RESERVED = {*FUNCTIONS, "d", "p", "mean", "variance", "cov", "current", "traffic
 
 @dataclass(frozen=True)
 class Network:
+    """Symbols, states and transitions; of a one-way transition the second rate is None."""
+
     positive: dict[str, bool]  # of each symbol
     states: list[str]
     transitions: list[str]
     ends: list[tuple[int, int]]
     rates: list[tuple[Expression, Expression | None]]
 
+    def names(self, key: str) -> list[str]:
+        """Return what the parts of a claim are named after."""
+        return self.states if key == "energies" else self.transitions
+
+    def entry(self, i: int) -> str:
+        """Return the entry of rate i."""
+        return f"network.transitions[{i >> 1}].{'backward' if i & 1 else 'forward'}"
+
 
 @dataclass(frozen=True)
 class Target:
+    """Observables by state, or the place of the transition whose current it is."""
+
     kind: str
     above: list[Expression]
-    below: list[Expression] | None
-    place: int = -1  # of the transition whose current it is
+    below: list[Expression]
+    place: int = -1
+
+    def sides(self) -> list[tuple[str, list[Expression]]]:
+        """Return the observables there are, with their entries."""
+        sides = [("target.above", self.above), ("target.below", self.below)]
+        return [(entry, side) for entry, side in sides if side]
 
 
 @dataclass(frozen=True)
 class Perturbation:
+    """What is changed: a state or transition by its place, several transitions, or a symbol."""
+
     kind: str
-    place: int  # of the state or transition
-    symbol: str
-    logarithmic: bool
+    place: int = -1
     transitions: tuple[int, ...] = ()
+    symbol: str = ""
+    logarithmic: bool = False
     amount: Expression | None = None  # of a finite change
 
 
 @dataclass(frozen=True)
 class Claim:
+    """A claim; what one about points says of them is compared when they were checked."""
+
+    entry: str
     name: str
-    parts: tuple[dict[int, Expression], ...] | None  # energies, barriers, singles
+    parts: dict[str, dict[int, Expression]]  # energies, barriers, singles of "parameter"
+    holds: object = None
+    worst: object = None
 
 
 @dataclass(frozen=True)
-class Worst(Claim):
-    """A claim at points."""
-
-    holds: int
-    point: int
-    left: Fraction
-    right: list[tuple[Fraction, Fraction | None]]
-    ratio: Fraction
-
-
-@dataclass(frozen=True)
-class Asked:
-    """What claims are about."""
+class Record:
+    """A record of points or of proofs, which are read one by one later."""
 
     network: Network
     target: Target | None
     perturbation: Perturbation | None
     path: tuple[int, int] | None
-
-
-@dataclass(frozen=True)
-class Record(Asked):
-    count: int
-    points: list[Any]
-    claims: list[Worst]
-
-
-@dataclass(frozen=True)
-class Proof(Asked):
-    trees: object
-    proofs: list[Any]
     claims: list[Claim]
+    points: list[object]
+    trees: object
+    proofs: list[object]
 
 
 HEAD = ("format", "version", "kind")
 BODY = ("network", "response", "domain", "target", "perturbation", "path")
-POINTS = ("energy-covariance", "energy-range", "barrier", "end-pair", "splitting-barrier",
-          "splitting-end-pair", "drive", "splitting-drive", "parameter", "support", "path",
-          "current-exact", "current-range", "bundle", "directed-bundle")
-PROVEN = (*POINTS, "local-change", "local-end-pair", "second-order", "finite-change",
-          "finite-end-pair")
 KINDS = ("points", "proof", "several")
-SMOOTH = ("energy", "barrier", "drive", "bundle", "symbol")
+APPLIES = {  # the claims there can be, by kind of perturbation
+    "path": ("path",),
+    "energy": ("energy-covariance", "energy-range"),
+    "barrier": ("barrier", "end-pair", "splitting-barrier", "splitting-end-pair"),
+    "drive": ("drive", "splitting-drive"),
+    "bundle": ("parameter", "bundle", "directed-bundle"),
+    "symbol": ("parameter", "support", "bundle", "directed-bundle", "local-change",
+               "local-end-pair"),
+    "second-barrier": ("second-order",),
+    "finite-barrier": ("finite-change", "finite-end-pair"),
+}
+CURRENT = ("current-exact", "current-range")
+HIGHER = ("second-barrier", "finite-barrier")  # in proofs only
+PROVEN = ("local-change", "local-end-pair", "second-order", "finite-change", "finite-end-pair")
+PARTS = ("energies", "barriers", "singles")
 MAX_PROOFS = 2 * MAX_TRANSITIONS + 3
 
 
@@ -115,46 +126,37 @@ def check_head(form: object, version: object, kind: object) -> None:
     choice(kind, "kind", *KINDS)
 
 
-def read_record(data: object) -> Record:
-    """Read a whole record of points; these are read one by one later."""
-    top = members(data, "", *HEAD, *BODY, "sampling", "points", "claims")
-    check_head(*top[:3])
-    asked = _asked(top[3:9], "all admissible values of the symbols", SMOOTH)
-    rule, seed, count = members(top[9], "sampling", "rule", "seed", "count")
-    choice(rule, "sampling.rule", "dyadic-strata-1")
-    text(seed, "sampling.seed")
-    claims: list[Worst] = []
-    for i, value in enumerate(items(top[11], "claims", len(POINTS))):
-        claims.append(_worst(value, f"claims[{i}]", asked.network, {c.name for c in claims}))
-    return Record(**vars(asked), count=whole(count, "sampling.count"),
-                  points=items(top[10], "points", MAX_POINTS), claims=claims)
-
-
-def read_proof(data: object) -> Proof:
-    """Read a record of proofs; trees and proofs are read one by one later."""
-    top = members(data, "", *HEAD, *BODY, "trees", "proofs", "claims")
-    check_head(*top[:3])
-    asked = _asked(top[3:9], "all positive rates", (*SMOOTH, "second-barrier", "finite-barrier"))
-    claims: list[Claim] = []
-    for i, value in enumerate(items(top[11], "claims", len(PROVEN))):
-        called, parts = members(value, f"claims[{i}]", "name", "parts")
-        claims.append(_claim(called, parts, f"claims[{i}]", asked.network, PROVEN,
-                             {c.name for c in claims}))
-    return Proof(**vars(asked), trees=top[9], proofs=items(top[10], "proofs", MAX_PROOFS),
-                 claims=claims)
-
-
-def _asked(values: list[object], domain: str, kinds: tuple[str, ...]) -> Asked:
-    network = _network(values[0])
-    text(values[1], "response")
-    choice(values[2], "domain", domain)
-    _, _, _, target, moved, path = values
+def read_record(data: object, proof: bool) -> Record:
+    """Read a record of points or of proofs."""
+    rest = ("trees", "proofs") if proof else ("sampling", "points")
+    *head, network, response, domain, target, moved, path, first, second, claims = members(
+        data, "", *HEAD, *BODY, *rest, "claims")
+    check_head(*head)
+    net = _network(network)
+    text(response, "response")
+    choice(domain, "domain", "all positive rates" if proof else
+           "all admissible values of the symbols")
     for entry, value in (("target", target), ("perturbation", moved)):
         if (value is None) != (path is not None):
             raise malformed(entry, "null exactly where path is not", value)
-    if path is not None:
-        return Asked(network, None, None, _path(path, network))
-    return Asked(network, _target(target, network), _perturbation(moved, network, kinds), None)
+    if proof:
+        points, proofs = [], items(second, "proofs", MAX_PROOFS)
+    else:
+        points, proofs = items(second, "points", MAX_POINTS), []
+        rule, seed, count = members(first, "sampling", "rule", "seed", "count")
+        choice(rule, "sampling.rule", "dyadic-strata-1")
+        text(seed, "sampling.seed")
+        if whole(count, "sampling.count") > len(points):
+            raise invalid("sampling.count", f"at most {len(points)}", count)
+    record = Record(
+        net, None if target is None else _target(target, net),
+        None if moved is None else _perturbation(moved, net, proof),
+        None if path is None else read_ends(members(path, "path", "from", "to"), "path", net),
+        [], points, first if proof else None, proofs)
+    for i, value in enumerate(items(claims, "claims", MAX_CLAIMS)):
+        record.claims.append(_claim(value, f"claims[{i}]", record, proof))
+    _check_applies(record)
+    return record
 
 
 def _network(value: object) -> Network:
@@ -180,7 +182,7 @@ def _symbol(value: object, entry: str, positive: dict[str, bool]) -> None:
         raise malformed(f"{entry}.name", "a name that is not reserved", key)
     positive[key] = choice(sign, f"{entry}.sign", "positive", "real") == "positive"
     low, high = (fraction(limit, f"{entry}.range[{j}]")
-                 for j, limit in enumerate(pair(limits, f"{entry}.range")))
+                 for j, limit in enumerate(items(limits, f"{entry}.range", 2, 2)))
     if low > high:
         raise malformed(f"{entry}.range", "the lower limit first", f"{low} and {high}")
 
@@ -190,7 +192,7 @@ def _transition(value: object, entry: str, network: Network) -> None:
         value, entry, "name", "between", "forward", "backward")
     network.transitions.append(name(called, f"{entry}.name", network.transitions))
     first, second = (place(end, f"{entry}.between[{j}]", network.states)
-                     for j, end in enumerate(pair(between, f"{entry}.between")))
+                     for j, end in enumerate(items(between, f"{entry}.between", 2, 2)))
     if first == second:
         raise malformed(f"{entry}.between", "two different states", network.states[first])
     network.ends.append((first, second))
@@ -201,13 +203,13 @@ def _transition(value: object, entry: str, network: Network) -> None:
 def _target(value: object, network: Network) -> Target:
     if type(value) is dict and value.get("kind") == "current":
         _, where = members(value, "target", "kind", "transition")
-        return Target("current", [], None, place(where, "target.transition", network.transitions))
+        return Target("current", [], [], place(where, "target.transition", network.transitions))
     kind, above, below = members(value, "target", "kind", "above", "below")
     kind = choice(kind, "target.kind", "mean", "ratio", "log-ratio", "current")
     if (kind == "mean") != (below is None):
         raise malformed("target.below", "null for mean only", below)
     return Target(kind, _observable(above, "target.above", network),
-                  None if below is None else _observable(below, "target.below", network))
+                  [] if below is None else _observable(below, "target.below", network))
 
 
 def _observable(value: object, entry: str, network: Network) -> list[Expression]:
@@ -216,78 +218,90 @@ def _observable(value: object, entry: str, network: Network) -> list[Expression]
             for one, state in zip(values, network.states, strict=True)]
 
 
-def _perturbation(value: object, network: Network, kinds: tuple[str, ...]) -> Perturbation:
+def _perturbation(value: object, network: Network, proof: bool) -> Perturbation:
     entry = "perturbation"
     if type(value) is not dict:
         raise malformed(entry, "an object", value)
-    kind = choice(value.get("kind"), f"{entry}.kind", *kinds)
+    kind = choice(value.get("kind"), f"{entry}.kind",
+                  *(one for one in list(APPLIES)[1:] if proof or one not in HIGHER))
+    keys = {"symbol": ("symbol", "logarithmic"), "energy": ("state",), "bundle": ("transitions",),
+            "finite-barrier": ("transition", "amount")}.get(kind, ("transition",))
+    _, where, *more = members(value, entry, "kind", *keys)
+    entry = f"{entry}.{keys[0]}"
     if kind == "symbol":
-        _, symbol, logarithmic = members(value, entry, "kind", "symbol", "logarithmic")
-        symbol = choice(symbol, f"{entry}.symbol", *network.positive)
+        symbol, (logarithmic,) = choice(where, entry, *network.positive), more
         if type(logarithmic) is not bool or (logarithmic and not network.positive[symbol]):
-            raise malformed(f"{entry}.logarithmic", "true (of a positive symbol) or false",
+            raise malformed("perturbation.logarithmic", "true (of a positive symbol) or false",
                             logarithmic)
-        return Perturbation(kind, -1, symbol, logarithmic)
+        return Perturbation(kind, symbol=symbol, logarithmic=logarithmic)
     if kind == "energy":
-        _, where = members(value, entry, "kind", "state")
-        return Perturbation(kind, place(where, f"{entry}.state", network.states), "", False)
+        return Perturbation(kind, place(where, entry, network.states))
     if kind == "bundle":
-        _, where = members(value, entry, "kind", "transitions")
-        return Perturbation(kind, -1, "", False,
-                            places(where, f"{entry}.transitions", network.transitions, 2))
-    finite = ("amount",) * (kind == "finite-barrier")
-    _, where, *amount = members(value, entry, "kind", "transition", *finite)
-    e = place(where, f"{entry}.transition", network.transitions)
-    return Perturbation(kind, e, "", False, (e,), read(amount[0], f"{entry}.amount",
-                                                       network.positive) if finite else None)
+        return Perturbation(kind, -1, places(where, entry, network.transitions, 2))
+    e = place(where, entry, network.transitions)
+    amount = read(more[0], "perturbation.amount", network.positive) if more else None
+    return Perturbation(kind, e, (e,), amount=amount)
 
 
-def _path(value: object, network: Network) -> tuple[int, int]:
-    start, goal = members(value, "path", "from", "to")
-    return read_ends(start, goal, "path", network)
-
-
-def read_ends(start: object, goal: object, entry: str, network: Network) -> tuple[int, int]:
+def read_ends(ends: list[object], entry: str, network: Network) -> tuple[int, int]:
     """Return the ends of a path, which differ."""
-    first = place(start, f"{entry}.from", network.states)
-    last = place(goal, f"{entry}.to", network.states)
+    first, last = (place(end, f"{entry}.{key}", network.states)
+                   for end, key in zip(ends, ("from", "to"), strict=True))
     if first == last:
         raise malformed(f"{entry}.to", f"another state than {entry}.from", network.states[last])
     return first, last
 
 
-def _claim(called: object, parts: object, entry: str, network: Network, known: tuple[str, ...],
-           taken: set[str]) -> Claim:
-    called = choice(called, f"{entry}.name", *known)
-    if called in taken:
-        raise malformed(f"{entry}.name", "each claim once", called)
-    if (called == "parameter") != (parts is not None):
+def _claim(value: object, entry: str, record: Record, proof: bool) -> Claim:
+    called, parts, *more = members(value, entry, "name", "parts",
+                                   *(() if proof else ("holds", "worst")))
+    known = {*CURRENT, *(one for names in APPLIES.values() for one in names)}
+    title = choice(called, f"{entry}.name", *(known if proof else known - {*PROVEN}))
+    if title in [claim.name for claim in record.claims]:
+        raise malformed(f"{entry}.name", "each claim once", title)
+    if (title == "parameter") != (parts is not None):
         raise malformed(f"{entry}.parts", "null except for parameter", parts)
-    return Claim(called, None if parts is None else _parts(parts, f"{entry}.parts", network))
+    return Claim(entry, title, {} if parts is None else
+                 _parts(parts, f"{entry}.parts", record.network), *more)
 
 
-def _worst(value: object, entry: str, network: Network, taken: set[str]) -> Worst:
-    called, parts, holds, worst = members(value, entry, "name", "parts", "holds", "worst")
-    claim = _claim(called, parts, entry, network, POINTS, taken)
-    at, left, right, ratio = members(worst, f"{entry}.worst", "point", "left", "right", "ratio")
-    terms: list[tuple[Fraction, Fraction | None]] = []
-    for i, term in enumerate(items(right, f"{entry}.worst.right", MAX_TRANSITIONS + 1)):
-        factor, g = members(term, f"{entry}.worst.right[{i}]", "factor", "g")
-        terms.append((fraction(factor, f"{entry}.worst.right[{i}].factor"),
-                      None if g is None else fraction(g, f"{entry}.worst.right[{i}].g")))
-    return Worst(claim.name, claim.parts, whole(holds, f"{entry}.holds"),
-                 whole(at, f"{entry}.worst.point"), fraction(left, f"{entry}.worst.left"), terms,
-                 fraction(ratio, f"{entry}.worst.ratio"))
-
-
-def _parts(value: object, entry: str, network: Network) -> tuple[dict[int, Expression], ...]:
-    keys = ("energies", "barriers", "singles")
-    found = []
-    for key, given in zip(keys, members(value, entry, *keys), strict=True):
-        known = network.states if key == "energies" else network.transitions
+def _parts(value: object, entry: str, network: Network) -> dict[str, dict[int, Expression]]:
+    found = {}
+    for key, given in zip(PARTS, members(value, entry, *PARTS), strict=True):
         if type(given) is not dict:
             raise malformed(f"{entry}.{key}", "an object", given)
-        found.append({place(one, f"{entry}.{key}", known):
+        found[key] = {place(one, f"{entry}.{key}", network.names(key)):
                       read(what, f"{entry}.{key}.{one}", network.positive)
-                      for one, what in given.items()})
-    return tuple(found)
+                      for one, what in given.items()}
+    return found
+
+
+def _check_applies(record: Record) -> None:
+    """Check that the claims are about this target and perturbation, and observables unchanged."""
+    moved, target = record.perturbation, record.target
+    known = APPLIES[moved.kind if moved else "path"]
+    if target and moved:
+        if target.kind == "current":
+            known = CURRENT
+            if moved.kind not in ("barrier", "drive") or moved.place != target.place:
+                raise invalid("perturbation", "a barrier or drive of the transition of the current",
+                              moved.kind)
+        if moved.kind in HIGHER and target.kind != "log-ratio":
+            raise invalid("target.kind", f"log-ratio for {moved.kind}", target.kind)
+        for entry, side in target.sides():
+            for state, one in zip(record.network.states, side, strict=True):
+                if moved.symbol in one.symbols:
+                    raise invalid(f"{entry}.{state}", "no symbol that is the perturbation",
+                                  one.text[:80])
+    for claim in record.claims:
+        if claim.name not in known:
+            raise invalid(f"{claim.entry}.name", "one of " + ", ".join(known), claim.name)
+        if target and claim.name.startswith(("energy-covariance", "splitting")) and not (
+                target.kind == "mean" or constant(target.above) or constant(target.below)):
+            raise invalid(f"{claim.entry}.name", "above or below the same for every state",
+                          claim.name)
+
+
+def constant(side: list[Expression]) -> bool:
+    """Has an observable the same text for every state?"""
+    return len({one.text for one in side}) == 1

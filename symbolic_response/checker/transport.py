@@ -3,33 +3,33 @@
 from __future__ import annotations
 
 from .network import Graph, Path
-from .reading import invalid, items, malformed, members, numbers, pair, places, whole
+from .reading import invalid, items, malformed, members, numbers, places, whole
 from .record import Network
 from .trees import Polynomial, Polynomials
 
 MAX_MOVES = 1_000_000  # of a pair
 
 
-def check_transport(trees: Polynomials, network: Network, values: list[object],
-                    entry: str) -> tuple[int, ...]:
+def check_transport(trees: Polynomials, network: Network, values: dict[str, object],
+                    entry: str) -> list[int]:
     """Check a proof, and return the transitions it is about."""
     graph = trees.graph
-    chosen = places(values[0], f"{entry}.transitions", network.transitions, 1)
+    chosen = places(values["transitions"], f"{entry}.transitions", network.transitions, 1)
     mask = sum(1 << e for e in chosen)
     uses = [(one & mask).bit_count() for one in trees.masks]
     if max(uses) > min(uses) + 1:
         raise invalid(f"{entry}.transitions", "trees that use r or r + 1 of them",
                       f"{min(uses)} to {max(uses)}")
     cycles = [_cycle(one, f"{entry}.cycles[{k}]", graph, set(chosen))
-              for k, one in enumerate(items(values[1], f"{entry}.cycles", MAX_MOVES, 0))]
+              for k, one in enumerate(items(values["cycles"], f"{entry}.cycles", MAX_MOVES, 0))]
     parts = [[trees.there(x for x, use in zip(trees.directed(k), uses, strict=True)
                           if use == min(uses) + more) for more in (0, 1)]
              for k in range(graph.states)]
     missing = {(i, j) for j in range(graph.states) for i in range(j)}
-    for k, one in enumerate(items(values[2], f"{entry}.pairs", MAX_MOVES, 0)):
+    for k, one in enumerate(items(values["pairs"], f"{entry}.pairs", MAX_MOVES, 0)):
         here = f"{entry}.pairs[{k}]"
         states, moves = members(one, here, "states", "moves")
-        i, j = places(pair(states, f"{here}.states"), f"{here}.states", network.states, 2)
+        i, j = places(states, f"{here}.states", network.states, 2, 2)
         if (i, j) not in missing:
             raise invalid(f"{here}.states", "each pair once", states)
         missing.remove((i, j))
@@ -37,11 +37,11 @@ def check_transport(trees: Polynomials, network: Network, values: list[object],
                     [parts[i][0], parts[j][1]])
     if missing:
         raise invalid(f"{entry}.pairs", "every pair of states", f"{len(missing)} missing")
-    return chosen
+    return list(chosen)
 
 
 def _cycle(value: object, entry: str, graph: Graph, chosen: set[int]) -> Path:
-    rates = numbers(value, entry, 2 * len(graph.ends), 2)
+    rates = numbers(value, entry, len(graph.every), 2)
     steps = [graph.step(i) for i in rates]
     joined = all(a[1] == b[0] for a, b in zip(steps, [*steps[1:], steps[0]], strict=True))
     inside = {i >> 1 in chosen for i in rates}
@@ -61,15 +61,11 @@ def _check_pair(trees: Polynomials, cycles: list[Path], moves: object, entry: st
     for k, move in enumerate(items(moves, f"{entry}.moves", MAX_MOVES, 0)):
         here = f"{entry}.moves[{k}]"
         which, rest, times = members(move, here, "cycle", "rest", "times")
-        place, number = whole(which, f"{here}.cycle"), whole(times, f"{here}.times")
-        if place >= len(cycles):
-            raise malformed(f"{here}.cycle", f"an integer below {len(cycles)}", which)
-        cycle = cycles[place]
-        others = numbers(rest, f"{here}.rest", 2 * len(graph.ends), 0)
+        cycle = cycles[whole(which, f"{here}.cycle", len(cycles))]
+        others = numbers(rest, f"{here}.rest", len(graph.every), 0)
         if list(others) != sorted(others):
             raise malformed(f"{here}.rest", "a sorted list", rest)
-        if number < 1:
-            raise malformed(f"{here}.times", "an integer from 1", times)
+        number = whole(times, f"{here}.times", least=1)
         graph.work.charge(20 * len(others), 0)
         if len(cycle) + len(others) != 2 * (graph.states - 1):
             raise invalid(f"{here}.rest", "as many rates as two trees have, with the cycle", rest)
@@ -78,6 +74,5 @@ def _check_pair(trees: Polynomials, cycles: list[Path], moves: object, entry: st
             total[monomial] = total.get(monomial, 0) - number
             if total[monomial] < 0:
                 raise invalid(here, "no more than the products of trees have", "more")
-    if any(total[x] != other.get(x, 0) for total, other in ((left, right), (right, left))
-           for x in total):
+    if not trees.equal([[left]], [[right]]):
         raise invalid(f"{entry}.moves", "the same rest of both products", "others")

@@ -6,16 +6,10 @@ from collections.abc import Sequence
 from fractions import Fraction
 from math import gcd, lcm
 
-from .network import Graph, determinant, generator, minor
+from .network import Graph
 from .reading import too_large
 
 MAX_POWER = 64
-
-
-def number_of_trees(graph: Graph, without: int = -1, roots: int = 1) -> int:
-    """Return the number of spanning forests, directions left aside, with one root a tree."""
-    matrix = generator(graph.states, graph.ends, [1] * (2 * len(graph.ends)), without)
-    return int(determinant(minor(matrix, roots), graph.work))
 
 
 def extremes(graph: Graph, v: Sequence[Fraction]) -> tuple[Fraction, Fraction]:
@@ -23,17 +17,17 @@ def extremes(graph: Graph, v: Sequence[Fraction]) -> tuple[Fraction, Fraction]:
 
     All v are brought to integers from 0: every tree has as many rates, and shifts alike.
     """
-    rates, steps = graph.rates(), graph.states - 1
+    rates, steps = graph.rates, graph.states - 1
     least, scale = min(v[i] for i in rates), lcm(*(v[i].denominator for i in rates))
     powers = {i: int((v[i] - least) * scale) for i in rates}
     unit = gcd(*powers.values()) or 1
     if max(powers.values()) > MAX_POWER * unit:
         raise too_large("network.transitions", MAX_POWER, "more different changes of rates")
-    digit = number_of_trees(graph).bit_length()
+    digit = graph.number_of_trees().bit_length()
     weights = [1 << digit * (powers[i] // unit) if i in powers else 0 for i in range(len(v))]
-    matrix, sums = generator(graph.states, graph.ends, weights), []
+    sums = []
     for root in range(graph.states):
-        found = int(determinant(minor(matrix, 1 << root), graph.work))
+        found = int(graph.forests(weights, 1 << root))
         lowest = (found & -found).bit_length() - 1
         sums += [lowest // digit, (found.bit_length() - 1) // digit]
     return (min(sums) * Fraction(unit, scale) + least * steps,
