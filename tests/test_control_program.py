@@ -1,4 +1,4 @@
-"""The steepness program. Oracle: every piece of the family written out, solved in floating point."""
+"""The steepness program. Oracle: every piece of the family written out, in floating point."""
 
 import random
 import time

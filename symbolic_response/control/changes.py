@@ -5,7 +5,7 @@ from __future__ import annotations
 from dataclasses import dataclass
 from fractions import Fraction
 
-from symbolic_response.errors import EvaluationError
+from symbolic_response.expressions.derivative import by_symbol
 from symbolic_response.expressions.normal_form import normal_form
 from symbolic_response.expressions.ring import Domain
 from symbolic_response.expressions.tree import (
@@ -13,10 +13,11 @@ from symbolic_response.expressions.tree import (
     Expression,
     Number,
     add,
+    divide,
     multiply,
     negate,
     number,
-    power,
+    symbols_of,
 )
 from symbolic_response.network.quantities import Perturbation
 from symbolic_response.response.analysis import Analysis
@@ -46,7 +47,7 @@ class Change:
 def change_of(analysis: Analysis, by: Perturbation) -> Change:
     """Return the changes of ln of the directed rates with a parameter.
 
-    A change that is a number plus or minus a multiple of one found before (k1/(k1 + k2*c) beside
+    A change that is a number plus a multiple of one found before (k1/(k1 + k2*c) beside
     k2*c/(k1 + k2*c)) is written with that one. Every change is checked symbolically.
     """
     found = rate_changes(by, analysis)
@@ -79,14 +80,16 @@ def _vector(entries: dict[int, Fraction], analysis: Analysis) -> Vector:
 def _in_terms_of(
     change: Expression, known: Expression, domain: Domain
 ) -> tuple[Fraction, Fraction] | None:
-    """Return (a, b) with change = a + b * known for b = 1, -1 or a = 0, None if there are none."""
-    for factor in (Fraction(1), Fraction(-1)):
-        rest = add([change, multiply([number(-factor), known])])
-        constant = normal_form(rest, domain).as_fraction()
-        if constant is not None:
-            return constant, factor
-    try:
-        ratio = normal_form(multiply([change, power(known, -1)]), domain).as_fraction()
-    except EvaluationError:
+    """Return (a, b) with change = a + b * known, None if there are no such numbers.
+
+    b is the ratio of the derivatives by a symbol of ``known``, or of both themselves.
+    """
+    symbols = [name for name in domain.names if name in symbols_of(known)]
+    sides = ((by_symbol(change, symbols[0]), by_symbol(known, symbols[0])) if symbols
+             else (change, known))
+    factor = normal_form(divide(*sides), domain).as_fraction()
+    if factor is None:
         return None
-    return None if ratio is None else (Fraction(0), ratio)
+    rest = add([change, multiply([number(-factor), known])])
+    constant = normal_form(rest, domain).as_fraction()
+    return None if constant is None else (constant, factor)

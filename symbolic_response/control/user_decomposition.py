@@ -124,7 +124,7 @@ class _Reader:
 
     def rate(self, name: str) -> int:
         """Return the place of a directed rate, written ``forward[bind]``."""
-        read = read_quantity(name, self.network)
+        read = read_quantity(name, self.network) if "[" in name else None
         if not isinstance(read, DirectedRate):
             raise QuantityError(f"{shown(name)} is not a rate; write forward[...] or backward[...]")
         place = self.analysis.rates.place(read.transition, read.backward)
