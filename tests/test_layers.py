@@ -10,7 +10,7 @@ import pytest
 import symbolic_response
 
 ROOT = Path(symbolic_response.__file__).parent
-STAGES = ["checker", "errors", "expressions", "network", "topology", "algebra", "response",
+STAGES = ["checker", "errors", "files", "expressions", "network", "topology", "algebra", "response",
           "bounds", "certificates", "control", "figures", "appendix", "progress", "cli", "__main__"]
 SHELL = {"__init__"}  # the lazy list of public names reaches everything
 MAX_LINES = 400

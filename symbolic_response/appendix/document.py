@@ -12,7 +12,6 @@ from symbolic_response.appendix.bounds_section import bounds_section
 from symbolic_response.appendix.certificates_section import certificates_section
 from symbolic_response.appendix.cycles_section import cycles_section
 from symbolic_response.appendix.escape import escaped
-from symbolic_response.appendix.files import write_files
 from symbolic_response.appendix.model_section import model_section
 from symbolic_response.appendix.named_sums import NamedSums
 from symbolic_response.appendix.paper import Paper
@@ -20,8 +19,8 @@ from symbolic_response.appendix.proofs_section import proofs_section
 from symbolic_response.appendix.requests import extras, requested
 from symbolic_response.appendix.results import results_section
 from symbolic_response.appendix.trees_section import trees_section
-from symbolic_response.certificates.record import check_output
 from symbolic_response.expressions.tree import Expression
+from symbolic_response.files import check_output, write_files
 from symbolic_response.network.model import Network
 from symbolic_response.response.analysis import Analysis
 from symbolic_response.response.quantity_latex import notation_of

@@ -2,10 +2,8 @@
 
 from __future__ import annotations
 
-import contextlib
 import json
 import os
-import tempfile
 from collections.abc import Sequence
 from fractions import Fraction
 from pathlib import Path
@@ -20,7 +18,7 @@ from symbolic_response.certificates.points import Certified, PointCertificate
 from symbolic_response.certificates.proofs.prove import Proved, innermost
 from symbolic_response.certificates.proofs.record import proof_data, trees_data
 from symbolic_response.certificates.sampling import RULE
-from symbolic_response.errors import OutputError, QuantityError
+from symbolic_response.errors import QuantityError
 from symbolic_response.expressions.text import expression_text, fraction_text
 from symbolic_response.expressions.tree import (
     ZERO,
@@ -32,6 +30,7 @@ from symbolic_response.expressions.tree import (
     power,
     rebuild,
 )
+from symbolic_response.files import write_files
 from symbolic_response.network.model import Network
 from symbolic_response.network.quantities import (
     BarrierOf,
@@ -236,36 +235,4 @@ def write_certificate(
     certificate: Certificate, analysis: Analysis, path: str | os.PathLike[str]
 ) -> None:
     """Write the record to a file, whole or not at all; OutputError where that cannot be done."""
-    target = Path(path)
-    check_output(path)
-    text = record_text(record_of(certificate, analysis))
-    try:
-        handle, temporary = tempfile.mkstemp(dir=target.parent, prefix=f".{target.name}.")
-    except OSError as error:
-        raise _unwritable(target, error) from None
-    try:
-        with os.fdopen(handle, "w", encoding="utf-8") as file:
-            file.write(text)
-        mask = os.umask(0)
-        os.umask(mask)
-        os.chmod(temporary, 0o666 & ~mask)
-        os.replace(temporary, target)
-    except BaseException as error:
-        with contextlib.suppress(OSError):
-            os.unlink(temporary)
-        if isinstance(error, OSError):
-            raise _unwritable(target, error) from None
-        raise
-
-
-def check_output(path: str | os.PathLike[str]) -> None:
-    """Raise OutputError where a file of that name cannot be made."""
-    target = Path(path)
-    if target.is_dir():
-        raise OutputError(f"{str(target)!r} is a folder; give the name of a file")
-    if not target.parent.is_dir():
-        raise OutputError(f"there is no folder {str(target.parent)!r}; make it first")
-
-
-def _unwritable(target: Path, error: OSError) -> OutputError:
-    return OutputError(f"cannot write {str(target)!r}: {error.strerror}")
+    write_files({Path(path): record_text(record_of(certificate, analysis))})

@@ -14,6 +14,7 @@ from typing import Any
 import click
 
 from symbolic_response.cli.bounding import bound, certify, recheck
+from symbolic_response.cli.controlling import cloud, curve, steepness
 from symbolic_response.cli.deriving import appendix, derive, survey
 from symbolic_response.cli.status import INTERRUPTED, REFUTED, UNDECIDED, UNUSABLE, fail
 from symbolic_response.errors import (
@@ -88,5 +89,5 @@ def main() -> None:
     """
 
 
-for _verb in (survey, derive, bound, certify, recheck, appendix):
+for _verb in (survey, derive, bound, certify, recheck, steepness, curve, cloud, appendix):
     main.add_command(_verb)

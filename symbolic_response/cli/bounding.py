@@ -104,8 +104,9 @@ def certify(
       symbolic-response certify net.toml "d p[A] / d barrier[bind]" -o bind.json
     """
     from symbolic_response.certificates.certify import certify as make_certificate
-    from symbolic_response.certificates.record import check_output, write_certificate
+    from symbolic_response.certificates.record import write_certificate
     from symbolic_response.certificates.report import certificate_data, certificate_text
+    from symbolic_response.files import check_output
 
     if output is not None:
         check_output(output)

@@ -13,8 +13,8 @@ from pathlib import Path
 from matplotlib import style
 from matplotlib.figure import Figure
 
-from symbolic_response.certificates.record import check_output
 from symbolic_response.errors import OutputError
+from symbolic_response.files import check_output
 
 METADATA: dict[str, dict[str, None]] = {
     ".pdf": {"Creator": None, "Producer": None, "CreationDate": None},

@@ -8,19 +8,27 @@ import tempfile
 from collections.abc import Mapping
 from pathlib import Path
 
-from symbolic_response.certificates.record import check_output
 from symbolic_response.errors import OutputError
 
 
-def write_files(texts: Mapping[Path, str]) -> None:
-    """Write texts to files in UTF-8; OutputError where one cannot be written, then none is."""
-    for target in texts:
+def check_output(path: str | os.PathLike[str]) -> None:
+    """Raise OutputError where a file of that name cannot be made."""
+    target = Path(path)
+    if target.is_dir():
+        raise OutputError(f"{str(target)!r} is a folder; give the name of a file")
+    if not target.parent.is_dir():
+        raise OutputError(f"there is no folder {str(target.parent)!r}; make it first")
+
+
+def write_files(contents: Mapping[Path, str | bytes]) -> None:
+    """Write files, texts in UTF-8; OutputError where one cannot be written, then none is."""
+    for target in contents:
         check_output(target)
     made: dict[Path, str] = {}
-    target = next(iter(texts))
+    target = next(iter(contents))
     try:
-        for target, text in texts.items():
-            made[target] = _temporary(target, text)
+        for target, content in contents.items():
+            made[target] = _temporary(target, content)
         for target, temporary in made.items():
             os.replace(temporary, target)
     except BaseException as error:
@@ -32,12 +40,12 @@ def write_files(texts: Mapping[Path, str]) -> None:
         raise
 
 
-def _temporary(target: Path, text: str) -> str:
-    """Write a text beside its target, and return where; nothing is left behind on failure."""
+def _temporary(target: Path, content: str | bytes) -> str:
+    """Write a file beside its target, and return where; nothing is left behind on failure."""
     handle, temporary = tempfile.mkstemp(dir=target.parent, prefix=f".{target.name}.")
     try:
-        with os.fdopen(handle, "w", encoding="utf-8") as file:
-            file.write(text)
+        with os.fdopen(handle, "wb") as file:
+            file.write(content.encode() if isinstance(content, str) else content)
         mask = os.umask(0)
         os.umask(mask)
         os.chmod(temporary, 0o666 & ~mask)

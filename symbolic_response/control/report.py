@@ -1,0 +1,135 @@
+"""What ``steepness`` says, for people and as data."""
+
+from __future__ import annotations
+
+from fractions import Fraction
+
+from symbolic_response.control.decomposition import Decomposition
+from symbolic_response.control.extrema import Maximum
+from symbolic_response.control.result import Steepness
+from symbolic_response.control.steepness import Reading
+from symbolic_response.network.model import Network
+
+MOST_CYCLES = 6
+
+
+def steepness_text(result: Steepness) -> str:
+    """Return the result for people to read."""
+    network, asked = result.network, result.asked
+    by = f"ln {asked.symbol}" if asked.by.logarithmic else asked.symbol
+    lines = [f"q = {scaled_text(result)}: abs(d q / d {by}) <= H*q*(1 - q) for all rates",
+             "H is at most each of"]
+    lines += [f"  {form.text(network)}" for form in result.forms]
+    for part, cycles in result.bundles.items():
+        names = ", ".join(network.transitions[e].name for e in part)
+        lines.append(f"t[{names}] = tanh(F/4), F the largest force of {len(cycles)} cycles:")
+        lines += [f"    {path}   {force}" for path, force in cycles[:MOST_CYCLES]]
+        if len(cycles) > MOST_CYCLES:
+            lines.append(f"    and {len(cycles) - MOST_CYCLES} more")
+    ends = result.at_equal(Fraction(0)), result.at_equal(Fraction(1))
+    if None not in ends:
+        lines.append(f"without forces H = {ends[0]}; however strong the driving H <= {ends[1]}")
+    lines.append(f"family: {result.family.words()}")
+    lines.append(f"d/d {by} in fewest pieces: {pieces_text(result.simplest, network)}")
+    lines += [f"that of the file, checked: {pieces_text(own, network)}" for own in result.own]
+    lines += _reading_lines(result.reading)
+    return "\n".join(lines + _actual_lines(result, by))
+
+
+def scaled_text(result: Steepness) -> str:
+    """Return the observable brought to 0 .. 1."""
+    if result.range is None:
+        return result.asked.text
+    low, high = result.range
+    inner = result.asked.text if low == 0 else f"({result.asked.text} - ({low}))"
+    return inner if high - low == 1 else f"{inner}/({high - low})"
+
+
+def _reading_lines(reading: Reading | None) -> list[str]:
+    if reading is None:
+        return []
+    if reading.t is None:
+        return [f"the measured steepness: {reading.verdict}"]
+    force = "infinite" if reading.force is None else f"{reading.force[0]} or more"
+    return [f"the measured steepness: some t at least {reading.t}, so a cycle force of {force}"]
+
+
+def _actual_lines(result: Steepness, by: str) -> list[str]:
+    if result.actual is None:
+        return [f"with values for {', '.join(result.missing)} the actual steepness is found too"]
+    actual = result.actual
+    return [f"q = {actual.function.text()}",
+            f"d q / d {by} = {actual.sensitivity.text()}",
+            f"largest abs(d q / d {by}): {maximum_text(actual.steepest)}",
+            f"largest abs(d logit q / d {by}): {maximum_text(actual.largest)}"]
+
+
+def maximum_text(found: Maximum) -> str:
+    """Return a maximum and where it is."""
+    value = str(found.exact_value) if found.exact_value is not None else (
+        f"about {float(found.value[0]):.12g}")
+    if found.constant:
+        return f"{value}, constant"
+    places = [f"{float(place.x[0]):.12g}" if place.x else "a limit" for place in found.places]
+    return f"{value} at {', '.join(places)}"
+
+
+def pieces_text(pieces: Decomposition, network: Network) -> str:
+    """Return the pieces of a change of the rates in one line."""
+    data = pieces.data(network)
+    found: list[str] = []
+    for kind, name in (("energies", "energy"), ("drives", "drive")):
+        listed = data[kind]
+        assert isinstance(listed, dict)
+        found += [f"{amount} {name}[{key}]" for key, amount in listed.items()]
+    for kind, key in (("bundles", "transitions"), ("directed", "rates")):
+        listed = data[kind]
+        assert isinstance(listed, list)
+        found += [f"{each['amount']} of all rates of {', '.join(each[key])}" if kind == "bundles"
+                  else f"{each['amount']} of {', '.join(each[key])}" for each in listed]
+    return " + ".join(found) or "nothing"
+
+
+def steepness_data(result: Steepness) -> dict[str, object]:
+    """Return the result as plain data for JSON."""
+    network = result.network
+    ends = [result.at_equal(Fraction(t)) for t in (0, 1)]
+    reading, actual = result.reading, result.actual
+    return {
+        "network": network.title,
+        "observable": result.asked.text,
+        "parameter": result.asked.symbol,
+        "logarithmic": result.asked.by.logarithmic,
+        "range": None if result.range is None else [str(end) for end in result.range],
+        "family": result.family.data(),
+        "forms": [{"text": form.text(network), "pieces": form.decomposition.data(network)}
+                  for form in result.forms],
+        "bundles": [
+            {"transitions": [network.transitions[e].name for e in part],
+             "cycles": [{"cycle": path, "force": force} for path, force in cycles]}
+            for part, cycles in result.bundles.items()
+        ],
+        "without_forces": None if ends[0] is None else str(ends[0]),
+        "with_any_forces": None if ends[1] is None else str(ends[1]),
+        "simplest": result.simplest.data(network),
+        "own": [own.data(network) for own in result.own],
+        "reading": None if reading is None else {
+            "verdict": reading.verdict, "t": None if reading.t is None else str(reading.t),
+            "force": None if reading.force is None else list(reading.force)},
+        "missing": list(result.missing),
+        "function": None if actual is None else actual.function.text(),
+        "sensitivity": None if actual is None else actual.sensitivity.text(),
+        "exponent": None if actual is None else actual.exponent.text(),
+        "steepest": None if actual is None else _maximum_data(actual.steepest),
+        "largest_exponent": None if actual is None else _maximum_data(actual.largest),
+    }
+
+
+def _maximum_data(found: Maximum) -> dict[str, object]:
+    return {
+        "value": None if found.exact_value is None else str(found.exact_value),
+        "enclosure": list(found.value),
+        "attained": found.attained,
+        "places": [{"kind": place.kind, "x": None if place.x is None else list(place.x)}
+                   for place in found.places],
+    }

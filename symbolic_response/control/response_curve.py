@@ -1,0 +1,109 @@
+"""The response curve of an observable in one parameter, with its limits at every point."""
+
+from __future__ import annotations
+
+from collections.abc import Callable, Mapping, Sequence
+from fractions import Fraction
+
+from symbolic_response.control.asked import Asked, asked_of, observable_values, rescaled
+from symbolic_response.control.at_points import Limit, Place, limit_at
+from symbolic_response.control.covariances import observable_limits
+from symbolic_response.control.curve_data import CurveData, CurvePoint
+from symbolic_response.control.decomposition import LinearForm
+from symbolic_response.control.family import Family, family_of
+from symbolic_response.control.function import curve, function_of
+from symbolic_response.control.steepness import forms
+from symbolic_response.errors import EvaluationError
+from symbolic_response.expressions.tree import Expression
+from symbolic_response.network.model import Network
+from symbolic_response.response.analysis import Analysis, as_analysis
+from symbolic_response.response.closed_form import symbol_names
+from symbolic_response.response.deriving import Given
+from symbolic_response.response.quantity_latex import notation_of, quantity_in
+
+COUNT = 200
+Step = Callable[[int, int], None]
+
+
+def response_curve(
+    subject: Network | Analysis,
+    observable: str,
+    parameter: str,
+    at: Mapping[str, Given] | None = None,
+    *,
+    low: Given,
+    high: Given,
+    count: int = COUNT,
+    progress: Step | None = None,
+) -> CurveData:
+    """Return ``count`` exact points of an observable between two values of a parameter.
+
+    At each of them the sensitivity, H and the finer limit by covariances, all exact or rounded
+    upwards. ``at``: all other symbols. Points lie even in ln x where x is positive. Raises
+    QuantityError, AssignmentError, EvaluationError (irrational values), SizeLimitError.
+    """
+    analysis = as_analysis(subject)
+    asked = asked_of(analysis, observable, parameter, at)
+    missing = asked.missing(analysis)
+    if missing:
+        raise EvaluationError(f"a curve needs every other symbol; {missing[0]} has no value: give"
+                              f" it one with --at {missing[0]}=VALUE")
+    values = observable_values(asked)
+    quantity, changed = rescaled(asked, values)
+    function = function_of(analysis, quantity, asked.symbol, asked.values)
+    slope = function.sensitivity()
+    spacing = "log" if asked.by.logarithmic else "linear"
+    limits = _Limits(analysis, asked, values)
+    points = []
+    for done, place in enumerate(curve(function, low, high, count, spacing)):
+        x = place.x
+        limit, finer = limits.at({**asked.values, asked.symbol: x})
+        points.append(CurvePoint(x, place.value, slope.at_place(place.y), limit, finer))
+        if progress is not None:
+            progress(done + 1, count)
+    entry = next(e for e in analysis.network.symbols if e.name == asked.symbol)
+    return CurveData(
+        asked.symbol, symbol_names(analysis.network)[asked.symbol], asked.text,
+        quantity_in(notation_of(analysis.network), asked.quantity), asked.by.logarithmic,
+        tuple(points),
+        entry.about, "", (min(values), max(values)) if changed else None, limits.without_forces,
+    )
+
+
+class _Limits:
+    """The limits at many points: the best of the forms, or the program where they depend on x."""
+
+    def __init__(self, analysis: Analysis, asked: Asked, values: Sequence[Fraction]) -> None:
+        self.analysis, self.asked = analysis, asked
+        low, high = min(values), max(values)
+        self.observable = [(value - low) / (high - low) for value in values]
+        self.family: Family = family_of(analysis)
+        self.forms = forms(analysis, asked.by, self.family)
+        self.fixed = all(form.numbers() is not None for form in self.forms)
+
+    @property
+    def without_forces(self) -> Fraction | None:
+        """H at zero force where it is one number."""
+        if not self.fixed:
+            return None
+        return min(_constant(form) for form in self.forms)
+
+    def at(self, values: dict[str, Expression]) -> tuple[Fraction, Fraction]:
+        """Return H and the finer limit on the sensitivity at a point."""
+        place = Place(self.analysis, values)
+        limit = self._best(place) if self.fixed else limit_at(
+            self.analysis, self.asked.by, place, self.family)
+        return limit.high, observable_limits(place, limit, self.observable).covariance
+
+    def _best(self, place: Place) -> Limit:
+        bounds = [place.form(form) for form in self.forms]
+        best = min(range(len(bounds)), key=lambda k: bounds[k][1])
+        t = tuple((part, place.tanh(part)) for part, _ in self.forms[best].slopes)
+        return Limit(bounds[best][0], bounds[best][1], t, self.forms[best].decomposition, (),
+                     self.family, Fraction(0))
+
+
+def _constant(form: LinearForm) -> Fraction:
+    parts = form.numbers()
+    assert parts is not None
+    return parts[0]
