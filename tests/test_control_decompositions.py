@@ -194,7 +194,7 @@ def test_a_set_of_rates_of_several_states(analysis: Analysis) -> None:
 def test_amounts_may_hold_symbols(analysis: Analysis) -> None:
     entry = {"energies": {"A": "q/(1 + q)", "B": "0"}, "directed": [
         {"rates": ["forward[bind]", "backward[tail]"], "amount": "-q/(1 + q)"}],
-        "bundles": [{"transitions": ["flip"], "amount": "1"}, {"transitions": ["bind"], "amount": 1},
+        "bundles": [{"transitions": ["flip"], "amount": 1}, {"transitions": ["bind"], "amount": 1},
                     {"transitions": ["tail"], "amount": 1}],
         "drives": {"tail": "2"}}
     with pytest.raises(DocumentError, match=r"d ln\(forward\[tail\]\) / d ln c: they give"):
