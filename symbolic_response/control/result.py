@@ -17,12 +17,19 @@ from symbolic_response.control.function import function_of
 from symbolic_response.control.rational import RationalFunction
 from symbolic_response.control.separations import Part
 from symbolic_response.control.steepness import Reading, forms, read_backwards
-from symbolic_response.control.user_decomposition import user_decomposition
+from symbolic_response.control.user_decomposition import (
+    PIECES,
+    parameter_of,
+    user_decomposition,
+)
 from symbolic_response.network.model import Network
 from symbolic_response.response.analysis import Analysis, as_analysis
 from symbolic_response.response.deriving import Given
 from symbolic_response.response.forces import force_of
 from symbolic_response.response.survey import cycle_path, force_text
+
+ALSO = ("observables", "at", "from", "to", "points")
+"""Keys of a ``[[control]]`` entry that say what is followed, and where; see the appendix."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -118,9 +125,16 @@ def _actual(function: RationalFunction, low: Given | None, high: Given | None) -
 
 def _own(analysis: Analysis, asked: Asked) -> tuple[Decomposition, ...]:
     """Return the decompositions that the file gives for this parameter, each checked."""
-    names = {asked.symbol, f"ln {asked.symbol}"}
-    return tuple(user_decomposition(analysis, asked.by, entry)
-                 for entry in analysis.network.control if entry.get("parameter") in names)
+    network = analysis.network
+    found = []
+    for ordinal, entry in enumerate(network.control):
+        place = ("control", ordinal)
+        by = parameter_of(entry, network, place)
+        if by.name == asked.symbol and any(key in entry for key in PIECES):
+            made = user_decomposition(analysis, by, entry, place, ALSO)
+            if by == asked.by:
+                found.append(made)
+    return tuple(found)
 
 
 def _bundles(
