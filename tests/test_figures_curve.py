@@ -14,8 +14,15 @@ from matplotlib.axes import Axes
 from matplotlib.lines import Line2D
 
 from symbolic_response.appendix.escape import escaped
-from symbolic_response.control.curve_data import CurveData, balanced, saturating
+from symbolic_response.control.curve_data import (
+    CurveData,
+    CurvePoint,
+    balanced,
+    number_of,
+    saturating,
+)
 from symbolic_response.errors import OutputError
+from symbolic_response.expressions.reader import read_expression
 from symbolic_response.figures.curve import curve_figure, curve_plot
 from symbolic_response.figures.labels import can_be_set, math_label, text_label, with_about
 from symbolic_response.figures.pgfplots import PREAMBLE, curve_pgfplots
@@ -33,6 +40,9 @@ EXAMPLES = {
     "constant": constant(F(1, 5), h0=F(1)),
     "zero": constant(F(0)),
     "plain": hill(2, logarithmic=False),
+    "real": CurveData("E", "E", "p[A]", r"\pi_{A}", False, tuple(
+        CurvePoint(read_expression(f"{k}*ln(3/2)"), 1 / (1 + F(3, 2) ** k), F(-k * k, 100), F(2))
+        for k in range(-4, 5))),
 }
 
 
@@ -49,7 +59,7 @@ def test_the_lines_are_the_data(name: str) -> None:
     data = EXAMPLES[name]
     upper, lower = curve_plot(data).axes
     for line in (*lines(lower).values(), lines(upper)["exact"]):
-        assert list(line.get_xdata()) == [float(point.x) for point in data.points]
+        assert list(line.get_xdata()) == [number_of(point.x) for point in data.points]
     assert values(lines(upper)["exact"]) == [float(point.q) for point in data.points]
     assert values(lines(lower)["exact"]) == [float(abs(p.sensitivity)) for p in data.points]
     assert values(lines(lower)["steepness bound"]) == [
