@@ -46,24 +46,23 @@ def changed(moves: Moves) -> list[int]:
 
 def support(moves: Moves, graph: Graph, entry: str, where: str) -> Fraction:
     """Return m kappa; the rates that leave one state must change alike."""
-    leaving: dict[int, set[Fraction]] = {}
-    for i, move in enumerate(moves):
-        if move:
-            leaving.setdefault(graph.step(i)[0], set()).add(move)
-    sizes = {abs(move) for found in leaving.values() for move in found}
-    if len(sizes) > 1 or any(len(found) > 1 for found in leaving.values()):
-        raise invalid(entry, f"rates that change alike{where}",
-                      ", ".join(sorted(str(size) for size in sizes)[:4]))
-    return len(leaving) * (sizes.pop() if sizes else ZERO)
+    leaving = {(graph.step(i)[0], move) for i, move in enumerate(moves) if move}
+    states, sizes = {state for state, _ in leaving}, {abs(move) for _, move in leaving}
+    if len(sizes) > 1 or len(states) < len(leaving):
+        raise invalid(entry, f"rates that change alike{where}", _some(sizes))
+    return sum(sizes, ZERO) * len(states)
+
+
+def _some(values: set[Fraction]) -> str:
+    return ", ".join(sorted(map(str, values))[:4])
 
 
 def common(moves: Moves, entry: str, where: str) -> Fraction:
     """Return what the logarithms of all rates that change change by."""
     found = {move for move in moves if move}
     if len(found) > 1:
-        raise invalid(entry, f"rates that all change alike{where}",
-                      ", ".join(sorted(map(str, found))[:4]))
-    return found.pop() if found else ZERO
+        raise invalid(entry, f"rates that all change alike{where}", _some(found))
+    return sum(found, ZERO)
 
 
 def directed(moves: Moves, graph: Graph, entry: str, where: str) -> Fraction:

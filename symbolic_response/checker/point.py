@@ -3,8 +3,10 @@
 from __future__ import annotations
 
 import re
+from collections.abc import Callable
 from dataclasses import dataclass, field
 from fractions import Fraction
+from typing import Any
 
 from .changes import elementary
 from .expressions import ONE, ZERO, Dual, Expression, Inexact, bits, log, times
@@ -62,7 +64,10 @@ def solve_point(record: Record, k: int, graph: Graph) -> Solved:
     elif moved is not None and record.target is not None:
         elementary(made.moves, graph, moved)
         change = _derivative(made, graph, reduced)
-        _observe(made, record.target, record.network.states, graph.work)
+        made.above, made.below = (*observe(
+            record.target, record.network.states,
+            lambda one, entry: made.evaluate(one, entry, graph.work),
+            "no negative value", f" at {where}"), [], [])[:2]
         made.left = abs(_slope(made, record.target, graph, change))
     return made
 
@@ -115,19 +120,20 @@ def _derivative(made: Solved, graph: Graph, reduced: list[list[Fraction]]) -> li
     return [x - total * p for x, p in zip(change, made.p, strict=True)]
 
 
-def _observe(made: Solved, target: Target, states: list[str], work: Work) -> None:
-    """Evaluate the observables, and check their signs."""
-    values: list[list[Fraction]] = []
+def observe(target: Target, states: list[str], find: Callable[[Expression, str], Any],
+            expected: str, where: str) -> list[list[Any]]:
+    """Return what is found of each observable: of ratios not negative, and not all 0."""
+    values = []
     for entry, side in target.sides():
-        found = [made.evaluate(one, f"{entry}.{state}", work)
-                 for one, state in zip(side, states, strict=True)]
-        for value, state in zip(found, states, strict=True):
-            if target.kind != "mean" and value < 0:
-                raise invalid(f"{entry}.{state}", f"no negative value at {made.where}", value)
+        found = [find(one, f"{entry}.{state}") for one, state in zip(side, states, strict=True)]
+        for value, one, state in zip(found, side, states, strict=True):
+            if target.kind != "mean" and (value is None or value < 0):
+                raise invalid(f"{entry}.{state}", f"{expected}{where}",
+                              one.text[:80] if value is None else value)
         if target.kind != "mean" and not any(found):
-            raise invalid(entry, f"a value other than 0 at {made.where}", "0 for every state")
+            raise invalid(entry, f"a value other than 0{where}", "0 for every state")
         values.append(found)
-    made.above, made.below = (*values, [], [])[:2]
+    return values
 
 
 def _slope(made: Solved, target: Target, graph: Graph, change: list[Fraction]) -> Fraction:

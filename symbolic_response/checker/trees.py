@@ -61,8 +61,7 @@ class Polynomials:
         self.graph, self.masks, self.width = graph, masks, (2 * graph.states).bit_length()
         self.most = MAX_MEMORY // (1000 + 2 * self.width * len(graph.ends))
         self._absent = self.monomial(i for i in graph.every if not graph.can_run((i,)))
-        self.directed = cache(self._directed)
-        self._by_path, self._by_side = cache(self._beside_paths), cache(self._all_pairs)
+        self.directed, self._by_side = cache(self._directed), cache(self._all_pairs)
 
     def monomial(self, rates: Iterable[int]) -> int:
         """Return the product of rates."""
@@ -76,15 +75,20 @@ class Polynomials:
         """Return the sum of those monomials that have only rates that there are."""
         return {x: 1 for x in monomials if not x & self._absent}
 
+    def _beside(self, path: Path, root: int, without: int = -1) -> Polynomial:
+        """Return the sum over trees to a root that hold some rates, divided by these."""
+        self.graph.work.charge(len(self.masks), 0)
+        held = self.monomial(path)
+        return self.there(x - held for x, mask in zip(self.directed(root), self.masks, strict=True)
+                          if x & held == held and (without < 0 or not mask >> without & 1))
+
     def trees(self, root: int, without: int = -1) -> Polynomial:
         """Return the sum over spanning trees to a root that do not use a transition."""
-        return self.there(x for x, mask in zip(self.directed(root), self.masks, strict=True)
-                          if without < 0 or not mask >> without & 1)
+        return self._beside((), root, without)
 
     def using(self, rate: int, root: int) -> Polynomial:
         """Return the sum over spanning trees to a root that use a rate, divided by that rate."""
-        one = self.monomial([rate])
-        return self.there(x - one for x in self.directed(root) if x & one)
+        return self._beside((rate,), root)
 
     def walk(self, path: Path) -> Polynomial:
         """Return the product of the rates along a path."""
@@ -92,21 +96,7 @@ class Polynomials:
 
     def forests(self, path: Path, without: int = -1) -> Polynomial:
         """Return the sum over spanning forests that lead into a path, without a transition."""
-        start, goal = self.graph.step(path[0])[0], self.graph.step(path[-1])[1]
-        return self._by_path(start, goal, without).get(path, {})
-
-    def _beside_paths(self, start: int, goal: int, without: int) -> dict[Path, Polynomial]:
-        """Return what trees to a goal have beside the path from the start, by that path."""
-        found: dict[Path, Polynomial] = {}
-        for mask in self.masks:
-            if without < 0 or not mask >> without & 1:
-                rates, state, path = ahead(self.graph, mask, 1 << goal), start, []
-                while state != goal:
-                    path.append(rates.pop(state))
-                    state = self.graph.step(path[-1])[1]
-                found.setdefault(tuple(path), {}).update(
-                    self.there([self.monomial(rates.values())]))
-        return found
+        return self._beside(path, self.graph.step(path[-1])[1], without)
 
     def pairs(self, e: int, side: int) -> Polynomial:
         """Return T_S of transition e for a set S of states."""
