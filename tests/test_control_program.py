@@ -225,7 +225,9 @@ def test_degenerate_programs_end() -> None:
     costs = (F(-3, 4), F(150), F(-1, 50), F(6), F(0), F(0), F(0))
     for floating in (True, False):
         found = solve(LinearProgram(columns, costs, (F(0), F(0), F(1))), floating=floating)
-        assert found.value == F(-1, 20)
+        assert found.value == F(-1, 20) == found.dual[2]
+        for column, price in zip(columns, costs, strict=True):
+            assert sum(found.dual[row] * entry for row, entry in column.items()) <= price
     for signs in product((0, 1), repeat=3):
         flat = LinearProgram(({0: 1, 1: 1}, {1: 1, 2: 1}, {0: -1, 2: 1}, {2: 1}),
                              (F(1), F(1), F(1), F(2)), tuple(map(F, signs)))

@@ -15,7 +15,7 @@ from symbolic_response.control.at_points import Limit, Place
 from symbolic_response.control.changes import change_of
 from symbolic_response.control.covariances import observable_limits
 from symbolic_response.control.decomposition import LinearForm, linear_form
-from symbolic_response.control.family import family_of
+from symbolic_response.control.family import classes_of, family_of
 from symbolic_response.control.program import optimum
 from symbolic_response.control.steepness import (
     FORCE,
@@ -23,7 +23,6 @@ from symbolic_response.control.steepness import (
     NO_FORCE,
     Reading,
     breakpoints,
-    classes_of,
     forms,
     limit_at,
     read_backwards,

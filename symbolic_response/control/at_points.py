@@ -14,7 +14,7 @@ from symbolic_response.bounds.decide import tanh_bounds
 from symbolic_response.bounds.evaluate import ClaimPoint, IrrationalError
 from symbolic_response.control.changes import Vector, change_of
 from symbolic_response.control.decomposition import Decomposition, LinearForm, assembled
-from symbolic_response.control.family import Family, family_of
+from symbolic_response.control.family import Family, classes_of, family_of
 from symbolic_response.control.program import optimum
 from symbolic_response.control.separations import Part
 from symbolic_response.errors import UndecidedError
@@ -134,7 +134,9 @@ def limit_at(
         middle = low if low == high else _rounded((low + high) / 2, True)
         numbers = [x + middle * u for x, u in zip(numbers, vector, strict=True)]
         rest.append((max(high - middle, middle - low), vector))
-    t = [place.tanh(part) for part in family.bundles]
+    classes = classes_of(family, analysis)
+    first = dict(zip(reversed(classes), reversed(family.bundles), strict=True))
+    t = [place.tanh(first[c]) for c in classes]
     lower, upper = ([pair[side] for pair in t] for side in (0, 1))
     found = optimum(family, tuple(numbers), upper)
     least = found if lower == upper else optimum(family, tuple(numbers), lower)

@@ -98,3 +98,18 @@ def family_of(
     sources = tuple(graph.ends[e][1 if backward else 0] for e, backward in rates)
     return Family(graph.size, rates, sources, blocks(graph), found, complete,
                   tuple(range(len(graph.ends))), directed, single)
+
+
+def classes_of(family: Family, analysis: Analysis) -> tuple[int, ...]:
+    """Return a number for each bundle, the same for those with the same cycles.
+
+    The cycles with transitions inside and outside a bundle set its t.
+    """
+    cycles = [cycle.forward | cycle.backward for cycle in analysis.cycles]
+    numbers: dict[tuple[int, ...], int] = {}
+    found = []
+    for part in family.bundles:
+        mask = sum(1 << e for e in part)
+        key = tuple(i for i, cycle in enumerate(cycles) if cycle & mask and cycle & ~mask)
+        found.append(numbers.setdefault(key, len(numbers)))
+    return tuple(found)

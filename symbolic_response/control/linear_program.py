@@ -54,24 +54,8 @@ def solve(program: LinearProgram, *, floating: bool = True) -> Solution:
     for place, value in zip(basis, _basic(program, basis), strict=True):
         x[place] = _fraction(value)
     y = tuple(_fraction(value) for value in dual)
-    return _checked(program, Solution(
-        tuple(x), y, sum((a * b for a, b in zip(program.costs, x, strict=True)), Fraction(0))))
-
-
-def _checked(program: LinearProgram, solution: Solution) -> Solution:
-    """Return a solution after an exact check of all that makes it optimal."""
-    left = [Fraction(0)] * len(program.right)
-    for column, value in zip(program.columns, solution.x, strict=True):
-        if value:
-            for row, entry in column.items():
-                left[row] += entry * value
-    below = all(
-        sum((solution.dual[row] * entry for row, entry in column.items()), Fraction(0)) <= cost
-        for column, cost in zip(program.columns, program.costs, strict=True))
-    total = sum((a * b for a, b in zip(program.right, solution.dual, strict=True)), Fraction(0))
-    if min(solution.x) < 0 or tuple(left) != program.right or not below or total != solution.value:
-        raise AssertionError("a linear program was not solved")
-    return solution
+    return Solution(
+        tuple(x), y, sum((a * b for a, b in zip(program.costs, x, strict=True) if b), Fraction(0)))
 
 
 # -- bases -----------------------------------------------------------------------------------------

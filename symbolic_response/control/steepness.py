@@ -20,7 +20,7 @@ from symbolic_response.control.at_points import Limit as Limit
 from symbolic_response.control.at_points import limit_at as limit_at
 from symbolic_response.control.changes import Change, Vector, change_of
 from symbolic_response.control.decomposition import LinearForm, combined, linear_form
-from symbolic_response.control.family import Family, family_of
+from symbolic_response.control.family import Family, classes_of, family_of
 from symbolic_response.control.program import Amounts, Optimum, cost, optimum
 from symbolic_response.errors import QuantityError
 from symbolic_response.network.quantities import Perturbation
@@ -62,21 +62,6 @@ def forms(
     for t in places:
         found.setdefault(tuple(optimum(family, u, t).amounts for u in vectors))
     return _least(analysis, change, family, list(found))
-
-
-def classes_of(family: Family, analysis: Analysis) -> tuple[int, ...]:
-    """Return a number for each bundle, the same for those with the same cycles.
-
-    The cycles with transitions inside and outside a bundle set its t.
-    """
-    cycles = [cycle.forward | cycle.backward for cycle in analysis.cycles]
-    numbers: dict[tuple[int, ...], int] = {}
-    found = []
-    for part in family.bundles:
-        mask = sum(1 << e for e in part)
-        key = tuple(i for i, cycle in enumerate(cycles) if cycle & mask and cycle & ~mask)
-        found.append(numbers.setdefault(key, len(numbers)))
-    return tuple(found)
 
 
 def _other_values(count: int) -> Iterator[tuple[Fraction, ...]]:
