@@ -108,6 +108,7 @@ def test_the_same_without_a_process(
         with pytest.raises(SystemExit) as caught:
             runpy.run_path(str(CHECKER), run_name="__main__")
         assert caught.value.code == status
+    assert runpy.run_path(str(CHECKER / "__main__.py"), run_name="read")["main"](["-h"]) == 0
     monkeypatch.delitem(sys.modules, "checker")
     assert capsys.readouterr().out.startswith(f"{here}: malformed")
 

@@ -343,6 +343,8 @@ def test_of_several_verdicts_the_gravest_counts() -> None:
     assert status("valid") == 0 and status("valid", "incomplete") == 3
     assert status("incomplete", "malformed") == status("incomplete", "unreadable") == 2
     assert status("malformed", "invalid") == 1
+    assert Verdict("valid", got="1 claim").data() == {
+        "status": "valid", "entry": None, "expected": None, "got": "1 claim", "statement": None}
 
 
 def test_the_verb(tmp_path: Path) -> None:

@@ -61,7 +61,8 @@ def solve_point(record: Record, k: int, graph: Graph) -> Solved:
     if record.path is not None:
         start, goal = record.path
         made.left = made.p[goal] / made.p[start]
-    elif moved is not None and record.target is not None:
+    else:
+        assert moved is not None and record.target is not None
         elementary(made.moves, graph, moved)
         change = _derivative(made, graph, reduced)
         made.above, made.below = (*observe(
