@@ -11,13 +11,21 @@ from pathlib import Path
 from symbolic_response.errors import OutputError
 
 
-def check_output(path: str | os.PathLike[str]) -> None:
-    """Raise OutputError where a file of that name cannot be made."""
+def check_output(
+    path: str | os.PathLike[str], source: str | os.PathLike[str] | None = None
+) -> None:
+    """Raise OutputError where a file of that name cannot be made, or is ``source``, the input."""
     target = Path(path)
+    if source is not None and _same_file(target, Path(source)):
+        raise OutputError(f"{str(target)!r} is the network file itself; choose another name")
     if target.is_dir():
         raise OutputError(f"{str(target)!r} is a folder; give the name of a file")
     if not target.parent.is_dir():
         raise OutputError(f"there is no folder {str(target.parent)!r}; make it first")
+
+
+def _same_file(one: Path, other: Path) -> bool:
+    return one.exists() and other.exists() and one.samefile(other)
 
 
 def write_files(contents: Mapping[Path, str | bytes]) -> None:

@@ -23,6 +23,7 @@ from symbolic_response.cli import run
 from symbolic_response.errors import NetworkError, OutputError, SizeLimitError
 from symbolic_response.expressions.normal_form import normal_form
 from symbolic_response.expressions.tree import add, multiply, negate
+from symbolic_response.network import Rates, build_network
 from symbolic_response.network.toml_reader import read_network_text
 from symbolic_response.response.analysis import Analysis
 from symbolic_response.response.quantity_latex import notation_of
@@ -269,3 +270,14 @@ def test_a_bundle_compiles(tmp_path: Path, requires_latex: None) -> None:
     text = appendix_text(read_network_text(RING), quantities=["d p[A] / d barrier[bind, flip]"])
     assert "matching for" in text and r"\label{eq:bundle}" in text
     check_log(compiled(text, tmp_path))
+
+
+def test_cycles_that_run_neither_way_are_counted() -> None:
+    """Two one-way steps against each other: a row of the proof, no cycle of the document."""
+    network = build_network("against", states="A B C", transitions=[
+        Rates("A", "B", "a", "b", name="load"), Rates("B", "A", "k", name="drop"),
+        Rates("B", "C", "h", name="go"), Rates("C", "A", "f", "g", name="ret")])
+    text = appendix_text(network, quantities=["d ln(p[A]/p[C]) / d barrier[ret]"])
+    flat = " ".join(text.split())
+    assert "let be run neither way" in flat
+    assert "& 2 & 2" in flat  # two cycles through ret, two trees without it

@@ -154,3 +154,26 @@ def test_the_help_names_the_whole_catalogue(
     assert run([verb, "--help"]) == 0
     listed = capsys.readouterr().out.split("Names:")[1].split("Example:")[0]
     assert [name.strip() for name in listed.replace("\n", " ").split(",")] == list(NAMES)
+
+
+def test_the_network_file_is_never_overwritten(
+    tmp_path: Path, capsys: pytest.CaptureFixture[str]
+) -> None:
+    for name, verb, output in (
+        ("net.toml", ["certify", "d p[lit] / d barrier[fade]"], "net.toml"),
+        ("net.tex", ["appendix"], "net.tex"),
+        ("net.proofs.json", ["appendix"], "net.tex"),
+    ):
+        file = tmp_path / name
+        file.write_text(Path(TIDE).read_text(encoding="utf-8"), encoding="utf-8")
+        arguments = [verb[0], str(file), *verb[1:], "-o", str(tmp_path / output), "--quiet"]
+        assert run(arguments) == 2
+        assert "is the network file itself; choose another name" in capsys.readouterr().err
+        assert file.read_text(encoding="utf-8") == Path(TIDE).read_text(encoding="utf-8")
+        file.unlink()
+
+
+def test_one_kind_at_a_time(capsys: pytest.CaptureFixture[str]) -> None:
+    both = ["certify", TIDE, "d p[lit] / d barrier[fade]", "--proof-only", "--points-only"]
+    assert run(both) == 2
+    assert "exclude each other" in capsys.readouterr().err

@@ -165,7 +165,7 @@ def _cited(claim: Claim) -> str:
 
 
 def _right(paper: Paper, claim: Claim, limit: float) -> list[Piece]:
-    if _many_paths(claim):
+    if _many_paths(paper, claim):
         rate = paper.letters["rate"]
         return [Piece("", rf"\max_P \frac{{{rate}_P^+}}{{{rate}_P^-}}")]
     pieces: list[Piece] = []
@@ -182,9 +182,14 @@ def _right(paper: Paper, claim: Claim, limit: float) -> list[Piece]:
     return pieces or [Piece("", "0")]
 
 
-def _many_paths(claim: Claim) -> bool:
-    """Return whether the paths of a path bound are too many to be written out."""
-    return claim.name == PATH and len(_paths(claim)) > MAX_LISTED_PATHS
+def _many_paths(paper: Paper, claim: Claim) -> bool:
+    """Return whether the paths of a path bound are too many, or too long, to be written out."""
+    if claim.name != PATH:
+        return False
+    if len(_paths(claim)) > MAX_LISTED_PATHS:
+        return True
+    left = quantity_in(paper.notation, claim.left)
+    return not fits(side_latex(paper, claim.right[0].factor), line_limit(left, paper.width))
 
 
 def _paths(claim: Claim) -> list[object]:
@@ -310,7 +315,7 @@ def _data(paper: Paper, claims: Sequence[Claim]) -> str:
         for term in claim.right:
             if isinstance(term.force, CycleMaximum | MixedCycles):
                 sentences.append(_cycles(paper, term.force))
-        if _many_paths(claim):
+        if _many_paths(paper, claim):
             sentences.append(_path_words(paper, claim))
         cuts = claim.data.get("splittings")
         if isinstance(cuts, list):

@@ -10,6 +10,7 @@ from pathlib import Path
 from symbolic_response.appendix.bounded import bounded
 from symbolic_response.appendix.bounds_section import bounds_section
 from symbolic_response.appendix.certificates_section import certificates_section
+from symbolic_response.appendix.control_section import control_section
 from symbolic_response.appendix.cycles_section import cycles_section
 from symbolic_response.appendix.escape import escaped
 from symbolic_response.appendix.model_section import model_section
@@ -20,6 +21,7 @@ from symbolic_response.appendix.requests import extras, requested
 from symbolic_response.appendix.results import results_section
 from symbolic_response.appendix.trees_section import trees_section
 from symbolic_response.expressions.tree import Expression
+from symbolic_response.figures import pgfplots
 from symbolic_response.files import check_output, write_files
 from symbolic_response.network.model import Network
 from symbolic_response.response.analysis import Analysis
@@ -76,9 +78,9 @@ def write_appendix(
     are written whole or not at all. Raises OutputError where that cannot be done.
     """
     target = Path(path)
-    check_output(target)
+    check_output(target, network.path)
     beside = target.with_name(target.stem + ".proofs.json")
-    check_output(beside)
+    check_output(beside, network.path)
     text, record = _made(network, quantities, analysis, TEXT_WIDTH, beside.name)
     texts = {target: text} | ({} if record is None else {beside: record})
     write_files(texts)
@@ -107,10 +109,11 @@ def _made(
     entries = bounded(paper, request.quantities)
     if wanted.bounds:
         sections.append(bounds_section(paper, request.quantities))
+    proved = ""
     if wanted.proofs:
         proofs = proofs_section(paper, entries, proofs_file, wanted.digests)
-        sections.append(proofs.section)
-        record = proofs.record
+        proved, record = proofs.section, proofs.record
+    sections += [control_section(paper, proved), proved]
     sections.append(certificates_section(paper, entries, wanted.certificates, wanted.digests))
     body = "\n\n".join(section for section in sections if section)
     text = _preamble(network, width, body) + body + "\n\n" + _bibliography(body)
@@ -120,11 +123,12 @@ def _made(
 def _preamble(network: Network, width: float, body: str) -> str:
     theorems = "\\usepackage{amsthm}\n\\newtheorem{theorem}{Theorem}\n"
     theorems = theorems if r"\begin{theorem}" in body else ""
+    figures = pgfplots.PREAMBLE if r"\begin{tikzpicture}" in body else ""
     geometry = "" if width == TEXT_WIDTH else f"\\usepackage[textwidth={width:g}pt]{{geometry}}\n"
     return rf"""\documentclass{{article}}
 \usepackage{{amsmath,amssymb}}
 \usepackage{{array,booktabs,longtable}}
-{theorems}{geometry}\allowdisplaybreaks
+{figures}{theorems}{geometry}\allowdisplaybreaks
 \setlength{{\emergencystretch}}{{0.3\textwidth}}
 \renewcommand{{\arraystretch}}{{1.2}}
 \begin{{document}}

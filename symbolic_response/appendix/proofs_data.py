@@ -35,8 +35,13 @@ def cycles_data(paper: Paper, proofs: Sequence[EdgeProof]) -> str:
     if not with_cycles:
         return ""
     every = _listed_cycles(paper)
-    through = {proof.transition: [_place(every, proof.transition, row) for row in proof.rows]
-               for proof in with_cycles} if every else {}
+    found = {proof.transition: [_place(every, proof.transition, row) for row in proof.rows]
+             for proof in with_cycles} if every else {}
+    unlisted = any(None in places for places in found.values())
+    if unlisted:
+        every = ()
+    through = {e: [place for place in places if place is not None]
+               for e, places in found.items()} if every else {}
     used = sorted({place for places in through.values() for place in places})
     if len(every) == 1:
         return _single(paper, every[used[0]], with_cycles[0].rows[0].weight)
@@ -48,6 +53,9 @@ def cycles_data(paper: Paper, proofs: Sequence[EdgeProof]) -> str:
                   _sums(paper, with_cycles, through)]
     else:
         parts.append(_counts(paper, with_cycles))
+    if unlisted:
+        parts.append("Among them are cycles that one-way transitions let be run neither way: their "
+                     "products of rates vanish both ways.")
     return "\n\n".join(parts)
 
 
@@ -60,10 +68,11 @@ def _listed_cycles(paper: Paper) -> Sequence[Cycle]:
     return every if len(every) <= MAX_LISTED else ()
 
 
-def _place(every: Sequence[Cycle], transition: int, row: Row) -> int:
-    """Return the place of the cycle that a transition closes a path to."""
+def _place(every: Sequence[Cycle], transition: int, row: Row) -> int | None:
+    """Return the place of the cycle that a transition closes a path to, None if it is not listed:
+    it can be run neither way."""
     wanted = {transition, *(step // 2 for step in row.steps)}
-    return next(i for i, cycle in enumerate(every) if set(cycle.transitions) == wanted)
+    return next((i for i, cycle in enumerate(every) if set(cycle.transitions) == wanted), None)
 
 
 def _require(paper: Paper, proof: EdgeProof) -> None:

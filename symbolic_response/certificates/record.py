@@ -30,7 +30,7 @@ from symbolic_response.expressions.tree import (
     power,
     rebuild,
 )
-from symbolic_response.files import write_files
+from symbolic_response.files import check_output, write_files
 from symbolic_response.network.model import Network
 from symbolic_response.network.quantities import (
     BarrierOf,
@@ -235,4 +235,5 @@ def write_certificate(
     certificate: Certificate, analysis: Analysis, path: str | os.PathLike[str]
 ) -> None:
     """Write the record to a file, whole or not at all; OutputError where that cannot be done."""
+    check_output(path, certificate.network.path)
     write_files({Path(path): record_text(record_of(certificate, analysis))})

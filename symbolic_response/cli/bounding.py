@@ -72,8 +72,8 @@ def bound(
               help="Any text; the same text draws the same points.")
 @click.option("--workers", type=click.IntRange(min=1), metavar="N",
               help="Use N processes (default: all cores).")
-@click.option("--proof-only", "method", flag_value="proof", help="No points.")
-@click.option("--points-only", "method", flag_value="points", help="No proofs.")
+@click.option("--proof-only", is_flag=True, help="No points.")
+@click.option("--points-only", is_flag=True, help="No proofs.")
 @click.option("-o", "--output", type=click.Path(), metavar="FILE", help="Write the certificate.")
 @json_option
 @quiet_option
@@ -84,7 +84,8 @@ def certify(
     points: int,
     seed: str,
     workers: int | None,
-    method: str | None,
+    proof_only: bool,
+    points_only: bool,
     output: str | None,
     as_json: bool,
     quiet: bool,
@@ -108,12 +109,15 @@ def certify(
     from symbolic_response.certificates.report import certificate_data, certificate_text
     from symbolic_response.files import check_output
 
+    if proof_only and points_only:
+        raise click.UsageError("--proof-only and --points-only exclude each other; give one")
+    method = "proof" if proof_only else "points" if points_only else "strongest"
     if output is not None:
-        check_output(output)
+        check_output(output, network)
     with Progress(quiet) as progress:
         progress.stage(f"certifying {response}")
         analysis = analysis_of(read(network), lambda done, total: None)
-        made = make_certificate(analysis, response, only=only, method=method or "strongest",
+        made = make_certificate(analysis, response, only=only, method=method,
                                 count=points, seed=seed, workers=workers, progress=progress)
     anything = made.proved.claims or made.points is not None
     written = output if made.refuted is None and anything else None

@@ -119,7 +119,7 @@ def curve(
     from symbolic_response.figures.pgfplots import curve_pgfplots
     from symbolic_response.response.deriving import read_assignments
 
-    _check_outputs(output, (".csv", ".tex"))
+    _check_outputs(network, output, (".csv", ".tex"))
     values = read_assignments(at, "--at")
     first, last = _value(low, "--from"), _value(high, "--to")
     assert first is not None and last is not None
@@ -174,7 +174,7 @@ def cloud(
     from symbolic_response.control.cloud import cloud_csv
     from symbolic_response.figures.cloud import cloud_figure
 
-    _check_outputs(output, (".csv",))
+    _check_outputs(network, output, (".csv",))
     described = read(network)
     with Progress(quiet) as progress:
         progress.stage(f"sampling {response}")
@@ -209,14 +209,14 @@ def _fraction(text: str | None) -> Fraction | None:
         raise AssignmentError(f"--measured {text}: write a number such as 3/2 or 1.5") from None
 
 
-def _check_outputs(output: tuple[str, ...], texts: tuple[str, ...]) -> None:
+def _check_outputs(network: str, output: tuple[str, ...], texts: tuple[str, ...]) -> None:
     """Refuse at once what cannot be written."""
     from symbolic_response.files import check_output
 
     for path in output:
         if Path(path).suffix.lower() not in (*texts, ".pdf", ".png", ".svg"):
             raise OutputError(f"{path!r}: write {', '.join(texts)}, .pdf, .png or .svg")
-        check_output(path)
+        check_output(path, network)
 
 
 def _write(
