@@ -26,7 +26,7 @@ from symbolic_response.expressions.reader import read_expression
 from symbolic_response.expressions.tree import ONE, ZERO, add, negate, number
 from symbolic_response.network import Network, Rates, build_network, read_network
 from symbolic_response.network.entries import DocumentError
-from symbolic_response.network.quantities import BarriersOf, BySymbol
+from symbolic_response.network.quantities import BarrierOf, BarriersOf, BySymbol, DriveOf, EnergyOf
 from symbolic_response.response.analysis import Analysis
 from symbolic_response.response.closed_trees import rate_changes
 from symbolic_response.topology import Graph
@@ -117,6 +117,25 @@ def test_an_energy_is_one_piece() -> None:
     made = sparsest(analysis, change_of(analysis, LN_C), family_of(analysis))
     assert made == Decomposition((ONE, ZERO, ZERO)) and made.count == 1
     assert linear_form(made, analysis).text(network) == "1"
+
+
+@pytest.mark.parametrize("directed", [True, False])
+def test_elementary_changes_are_one_piece(directed: bool) -> None:
+    network = build_network("square", states=list("ABCD"), symbols={"c": {}}, transitions=[
+        Rates(a, b, "c" if a + b == "CD" else "1", "2", name=a + b)
+        for a, b in ("AB", "BC", "CD", "DA", "AC")])
+    analysis = Analysis(network)
+    family = family_of(analysis, directed=directed)
+    found = {by: sparsest(analysis, change_of(analysis, by), family)
+             for by in (EnergyOf(0), BarrierOf(1), BarriersOf((0, 1)), DriveOf(4), LN_C)}
+    assert found[EnergyOf(0)] == Decomposition((ONE, ZERO, ZERO, ZERO))
+    assert found[BarrierOf(1)].bundles == (Piece((1,), number(-1)),)
+    assert found[BarriersOf((0, 1))].bundles == (Piece((0, 1), number(-1)),)
+    assert found[DriveOf(4)].drives == (Piece((4,), ONE),)
+    counts = [made.count for made in found.values()]
+    assert counts == [1, 1, 1, 1, 1 if directed else 2]
+    if directed:
+        assert found[LN_C].directed == (Piece((4,), ONE),)
 
 
 def test_bundles_of_barriers_and_free_blocks() -> None:

@@ -290,6 +290,15 @@ def test_the_pieces_of_a_limit_give_it() -> None:
     assert all(isinstance(piece.amount, Number) for piece in limit.decomposition.bundles)
 
 
+def test_forms_limit_at_a_point() -> None:
+    """One cycle: all t are equal, and the minimum of the forms is the least limit."""
+    analysis = steered_ring()
+    found = forms(analysis, LN_C)
+    place = Place(analysis, {"c": read_expression("9/5")})
+    limit = limit_at(analysis, LN_C, place)
+    assert place.least(found) == (limit.low, limit.high)
+
+
 def test_a_point_without_positive_rates() -> None:
     network = build_network("minus", states=["A", "B"], symbols={"c": {}}, transitions=[
         Rates("A", "B", "2 - c", "1", name="one"), Rates("A", "B", "c", "1", name="two")])

@@ -94,6 +94,11 @@ class Place:
             low, high = low + t[0] * factor[0], high + t[1] * factor[1]
         return low, high
 
+    def least(self, forms: Sequence[LinearForm]) -> Interval:
+        """Return bounds of the minimum of linear forms at the point, a limit without a program."""
+        found = [self.form(form) for form in forms]
+        return min(low for low, _ in found), min(high for _, high in found)
+
     def _enclosed(self, value: _Value) -> Interval:
         for bits in _PRECISIONS:
             with flint.ctx.workprec(bits):

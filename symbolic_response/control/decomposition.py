@@ -160,8 +160,9 @@ def tightest(
 def sparsest(analysis: Analysis, change: Change, family: Family) -> Decomposition:
     """Return the pieces whose amounts have the least sum of sizes, each energy counted by itself.
 
-    A vertex of the linear program with all costs one (for the numbers and for each vector beside an
-    expression by itself), so few pieces; that there are no fewer is not claimed.
+    Drives count by 3/4, see ``sparse_amounts``; the numbers, and each vector beside an expression,
+    by themselves. A vertex of a linear program, so few pieces; that there are no fewer is not
+    claimed.
     """
     return _made(analysis, change, family, lambda vector: sparse_amounts(family, vector))
 

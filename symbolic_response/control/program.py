@@ -72,9 +72,10 @@ def optimum(
 
 
 def sparse_amounts(family: Family, change: Vector) -> Amounts:
-    """Return the pieces whose amounts have the least sum of sizes, blocks and energies counted.
+    """Return the pieces whose amounts have the least sum of sizes, exactly; so they are few.
 
-    Exactly least; a vertex of the linear program with all costs one, so few pieces.
+    Each energy and block counts as well, and a drive by 3/4: one drive is then less than two single
+    rates, and a single rate less than half a barrier with a drive.
     """
     layout = _Layout.of(family, (Fraction(1),) * len(family.bundles), True)
     amounts = _shared_as_energies(family, layout.amounts(solve(layout.program(change)).x))
@@ -166,11 +167,11 @@ class _Layout:
 
     @classmethod
     def of(cls, family: Family, t: tuple[Fraction, ...], sparse: bool) -> _Layout:
-        """Return the layout: costs of the limit, or, where ``sparse``, one for each amount."""
+        """Return the layout; its costs are those of the limit, or of ``sparse_amounts``."""
         columns: list[Column] = []
         costs: list[Fraction] = []
         begins: dict[str, int] = {}
-        one, two, count = Fraction(1), Fraction(2), len(family.rates)
+        one, count = Fraction(1), len(family.rates)
 
         def put(kind: str, column: Column, price: Fraction, signed: bool = True) -> None:
             begins.setdefault(kind, len(columns))
@@ -195,7 +196,8 @@ class _Layout:
             put("blocks", dict.fromkeys(family.places(block), 1), one if sparse else _ZERO)
         for e in family.drives:  # in halves
             column = {r: -1 if family.rates[r][1] else 1 for r in family.places((e,))}
-            put("drives", column, one if family.is_one_way(e) and not sparse else two)
+            price = one if family.is_one_way(e) else Fraction(2)
+            put("drives", column, Fraction(3, 2) if sparse else price)
         if family.directed:
             _put_directed(family, count + (0 if sparse else family.size), put)
         return cls(family, tuple(columns), tuple(costs), begins)

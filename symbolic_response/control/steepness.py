@@ -8,7 +8,7 @@ of the bundles H is concave and piecewise linear: the minimum of linear forms.
 from __future__ import annotations
 
 import random
-from collections.abc import Iterator, Sequence
+from collections.abc import Iterator, Mapping, Sequence
 from dataclasses import dataclass
 from fractions import Fraction
 from itertools import pairwise, product
@@ -22,6 +22,7 @@ from symbolic_response.control.changes import Change, Vector, change_of
 from symbolic_response.control.decomposition import LinearForm, combined, linear_form
 from symbolic_response.control.family import Family, classes_of, family_of
 from symbolic_response.control.program import Amounts, Optimum, cost, optimum
+from symbolic_response.control.separations import Part
 from symbolic_response.errors import QuantityError
 from symbolic_response.network.quantities import Perturbation
 from symbolic_response.response.analysis import Analysis
@@ -81,24 +82,30 @@ def _least(
     analysis: Analysis, change: Change, family: Family, found: Sequence[tuple[Amounts, ...]]
 ) -> tuple[LinearForm, ...]:
     """Return the forms of some amounts, without those that another one is never above."""
-    made = [linear_form(combined(analysis, change, family, amounts), analysis)
-            for amounts in found]
+    classes = dict(zip(family.bundles, classes_of(family, analysis), strict=True))
     kept: list[LinearForm] = []
-    for form in made:
-        if not any(_below(other, form) for other in kept):
-            kept = [other for other in kept if not _below(form, other)]
+    for amounts in found:
+        form = linear_form(combined(analysis, change, family, amounts), analysis)
+        if not any(_below(other, form, classes) for other in kept):
+            kept = [other for other in kept if not _below(form, other, classes)]
             kept.append(form)
     return tuple(kept)
 
 
-def _below(one: LinearForm, other: LinearForm) -> bool:
-    """Return whether a form is certainly nowhere above another."""
-    pair = one.numbers(), other.numbers()
-    if pair[0] is None or pair[1] is None:
-        return (one.constant, set(one.slopes)) == (other.constant, set(other.slopes))
-    (constant, slopes), (other_constant, others) = pair[0], pair[1]
+def _below(one: LinearForm, other: LinearForm, classes: Mapping[Part, int]) -> bool:
+    """Return whether a form is certainly nowhere above another; t is the same within a class."""
+    sides = []
+    for form in (one, other):
+        numbers = form.numbers()
+        if numbers is None:
+            return (one.constant, set(one.slopes)) == (other.constant, set(other.slopes))
+        slopes: dict[int, Fraction] = {}
+        for part, slope in numbers[1].items():
+            slopes[classes[part]] = slopes.get(classes[part], Fraction(0)) + slope
+        sides.append((numbers[0], slopes))
+    (constant, slopes), (other_constant, others) = sides
     return constant <= other_constant and all(
-        slope <= others.get(part, 0) for part, slope in slopes.items())
+        slope <= others.get(c, 0) for c, slope in slopes.items())
 
 
 # -- one t for all bundles -------------------------------------------------------------------------
