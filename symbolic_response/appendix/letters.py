@@ -1,9 +1,12 @@
-"""Letters of the proofs, none of them a symbol of the file nor a letter of the notation."""
+"""Letters of the proofs and of the section on control parameters.
+
+None of them is a symbol of the file or a letter of the notation.
+"""
 
 from __future__ import annotations
 
 import re
-from collections.abc import Mapping
+from collections.abc import Mapping, Sequence
 
 from symbolic_response.expressions.names import same_latex
 from symbolic_response.response.quantity_latex import Notation
@@ -32,16 +35,26 @@ PROOF_LETTERS = {
 }
 """For each role in a proof the letters it may take, the first that is free being taken."""
 
+CONTROL_LETTERS = {
+    "steepness": ("H", r"\mathcal{H}", r"\mathbf{H}"),
+    "tanh": ("t", r"\zeta", r"\mathbf{t}"),
+    "amount": (r"\alpha", r"\kappa", r"\mathbf{a}"),
+    "polynomial": ("P", r"\mathcal{P}", r"\mathbf{P}"),
+}
+"""The same for control parameters; t of the proofs is explained where it occurs, and local."""
+
 
 def proof_letters(notation: Notation) -> dict[str, str]:
-    """Return a letter for each role in the proofs.
+    """Return a letter for each role in the proofs."""
+    return _chosen(PROOF_LETTERS, notation)
 
-    Where all letters of a role are taken it is written as its name.
-    """
+
+def _chosen(roles: Mapping[str, Sequence[str]], notation: Notation) -> dict[str, str]:
+    """Return a letter for each role; where all of one are taken it is written as its name."""
     taken = {same_latex(re.split(r"[_^']", text)[0]) for text in notation.symbols.values()}
     taken |= {same_latex(letter) for letter in notation.letters.values()}
     chosen: dict[str, str] = {}
-    for role, letters in PROOF_LETTERS.items():
+    for role, letters in roles.items():
         free = [letter for letter in letters if same_latex(letter) not in taken]
         chosen[role] = free[0] if free else rf"\mathrm{{{role.split()[0]}}}"
         taken.add(same_latex(chosen[role]))
@@ -49,5 +62,5 @@ def proof_letters(notation: Notation) -> dict[str, str]:
 
 
 def letters_of(notation: Notation) -> Mapping[str, str]:
-    """Return the letters of the notation and of the proofs by role."""
-    return dict(notation.letters) | proof_letters(notation)
+    """Return the letters of the notation, of the proofs and of control parameters by role."""
+    return dict(notation.letters) | proof_letters(notation) | _chosen(CONTROL_LETTERS, notation)

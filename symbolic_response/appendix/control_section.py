@@ -1,0 +1,183 @@
+"""The section on control parameters: changes of the rates, limits on the steepness, exact curves.
+
+One subsection for each ``[[control]]`` entry of the file; none of this without entries.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from fractions import Fraction
+
+from symbolic_response.appendix.control_entries import ControlEntry, control_entries, located
+from symbolic_response.appendix.control_forms import (
+    Forces,
+    Form,
+    at_equal,
+    form_equation,
+    least,
+    steepness_equations,
+)
+from symbolic_response.appendix.control_pieces import PieceWords, change_text, listed
+from symbolic_response.appendix.control_theory import theory
+from symbolic_response.appendix.control_values import values_section
+from symbolic_response.appendix.paper import Paper
+from symbolic_response.control.asked import Asked, observable_values, rescaled
+from symbolic_response.control.changes import change_of
+from symbolic_response.control.decomposition import LinearForm, linear_form, sparsest
+from symbolic_response.control.family import Family, family_of
+from symbolic_response.control.steepness import forms
+from symbolic_response.errors import EvaluationError, SizeLimitError
+from symbolic_response.expressions.breaking import (
+    Equation,
+    Piece,
+    align,
+    fits,
+    line_limit,
+    product_pieces,
+)
+from symbolic_response.expressions.latex import fraction_latex
+from symbolic_response.network.quantities import Mean, Probability, Response
+from symbolic_response.response.quantity_latex import quantity_in
+
+
+def control_section(paper: Paper, printed: str) -> str:
+    """Return the section; empty without ``[[control]]`` entries.
+
+    ``printed``: the section of proofs, whose equations are referred to where they are there.
+    Raises DocumentError for an entry that cannot be used.
+    """
+    entries = control_entries(paper.analysis)
+    if not entries:
+        return ""
+    family = family_of(paper.analysis)
+    parts = [r"\section{Control parameters}", theory(paper, family, printed)]
+    for entry in entries:
+        with located(entry.place):
+            parts.append(_entry(paper, entry, family))
+    return "\n\n".join(parts)
+
+
+def _entry(paper: Paper, entry: ControlEntry, family: Family) -> str:
+    analysis, x = paper.analysis, paper.notation.symbols[entry.by.name]
+    change = change_of(analysis, entry.by)
+    words = PieceWords(paper)
+    parts = [rf"\subsection{{The parameter ${x}$}}", change_text(paper, change)]
+    if change.parts or any(change.numbers):
+        few = words.text(sparsest(analysis, change, family))
+        parts.append(f"This is the sum of few pieces: {few}.")
+    if entry.own is not None:
+        parts.append(f"Another decomposition, chosen for this network: {words.text(entry.own)}."
+                     " Both sums equal the change identically in all symbols.")
+    try:
+        found = forms(analysis, entry.by, family)
+    except SizeLimitError as error:
+        parts.append(f"No limit is stated: {error}.")
+        found = ()
+    if found:
+        parts.append(_limit(paper, entry, found))
+    if entry.values is not None:
+        parts.append(values_section(paper, entry, found, entry.values))
+    return "\n\n".join(part for part in parts if part)
+
+
+# -- the limit -------------------------------------------------------------------------------------
+
+
+def _limit(paper: Paper, entry: ControlEntry, found: Sequence[LinearForm]) -> str:
+    forces, letter = Forces(paper), paper.letters["steepness"]
+    kept = least([forces.form(form) for form in found])
+    own = None if entry.own is None else forces.form(linear_form(entry.own, paper.analysis))
+    symbolic = any(form.numbers() is None for form in kept)
+    parts = [r"\paragraph{Limit.} For all values of the other symbols",
+             align([_statement(paper, asked, letter) for asked in entry.asked], paper.width),
+             _ranges(paper, entry.asked), "with",
+             steepness_equations(forces, kept, letter)]
+    if own is not None and own not in kept:
+        parts += ["The decomposition chosen for this network gives by itself",
+                  align([form_equation(forces, own, rf"{letter}_{{\mathrm{{own}}}}")],
+                        paper.width)]
+    explained = forces.text()
+    parts += [explained, _strength(letter, forces, kept), _least_words(forces, kept, symbolic)]
+    return "\n".join(part for part in parts if part)
+
+
+def _statement(paper: Paper, asked: Asked, letter: str) -> Equation:
+    """Return |d<q>/d ln x| <= H <q>(1 - <q>), for another range rescaled."""
+    inner = quantity_in(paper.notation, Response(asked.quantity, asked.by))
+    left = rf"\Bigl|{inner}\Bigr|"
+    mean = quantity_in(paper.notation, asked.quantity)
+    factors = [letter, *_product(mean, isinstance(asked.quantity, Mean | Probability),
+                                 _extremes(asked))]
+    limit = line_limit(left, paper.width)
+    body = r" \, ".join(factors)
+    pieces = [Piece("", body)] if fits(body, limit) else product_pieces(factors, limit)
+    return Equation(left, tuple(pieces), relation=r"\le")
+
+
+def _product(mean: str, atom: bool, extremes: tuple[Fraction, Fraction] | None) -> list[str]:
+    shown = mean if atom else f"({mean})"
+    if extremes is None:
+        low, high = r"q_{\min}", r"q_{\max}"
+        return [rf"\frac{{1}}{{{high} - {low}}}", f"({shown} - {low})", f"({high} - {shown})"]
+    low, high = (fraction_latex(end) for end in extremes)
+    above = f"({high} - {shown})"
+    if extremes[0] == 0:
+        factors = [shown, above]
+    else:
+        sign = "+" if extremes[0] < 0 else "-"
+        factors = [f"({mean} {sign} {low.removeprefix('-')})", above]
+    width = extremes[1] - extremes[0]
+    return factors if width == 1 else [fraction_latex(1 / width), *factors]
+
+
+def _extremes(asked: Asked) -> tuple[Fraction, Fraction] | None:
+    """Return the smallest and the largest value, None where they are not known numbers.
+
+    Raises QuantityError for an observable that is the same in every state.
+    """
+    try:
+        values = observable_values(asked)
+    except EvaluationError:
+        return None
+    rescaled(asked, values)
+    return min(values), max(values)
+
+
+def _ranges(paper: Paper, every: Sequence[Asked]) -> str:
+    """Return how observables with another range than 0 .. 1 are brought to it."""
+    texts = []
+    for asked in every:
+        extremes, shown = _extremes(asked), quantity_in(paper.notation, asked.quantity)
+        if extremes is None:
+            texts.append(rf"Of ${shown}$, $q_{{\min}}$ and $q_{{\max}}$ are the smallest and the"
+                         " largest value in any state, and it is brought to the range from 0 to 1"
+                         " by an affine map.")
+        elif extremes != (Fraction(0), Fraction(1)):
+            low, high = (fraction_latex(end) for end in extremes)
+            texts.append(f"The function whose mean is ${shown}$ runs from ${low}$ to ${high}$; an"
+                         r" affine map brings it to the range of Eq.~\eqref{eq:control}.")
+    return " ".join(texts)
+
+
+def _strength(letter: str, forces: Forces, kept: Sequence[Form]) -> str:
+    """Return H without forces and at infinite ones."""
+    weak, strong = at_equal(kept, 0), at_equal(kept, 1)
+    if not forces.places:
+        return ""
+    some = " of the cycles without one-way steps" if forces.infinite else ""
+    if weak is None or strong is None:
+        names = listed([f"${forces.name(place)}$" for place in range(len(forces.places))])
+        return f"Without forces{some} {names} vanish; at infinite forces they are one."
+    return (f"Without forces{some} ${letter} = {weak}$; however strong the driving,"
+            rf" ${letter} \le {strong}$.")
+
+
+def _least_words(forces: Forces, kept: Sequence[Form], symbolic: bool) -> str:
+    """Return in what sense H is the least that the family gives."""
+    if symbolic:
+        return ("Here the part of the change that is made of numbers and that beside each other"
+                " expression are limited one by one.")
+    if len(forces.places) > 1 and len(kept) > 1:
+        return (f"Where ${forces.name(0)}$ and the others are equal, this is the least that the"
+                " family gives; elsewhere the family may give less.")
+    return ""
