@@ -18,7 +18,7 @@ from hypothesis import given, settings
 from hypothesis import strategies as st
 from proof_networks import Rate, analysis_of, rooted_trees, strong_graphs, undirected_trees
 
-from symbolic_response.certificates.proofs.changes import logarithmic_change, shows_sign
+from symbolic_response.certificates.proofs.changes import logarithmic_change, shows_real, shows_sign
 from symbolic_response.certificates.proofs.coefficients import coefficients_proof
 from symbolic_response.certificates.proofs.edge import edge_proof, require_identities
 from symbolic_response.certificates.proofs.rows import paths_proof
@@ -219,7 +219,9 @@ CHANGES = [
     ("exp(k)*c", True, 1), ("sqrt(c)", True, Fraction(1, 2)), ("c*(k + c)", True, None),
     ("exp(c)", True, None), ("k + c", True, None), ("exp(2*F - k)", False, 2),
     ("k*exp(-F/2)", False, Fraction(-1, 2)), ("F", False, None), ("exp(k*F)", False, None),
-    ("exp(F + k)*exp(F)", False, 2), ("exp(F**2)", False, None),
+    ("exp(F + k)*exp(F)", False, 2), ("exp(2*ln(c) - k)", True, 2), ("exp(ln(k*c**3))", True, 3),
+    ("k*exp(-ln(c + k*c)/2)", True, Fraction(-1, 2)), ("exp(ln(c + k))", True, None),
+    ("exp(F**2)", False, None),
 ]
 
 
@@ -235,6 +237,15 @@ def test_changes_read_off_the_form(text: str, logarithmic: bool, expected: objec
     assert by_sympy.is_number == (expected is not None)
     if found is not None:
         assert by_sympy == sympy.Rational(found.numerator, found.denominator)
+
+
+@pytest.mark.parametrize(("text", "shown"), [
+    ("F", True), ("2*ln(3/2) - k", True), ("ln(k - m)", False), ("sqrt(k - m)", False),
+    ("sqrt(k + m)", True), ("(k - m)**3", True), ("(k - m)**(-1)", False), ("exp(F)/k", True),
+    ("exp(ln(k - m))", False), ("ln(exp(F) + 1)", True), ("1/F", False),
+])
+def test_what_is_real_by_its_form(text: str, shown: bool) -> None:
+    assert shows_real(read_expression(text), frozenset("km")) is shown
 
 
 @pytest.mark.parametrize(("texts", "shown"), [

@@ -15,11 +15,12 @@ from symbolic_response.bounds.registry import NAMES, claims_for
 from symbolic_response.certificates.certify import certify
 from symbolic_response.certificates.proofs.prove import Proved, prove
 from symbolic_response.certificates.proofs.record import kind_of
-from symbolic_response.certificates.record import record_of
+from symbolic_response.certificates.record import record_of, record_text
+from symbolic_response.checker import check_record
 from symbolic_response.cli import run
 from symbolic_response.errors import QuantityError
 from symbolic_response.expressions.tree import ONE, divide
-from symbolic_response.network import Network, Rates, build_network
+from symbolic_response.network import Barrier, Network, Rates, build_network, read_network
 from symbolic_response.network.quantity_reader import read_quantity
 from symbolic_response.response.analysis import Analysis
 from tests.benchmarks.networks import square_with_chord
@@ -92,6 +93,42 @@ def test_the_reason_is_given(network: Network, text: str, why: str) -> None:
     quantity = read_quantity(text, network)
     found = prove(analysis, quantity, claims_for(quantity, analysis))
     assert not found.claims and all(why in reason for _, reason in found.without)
+
+
+def test_pieces_alone_are_a_proof() -> None:
+    """Energies and single rates need no data: the record holds no proofs and is valid."""
+    analysis = Analysis(read_network(TIDE))
+    made = certify(analysis, "d mean[brightness] / d ln c", only="parameter", method="proof")
+    record = record_of(made, analysis)
+    assert record["proofs"] == [] and check_record(record).status == "valid"
+
+
+def test_amounts_that_are_not_real_are_not_proved() -> None:
+    network = ring("k*c")
+    for amount, real in (("ln(k - c)", False), ("sqrt(k - c)", False), ("ln(k)", True)):
+        analysis = Analysis(network)
+        text = f"change(ln(p[A]/p[B]), barrier[ab], {amount})"
+        made = certify(analysis, text, method="proof")
+        assert bool(made.proved.claims) == real
+        if real:
+            record = record_of(made, analysis)
+            assert check_record(record).status == "valid"
+            record["perturbation"]["amount"] = "ln(k - c)"  # type: ignore[index]
+            assert check_record(record).status == "invalid"
+            record["perturbation"]["amount"] = "1/0"  # type: ignore[index]
+            assert check_record(record).status == "invalid"
+
+
+def test_logarithms_of_symbols_in_energies() -> None:
+    network = build_network("pump", states={"A": {"energy": "ln(c) + E"}, "B": {"energy": "E"}},
+                            symbols={"E": "real", "B1": "real", "c": "positive",
+                                     "k": "positive", "m": "positive"}, transitions=[
+        Barrier("A", "B", "B1", "ln(k)", name="one"), Rates("A", "B", "k", "m", name="two")])
+    for text in ("d p[A] / d ln c", "d p[A] / d ln k"):
+        analysis = Analysis(network)
+        made = certify(analysis, text, method="proof")
+        assert not made.without
+        assert check_record(json.loads(record_text(record_of(made, analysis)))).status == "valid"
 
 
 def test_methods() -> None:

@@ -20,6 +20,7 @@ class Form:
     sign: int | None = None  # 1 where a is positive, 0 where it is 0
     change: Fraction | None = None  # d ln a/d theta
     slope: Fraction | None = None  # d a/d theta
+    real: bool = True  # False where a may not be a real number
 
 
 def read_form(expression: Expression, positive: Mapping[str, bool], moved: Perturbation,
@@ -34,8 +35,8 @@ def read_form(expression: Expression, positive: Mapping[str, bool], moved: Pertu
         elif operation in ("exp", "ln"):
             a = stack.pop()
             still = _still(a)
-            new = (Form(None, 1, a.slope, still) if operation == "exp" else
-                   Form(None, None, still, still))
+            new = (Form(None, 1 if a.real else None, a.slope, still, a.real)
+                   if operation == "exp" else Form(None, None, still, a.change, a.sign == 1))
         elif isinstance(what, Fraction):
             new = _power(stack.pop(), what)
         else:
@@ -43,7 +44,7 @@ def read_form(expression: Expression, positive: Mapping[str, bool], moved: Pertu
             new = (_product(a, _power(b, -ONE) if operation == "/" else b) if operation in "*/"
                    else _sum(a, b, operation))
         if new.number is not None:
-            new = replace(new, sign=None if new.number < 0 else int(new.number > 0))
+            new = replace(new, sign=None if new.number < 0 else int(new.number > 0), real=True)
         work.charge(3, max(bits(x or ZERO) for x in (new.number, new.change, new.slope)))
         stack.append(new)
     return stack[0]
@@ -70,19 +71,22 @@ def _symbol(moves: bool, logarithmic: bool, positive: bool) -> Form:
 
 
 def _power(a: Form, exponent: Fraction) -> Form:
+    whole = exponent >= 0 and exponent.denominator == 1
     return Form(_known(raised, a.number, exponent), 1 if a.sign == 1 else None,
-                _known(mul, a.change, exponent), _still(a))
+                _known(mul, a.change, exponent), _still(a), a.sign == 1 or (whole and a.real))
 
 
 def _sum(a: Form, b: Form, operation: str) -> Form:
     function = add if operation == "+" else sub
     sign = None if operation == "-" or a.sign is None or b.sign is None else max(a.sign, b.sign)
     return Form(_known(function, a.number, b.number), sign,
-                a.change if a.change == b.change else None, _known(function, a.slope, b.slope))
+                a.change if a.change == b.change else None, _known(function, a.slope, b.slope),
+                a.real and b.real)
 
 
 def _product(a: Form, b: Form) -> Form:
     sign = None if a.sign is None or b.sign is None else min(a.sign, b.sign)
     slope = ZERO if a.slope == b.slope == 0 else (
         _known(mul, a.number, b.slope) if b.slope else _known(mul, a.slope, b.number))
-    return Form(_known(mul, a.number, b.number), sign, _known(add, a.change, b.change), slope)
+    return Form(_known(mul, a.number, b.number), sign, _known(add, a.change, b.change), slope,
+                a.real and b.real)

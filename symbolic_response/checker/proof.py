@@ -39,6 +39,14 @@ def check_proof(record: Record, graph: Graph, draw: Callable[[], int]) -> str:
         observe(record.target, network.states, lambda one, _: read_form(
             one, network.positive, UNMOVED, graph.work).sign, "a form that shows no negative value",
                 "")
+    for i in graph.rates:
+        rate = network.rates[i >> 1][i & 1]
+        if rate and read_form(rate, network.positive, UNMOVED, graph.work).sign != 1:
+            raise invalid(network.entry(i), "a form that shows a positive rate", rate.text)
+    moved = record.perturbation
+    if moved and moved.amount and not read_form(moved.amount, network.positive, UNMOVED,
+                                                graph.work).real:
+        raise invalid("perturbation.amount", "a form that shows a real number", moved.amount.text)
     proofs = Proofs(record, graph, draw)
     for k, value in enumerate(record.proofs):
         proofs.check(value, f"proofs[{k}]")

@@ -140,7 +140,7 @@ def read_record(data: object, proof: bool) -> Record:
         if (value is None) != (path is not None):
             raise malformed(entry, "null exactly where path is not", value)
     if proof:
-        points, proofs = [], items(second, "proofs", MAX_PROOFS)
+        points, proofs = [], items(second, "proofs", MAX_PROOFS, 0)
     else:
         points, proofs = items(second, "points", MAX_POINTS), []
         rule, seed, count = members(first, "sampling", "rule", "seed", "count")

@@ -10,7 +10,12 @@ from symbolic_response.bounds.claim import Claim
 from symbolic_response.bounds.parameter import decompose
 from symbolic_response.bounds.registry import applicable
 from symbolic_response.bounds.target import target_of
-from symbolic_response.certificates.proofs.changes import logarithmic_change, shows_sign
+from symbolic_response.certificates.proofs.changes import (
+    logarithmic_change,
+    shown_sign,
+    shows_real,
+    shows_sign,
+)
 from symbolic_response.certificates.proofs.coefficients import (
     CoefficientsProof,
     coefficients_proof,
@@ -25,7 +30,6 @@ from symbolic_response.certificates.proofs.transport import (
     transport_proof,
 )
 from symbolic_response.errors import SizeLimitError
-from symbolic_response.expressions.signs import certain_sign
 from symbolic_response.expressions.tree import Expression, Number
 from symbolic_response.network.quantities import BySymbol, Change, Perturbation, Response
 from symbolic_response.response.analysis import Analysis
@@ -108,9 +112,12 @@ class _Work:
         network = self.analysis.network
         for transition in network.transitions:
             for rate in (transition.forward, transition.backward):
-                if rate is not None and certain_sign(rate, network.positive_symbols) != 1:
+                if rate is not None and shown_sign(rate, network.positive_symbols) != 1:
                     raise NoProofError(f"a rate of transition {transition.name!r} need not be"
                                        " positive for all values of the symbols")
+        if isinstance(self.quantity, Change) and not shows_real(
+                self.quantity.amount, network.positive_symbols):
+            raise NoProofError("the form of the amount does not show that it is a real number")
 
     def _require_signs(self) -> None:
         target = target_of(innermost(self.quantity), self.analysis.network)
