@@ -6,7 +6,6 @@ from __future__ import annotations
 import contextlib
 import io
 import os
-import tempfile
 from collections.abc import Iterator
 from pathlib import Path
 
@@ -14,7 +13,7 @@ from matplotlib import style
 from matplotlib.figure import Figure
 
 from symbolic_response.errors import OutputError
-from symbolic_response.files import check_output
+from symbolic_response.files import check_output, write_files
 
 METADATA: dict[str, dict[str, None]] = {
     ".pdf": {"Creator": None, "Producer": None, "CreationDate": None},
@@ -73,23 +72,4 @@ def write_figure(figure: Figure, path: str | os.PathLike[str]) -> None:
     made = io.BytesIO()
     with drawing():
         figure.savefig(made, format=suffix[1:], dpi=DOTS, metadata=METADATA[suffix])
-    _write(Path(path), made.getvalue())
-
-
-def _write(target: Path, content: bytes) -> None:
-    temporary = None
-    try:
-        handle, temporary = tempfile.mkstemp(dir=target.parent, prefix=f".{target.name}.")
-        with os.fdopen(handle, "wb") as file:
-            file.write(content)
-        mask = os.umask(0)
-        os.umask(mask)
-        os.chmod(temporary, 0o666 & ~mask)
-        os.replace(temporary, target)
-    except BaseException as error:
-        if temporary is not None:
-            with contextlib.suppress(OSError):
-                os.unlink(temporary)
-        if isinstance(error, OSError):
-            raise OutputError(f"cannot write {str(target)!r}: {error.strerror}") from None
-        raise
+    write_files({Path(path): made.getvalue()})
