@@ -66,3 +66,11 @@ def exact_latex(value: Fraction) -> str:
         return fraction_latex(value)
     context = Context(prec=DIGITS)
     return _decimal_latex(context.divide(Decimal(value.numerator), Decimal(value.denominator)))
+
+
+def value_words(enclosure: tuple[str, str], exact: Fraction | None = None) -> str:
+    """Return a number within a sentence: ``$3/4$``, or ``about $0.41$``."""
+    shown = value_latex(enclosure, exact)
+    if shown.startswith("="):
+        return f"${shown.removeprefix('= ')}$"
+    return "about $" + shown.removeprefix(r"\approx ") + "$"

@@ -89,30 +89,44 @@ class Forces:
 
     def text(self) -> str:
         """Return what each t is, with the cycles whose forces set it."""
-        texts = [self._explained(cycles, place) for cycles, place in self.places.items()]
+        texts = [self._explained()] if self.places else []
         if self.infinite:
             sets = _several([set_latex(self.paper, part) for part in self.infinite])
             texts.append(f"The force of {sets} is infinite, for a cycle with a one-way step: its"
                          r" $\tanh$ is one and contained in the numbers.")
         return " ".join(texts)
 
-    def _explained(self, cycles: Sequence[Cycle], place: int) -> str:
+    def _explained(self) -> str:
         paper = self.paper
         letter = paper.letters["force"]
-        numbers = [paper.analysis.cycles.index(cycle) + 1 for cycle in cycles]
-        shown = [f"|{paper.notation.indexed('force', str(n))}|" for n in numbers]
-        inside = _several([set_latex(paper, part) for part in self.bundles[place]])
-        name = self.name(place)
-        if len(cycles) == 1:
-            return (rf"Here ${name} = \tanh ({shown[0]}/4)$, cycle {numbers[0]} being the only one"
-                    f" with transitions both inside and outside of {inside}.")
-        text = (rf"Here ${name} = \tanh ({letter}_{{\max}}/4)$ for {inside}:"
-                rf" ${letter}_{{\max}}$ is the largest ")
-        if len(paper.analysis.cycles) > MAX_LISTED or len(cycles) > MAX_LISTED_CYCLES:
-            return text + (rf"$|{letter}_c|$ of the {len(cycles)} cycles with transitions both"
-                           " inside and outside.")
-        return text + ("of " + ", ".join(f"${force}$" for force in shown)
-                       + ", those of the cycles with transitions both inside and outside.")
+        if len(self.places) == 1:
+            ((cycles, place),) = self.places.items()
+            inside = _several([set_latex(paper, part) for part in self.bundles[place]])
+            if len(cycles) == 1:
+                number = paper.analysis.cycles.index(cycles[0]) + 1
+                force = paper.notation.indexed("force", f"{number}")
+                return (rf"Here ${self.name(0)} = \tanh (|{force}|/4)$, as cycle {number} alone has"
+                        f" transitions both inside and outside of {inside}.")
+            return (rf"Here ${self.name(0)} = \tanh ({letter}_{{\max}}/4)$, and"
+                    rf" ${letter}_{{\max}}$ is {self._largest(cycles)}: the cycles with transitions"
+                    f" both inside and outside of {inside}.")
+        texts = []
+        for cycles, place in self.places.items():
+            inside = _several([set_latex(paper, part) for part in self.bundles[place]])
+            texts.append(f"for ${self.name(place)}$ ({inside}) {self._largest(cycles)}")
+        return (rf"Here each ${paper.letters['tanh']}_i = \tanh ({letter}_{{\max}}/4)$ with"
+                rf" ${letter}_{{\max}}$ the largest force of the cycles with transitions both"
+                f" inside and outside of a set of transitions: {'; '.join(texts)}.")
+
+    def _largest(self, cycles: Sequence[Cycle]) -> str:
+        """Return the largest force of some cycles: listed where few and numbered, else counted."""
+        paper = self.paper
+        every = paper.analysis.cycles
+        if len(every) > MAX_LISTED or len(cycles) > MAX_LISTED_CYCLES:
+            return f"the largest of {len(cycles)}"
+        shown = [f"$|{paper.notation.indexed('force', str(every.index(cycle) + 1))}|$"
+                 for cycle in cycles]
+        return shown[0] if len(shown) == 1 else f"the largest of {', '.join(shown)}"
 
 
 def _several(sets: Sequence[str]) -> str:
@@ -124,14 +138,21 @@ def _several(sets: Sequence[str]) -> str:
     return f"{', '.join(sets[:-1])} or {sets[-1]}"
 
 
-def least(forms: Iterable[Form]) -> list[Form]:
-    """Return the forms without those that another one is never above."""
-    kept: list[Form] = []
-    for form in forms:
-        if not any(_below(other, form) for other in kept):
-            kept = [other for other in kept if not _below(form, other)]
-            kept.append(form)
-    return kept
+def least(paper: Paper, forms: Iterable[LinearForm]) -> list[LinearForm]:
+    """Return the forms that none is below for all t, the smallest without forces first."""
+    forces = Forces(paper)
+    kept: list[tuple[Form, LinearForm]] = []
+    for linear in forms:
+        form = forces.form(linear)
+        if not any(_below(other, form) for other, _ in kept):
+            kept = [pair for pair in kept if not _below(form, pair[0])]
+            kept.append((form, linear))
+    return [linear for _, linear in sorted(kept, key=lambda pair: _constant(pair[0]))]
+
+
+def _constant(form: Form) -> Fraction:
+    parts = form.numbers()
+    return Fraction(0) if parts is None else parts[0]
 
 
 def _below(one: Form, other: Form) -> bool:
@@ -163,7 +184,8 @@ def steepness_equations(forces: Forces, forms: Sequence[Form], left: str) -> str
     if len(forms) == 1:
         return align([form_equation(forces, forms[0], left)], paper.width)
     limit = line_limit(left, paper.width)
-    whole = rf"\min\{{{', '.join(_inline(forces, form) for form in forms)}\}}"
+    listed = r", \; ".join(_inline(forces, form) for form in forms)
+    whole = rf"\min \{{ {listed} \}}"
     if fits(whole, limit):
         return align([Equation(left, (Piece("", whole),))], paper.width)
     names = [f"{left}_{{{place}}}" for place in range(1, len(forms) + 1)]

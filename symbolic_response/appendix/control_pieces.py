@@ -114,8 +114,9 @@ class PieceWords:
         for state, amount in zip(self.paper.notation.states, pieces.energies, strict=True):
             if amount != ZERO:
                 groups.setdefault(amount, []).append(f"${state}$")
-        return [f"the energ{'y' if len(states) == 1 else 'ies'} of {listed(states)} by"
-                f" {self._amount(amount)}" for amount, states in groups.items()]
+        return [f"the energ{'y' if len(states) == 1 else 'ies'} of"
+                f" state{'' if len(states) == 1 else 's'} {listed(states)}{self._by(amount)}"
+                for amount, states in groups.items()]
 
     def _transitions(self, pieces: Decomposition) -> list[str]:
         paper = self.paper
@@ -128,13 +129,13 @@ class PieceWords:
                 what = f"the rate of ${paper.notation.transitions[e]}$"
             else:
                 what = f"both rates of ${paper.notation.transitions[e]}$"
-            phrases.append(f"{what} by {self._amount(piece.amount)}")
+            phrases.append(what + self._by(piece.amount))
         for piece in pieces.blocks:
-            phrases.append(f"all rates of {set_latex(paper, piece.members)}, a block or several, by"
-                           f" {self._amount(piece.amount)}")
+            phrases.append(f"all rates of {set_latex(paper, piece.members)}, one block or"
+                           f" more{self._by(piece.amount)}")
         for piece in pieces.drives:
-            phrases.append(f"the drive of ${paper.notation.transitions[piece.members[0]]}$ by"
-                           f" {self._amount(piece.amount)}")
+            phrases.append(f"the drive of ${paper.notation.transitions[piece.members[0]]}$"
+                           + self._by(piece.amount))
         return phrases
 
     def _rates(self, pieces: Decomposition) -> list[str]:
@@ -142,8 +143,11 @@ class PieceWords:
         for piece in pieces.directed:
             names = [f"${rate_latex(self.paper, place)}$" for place in piece.members]
             noun = "rate" if len(names) == 1 else "rates"
-            phrases.append(f"the {noun} {listed(names)} by {self._amount(piece.amount)}")
+            phrases.append(f"the {noun} {listed(names)}{self._by(piece.amount)}")
         return phrases
+
+    def _by(self, amount: Expression) -> str:
+        return f" (amount {self._amount(amount)})"
 
     def _amount(self, amount: Expression) -> str:
         latex = side_latex(self.paper, amount)

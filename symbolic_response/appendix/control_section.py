@@ -8,6 +8,7 @@ from __future__ import annotations
 from collections.abc import Sequence
 from fractions import Fraction
 
+from symbolic_response.appendix.control_ends import ends_section
 from symbolic_response.appendix.control_entries import ControlEntry, control_entries, located
 from symbolic_response.appendix.control_forms import (
     Forces,
@@ -20,10 +21,16 @@ from symbolic_response.appendix.control_forms import (
 from symbolic_response.appendix.control_pieces import PieceWords, change_text, listed
 from symbolic_response.appendix.control_theory import theory
 from symbolic_response.appendix.control_values import values_section
+from symbolic_response.appendix.escape import escaped
 from symbolic_response.appendix.paper import Paper
 from symbolic_response.control.asked import Asked, observable_values, rescaled
 from symbolic_response.control.changes import change_of
-from symbolic_response.control.decomposition import LinearForm, linear_form, sparsest
+from symbolic_response.control.decomposition import (
+    Decomposition,
+    LinearForm,
+    linear_form,
+    sparsest,
+)
 from symbolic_response.control.family import Family, family_of
 from symbolic_response.control.steepness import forms
 from symbolic_response.errors import EvaluationError, SizeLimitError
@@ -38,6 +45,8 @@ from symbolic_response.expressions.breaking import (
 from symbolic_response.expressions.latex import fraction_latex
 from symbolic_response.network.quantities import Mean, Probability, Response
 from symbolic_response.response.quantity_latex import quantity_in
+
+MAX_REACHED = 4
 
 
 def control_section(paper: Paper, printed: str) -> str:
@@ -60,45 +69,74 @@ def control_section(paper: Paper, printed: str) -> str:
 def _entry(paper: Paper, entry: ControlEntry, family: Family) -> str:
     analysis, x = paper.analysis, paper.notation.symbols[entry.by.name]
     change = change_of(analysis, entry.by)
-    words = PieceWords(paper)
     parts = [rf"\subsection{{The parameter ${x}$}}", change_text(paper, change)]
-    if change.parts or any(change.numbers):
-        few = words.text(sparsest(analysis, change, family))
-        parts.append(f"This is the sum of few pieces: {few}.")
-    if entry.own is not None:
-        parts.append(f"Another decomposition, chosen for this network: {words.text(entry.own)}."
-                     " Both sums equal the change identically in all symbols.")
+    if not change.parts and not any(change.numbers):
+        return "\n\n".join(parts)
+    few = sparsest(analysis, change, family)
+    parts.append(_decompositions(paper, few, entry.own))
+    found: Sequence[LinearForm] = ()
     try:
-        found = forms(analysis, entry.by, family)
+        found = least(paper, forms(analysis, entry.by, family))
     except SizeLimitError as error:
-        parts.append(f"No limit is stated: {error}.")
-        found = ()
+        parts.append(f"No limit is stated: {escaped(str(error))}.")
     if found:
-        parts.append(_limit(paper, entry, found))
-    if entry.values is not None:
-        parts.append(values_section(paper, entry, found, entry.values))
+        parts.append(_limit(paper, entry, found, few))
+    parts.append(ends_section(paper, entry) if entry.values is None else
+                 values_section(paper, entry, found, entry.values))
     return "\n\n".join(part for part in parts if part)
+
+
+def _decompositions(paper: Paper, few: Decomposition, own: Decomposition | None) -> str:
+    """Return the change in few pieces, and in those of the file; both sums are checked."""
+    words = PieceWords(paper)
+    if own == few:
+        return (f"With the decomposition chosen for this network it is {words.text(few)}. The sum"
+                " equals the change identically in all symbols.")
+    text = f"In few pieces it is {words.text(few)}."
+    if own is None:
+        return text
+    return (f"{text} The decomposition chosen for this network is {words.text(own)}. Either sum"
+            " equals the change identically in all symbols.")
 
 
 # -- the limit -------------------------------------------------------------------------------------
 
 
-def _limit(paper: Paper, entry: ControlEntry, found: Sequence[LinearForm]) -> str:
+def _limit(
+    paper: Paper, entry: ControlEntry, found: Sequence[LinearForm], few: Decomposition
+) -> str:
     forces, letter = Forces(paper), paper.letters["steepness"]
-    kept = least([forces.form(form) for form in found])
+    kept = [forces.form(form) for form in found]
     own = None if entry.own is None else forces.form(linear_form(entry.own, paper.analysis))
-    symbolic = any(form.numbers() is None for form in kept)
-    parts = [r"\paragraph{Limit.} For all values of the other symbols",
+    parts = [r"\paragraph{Limit.} For all admissible values of the symbols",
              align([_statement(paper, asked, letter) for asked in entry.asked], paper.width),
-             _ranges(paper, entry.asked), "with",
-             steepness_equations(forces, kept, letter)]
+             "with", steepness_equations(forces, kept, letter),
+             forces.text(), _strength(letter, forces, kept), _least_words(forces, kept),
+             _ranges(paper, entry.asked), "", _reached(paper, letter, found, few, entry.own)]
     if own is not None and own not in kept:
         parts += ["The decomposition chosen for this network gives by itself",
                   align([form_equation(forces, own, rf"{letter}_{{\mathrm{{own}}}}")],
                         paper.width)]
-    explained = forces.text()
-    parts += [explained, _strength(letter, forces, kept), _least_words(forces, kept, symbolic)]
-    return "\n".join(part for part in parts if part)
+    return "\n".join(parts)
+
+
+def _reached(
+    paper: Paper, letter: str, found: Sequence[LinearForm], few: Decomposition,
+    own: Decomposition | None,
+) -> str:
+    """Return the pieces that give each form."""
+    words, texts = PieceWords(paper), []
+    for form in found[:MAX_REACHED]:
+        known = [name for name, other in (("the few pieces above", few),
+                                          ("the pieces chosen for this network", own))
+                 if other == form.decomposition]
+        texts.append(known[0] if known else words.text(form.decomposition))
+    if len(found) == 1:
+        return f"This ${letter}$ comes from {texts[0]}."
+    which = "The" if len(found) <= MAX_REACHED else f"The first {MAX_REACHED} of the {len(found)}"
+    items = "\n".join(rf"\item {text};" for text in texts[:-1])
+    return (f"{which} forms come, in their order, from\n\\begin{{enumerate}}\n{items}\n"
+            rf"\item {texts[-1]}." + "\n\\end{enumerate}")
 
 
 def _statement(paper: Paper, asked: Asked, letter: str) -> Equation:
@@ -106,7 +144,7 @@ def _statement(paper: Paper, asked: Asked, letter: str) -> Equation:
     inner = quantity_in(paper.notation, Response(asked.quantity, asked.by))
     left = rf"\Bigl|{inner}\Bigr|"
     mean = quantity_in(paper.notation, asked.quantity)
-    factors = [letter, *_product(mean, isinstance(asked.quantity, Mean | Probability),
+    factors = [*_product(letter, mean, isinstance(asked.quantity, Mean | Probability),
                                  _extremes(asked))]
     limit = line_limit(left, paper.width)
     body = r" \, ".join(factors)
@@ -114,20 +152,24 @@ def _statement(paper: Paper, asked: Asked, letter: str) -> Equation:
     return Equation(left, tuple(pieces), relation=r"\le")
 
 
-def _product(mean: str, atom: bool, extremes: tuple[Fraction, Fraction] | None) -> list[str]:
+def _product(
+    letter: str, mean: str, atom: bool, extremes: tuple[Fraction, Fraction] | None
+) -> list[str]:
+    """Return the factors of H (<q> - low)(high - <q>)/(high - low)."""
     shown = mean if atom else f"({mean})"
     if extremes is None:
         low, high = r"q_{\min}", r"q_{\max}"
-        return [rf"\frac{{1}}{{{high} - {low}}}", f"({shown} - {low})", f"({high} - {shown})"]
+        factor = rf"\frac{{{letter}}}{{{high} - {low}}}"
+        return [factor, f"({shown} - {low})", f"({high} - {shown})"]
     low, high = (fraction_latex(end) for end in extremes)
     above = f"({high} - {shown})"
-    if extremes[0] == 0:
-        factors = [shown, above]
-    else:
-        sign = "+" if extremes[0] < 0 else "-"
-        factors = [f"({mean} {sign} {low.removeprefix('-')})", above]
+    below = shown if extremes[0] == 0 else (
+        f"({mean} {'+' if extremes[0] < 0 else '-'} {low.removeprefix('-')})")
     width = extremes[1] - extremes[0]
-    return factors if width == 1 else [fraction_latex(1 / width), *factors]
+    if width.denominator > 1:
+        return [fraction_latex(1 / width), letter, below, above]
+    factor = letter if width == 1 else rf"\frac{{{letter}}}{{{width}}}"
+    return [factor, below, above]
 
 
 def _extremes(asked: Asked) -> tuple[Fraction, Fraction] | None:
@@ -161,23 +203,24 @@ def _ranges(paper: Paper, every: Sequence[Asked]) -> str:
 
 def _strength(letter: str, forces: Forces, kept: Sequence[Form]) -> str:
     """Return H without forces and at infinite ones."""
-    weak, strong = at_equal(kept, 0), at_equal(kept, 1)
     if not forces.places:
-        return ""
+        return f"It does not depend on the{' finite' if forces.infinite else ''} forces."
+    weak, strong = at_equal(kept, 0), at_equal(kept, 1)
     some = " of the cycles without one-way steps" if forces.infinite else ""
     if weak is None or strong is None:
         names = listed([f"${forces.name(place)}$" for place in range(len(forces.places))])
-        return f"Without forces{some} {names} vanish; at infinite forces they are one."
+        verb = "vanish" if len(forces.places) > 1 else "vanishes"
+        return f"Without forces{some} {names} {verb}; at infinite forces it is one."
     return (f"Without forces{some} ${letter} = {weak}$; however strong the driving,"
             rf" ${letter} \le {strong}$.")
 
 
-def _least_words(forces: Forces, kept: Sequence[Form], symbolic: bool) -> str:
+def _least_words(forces: Forces, kept: Sequence[Form]) -> str:
     """Return in what sense H is the least that the family gives."""
-    if symbolic:
-        return ("Here the part of the change that is made of numbers and that beside each other"
-                " expression are limited one by one.")
-    if len(forces.places) > 1 and len(kept) > 1:
-        return (f"Where ${forces.name(0)}$ and the others are equal, this is the least that the"
+    if any(form.numbers() is None for form in kept):
+        return ("The numbers in the change, and what stands beside each other expression in it,"
+                " are limited one by one.")
+    if len(forces.places) > 1:
+        return (f"Where all ${forces.paper.letters['tanh']}_i$ are equal this is the least that the"
                 " family gives; elsewhere the family may give less.")
     return ""

@@ -24,8 +24,6 @@ of a function of the state responds to it is limited by taking the changes
 $\partial \ln @rate@ / \partial @parameter@$ of all rates apart into pieces. For positive rates the
 pieces have these effects on $\ln (@probability@_i / @probability@_j)$:"""
 
-_DERIVED = "derived here"
-
 
 def _several(family: Family) -> bool:
     return any(len(part) > 1 for part in family.bundles)
@@ -43,8 +41,8 @@ def _pieces(family: Family, one_way: bool) -> str:
                   r"~\cite{owen}" + ("; for several derived here);" if _several(family) else ");"))
         items.append(bundle)
     items.append(r"blocks, $@amount@$ on all rates of a set of transitions that the rest of the "
-                 "network meets in single states only: none, as every spanning tree uses equally "
-                 "many of them;")
+                 "network meets in single states only: no effect, as every spanning tree uses "
+                 "equally many of them;")
     drive = (r"drives, $@amount@/2$ on the forward and $-@amount@/2$ on the backward rate of a "
              r"transition: at most $|@amount@|$")
     items.append(drive + (r", for a one-way step $|@amount@|/2$" if one_way else "")

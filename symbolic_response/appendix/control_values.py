@@ -6,19 +6,20 @@ from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
 from fractions import Fraction
 
-from symbolic_response.appendix.control_decimals import exact_latex, value_latex, values_text
+from symbolic_response.appendix.control_decimals import value_latex, value_words, values_text
+from symbolic_response.appendix.control_ends import ends_text
 from symbolic_response.appendix.control_entries import ControlEntry
 from symbolic_response.appendix.control_functions import FunctionPrinter
 from symbolic_response.appendix.escape import escaped
 from symbolic_response.appendix.paper import Paper
 from symbolic_response.control.asked import Asked, observable_values, rescaled
 from symbolic_response.control.at_points import Place
+from symbolic_response.control.curve_data import CurveData
 from symbolic_response.control.decomposition import LinearForm
 from symbolic_response.control.extrema import Extremum, Maximum, maximum
 from symbolic_response.control.function import function_of
 from symbolic_response.control.rational import (
     EXPONENTIAL,
-    PLAIN,
     RationalFunction,
     fraction_enclosure,
 )
@@ -47,11 +48,12 @@ def values_section(
 ) -> str:
     """Return functions, steepest places, limits and figures of the observables of an entry."""
     followed = [_followed(paper, asked) for asked in entry.asked]
+    x = paper.notation.symbols[entry.by.name]
     parts = [r"\paragraph{With values.} " + _functions(paper, entry, followed, values)]
     for number, each in enumerate(followed, start=1):
         label = f"fig:control-{int(entry.place[1]) + 1}-{number}"
         parts.append(_steepest(paper, entry, each, forms, label))
-        parts.append(_ends(paper, each))
+        parts.append(ends_text(each.latex, each.function, x))
         if entry.low is not None and entry.high is not None:
             parts.append(_figure(paper, entry, each, values, label))
     return "\n\n".join(parts)
@@ -74,7 +76,9 @@ def _functions(
     for each in followed:
         derivative = quantity_in(paper.notation, Response(each.asked.quantity, entry.by))
         functions += [(each.latex, each.function), (derivative, each.function.sensitivity())]
-    opening = f"For {values_text(paper, values)}, exactly," if values else "Exactly,"
+    x = paper.notation.symbols[entry.by.name]
+    opening = f"For {values_text(paper, values)} the" if values else "The"
+    opening += f" exact functions of ${x}$ are"
     return opening + "\n" + printer.text(functions)
 
 
@@ -107,8 +111,7 @@ def _range(paper: Paper, entry: ControlEntry) -> str:
 
 def _maximum(found: Maximum, x: str, f: RationalFunction) -> str:
     """Return a largest value and where it is."""
-    value = value_latex(found.value, found.exact_value)
-    shown = f"${value.removeprefix('= ')}$"
+    shown = value_words(found.value, found.exact_value)
     if found.constant:
         return f"{shown} everywhere"
     places = [_place(place, x, f) for place in found.places[:MOST_PLACES]]
@@ -143,66 +146,33 @@ def _limit_there(
     return f", where ${paper.letters['steepness']} {value}$"
 
 
-# -- the ends of the parameter ---------------------------------------------------------------------
-
-
-def _ends(paper: Paper, each: Followed) -> str:
-    f = each.function
-    if f.as_constant() is not None:
-        return ""
-    x = paper.notation.symbols[each.asked.symbol]
-    low = "0" if f.kind not in (EXPONENTIAL, PLAIN) else r"-\infty"
-    texts = [f"${each.latex} = {_expansion(f, end, x)}$ for ${x} \\to {goal}$"
-             for end, goal in (("low", low), ("high", r"\infty"))]
-    return f"At the ends {texts[0]}, and {texts[1]}."
-
-
-def _expansion(f: RationalFunction, end: str, x: str) -> str:
-    r"""Return the limit and the leading term beside it, or the leading term of what grows."""
-    limit = f.limit(end)
-    constant = limit if limit is not None else Fraction(0)
-    coefficient, exponent = (f - constant).leading_term(end)
-    term = _term(coefficient, exponent, x, f.kind == EXPONENTIAL)
-    if limit:
-        term = f"- {term.removeprefix('-')}" if term.startswith("-") else f"+ {term}"
-        term = f"{exact_latex(limit)} {term}"
-    return term + r" + \ldots"
-
-
-def _term(coefficient: Fraction, exponent: Fraction, x: str, exponential: bool) -> str:
-    size = exact_latex(coefficient)
-    size = size.removesuffix("1") if size in ("1", "-1") else size + r" \, "
-    if exponential:
-        power = "" if abs(exponent) == 1 else f"{exponent} "
-        return f"{size}e^{{{'-' if exponent == -1 else ''}{power.strip()} {x}}}"
-    base = f"({x})" if "^" in x else x
-    return size + (base if exponent == 1 else f"{base}^{{{exponent}}}")
-
-
 # -- figures ---------------------------------------------------------------------------------------
 
 
 def _figure(
     paper: Paper, entry: ControlEntry, each: Followed, values: Mapping[str, Expression], label: str
 ) -> str:
+    """Return the figure of a response curve, with a caption that says what is drawn."""
     assert entry.low is not None and entry.high is not None
     data = response_curve(paper.analysis, each.asked.text, entry.by.name, values,
                           low=entry.low, high=entry.high, count=entry.points)
     picture = curve_pgfplots(data, escaped)
     return "\n".join([r"\begin{figure}[htbp]", r"\centering", picture.rstrip(),
-                      rf"\caption{{{_caption(paper, entry, each, values)}}}",
+                      rf"\caption{{{_caption(paper, data, each, values)}}}",
                       rf"\label{{{label}}}", r"\end{figure}"])
 
 
 def _caption(
-    paper: Paper, entry: ControlEntry, each: Followed, values: Mapping[str, Expression]
+    paper: Paper, data: CurveData, each: Followed, values: Mapping[str, Expression]
 ) -> str:
-    letter = paper.letters["steepness"]
-    x = paper.notation.symbols[entry.by.name]
-    scaled = ", brought to the range from 0 to 1" if each.scaled != each.function else ""
+    letter, x = paper.letters["steepness"], data.parameter_latex
+    scaled = ", brought to the range from 0 to 1" if data.rescaled is not None else ""
     given = f" for {values_text(paper, values)}" if values else ""
-    return (rf"Response of ${each.latex}${scaled} to ${x}${given}. Above: the exact curve, and the"
-            f" curve that is as steep as ${letter}$ allows at each ${x}$ through the open circle,"
-            " with the forces there and without forces. Below: the size of the sensitivity, its"
-            r" limit by Eq.~\eqref{eq:control}, and a finer limit with covariances in place of the"
-            rf" range~\cite{{martins}}. Drawn through {entry.points} exact points.")
+    driven = any(point.steepness != data.h0 for point in data.points)
+    other = "; dotted, the same without forces" if driven and data.h0 is not None else ""
+    return (rf"Response of ${each.latex}${scaled} to ${x}${given}. Above: solid, the exact curve;"
+            f" dashed, the curve that is as steep as ${letter}$ allows at each ${x}$, through the"
+            f" open circle{other}. Below, for the exact curve: solid, the size of its sensitivity;"
+            r" dashed, the limit of Eq.~\eqref{eq:control}; dash-dotted, a finer limit with"
+            rf" covariances in place of the range~\cite{{martins}}. Lines join {len(data.points)}"
+            " exact points.")
