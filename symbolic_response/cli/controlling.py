@@ -17,10 +17,11 @@ from symbolic_response.cli.options import (
     quiet_option,
     read,
 )
-from symbolic_response.errors import AssignmentError, OutputError
+from symbolic_response.errors import AssignmentError, ExpressionError, OutputError
 from symbolic_response.progress import Progress
 
 if TYPE_CHECKING:
+    from symbolic_response.control.curve_data import CurveData
     from symbolic_response.expressions.tree import Expression
 
 at_option = click.option("--at", multiple=True, metavar="SYMBOL=VALUE",
@@ -67,11 +68,12 @@ def steepness(
     from symbolic_response.response.deriving import read_assignments
 
     values = read_assignments(at, "--at")
+    first, last = _value(low, "--from"), _value(high, "--to")
+    h = _fraction(measured, "--measured")
     with Progress(quiet) as progress:
         progress.stage(f"steepness of {observable} in {parameter}")
         found = find(analysis_of(read(network), progress), observable, parameter, values,
-                     low=_value(low, "--from"), high=_value(high, "--to"),
-                     measured=_fraction(measured))
+                     low=first, high=last, measured=h)
     click.echo(json.dumps(steepness_data(found), indent=1) if as_json else steepness_text(found))
     return 0
 
@@ -112,11 +114,10 @@ def curve(
     Example:
       symbolic-response curve net.toml "mean[open]" c --at k=1 --from 1/100 --to 100 -o open.pdf
     """
-    from symbolic_response.appendix.escape import escaped
     from symbolic_response.control.curve_data import curve_csv
+    from symbolic_response.control.report import curve_data_json
     from symbolic_response.control.response_curve import response_curve
     from symbolic_response.figures.curve import curve_figure
-    from symbolic_response.figures.pgfplots import curve_pgfplots
     from symbolic_response.response.deriving import read_assignments
 
     _check_outputs(network, output, (".csv", ".tex"))
@@ -130,10 +131,11 @@ def curve(
                               parameter, values, low=first, high=last, count=points,
                               progress=progress)
         table = curve_csv(data)
-        _write(output, {".csv": lambda: table, ".tex": lambda: curve_pgfplots(data, escaped)},
+        _write(output, {".csv": lambda: table, ".tex": lambda: _pgfplots(data)},
                lambda path: curve_figure(data, path, columns))
-    _say(output, table, as_json, {"network": described.title, "observable": observable,
-                                  "parameter": parameter, "points": len(data.points)})
+    _say(output, table, as_json, lambda: {
+        "network": described.title, "observable": observable, "parameter": data.parameter,
+        **curve_data_json(data)})
     return 0
 
 
@@ -172,6 +174,7 @@ def cloud(
     """
     from symbolic_response.control.cloud import cloud as sample
     from symbolic_response.control.cloud import cloud_csv
+    from symbolic_response.control.report import cloud_json
     from symbolic_response.figures.cloud import cloud_figure
 
     _check_outputs(network, output, (".csv",))
@@ -182,9 +185,18 @@ def cloud(
                       workers, progress)
         table = cloud_csv(data)
         _write(output, {".csv": lambda: table}, lambda path: cloud_figure(data, path, columns))
-    _say(output, table, as_json, {"network": described.title, "response": response,
-                                  "points": len(data.points)})
+    if data.skipped is not None and not quiet:
+        click.echo(f"no points near the envelope are constructed: {data.skipped}", err=True)
+    _say(output, table, as_json, lambda: {
+        "network": described.title, "response": response, **cloud_json(data)})
     return 0
+
+
+def _pgfplots(data: CurveData) -> str:
+    from symbolic_response.appendix.escape import escaped
+    from symbolic_response.figures.pgfplots import curve_pgfplots
+
+    return curve_pgfplots(data, escaped)
 
 
 def _value(text: str | None, option: str) -> Expression | None:
@@ -194,19 +206,23 @@ def _value(text: str | None, option: str) -> Expression | None:
 
     if text is None:
         return None
-    value = read_expression(text)
+    try:
+        value = read_expression(text)
+    except ExpressionError as error:
+        raise AssignmentError(f"{option} {text[:60]!r}: {error}") from None
     if symbols_of(value):
         raise AssignmentError(f"{option} {text}: write an exact value without symbols, such as 3/7")
     return value
 
 
-def _fraction(text: str | None) -> Fraction | None:
-    if text is None:
-        return None
-    try:
-        return Fraction(text)
-    except (ValueError, ZeroDivisionError):
-        raise AssignmentError(f"--measured {text}: write a number such as 3/2 or 1.5") from None
+def _fraction(text: str | None, option: str) -> Fraction | None:
+    """Return the rational number that an option gives."""
+    from symbolic_response.expressions.tree import Number
+
+    value = _value(text, option)
+    if value is None or isinstance(value, Number):
+        return None if value is None else value.value
+    raise AssignmentError(f"{option} {text}: write a number such as 3/2 or 1.5")
 
 
 def _check_outputs(network: str, output: tuple[str, ...], texts: tuple[str, ...]) -> None:
@@ -234,9 +250,11 @@ def _write(
             write_files({Path(path): text()})
 
 
-def _say(output: tuple[str, ...], table: str, as_json: bool, data: dict[str, object]) -> None:
+def _say(
+    output: tuple[str, ...], table: str, as_json: bool, data: Callable[[], dict[str, object]]
+) -> None:
     if as_json:
-        click.echo(json.dumps({**data, "files": list(output), "table": table}))
+        click.echo(json.dumps({**data(), "files": list(output)}, indent=1))
     elif output:
         click.echo("\n".join(f"wrote {path}" for path in output))
     else:

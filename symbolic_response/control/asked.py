@@ -2,19 +2,29 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping
+from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
 from fractions import Fraction
 
 from symbolic_response.bounds.target import depends_on, target_of
 from symbolic_response.errors import AssignmentError, EvaluationError, QuantityError
 from symbolic_response.expressions.names import nearest
-from symbolic_response.expressions.tree import Expression, add, divide, negate, number
+from symbolic_response.expressions.tree import (
+    Expression,
+    Sum,
+    add,
+    divide,
+    negate,
+    number,
+    symbols_of,
+)
 from symbolic_response.network.quantities import BySymbol
 from symbolic_response.network.quantity_reader import read_quantity
 from symbolic_response.response.analysis import Analysis
 from symbolic_response.response.deriving import Given, check_values, given
 from symbolic_response.response.direct import direct_value
+
+_SAME = "the observable is the same in every state: nothing responds"
 
 
 @dataclass(frozen=True, slots=True)
@@ -29,6 +39,11 @@ class Asked:
     observable: tuple[Expression, ...]
     by: BySymbol
     values: Mapping[str, Expression]
+
+    @property
+    def term(self) -> str:
+        """The observable as a term of a difference or quotient: a sum in parentheses."""
+        return f"({self.text})" if isinstance(self.quantity, Sum) else self.text
 
     @property
     def symbol(self) -> str:
@@ -72,6 +87,22 @@ def asked_of(
     return Asked(text, quantity, target.asked.above, BySymbol(name, entry.positive), values)
 
 
+def extremes(asked: Asked) -> tuple[Fraction, Fraction] | None:
+    """Return the least and the largest value of the observable.
+
+    None where a symbol in it has no value. Raises QuantityError for an observable that is the same
+    in every state, EvaluationError for values that are not rational.
+    """
+    symbols = set().union(*(symbols_of(value) for value in asked.observable))
+    if len(set(asked.observable)) > 1 and symbols - asked.values.keys():
+        return None
+    values = observable_values(asked)
+    low, high = min(values), max(values)
+    if low == high:
+        raise QuantityError(_SAME)
+    return low, high
+
+
 def observable_values(asked: Asked) -> tuple[Fraction, ...]:
     """Return the observable in each state; EvaluationError where a symbol in it has no value."""
     found = []
@@ -84,14 +115,14 @@ def observable_values(asked: Asked) -> tuple[Fraction, ...]:
     return tuple(found)
 
 
-def rescaled(asked: Asked, values: tuple[Fraction, ...]) -> tuple[Expression, bool]:
+def rescaled(asked: Asked, values: Sequence[Fraction]) -> tuple[Expression, bool]:
     """Return the observable brought to 0 .. 1, and whether that changed it.
 
     Raises QuantityError for an observable that is the same in every state.
     """
     low, high = min(values), max(values)
     if low == high:
-        raise QuantityError("the observable is the same in every state: nothing responds")
+        raise QuantityError(_SAME)
     if low == 0 and high == 1:
         return asked.quantity, False
     shifted = add([asked.quantity, negate(number(low))])

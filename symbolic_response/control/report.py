@@ -1,13 +1,24 @@
-"""What ``steepness`` says, for people and as data."""
+"""What the verbs about control parameters say, for people and as data."""
 
 from __future__ import annotations
 
 from fractions import Fraction
 
+from symbolic_response.bounds.sides import perturbation_text
+from symbolic_response.control.cloud import Cloud
+from symbolic_response.control.curve_data import (
+    CurveData,
+    Exact,
+    decimal_text,
+    exact_text,
+    rescaled_text,
+    sensitivity_text,
+)
 from symbolic_response.control.decomposition import Decomposition
 from symbolic_response.control.extrema import Maximum
 from symbolic_response.control.result import Steepness
 from symbolic_response.control.steepness import Reading
+from symbolic_response.expressions.text import fraction_text
 from symbolic_response.network.model import Network
 
 MOST_CYCLES = 6
@@ -31,18 +42,26 @@ def steepness_text(result: Steepness) -> str:
         lines.append(f"without forces H = {ends[0]}; however strong the driving H <= {ends[1]}")
     lines.append(f"family: {result.family.words()}")
     lines.append(f"d/d {by} in fewest pieces: {pieces_text(result.simplest, network)}")
-    lines += [f"that of the file, checked: {pieces_text(own, network)}" for own in result.own]
+    lines += [f"that of the file, checked: d/d {perturbation_text(parameter, network)}:"
+              f" {pieces_text(own, network)}" for parameter, own in result.own]
     lines += _reading_lines(result.reading)
     return "\n".join(lines + _actual_lines(result, by))
 
 
 def scaled_text(result: Steepness) -> str:
     """Return the observable brought to 0 .. 1."""
+    asked = result.asked
     if result.range is None:
-        return result.asked.text
+        return f"({asked.term} - low)/(high - low), low and high its extremes over the states"
     low, high = result.range
-    inner = result.asked.text if low == 0 else f"({result.asked.text} - ({low}))"
-    return inner if high - low == 1 else f"{inner}/({high - low})"
+    if low == 0:
+        inner = asked.text if high == 1 else asked.term
+    else:
+        inner = f"({asked.text} {'+' if low < 0 else '-'} {abs(low)})"
+    width = high - low
+    if width == 1:
+        return inner
+    return f"{inner}/{width}" if width.denominator == 1 else f"{inner}/({width})"
 
 
 def _reading_lines(reading: Reading | None) -> list[str]:
@@ -112,7 +131,8 @@ def steepness_data(result: Steepness) -> dict[str, object]:
         "without_forces": None if ends[0] is None else str(ends[0]),
         "with_any_forces": None if ends[1] is None else str(ends[1]),
         "simplest": result.simplest.data(network),
-        "own": [own.data(network) for own in result.own],
+        "own": [{"parameter": perturbation_text(parameter, network), **own.data(network)}
+                for parameter, own in result.own],
         "reading": None if reading is None else {
             "verdict": reading.verdict, "t": None if reading.t is None else str(reading.t),
             "force": None if reading.force is None else list(reading.force)},
@@ -123,6 +143,48 @@ def steepness_data(result: Steepness) -> dict[str, object]:
         "steepest": None if actual is None else _maximum_data(actual.steepest),
         "largest_exponent": None if actual is None else _maximum_data(actual.largest),
     }
+
+
+def curve_data_json(data: CurveData) -> dict[str, object]:
+    """Return a response curve as plain data for JSON; each number exactly and as a decimal."""
+    h0 = data.h0
+    return {
+        "logarithmic": data.logarithmic,
+        "range": [str(end) for end in data.rescaled or (0, 1)],
+        "q": rescaled_text(data, data.observable),
+        "sensitivity": sensitivity_text(data),
+        "steepness_without_forces": _both(h0) if isinstance(h0, Fraction) else None,
+        "points": [
+            {"x": _both(point.x), "q": _both(point.q), "sensitivity": _both(point.sensitivity),
+             "steepness": _both(point.steepness), "bound": _both(point.bound),
+             "covariance_bound": _both(point.covariance)}
+            for point in data.points
+        ],
+    }
+
+
+def cloud_json(data: Cloud) -> dict[str, object]:
+    """Return a cloud as plain data for JSON."""
+    return {
+        "value": data.value_text,
+        "transition": data.transition,
+        "seed": data.seed,
+        "sampled": data.count,
+        "not_constructed": data.skipped,
+        "points": [
+            {"exp_force": fraction_text(point.g), "force": f"{point.force:.12g}",
+             "value": _both(point.value), "exp_end_pair_force": fraction_text(point.end_pair),
+             "end_pair_force": f"{point.end_pair_force:.12g}", "constructed": point.made}
+            for point in data.points
+        ],
+    }
+
+
+def _both(value: Exact | None) -> dict[str, str] | None:
+    """Return a number exactly and to 12 digits."""
+    if value is None:
+        return None
+    return {"exact": exact_text(value), "decimal": decimal_text(value)}
 
 
 def _maximum_data(found: Maximum) -> dict[str, object]:

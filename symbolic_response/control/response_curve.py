@@ -2,10 +2,16 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable, Mapping, Sequence
+from collections.abc import Callable, Mapping
 from fractions import Fraction
 
-from symbolic_response.control.asked import Asked, asked_of, observable_values, rescaled
+from symbolic_response.control.asked import (
+    Asked,
+    asked_of,
+    extremes,
+    observable_values,
+    rescaled,
+)
 from symbolic_response.control.at_points import Limit, Place, limit_at
 from symbolic_response.control.covariances import observable_limits
 from symbolic_response.control.curve_data import CurveData, CurvePoint
@@ -14,7 +20,7 @@ from symbolic_response.control.family import Family, family_of
 from symbolic_response.control.function import curve, function_of
 from symbolic_response.control.steepness import forms
 from symbolic_response.errors import EvaluationError
-from symbolic_response.expressions.tree import Expression
+from symbolic_response.expressions.tree import Expression, Sum
 from symbolic_response.network.model import Network
 from symbolic_response.response.analysis import Analysis, as_analysis
 from symbolic_response.response.closed_form import symbol_names
@@ -48,12 +54,12 @@ def response_curve(
     if missing:
         raise EvaluationError(f"a curve needs every other symbol; {missing[0]} has no value: give"
                               f" it one with --at {missing[0]}=VALUE")
-    values = observable_values(asked)
-    quantity, changed = rescaled(asked, values)
-    function = function_of(analysis, quantity, asked.symbol, asked.values)
+    ends = extremes(asked)
+    assert ends is not None  # every symbol has a value
+    function = function_of(analysis, rescaled(asked, ends)[0], asked.symbol, asked.values)
     slope = function.sensitivity()
     spacing = "log" if asked.by.logarithmic else "linear"
-    limits = _Limits(analysis, asked, values)
+    limits = _Limits(analysis, asked, ends)
     points = []
     for done, place in enumerate(curve(function, low, high, count, spacing)):
         x = place.x
@@ -63,20 +69,27 @@ def response_curve(
             progress(done + 1, count)
     entry = next(e for e in analysis.network.symbols if e.name == asked.symbol)
     return CurveData(
-        asked.symbol, symbol_names(analysis.network)[asked.symbol], asked.text,
-        quantity_in(notation_of(analysis.network), asked.quantity), asked.by.logarithmic,
-        tuple(points),
-        entry.about, "", (min(values), max(values)) if changed else None, limits.without_forces,
+        asked.symbol, symbol_names(analysis.network)[asked.symbol], asked.term,
+        _latex(analysis, asked), asked.by.logarithmic, tuple(points), entry.about, "",
+        None if ends == (Fraction(0), Fraction(1)) else ends, limits.without_forces,
     )
+
+
+def _latex(analysis: Analysis, asked: Asked) -> str:
+    """Return the observable in LaTeX, as a term of a difference or quotient."""
+    shown = quantity_in(notation_of(analysis.network), asked.quantity)
+    return rf"\left({shown}\right)" if isinstance(asked.quantity, Sum) else shown
 
 
 class _Limits:
     """The limits at many points: the best of the forms, or the program where they depend on x."""
 
-    def __init__(self, analysis: Analysis, asked: Asked, values: Sequence[Fraction]) -> None:
+    def __init__(
+        self, analysis: Analysis, asked: Asked, ends: tuple[Fraction, Fraction]
+    ) -> None:
         self.analysis, self.asked = analysis, asked
-        low, high = min(values), max(values)
-        self.observable = [(value - low) / (high - low) for value in values]
+        low, high = ends
+        self.observable = [(value - low) / (high - low) for value in observable_values(asked)]
         self.family: Family = family_of(analysis)
         self.forms = forms(analysis, asked.by, self.family)
         self.fixed = all(form.numbers() is not None for form in self.forms)

@@ -8,7 +8,7 @@ from fractions import Fraction
 
 from symbolic_response.bounds.claim import MixedCycles
 from symbolic_response.bounds.topological import competing
-from symbolic_response.control.asked import Asked, asked_of, observable_values, rescaled
+from symbolic_response.control.asked import Asked, asked_of, extremes, rescaled
 from symbolic_response.control.changes import change_of
 from symbolic_response.control.decomposition import Decomposition, LinearForm, sparsest
 from symbolic_response.control.extrema import Maximum, maximum
@@ -22,7 +22,10 @@ from symbolic_response.control.user_decomposition import (
     parameter_of,
     user_decomposition,
 )
+from symbolic_response.errors import AssignmentError
+from symbolic_response.network.entries import DocumentError, check_keys
 from symbolic_response.network.model import Network
+from symbolic_response.network.quantities import BySymbol
 from symbolic_response.response.analysis import Analysis, as_analysis
 from symbolic_response.response.deriving import Given
 from symbolic_response.response.forces import force_of
@@ -54,9 +57,10 @@ class Steepness:
 
     ``forms``: H is at most each of them, for all forces; ``bundles``: for each bundle in them the
     cycles that set its force, with their forces. ``simplest``: the change of the rates in fewest
-    pieces; ``own``: that of the file. ``range``: the extremes of an observable that was brought to
-    0 .. 1. ``actual``: None where a symbol has no value (``missing``). ``reading``: of a measured
-    steepness.
+    pieces; ``own``: those of the file, each with the parameter or its logarithm that it is for.
+    ``range``: the extremes of the observable, which is brought to 0 .. 1; None where a symbol in
+    them has no value. ``actual``: None where any symbol has none (``missing``). ``reading``: of a
+    measured steepness.
     """
 
     network: Network
@@ -65,7 +69,7 @@ class Steepness:
     forms: tuple[LinearForm, ...]
     bundles: dict[Part, list[tuple[str, str]]]
     simplest: Decomposition
-    own: tuple[Decomposition, ...]
+    own: tuple[tuple[BySymbol, Decomposition], ...]
     range: tuple[Fraction, Fraction] | None
     missing: tuple[str, ...]
     actual: Actual | None
@@ -94,24 +98,29 @@ def steepness(
 
     |d<Q>/d ln x| <= H <Q>(1 - <Q>) for 0 <= Q <= 1; observables of another range are brought to
     it. ``at``: the other symbols; with all of them given, the exact function of the parameter and
-    its steepest places between ``low`` and ``high`` (None: open). ``measured``: a steepness to be
-    read backwards. Raises QuantityError, AssignmentError, EvaluationError, SizeLimitError.
+    its steepest places between ``low`` and ``high`` (None: open). ``measured``: a steepness, not
+    negative, to be read backwards. Raises QuantityError, AssignmentError, EvaluationError,
+    SizeLimitError.
     """
     analysis = as_analysis(subject)
     asked = asked_of(analysis, observable, parameter, at)
+    ends, missing = extremes(asked), tuple(asked.missing(analysis))
+    if missing and (low is not None or high is not None):
+        raise AssignmentError(f"a range of {asked.symbol} needs a value for every other symbol;"
+                              f" {missing[0]} has none")
+    if measured is not None and measured < 0:
+        raise AssignmentError(f"a steepness is the size of a slope; {measured} is negative")
     family = family_of(analysis)
     found = forms(analysis, asked.by, family)
     change = change_of(analysis, asked.by)
-    missing = tuple(asked.missing(analysis))
-    actual, extremes = None, None
-    if not missing:
-        values = observable_values(asked)
-        quantity, changed = rescaled(asked, values)
-        extremes = (min(values), max(values)) if changed else None
-        actual = _actual(function_of(analysis, quantity, asked.symbol, asked.values), low, high)
+    own = _own(analysis, asked)
+    actual = None
+    if not missing and ends is not None:
+        function = function_of(analysis, rescaled(asked, ends)[0], asked.symbol, asked.values)
+        actual = _actual(function, low, high)
     return Steepness(
         analysis.network, asked, family, found, _bundles(found, analysis),
-        sparsest(analysis, change, family), _own(analysis, asked), extremes, missing, actual,
+        sparsest(analysis, change, family), own, ends, missing, actual,
         None if measured is None else read_backwards(found, measured),
     )
 
@@ -123,17 +132,26 @@ def _actual(function: RationalFunction, low: Given | None, high: Given | None) -
                   maximum(exponent, low, high, absolute=True))
 
 
-def _own(analysis: Analysis, asked: Asked) -> tuple[Decomposition, ...]:
-    """Return the decompositions that the file gives for this parameter, each checked."""
+def _own(analysis: Analysis, asked: Asked) -> tuple[tuple[BySymbol, Decomposition], ...]:
+    """Return the decompositions that the file gives for this parameter, each checked.
+
+    Entries of other parameters are not looked into.
+    """
     network = analysis.network
     found = []
     for ordinal, entry in enumerate(network.control):
         place = ("control", ordinal)
-        by = parameter_of(entry, network, place)
-        if by.name == asked.symbol and any(key in entry for key in PIECES):
-            made = user_decomposition(analysis, by, entry, place, ALSO)
-            if by == asked.by:
-                found.append(made)
+        try:
+            by = parameter_of(entry, network, place)
+            if by.name != asked.symbol:
+                continue
+            if any(key in entry for key in PIECES):
+                found.append((by, user_decomposition(analysis, by, entry, place, ALSO)))
+            else:
+                check_keys(entry, ("parameter", *PIECES, *ALSO), "a control entry", place)
+        except DocumentError as error:
+            raise DocumentError(f"[[control]], entry {ordinal + 1}: {error}", *error.place
+                                ) from None
     return tuple(found)
 
 
