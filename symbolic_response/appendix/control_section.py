@@ -112,12 +112,12 @@ def _limit(
              align([_statement(paper, asked, letter) for asked in entry.asked], paper.width),
              "with", steepness_equations(forces, kept, letter),
              forces.text(), _strength(letter, forces, kept), _least_words(forces, kept),
-             _ranges(paper, entry.asked), "", _reached(paper, letter, found, few, entry.own)]
+             _ranges(paper, entry.asked), _reached(paper, letter, found, few, entry.own)]
     if own is not None and own not in kept:
         parts += ["The decomposition chosen for this network gives by itself",
                   align([form_equation(forces, own, rf"{letter}_{{\mathrm{{own}}}}")],
                         paper.width)]
-    return "\n".join(parts)
+    return "\n".join(part for part in parts if part)
 
 
 def _reached(

@@ -20,16 +20,20 @@ from symbolic_response.control.extrema import Extremum, Maximum, maximum
 from symbolic_response.control.function import function_of
 from symbolic_response.control.rational import (
     EXPONENTIAL,
+    POWER,
     RationalFunction,
     fraction_enclosure,
 )
 from symbolic_response.control.response_curve import response_curve
-from symbolic_response.expressions.tree import Expression
+from symbolic_response.expressions.tree import Expression, Number
 from symbolic_response.figures.pgfplots import curve_pgfplots
 from symbolic_response.network.quantities import Response
 from symbolic_response.response.quantity_latex import quantity_in
 
 MOST_PLACES = 3
+LABELS, SHARE, COLUMN = 80.0, 0.8, 300.0
+"""What the labels of a figure take beside its axes, in pt; the share of the line the axes take; the
+width below which a legend does not fit by itself."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -48,12 +52,12 @@ def values_section(
 ) -> str:
     """Return functions, steepest places, limits and figures of the observables of an entry."""
     followed = [_followed(paper, asked) for asked in entry.asked]
-    x = paper.notation.symbols[entry.by.name]
+    names = paper.notation.symbols
     parts = [r"\paragraph{With values.} " + _functions(paper, entry, followed, values)]
     for number, each in enumerate(followed, start=1):
         label = f"fig:control-{int(entry.place[1]) + 1}-{number}"
         parts.append(_steepest(paper, entry, each, forms, label))
-        parts.append(ends_text(each.latex, each.function, x))
+        parts.append(ends_text(each.latex, each.function, names))
         if entry.low is not None and entry.high is not None:
             parts.append(_figure(paper, entry, each, values, label))
     return "\n\n".join(parts)
@@ -91,12 +95,13 @@ def _steepest(
     x = paper.notation.symbols[entry.by.name]
     if each.function.as_constant() is not None:
         return f"With these values ${each.latex}$ does not depend on ${x}$."
-    steepest = maximum(each.function.sensitivity(), entry.low, entry.high, absolute=True)
-    largest = maximum(each.scaled.exponent(), entry.low, entry.high, absolute=True)
+    slope, exponent = each.function.sensitivity(), each.scaled.exponent()
+    steepest = maximum(slope, entry.low, entry.high, absolute=True)
+    largest = maximum(exponent, entry.low, entry.high, absolute=True)
     by = r"\ln " + x if entry.by.logarithmic else x
     text = (rf"{_range(paper, entry)} the largest $|\partial {each.latex} / \partial {by}|$ is"
-            f" {_maximum(steepest, x, each.function)}; the largest size of the local exponent is"
-            f" {_maximum(largest, x, each.function)}")
+            f" {_maximum(paper, entry, steepest, slope)}; the largest size of the local exponent is"
+            f" {_maximum(paper, entry, largest, exponent)}")
     limit = _limit_there(paper, each, forms, largest)
     figure = rf" (Fig.~\ref{{{label}}})" if entry.low is not None else ""
     return f"{text}{limit}{figure}."
@@ -109,24 +114,33 @@ def _range(paper: Paper, entry: ControlEntry) -> str:
     return f"For all positive ${x}$" if entry.by.logarithmic else f"For all real ${x}$"
 
 
-def _maximum(found: Maximum, x: str, f: RationalFunction) -> str:
+def _maximum(paper: Paper, entry: ControlEntry, found: Maximum, f: RationalFunction) -> str:
     """Return a largest value and where it is."""
     shown = value_words(found.value, found.exact_value)
     if found.constant:
         return f"{shown} everywhere"
-    places = [_place(place, x, f) for place in found.places[:MOST_PLACES]]
+    x = paper.notation.symbols[entry.by.name]
+    open_ends = (("low", "0" if f.kind == POWER else r"-\infty"), ("high", r"\infty"))
+    limits = iter([rf"for ${x} \to {goal}$" for side, goal in open_ends
+                   if abs(f.limit(side) or 0) == found.exact_value])
+    places = [next(limits) if place.x is None else
+              f"at ${x} {value_latex(place.x, _exact_place(entry, place, f))}$"
+              for place in found.places[:MOST_PLACES]]
     more = len(found.places) - len(places)
     text = " and ".join(places) + (f" and {more} more places" if more else "")
-    return f"{shown}, {text}" if found.attained else f"{shown}, not reached but approached {text}"
+    return f"{shown}, {text}" if found.attained else f"{shown}, approached {text}"
 
 
-def _place(place: Extremum, x: str, f: RationalFunction) -> str:
-    if place.x is None:
-        return "at an open end"
-    exact = None
-    if place.exact_y is not None and f.kind != EXPONENTIAL:
-        exact = place.exact_y**f.root
-    return f"at ${x} {value_latex(place.x, exact)}$"
+def _exact_place(entry: ControlEntry, place: Extremum, f: RationalFunction) -> Fraction | None:
+    """Return the parameter at a place where it is rational and known."""
+    if place.kind == "end" and place.x is not None:
+        low, high = map(Fraction, place.x)
+        for end in (entry.low, entry.high):
+            if isinstance(end, Number) and low <= end.value <= high:
+                return end.value
+    if place.exact_y is None or f.kind == EXPONENTIAL:
+        return None
+    return place.exact_y**f.root
 
 
 def _limit_there(
@@ -157,9 +171,16 @@ def _figure(
     data = response_curve(paper.analysis, each.asked.text, entry.by.name, values,
                           low=entry.low, high=entry.high, count=entry.points)
     picture = curve_pgfplots(data, escaped)
-    return "\n".join([r"\begin{figure}[htbp]", r"\centering", picture.rstrip(),
+    return "\n".join([r"\begin{figure}[htbp]", r"\centering", _fitted(paper, picture),
                       rf"\caption{{{_caption(paper, data, each, values)}}}",
                       rf"\label{{{label}}}", r"\end{figure}"])
+
+
+def _fitted(paper: Paper, picture: str) -> str:
+    """Return a picture drawn so that its labels fit beside it, a little smaller in a column."""
+    across = (paper.width - LABELS) / SHARE
+    drawn = rf"{{\setlength{{\linewidth}}{{{across:.0f}pt}}%" + f"\n{picture.rstrip()}}}"
+    return rf"\resizebox{{\linewidth}}{{!}}{drawn}" if paper.width < COLUMN else drawn
 
 
 def _caption(

@@ -122,7 +122,7 @@ def _group(paper: Paper, kind: str, quantities: Sequence[Expression]) -> str:
     definitions: list[NamedSum] = []
     for result in results:
         equation, fresh = _equation(paper, result)
-        _collect(paper, [*paper.needed([result.form.expression()]), *fresh], definitions)
+        collect(paper, [*paper.needed([result.form.expression()]), *fresh], definitions)
         equations.append(equation)
     texts = [formulas.introduction(paper, kind, definitions)]
     if definitions:
@@ -132,9 +132,7 @@ def _group(paper: Paper, kind: str, quantities: Sequence[Expression]) -> str:
     return "\n".join(text for text in texts if text)
 
 
-def _collect(
-    paper: Paper, sums: Sequence[NamedSum], definitions: list[NamedSum]
-) -> None:
+def collect(paper: Paper, sums: Sequence[NamedSum], definitions: list[NamedSum]) -> None:
     """Add sums that are not defined yet, behind those that their own definitions need."""
     for named in sums:
         if named.key in paper.defined:
@@ -142,7 +140,7 @@ def _collect(
         paper.defined.add(named.key)
         if named.kind == "remainder":
             _, inner = paper.fitted(named.form, line_limit(named.latex, paper.width))
-            _collect(paper, [*paper.needed([named.form.expression()]), *inner], definitions)
+            collect(paper, [*paper.needed([named.form.expression()]), *inner], definitions)
         definitions.append(named)
 
 
