@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from collections import Counter
+from collections.abc import Iterable
 from dataclasses import dataclass
 from fractions import Fraction
 
@@ -118,8 +120,9 @@ def parameter(question: Question) -> Claim | None:
         return None
     parts = decompose(rate_changes(perturbation, analysis), analysis)
     factor = spread_factor(question.target)
-    spread = add([extreme("max", parts.energies), negate(extreme("min", parts.energies))])
-    fixed = add([spread, *parts.singles.values()])
+    positive = analysis.domain.positive
+    ends = [extreme(name, _not_beaten(name, parts.energies, positive)) for name in ("max", "min")]
+    fixed = add([ends[0], negate(ends[1]), *_counted(parts.singles.values())])
     terms = [Term(multiply([factor, fixed]))]
     terms += [
         Term(multiply([factor, size]), CycleMaximum(e)) for e, size in parts.barriers.items()
@@ -128,6 +131,28 @@ def parameter(question: Question) -> Claim | None:
         "parameter", question.response, tuple(terms),
         _data(parts, analysis), "the observable does not depend on the parameter", SOURCE,
     )
+
+
+def _not_beaten(
+    name: str, nodes: tuple[Expression, ...], positive: frozenset[str]
+) -> tuple[Expression, ...]:
+    """Return the candidates for a maximum or minimum that no other one certainly beats."""
+    kept: list[Expression] = []
+    wanted = 1 if name == "max" else -1
+
+    def beats(one: Expression, other: Expression) -> bool:
+        return certain_sign(add([one, negate(other)]), positive) in (0, wanted)
+
+    for node in dict.fromkeys(nodes):
+        if not any(beats(other, node) for other in kept):
+            kept = [other for other in kept if not beats(node, other)]
+            kept.append(node)
+    return tuple(kept)
+
+
+def _counted(nodes: Iterable[Expression]) -> list[Expression]:
+    """Return terms of a sum, equal ones as multiples."""
+    return [multiply([number(count), node]) for node, count in Counter(nodes).items()]
 
 
 def _data(parts: Decomposition, analysis: Analysis) -> dict[str, object]:

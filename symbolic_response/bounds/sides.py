@@ -15,6 +15,7 @@ from symbolic_response.bounds.claim import (
 from symbolic_response.bounds.curves import FiniteChange, LocalChange, Tanh
 from symbolic_response.bounds.target import Absolute, Extreme, ShareWithout, absolute, extreme
 from symbolic_response.bounds.topological import competing, force_names
+from symbolic_response.errors import SizeLimitError
 from symbolic_response.expressions.ring import Polynomial
 from symbolic_response.expressions.text import expression_text, fraction_text
 from symbolic_response.expressions.tree import (
@@ -143,12 +144,16 @@ def _largest(force: LargestForce, analysis: Analysis) -> Expression | None:
 
 
 def _end_pair(e: int, analysis: Analysis) -> Expression | None:
+    """Return |ln r|, by name where the sums over trees in it are beyond a limit."""
     first, second = analysis.graph.ends[e]
     ring = analysis.rates.ring
-    sides = [
-        analysis.rates.generator(e, backward) * analysis.tree_sum_without(state, e)
-        for state, backward in ((first, False), (second, True))
-    ]
+    try:
+        sides = [
+            analysis.rates.generator(e, backward) * analysis.tree_sum_without(state, e)
+            for state, backward in ((first, False), (second, True))
+        ]
+    except SizeLimitError:
+        return Symbol(f"abs(ln(r[{analysis.network.transitions[e].name}]))")
     if sides[0] == sides[1]:
         return ZERO
     if not len(sides[0]) or not len(sides[1]):

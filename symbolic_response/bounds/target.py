@@ -217,6 +217,8 @@ def spread_factor(target: Target) -> Expression:
     if low == high:
         return ZERO
     rise, fall = add([target.mean, negate(low)]), add([high, negate(target.mean)])
+    if low == ZERO and target.prefactor == power(target.mean, -1):
+        return multiply([fall, power(high, -1)])
     return multiply([size, rise, fall, power(add([high, negate(low)]), -1)])
 
 

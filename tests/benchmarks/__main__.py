@@ -21,7 +21,7 @@ from symbolic_response.response.analysis import Analysis, graph_of
 from symbolic_response.response.closed_form import ClosedForm, closed_form
 from symbolic_response.response.values import Point
 from symbolic_response.topology import spanning_trees
-from tests.benchmarks import certificates, proofs
+from tests.benchmarks import certificates, curves, proofs
 from tests.benchmarks.networks import complete, cube, ladder
 from tests.benchmarks.timing import CUT_OFF, Row, compare
 
@@ -126,6 +126,7 @@ def rows() -> list[Row]:
                 sympy_points(box, response), 100),
         certificates.row(),
         *proofs.rows(),
+        curves.row(),
     ]
 
 
@@ -164,6 +165,7 @@ def main() -> None:
     print(certificates.tightness())
     print(proofs.edges(cube(), 12))
     print(proofs.edges(complete(9), 3))
+    print(curves.steepness_figures())
     peak = resource.getrusage(resource.RUSAGE_SELF).ru_maxrss / 1024
     print(f"rivals cut off at {CUT_OFF:.0f} s; whole table {time.perf_counter() - start:.0f} s,"
           f" {peak:.0f} MB")
