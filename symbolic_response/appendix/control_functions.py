@@ -28,8 +28,9 @@ class FunctionPrinter:
         """Return equations for functions, each with the left side that it is given."""
         self.fresh.clear()
         equations, degrees = [], []
+        limit = min(line_limit(left, self.paper.width) for left, _ in functions)
         for left, f in functions:
-            equation = self._equation(left, f)
+            equation = self._equation(left, f, limit)
             if equation is None:
                 degrees.append(f"${left}$ is {self._degrees(f)}, too long to be printed.")
             else:
@@ -45,9 +46,8 @@ class FunctionPrinter:
         return {**self.paper.notation.symbols,
                 **{"#" + name: name for name in self.named.values()}}
 
-    def _equation(self, left: str, f: RationalFunction) -> Equation | None:
+    def _equation(self, left: str, f: RationalFunction, limit: float) -> Equation | None:
         """Return an equation, None for what does not fit."""
-        limit = line_limit(left, self.paper.width)
         whole = expression_latex(f.expression(), self._names())
         if fits(whole, limit):
             negative = whole.startswith("-")

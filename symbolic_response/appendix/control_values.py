@@ -26,14 +26,17 @@ from symbolic_response.control.rational import (
 )
 from symbolic_response.control.response_curve import response_curve
 from symbolic_response.expressions.tree import Expression, Number
+from symbolic_response.expressions.widths import formula_width
+from symbolic_response.figures.panels import panels_of
 from symbolic_response.figures.pgfplots import curve_pgfplots
 from symbolic_response.network.quantities import Response
 from symbolic_response.response.quantity_latex import quantity_in
 
 MOST_PLACES = 3
-LABELS, SHARE, COLUMN = 80.0, 0.8, 300.0
-"""What the labels of a figure take beside its axes, in pt; the share of the line the axes take; the
-width below which a legend does not fit by itself."""
+LABELS, COLUMN = 80.0, 300.0
+"""What the labels of a figure take beside its axes, and the least width that its legend fits."""
+AXES, HEIGHT = 0.8, 0.36
+"""How wide and how high the axes are, as parts of the line; labels stand along the height."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -170,17 +173,21 @@ def _figure(
     assert entry.low is not None and entry.high is not None
     data = response_curve(paper.analysis, each.asked.text, entry.by.name, values,
                           low=entry.low, high=entry.high, count=entry.points)
-    picture = curve_pgfplots(data, escaped)
-    return "\n".join([r"\begin{figure}[htbp]", r"\centering", _fitted(paper, picture),
+    return "\n".join([r"\begin{figure}[htbp]", r"\centering", _fitted(paper, data),
                       rf"\caption{{{_caption(paper, data, each, values)}}}",
                       rf"\label{{{label}}}", r"\end{figure}"])
 
 
-def _fitted(paper: Paper, picture: str) -> str:
-    """Return a picture drawn so that its labels fit beside it, a little smaller in a column."""
-    across = (paper.width - LABELS) / SHARE
-    drawn = rf"{{\setlength{{\linewidth}}{{{across:.0f}pt}}%" + f"\n{picture.rstrip()}}}"
-    return rf"\resizebox{{\linewidth}}{{!}}{drawn}" if paper.width < COLUMN else drawn
+def _fitted(paper: Paper, data: CurveData) -> str:
+    """Return the picture of a curve, made smaller where its labels or legend need more room."""
+    panels = panels_of(data)
+    room = (paper.width - LABELS) / AXES
+    label = max(formula_width(panel.latex) for panel in (panels.upper, panels.lower))
+    across = max(room, label / HEIGHT)
+    drawn = (rf"{{\setlength{{\linewidth}}{{{across:.0f}pt}}%"
+             + f"\n{curve_pgfplots(data, escaped).rstrip()}}}")
+    smaller = across > room or paper.width < COLUMN
+    return rf"\resizebox{{\linewidth}}{{!}}{drawn}" if smaller else drawn
 
 
 def _caption(
