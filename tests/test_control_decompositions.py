@@ -1,6 +1,7 @@
 """Changes of rates, their decompositions, and those that a network file gives."""
 
 from fractions import Fraction
+from pathlib import Path
 
 import pytest
 from hypothesis import given, settings
@@ -295,3 +296,14 @@ def test_further_keys_can_be_allowed(analysis: Analysis) -> None:
 def test_sums_are_checked_for_what_is_handed_in(analysis: Analysis) -> None:
     with pytest.raises(QuantityError, match=r"forward\[bind\]"):
         check_sum(Decomposition((ZERO,) * 3), analysis, LN_C)
+
+
+def test_the_fewest_pieces_where_three_suffice() -> None:
+    """A lubricated step and one rate: two pieces, though halves of larger bundles cost as much."""
+    valve = read_network(Path(__file__).parent.parent / "worked_cases/dew_valve/network.toml")
+    analysis = Analysis(valve)
+    made = sparsest(analysis, change_of(analysis, BySymbol("m", True)), family_of(analysis))
+    data = made.data(valve)
+    assert made.count == 2
+    assert data["bundles"] == [{"transitions": ["slide"], "amount": "1"}]
+    assert data["directed"] == [{"rates": ["forward[soak]"], "amount": "1"}]

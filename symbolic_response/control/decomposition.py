@@ -10,7 +10,8 @@ from symbolic_response.bounds.sides import perturbation_text, quantity_text
 from symbolic_response.bounds.target import extreme, size_of
 from symbolic_response.control.changes import Change, Vector
 from symbolic_response.control.family import Family
-from symbolic_response.control.program import Amounts, optimum, sparse_amounts
+from symbolic_response.control.fewest import fewest_amounts
+from symbolic_response.control.program import Amounts, optimum
 from symbolic_response.control.separations import Part
 from symbolic_response.errors import QuantityError
 from symbolic_response.expressions.normal_form import normal_form
@@ -100,10 +101,16 @@ class LinearForm:
             found.append(part.value)
         return found[0], dict(zip((part for part, _ in self.slopes), found[1:], strict=True))
 
-    def text(self, network: Network) -> str:
-        """Return the form with t[...] for tanh(F/4) of a bundle."""
+    def text(self, network: Network, same: Mapping[Part, Part] | None = None) -> str:
+        """Return the form with t[...] for tanh(F/4) of a bundle.
+
+        ``same``: for each bundle the one that stands for it, both having the same cycles.
+        """
         terms = [quantity_text(self.constant, network)] if self.constant != ZERO else []
+        slopes: dict[Part, list[Expression]] = {}
         for part, slope in self.slopes:
+            slopes.setdefault(same[part] if same else part, []).append(slope)
+        for part, slope in ((part, add(found)) for part, found in slopes.items()):
             name = f"t[{', '.join(network.transitions[e].name for e in part)}]"
             factor = quantity_text(slope, network)
             factor = f"({factor})" if any(sign in factor for sign in " +/") else factor
@@ -158,13 +165,11 @@ def tightest(
 
 
 def sparsest(analysis: Analysis, change: Change, family: Family) -> Decomposition:
-    """Return the pieces whose amounts have the least sum of sizes, each energy counted by itself.
+    """Return the fewest pieces where three or less suffice, else few, see ``fewest_amounts``.
 
-    Drives count by 3/4, see ``sparse_amounts``; the numbers, and each vector beside an expression,
-    by themselves. A vertex of a linear program, so few pieces; that there are no fewer is not
-    claimed.
+    The numbers, and each vector beside an expression, by themselves.
     """
-    return _made(analysis, change, family, lambda vector: sparse_amounts(family, vector))
+    return _made(analysis, change, family, lambda vector: fewest_amounts(family, vector))
 
 
 def combined(

@@ -30,7 +30,7 @@ def steepness_text(result: Steepness) -> str:
     by = f"ln {asked.symbol}" if asked.by.logarithmic else asked.symbol
     lines = [f"q = {scaled_text(result)}: abs(d q / d {by}) <= H*q*(1 - q) for all rates",
              "H is at most each of"]
-    lines += [f"  {form.text(network)}" for form in result.forms]
+    lines += [f"  {form.text(network, result.same)}" for form in result.forms]
     for part, cycles in result.bundles.items():
         names = ", ".join(network.transitions[e].name for e in part)
         lines.append(f"t[{names}] = tanh(F/4), F the largest force of {len(cycles)} cycles:")
@@ -41,7 +41,7 @@ def steepness_text(result: Steepness) -> str:
     if None not in ends:
         lines.append(f"without forces H = {ends[0]}; however strong the driving H <= {ends[1]}")
     lines.append(f"family: {result.family.words()}")
-    lines.append(f"d/d {by} in fewest pieces: {pieces_text(result.simplest, network)}")
+    lines.append(f"d/d {by} in few pieces: {pieces_text(result.simplest, network)}")
     lines += [f"that of the file, checked: d/d {perturbation_text(parameter, network)}:"
               f" {pieces_text(own, network)}" for parameter, own in result.own]
     lines += _reading_lines(result.reading)
@@ -121,8 +121,8 @@ def steepness_data(result: Steepness) -> dict[str, object]:
         "logarithmic": result.asked.by.logarithmic,
         "range": None if result.range is None else [str(end) for end in result.range],
         "family": result.family.data(),
-        "forms": [{"text": form.text(network), "pieces": form.decomposition.data(network)}
-                  for form in result.forms],
+        "forms": [{"text": form.text(network, result.same),
+                   "pieces": form.decomposition.data(network)} for form in result.forms],
         "bundles": [
             {"transitions": [network.transitions[e].name for e in part],
              "cycles": [{"cycle": path, "force": force} for path, force in cycles]}

@@ -12,7 +12,7 @@ from symbolic_response.control.asked import Asked, asked_of, extremes, rescaled
 from symbolic_response.control.changes import change_of
 from symbolic_response.control.decomposition import Decomposition, LinearForm, sparsest
 from symbolic_response.control.extrema import Maximum, maximum
-from symbolic_response.control.family import Family, family_of
+from symbolic_response.control.family import Family, classes_of, family_of
 from symbolic_response.control.function import function_of
 from symbolic_response.control.rational import RationalFunction
 from symbolic_response.control.separations import Part
@@ -56,7 +56,8 @@ class Steepness:
     """What limits |d<Q>/d ln x| by H <Q>(1 - <Q>), and the actual sensitivity.
 
     ``forms``: H is at most each of them, for all forces; ``bundles``: for each bundle in them the
-    cycles that set its force, with their forces. ``simplest``: the change of the rates in fewest
+    cycles that set its force, with their forces; ``same``: the one that stands for those with the
+    same cycles. ``simplest``: the change of the rates in fewest
     pieces; ``own``: those of the file, each with the parameter or its logarithm that it is for.
     ``range``: the extremes of the observable, which is brought to 0 .. 1; None where a symbol in
     them has no value. ``actual``: None where any symbol has none (``missing``). ``reading``: of a
@@ -68,6 +69,7 @@ class Steepness:
     family: Family
     forms: tuple[LinearForm, ...]
     bundles: dict[Part, list[tuple[str, str]]]
+    same: dict[Part, Part]
     simplest: Decomposition
     own: tuple[tuple[BySymbol, Decomposition], ...]
     range: tuple[Fraction, Fraction] | None
@@ -112,6 +114,7 @@ def steepness(
         raise AssignmentError(f"a steepness is the size of a slope; {measured} is negative")
     family = family_of(analysis)
     found = forms(analysis, asked.by, family)
+    same = _same(family, analysis)
     change = change_of(analysis, asked.by)
     own = _own(analysis, asked)
     actual = None
@@ -119,7 +122,7 @@ def steepness(
         function = function_of(analysis, rescaled(asked, ends)[0], asked.symbol, asked.values)
         actual = _actual(function, low, high)
     return Steepness(
-        analysis.network, asked, family, found, _bundles(found, analysis),
+        analysis.network, asked, family, found, _bundles(found, same, analysis), same,
         sparsest(analysis, change, family), own, ends, missing, actual,
         None if measured is None else read_backwards(found, measured),
     )
@@ -155,11 +158,18 @@ def _own(analysis: Analysis, asked: Asked) -> tuple[tuple[BySymbol, Decompositio
     return tuple(found)
 
 
+def _same(family: Family, analysis: Analysis) -> dict[Part, Part]:
+    """Return for each bundle the first one with the same cycles."""
+    first: dict[int, Part] = {}
+    return {part: first.setdefault(number, part) for part, number in zip(
+        family.bundles, classes_of(family, analysis), strict=True)}
+
+
 def _bundles(
-    found: tuple[LinearForm, ...], analysis: Analysis
+    found: tuple[LinearForm, ...], same: dict[Part, Part], analysis: Analysis
 ) -> dict[Part, list[tuple[str, str]]]:
     """Return the cycles that set the force of each bundle that occurs, with their forces."""
-    parts = dict.fromkeys(part for form in found for part, _ in form.slopes)
+    parts = dict.fromkeys(same[part] for form in found for part, _ in form.slopes)
     return {
         part: [(cycle_path(cycle, analysis.network), force_text(force_of(cycle, analysis)))
                for cycle in competing(MixedCycles(part), analysis)]
