@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import json
+import tempfile
 from collections.abc import Callable
 from fractions import Fraction
 from pathlib import Path
@@ -240,14 +241,21 @@ def _write(
     texts: dict[str, Callable[[], str]],
     draw: Callable[[str], None],
 ) -> None:
+    """Write all files or, where one cannot be written, none."""
     from symbolic_response.files import write_files
 
-    for path in output:
-        text = texts.get(Path(path).suffix.lower())
-        if text is None:
-            draw(path)
-        else:
-            write_files({Path(path): text()})
+    contents: dict[Path, str | bytes] = {}
+    with tempfile.TemporaryDirectory() as folder:
+        for path in map(Path, output):
+            suffix = path.suffix.lower()
+            if suffix in texts:
+                contents[path] = texts[suffix]()
+            else:
+                drawn = Path(folder) / f"figure{suffix}"
+                draw(str(drawn))
+                contents[path] = drawn.read_bytes()
+    if contents:
+        write_files(contents)
 
 
 def _say(
