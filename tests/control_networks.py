@@ -127,3 +127,78 @@ at = {E = "2*ln(3/2)", k = "1/2"}
 push = "1"
 pull = "1"
 """
+
+ONE_WAY = """title = "Enzyme with a one-way step"
+[symbols.s]
+about = "substrate"
+latex = "s^{\\\\ast}"
+[symbols.k_a]
+[symbols.k_b]
+[symbols.K]
+[symbols.q_hi]
+sign = "real"
+[states.free]
+[states.bound]
+[states.done]
+[states.side]
+[[transitions]]
+name = "bind"
+between = ["free", "bound"]
+rates = ["k_a*s", "k_b"]
+[[transitions]]
+name = "turn"
+between = ["bound", "done"]
+rates = ["1"]
+[[transitions]]
+name = "loose"
+between = ["done", "free"]
+rates = ["k_a", "k_b*s/(K + s)"]
+[[transitions]]
+name = "park"
+between = ["done", "side"]
+rates = ["s**2", "1"]
+[observables.signal]
+bound = "q_hi"
+done = 1
+[observables.shifted]
+free = -1
+done = 2
+[[control]]
+parameter = "ln s"
+[[control]]
+parameter = "ln K"
+observables = ["mean[signal] - 2*p[done]", "p[free, done]"]
+[[control]]
+parameter = "k_b"
+observables = ["p[free]"]
+at = {s = "2", k_a = "1/3", K = "5", q_hi = "1"}
+[[control]]
+parameter = "q_hi"
+observables = ["p[free]"]
+at = {s = "2", k_a = "1/3", K = "5", k_b = "1"}
+"""
+
+LONG = """title = "Long polynomials"
+[symbols.c]
+[states.A]
+[states.B]
+[states.C]
+[states.D]
+[[transitions]]
+between = ["A", "B"]
+rates = ["123456789/1000003*c**3 + 17*c + 1/999983", "31/7*c**2 + 987654321/77"]
+[[transitions]]
+between = ["B", "C"]
+rates = ["c**5 + 1234567891234/13*c + 1", "22/7"]
+[[transitions]]
+between = ["C", "D"]
+rates = ["c**7 + 3141592653589793/11*c**2 + 1", "c"]
+[[transitions]]
+between = ["D", "A"]
+rates = ["1", "c**2 + 2718281828459/19"]
+[[control]]
+parameter = "ln c"
+from = 1
+to = 2
+points = 3
+"""

@@ -24,8 +24,9 @@ class FunctionPrinter:
     named: dict[Polynomial, str] = field(default_factory=dict)
     fresh: list[Polynomial] = field(default_factory=list)
 
-    def text(self, functions: Sequence[tuple[str, RationalFunction]]) -> str:
-        """Return equations for functions, each with the left side that it is given."""
+    def text(self, given: str, functions: Sequence[tuple[str, RationalFunction]]) -> str:
+        """Return equations for functions, each with its left side; ``given``: under which values.
+        """
         self.fresh.clear()
         equations, degrees = [], []
         limit = min(line_limit(left, self.paper.width) for left, _ in functions)
@@ -37,7 +38,11 @@ class FunctionPrinter:
                 equations.append(equation)
         definitions = [Equation(self.named[p], tuple(self._sum(p, self.named[p])))
                        for p in self.fresh]
-        parts = [align(equations, self.paper.width)] if equations else []
+        parts = [given]
+        if equations:
+            x = self.paper.notation.symbols[self.symbol]
+            what = "functions of ${}$ are" if len(equations) > 1 else "function of ${}$ is"
+            parts += ["the exact " + what.format(x), align(equations, self.paper.width)]
         if definitions:
             parts += ["with", align(definitions, self.paper.width)]
         return "\n".join([*parts, *degrees])

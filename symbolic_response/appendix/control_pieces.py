@@ -53,12 +53,11 @@ def change_text(paper: Paper, change: Change) -> str:
             groups.setdefault(key, []).append(place)
             amounts[key] = amount
     by = perturbation_in(paper.notation, change.by)
-    symbol = paper.notation.symbols[change.by.name] if hasattr(change.by, "name") else by
     if not groups:
-        return f"No rate depends on ${symbol}$."
+        return "No rate depends on it."
     derivative = rf"\partial \ln {paper.letters['rate']} / \partial {by}"
     every = sum(map(len, groups.values()))
-    text = f"It changes the logarithms of {_count(every, len(change.numbers))} by"
+    text = f"It changes {_count(every, len(change.numbers))} by"
     rest = "" if every == len(change.numbers) else "\nThe other rates do not depend on it."
     if all(formula_width(key, style=DISPLAY) < 0.5 * paper.width for key in groups):
         return text + "\n" + _table(paper, derivative, groups) + rest
@@ -72,7 +71,10 @@ def change_text(paper: Paper, change: Change) -> str:
 
 
 def _count(changed: int, every: int) -> str:
-    return f"all {every} rates" if changed == every else f"{changed} of the {every} rates"
+    if changed == 1:
+        return f"the logarithm of one of the {every} rates"
+    which = f"all {every}" if changed == every else f"{changed} of the {every}"
+    return f"the logarithms of {which} rates"
 
 
 def _table(paper: Paper, derivative: str, groups: dict[str, list[int]]) -> str:
@@ -96,18 +98,18 @@ class PieceWords:
     paper: Paper
     named: list[tuple[str, Expression]] = field(default_factory=list)
 
-    def text(self, pieces: Decomposition) -> str:
-        """Return the pieces, and behind them what the names of amounts stand for."""
+    def text(self, pieces: Decomposition, end: str = ".") -> str:
+        """Return the pieces, and behind them what the names of amounts stand for, else ``end``."""
         phrases = [*self._energies(pieces), *self._transitions(pieces), *self._rates(pieces)]
         text = "; ".join(phrases)
         if not self.named:
-            return text
+            return text + end
         equations = []
         for name, amount in self.named:
             terms = self.paper.pieces([amount], line_limit(name, self.paper.width))
             equations.append(Equation(name, tuple(terms)))
         self.named.clear()
-        return text + "; with\n" + align(equations, self.paper.width)
+        return text + ", with\n" + align(equations, self.paper.width)
 
     def _energies(self, pieces: Decomposition) -> list[str]:
         groups: dict[Expression, list[str]] = {}

@@ -90,12 +90,12 @@ def _decompositions(paper: Paper, few: Decomposition, own: Decomposition | None)
     """Return the change in few pieces, and in those of the file; both sums are checked."""
     words = PieceWords(paper)
     if own == few:
-        return (f"With the decomposition chosen for this network it is {words.text(few)}. The sum"
+        return (f"With the decomposition chosen for this network it is {words.text(few)} The sum"
                 " equals the change identically in all symbols.")
-    text = f"In few pieces it is {words.text(few)}."
+    text = f"In few pieces it is {words.text(few)}"
     if own is None:
         return text
-    return (f"{text} The decomposition chosen for this network is {words.text(own)}. Either sum"
+    return (f"{text} The decomposition chosen for this network is {words.text(own)} Either sum"
             " equals the change identically in all symbols.")
 
 
@@ -126,17 +126,19 @@ def _reached(
 ) -> str:
     """Return the pieces that give each form."""
     words, texts = PieceWords(paper), []
-    for form in found[:MAX_REACHED]:
+    listed_forms = found[:MAX_REACHED]
+    for place, form in enumerate(listed_forms, start=1):
+        end = "." if place == len(listed_forms) else ";"
         known = [name for name, other in (("the few pieces above", few),
                                           ("the pieces chosen for this network", own))
                  if other == form.decomposition]
-        texts.append(known[0] if known else words.text(form.decomposition))
+        texts.append(known[0] + end if known else words.text(form.decomposition, end))
     if len(found) == 1:
-        return f"This ${letter}$ comes from {texts[0]}."
+        return f"This ${letter}$ comes from {texts[0]}"
     which = "The" if len(found) <= MAX_REACHED else f"The first {MAX_REACHED} of the {len(found)}"
-    items = "\n".join(rf"\item {text};" for text in texts[:-1])
-    return (f"{which} forms come, in their order, from\n\\begin{{enumerate}}\n{items}\n"
-            rf"\item {texts[-1]}." + "\n\\end{enumerate}")
+    items = "\n".join(rf"\item {text}" for text in texts)
+    return (f"{which} forms come, in their order, from\n\\begin{{enumerate}}\n{items}"
+            "\n\\end{enumerate}")
 
 
 def _statement(paper: Paper, asked: Asked, letter: str) -> Equation:

@@ -83,10 +83,8 @@ def _functions(
     for each in followed:
         derivative = quantity_in(paper.notation, Response(each.asked.quantity, entry.by))
         functions += [(each.latex, each.function), (derivative, each.function.sensitivity())]
-    x = paper.notation.symbols[entry.by.name]
-    opening = f"For {values_text(paper, values)} the" if values else "The"
-    opening += f" exact functions of ${x}$ are"
-    return opening + "\n" + printer.text(functions)
+    given = f"For {values_text(paper, values)}" if values else "With these rates"
+    return printer.text(given, functions)
 
 
 # -- the steepest places ---------------------------------------------------------------------------
