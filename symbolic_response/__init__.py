@@ -18,6 +18,11 @@ if TYPE_CHECKING:
     from symbolic_response.certificates.points import Refutation
     from symbolic_response.certificates.record import write_certificate
     from symbolic_response.checker import check_file as recheck
+    from symbolic_response.control.cloud import cloud
+    from symbolic_response.control.response_curve import response_curve
+    from symbolic_response.control.result import Steepness, steepness
+    from symbolic_response.figures.cloud import cloud_figure
+    from symbolic_response.figures.curve import curve_figure
     from symbolic_response.network import (
         Barrier,
         Network,
@@ -42,6 +47,11 @@ _HOMES = {
     "write_certificate": "certificates.record",
     "bound": "bounds.report",
     "recheck": "checker",
+    "cloud": "control.cloud",
+    "response_curve": "control.response_curve",
+    **dict.fromkeys(("Steepness", "steepness"), "control.result"),
+    "cloud_figure": "figures.cloud",
+    "curve_figure": "figures.curve",
     **dict.fromkeys(
         ("Barrier", "Network", "Rates", "build_network", "from_generator_matrix", "from_networkx",
          "generator_matrix", "read_network", "read_network_text", "to_networkx",
@@ -61,11 +71,15 @@ __all__ = [
     "Network",
     "Rates",
     "Refutation",
+    "Steepness",
     "Survey",
     "Value",
     "bound",
     "build_network",
     "certify",
+    "cloud",
+    "cloud_figure",
+    "curve_figure",
     "derive",
     "from_generator_matrix",
     "from_networkx",
@@ -73,6 +87,8 @@ __all__ = [
     "read_network",
     "read_network_text",
     "recheck",
+    "response_curve",
+    "steepness",
     "survey",
     "to_networkx",
     "with_substitution",

@@ -77,7 +77,7 @@ class Steepness:
     actual: Actual | None
     reading: Reading | None
 
-    def at_equal(self, t: Fraction) -> Fraction | None:
+    def at_equal(self, t: Fraction | int) -> Fraction | None:
         """Return H where all tanh(F/4) are equal to t, None where it depends on symbols."""
         parts = [form.numbers() for form in self.forms]
         known = [part for part in parts if part is not None]
