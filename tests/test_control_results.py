@@ -13,6 +13,7 @@ import mpmath
 import pytest
 
 from symbolic_response.control.asked import asked_of
+from symbolic_response.control.at_points import limit_at
 from symbolic_response.control.curve_data import CurveData, curve_csv, number_of
 from symbolic_response.control.decomposition import Decomposition
 from symbolic_response.control.response_curve import response_curve
@@ -393,6 +394,35 @@ def test_a_real_symbol_outside_exponents() -> None:
         assert point.q == (2 + z**2) / (7 + z**2)
         assert point.sensitivity == 10 * z / (7 + z**2) ** 2
         assert point.steepness >= abs(2 * z / (2 + z**2) - 2 * z / (7 + z**2))
+
+
+def sloped(*rates: str) -> Network:
+    """Return a triangle whose rates are sums, so that d ln W/d ln c depends on c."""
+    pairs = [("A", "B"), ("B", "C"), ("C", "A")]
+    return build_network("sums", states=list("ABC"), transitions=[
+        Rates(*pair, *rates[2 * k : 2 * k + 2]) for k, pair in enumerate(pairs)],
+        symbols={"c": {"sign": "real" if "exp" in "".join(rates) else "positive"}})
+
+
+@pytest.mark.parametrize("rates", [
+    ("2 + c", "c", "1", "3", "c", "2 + c"),
+    ("1 + c**(1/2)", "3", "c", "1", "2", "c**(1/2)"),
+    ("1 + exp(c)", "3", "exp(c/2)", "1", "2", "1"),
+])
+def test_limits_that_depend_on_the_parameter(rates: tuple[str, ...]) -> None:
+    """H at each point is the least of the family there, and with no forces no larger."""
+    network = sloped(*rates)
+    analysis = Analysis(network)
+    data = response_curve(analysis, "p[B]", "c", low="1/4", high=9, count=9)
+    check_bounds(data)
+    asked = asked_of(analysis, "p[B]", "c")
+    assert isinstance(data.h0, tuple) and len(data.h0) == 9
+    for point, h0 in zip(data.points, data.h0, strict=True):
+        assert isinstance(point.x, Expression)
+        limit = limit_at(analysis, asked.by, {"c": point.x})
+        assert limit.low <= point.steepness <= limit.high < limit.low + F(1, 10**15)
+        assert h0 <= point.steepness
+    assert len({point.steepness for point in data.points}) > 1
 
 
 def test_observables_of_another_range() -> None:

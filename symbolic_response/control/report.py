@@ -147,18 +147,17 @@ def steepness_data(result: Steepness) -> dict[str, object]:
 
 def curve_data_json(data: CurveData) -> dict[str, object]:
     """Return a response curve as plain data for JSON; each number exactly and as a decimal."""
-    h0 = data.h0
+    h0 = data.h0 if isinstance(data.h0, tuple) else (data.h0,) * len(data.points)
     return {
         "logarithmic": data.logarithmic,
         "range": [str(end) for end in data.rescaled or (0, 1)],
         "q": rescaled_text(data, data.observable),
         "sensitivity": sensitivity_text(data),
-        "steepness_without_forces": _both(h0) if isinstance(h0, Fraction) else None,
         "points": [
             {"x": _both(point.x), "q": _both(point.q), "sensitivity": _both(point.sensitivity),
              "steepness": _both(point.steepness), "bound": _both(point.bound),
-             "covariance_bound": _both(point.covariance)}
-            for point in data.points
+             "covariance_bound": _both(point.covariance), "steepness_without_forces": _both(h)}
+            for point, h in zip(data.points, h0, strict=True)
         ],
     }
 

@@ -12,15 +12,17 @@ from symbolic_response.control.asked import (
     observable_values,
     rescaled,
 )
-from symbolic_response.control.at_points import Limit, Place, limit_at
+from symbolic_response.control.at_points import Limit, Place
+from symbolic_response.control.changes import change_of
 from symbolic_response.control.covariances import observable_limits
 from symbolic_response.control.curve_data import CurveData, CurvePoint
-from symbolic_response.control.decomposition import LinearForm
+from symbolic_response.control.decomposition import LinearForm, assembled
 from symbolic_response.control.family import Family, family_of
 from symbolic_response.control.function import curve, function_of
+from symbolic_response.control.program import optimum
 from symbolic_response.control.steepness import forms
 from symbolic_response.errors import EvaluationError
-from symbolic_response.expressions.tree import Expression, Sum
+from symbolic_response.expressions.tree import ONE, Expression, Sum
 from symbolic_response.network.model import Network
 from symbolic_response.response.analysis import Analysis, as_analysis
 from symbolic_response.response.closed_form import symbol_names
@@ -93,19 +95,22 @@ class _Limits:
         self.family: Family = family_of(analysis)
         self.forms = forms(analysis, asked.by, self.family)
         self.fixed = all(form.numbers() is not None for form in self.forms)
+        self.change = change_of(analysis, asked.by)
+        self.factors = [function_of(analysis, expression, asked.symbol, asked.values)
+                        for expression, _ in self.change.parts]
+        self._without: list[Fraction] = []
 
     @property
-    def without_forces(self) -> Fraction | None:
-        """H at zero force where it is one number."""
+    def without_forces(self) -> Fraction | tuple[Fraction, ...]:
+        """H at zero force: one number, or that of each point so far."""
         if not self.fixed:
-            return None
+            return tuple(self._without)
         return min(_constant(form) for form in self.forms)
 
     def at(self, values: dict[str, Expression]) -> tuple[Fraction, Fraction]:
         """Return H and the finer limit on the sensitivity at a point."""
         place = Place(self.analysis, values)
-        limit = self._best(place) if self.fixed else limit_at(
-            self.analysis, self.asked.by, place, self.family)
+        limit = self._best(place) if self.fixed else self._least(place)
         return limit.high, observable_limits(place, limit, self.observable).covariance
 
     def _best(self, place: Place) -> Limit:
@@ -114,6 +119,21 @@ class _Limits:
         t = tuple((part, place.tanh(part)) for part, _ in self.forms[best].slopes)
         return Limit(bounds[best][0], bounds[best][1], t, self.forms[best].decomposition, (),
                      self.family, Fraction(0))
+
+    def _least(self, place: Place) -> Limit:
+        """Return the least limit of the family, its lower end left open."""
+        vector = list(self.change.numbers)
+        for factor, (_, direction) in zip(self.factors, self.change.parts, strict=True):
+            value = factor.value(place.values[self.asked.symbol])
+            vector = [x + value * u for x, u in zip(vector, direction, strict=True)]
+        bundles = self.family.bundles
+        t = [place.tanh(part) for part in bundles]
+        found = optimum(self.family, tuple(vector), [high for _, high in t])
+        without = optimum(self.family, tuple(vector), [Fraction(0)] * len(t))
+        self._without.append(without.value)
+        pieces = assembled(self.analysis, self.family, [(ONE, found.amounts)])
+        return Limit(Fraction(0), found.value, tuple(zip(bundles, t, strict=True)), pieces,
+                     found.dual, self.family, Fraction(0))
 
 
 def _constant(form: LinearForm) -> Fraction:
