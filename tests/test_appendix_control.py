@@ -74,9 +74,9 @@ def test_bundles_are_argued_for_or_referred_to(texts: dict[str, str]) -> None:
     assert "A matching of the terms" in section(texts["ring"])
     asked = '"d p[s1] / d barrier[a, b]", "d mean[open] / d ln c"'
     text = appendix_text(network(RING, **{'"d mean[open] / d ln c"': asked}))
-    if r"\label{eq:bundle}" in text:
-        assert "A matching of the terms" not in section(text)
-        assert r"for bundles see Eq.~\eqref{eq:bundle}" in section(text)
+    assert r"\label{eq:bundle}" in text
+    assert "A matching of the terms" not in section(text)
+    assert r"for bundles see Eq.~\eqref{eq:bundle}" in section(text)
 
 
 def test_the_exact_function_is_that_of_the_network(texts: dict[str, str]) -> None:
@@ -113,7 +113,7 @@ def test_a_real_parameter_and_an_observable_of_another_range(texts: dict[str, st
     assert r"\partial \ln w / \partial F" in body
     assert r"for $F \to -\infty$" in body and r"for $F \to \infty$" in body
     assert r"where $H = 3/2$" in body and "at $F = -10$" in body
-    assert "With the decomposition chosen for this network it is the drive of" in body
+    assert "In the decomposition chosen for this network it consists of the drive of" in body
     assert r"brought to the range from 0 to 1 to $F$ for $E = 2 \ln" in body
 
 
@@ -121,8 +121,10 @@ def test_pieces_for_the_parameter_are_turned_into_those_for_its_logarithm(
     texts: dict[str, str],
 ) -> None:
     body = section(texts["tide_lamp"]).split(r"\subsection")[2]
-    assert (r"The decomposition chosen for this network is the energy of state $i$ (amount $1$);"
-            r" the rates $w^{-}_{\mathrm{fade}}$ and $w^{-}_{\mathrm{recover}}$ (amount $-1$)") in body
+    own = (r"The decomposition chosen for this network consists of the energy of state $i$"
+           r" (amount~$1$); the rates $w^{-}_{\mathrm{fade}}$ and $w^{-}_{\mathrm{recover}}$"
+           r" (amount~$-1$)")
+    assert own in body
     assert r"\langle \mathrm{brightness} \rangle &\to \frac{b}{4 (b + h)}" in body
     faulty = network(TIDE_LAMP, **{'amount = "1/c"': 'amount = "1"'})
     with pytest.raises(NetworkError, match=r"^\[\[control\]\], entry 2: the pieces do not sum"):

@@ -133,8 +133,10 @@ class PieceWords:
                 what = f"both rates of ${paper.notation.transitions[e]}$"
             phrases.append(what + self._by(piece.amount))
         for piece in pieces.blocks:
-            phrases.append(f"all rates of {set_latex(paper, piece.members)}, one block or"
-                           f" more{self._by(piece.amount)}")
+            every = len(piece.members) == len(paper.network.transitions)
+            what = "of the network" if every else (
+                f"of {set_latex(paper, piece.members)}, one block or more")
+            phrases.append(f"all rates {what}{self._by(piece.amount)}")
         for piece in pieces.drives:
             phrases.append(f"the drive of ${paper.notation.transitions[piece.members[0]]}$"
                            + self._by(piece.amount))
@@ -149,7 +151,7 @@ class PieceWords:
         return phrases
 
     def _by(self, amount: Expression) -> str:
-        return f" (amount {self._amount(amount)})"
+        return f" (amount~{self._amount(amount)})"
 
     def _amount(self, amount: Expression) -> str:
         latex = side_latex(self.paper, amount)

@@ -21,7 +21,6 @@ from symbolic_response.appendix.control_forms import (
 from symbolic_response.appendix.control_pieces import PieceWords, change_text, listed
 from symbolic_response.appendix.control_theory import theory
 from symbolic_response.appendix.control_values import values_section
-from symbolic_response.appendix.escape import escaped
 from symbolic_response.appendix.paper import Paper
 from symbolic_response.control.asked import Asked, observable_values, rescaled
 from symbolic_response.control.changes import change_of
@@ -33,7 +32,7 @@ from symbolic_response.control.decomposition import (
 )
 from symbolic_response.control.family import Family, family_of
 from symbolic_response.control.steepness import forms
-from symbolic_response.errors import EvaluationError, SizeLimitError
+from symbolic_response.errors import EvaluationError
 from symbolic_response.expressions.breaking import (
     Equation,
     Piece,
@@ -53,7 +52,7 @@ def control_section(paper: Paper, printed: str) -> str:
     """Return the section; empty without ``[[control]]`` entries.
 
     ``printed``: the section of proofs, whose equations are referred to where they are there.
-    Raises DocumentError for an entry that cannot be used.
+    Raises DocumentError for an entry that cannot be used, SizeLimitError past the limit of cycles.
     """
     entries = control_entries(paper.analysis)
     if not entries:
@@ -74,13 +73,8 @@ def _entry(paper: Paper, entry: ControlEntry, family: Family) -> str:
         return "\n\n".join(parts)
     few = sparsest(analysis, change, family)
     parts.append(_decompositions(paper, few, entry.own))
-    found: Sequence[LinearForm] = ()
-    try:
-        found = least(paper, forms(analysis, entry.by, family))
-    except SizeLimitError as error:
-        parts.append(f"No limit is stated: {escaped(str(error))}.")
-    if found:
-        parts.append(_limit(paper, entry, found, few))
+    found = least(paper, forms(analysis, entry.by, family))
+    parts.append(_limit(paper, entry, found, few))
     parts.append(ends_section(paper, entry) if entry.values is None else
                  values_section(paper, entry, found, entry.values))
     return "\n\n".join(part for part in parts if part)
@@ -89,14 +83,15 @@ def _entry(paper: Paper, entry: ControlEntry, family: Family) -> str:
 def _decompositions(paper: Paper, few: Decomposition, own: Decomposition | None) -> str:
     """Return the change in few pieces, and in those of the file; both sums are checked."""
     words = PieceWords(paper)
+    chosen = "decomposition chosen for this network"
     if own == few:
-        return (f"With the decomposition chosen for this network it is {words.text(few)} The sum"
-                " equals the change identically in all symbols.")
-    text = f"In few pieces it is {words.text(few)}"
+        return (f"In the {chosen} it consists of {words.text(few)} The sum equals the change"
+                " identically in all symbols.")
+    text = f"In few pieces it consists of {words.text(few)}"
     if own is None:
         return text
-    return (f"{text} The decomposition chosen for this network is {words.text(own)} Either sum"
-            " equals the change identically in all symbols.")
+    return (f"{text} The {chosen} consists of {words.text(own)} Either sum equals the change"
+            " identically in all symbols.")
 
 
 # -- the limit -------------------------------------------------------------------------------------

@@ -56,7 +56,7 @@ def values_section(
     """Return functions, steepest places, limits and figures of the observables of an entry."""
     followed = [_followed(paper, asked) for asked in entry.asked]
     names = paper.notation.symbols
-    parts = [r"\paragraph{With values.} " + _functions(paper, entry, followed, values)]
+    parts = [r"\paragraph{Exact curves.} " + _functions(paper, entry, followed, values)]
     for number, each in enumerate(followed, start=1):
         label = f"fig:control-{int(entry.place[1]) + 1}-{number}"
         parts.append(_steepest(paper, entry, each, forms, label))
@@ -154,8 +154,7 @@ def _limit_there(
     asked = each.asked
     at = Place(paper.analysis, {**asked.values,
                                 asked.symbol: each.scaled.symbol_at(sum(ends, Fraction(0)) / 2)})
-    bounds = [at.form(form) for form in forms]
-    low, high = (min(pair[side] for pair in bounds) for side in (0, 1))
+    low, high = at.least(forms)
     enclosure = fraction_enclosure(low)[0], fraction_enclosure(high)[1]
     value = value_latex(enclosure, low if low == high else None)
     return f", where ${paper.letters['steepness']} {value}$"
