@@ -425,6 +425,17 @@ def test_limits_that_depend_on_the_parameter(rates: tuple[str, ...]) -> None:
     assert len({point.steepness for point in data.points}) > 1
 
 
+def test_points_at_which_every_rate_is_rational() -> None:
+    """A bridge in whose rates a root of c stands does not move p[A]/p[B]; no source needed."""
+    network = build_network("bridge", states=list("ABC"), symbols={"c": {}}, transitions=[
+        Rates("A", "B", "c", "1"), Rates("B", "C", "1 + c**(1/3)", "2 + 2*c**(1/3)")])
+    data = response_curve(network, "p[A]", "c", low=1, high=8, count=7)
+    check_bounds(data)
+    for point in data.points:
+        assert isinstance(point.x, Number)
+        assert point.q == 1 / (1 + point.x.value * F(3, 2))
+
+
 def test_observables_of_another_range() -> None:
     """Brought to 0 .. 1 in the curve, in the steepness, and in words."""
     network = driven(n={"A": -1, "B": 2}, flat={"A": 3, "B": 3, "C": 3})

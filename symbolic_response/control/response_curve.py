@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Callable, Mapping
 from fractions import Fraction
+from math import lcm
 
 from symbolic_response.control.asked import (
     Asked,
@@ -19,7 +20,9 @@ from symbolic_response.control.curve_data import CurveData, CurvePoint
 from symbolic_response.control.decomposition import LinearForm, assembled
 from symbolic_response.control.family import Family, family_of
 from symbolic_response.control.function import curve, function_of
+from symbolic_response.control.line import Line
 from symbolic_response.control.program import optimum
+from symbolic_response.control.rational import Poly, RationalFunction, rational_function
 from symbolic_response.control.steepness import forms
 from symbolic_response.errors import EvaluationError
 from symbolic_response.expressions.tree import ONE, Expression, Sum
@@ -58,15 +61,16 @@ def response_curve(
                               f" it one with --at {missing[0]}=VALUE")
     ends = extremes(asked)
     assert ends is not None  # every symbol has a value
-    function = function_of(analysis, rescaled(asked, ends)[0], asked.symbol, asked.values)
+    line = Line(analysis.network, asked.symbol, asked.values)
+    function = line.function(rescaled(asked, ends)[0])
     slope = function.sensitivity()
     spacing = "log" if asked.by.logarithmic else "linear"
     limits = _Limits(analysis, asked, ends)
     points = []
-    for done, place in enumerate(curve(function, low, high, count, spacing)):
+    for done, place in enumerate(curve(_variable(line), low, high, count, spacing)):
         x = place.x
         limit, finer = limits.at({**asked.values, asked.symbol: x})
-        points.append(CurvePoint(x, place.value, slope.at_place(place.y), limit, finer))
+        points.append(CurvePoint(x, function.value(x), slope.value(x), limit, finer))
         if progress is not None:
             progress(done + 1, count)
     entry = next(e for e in analysis.network.symbols if e.name == asked.symbol)
@@ -75,6 +79,17 @@ def response_curve(
         _latex(analysis, asked), asked.by.logarithmic, tuple(points), entry.about, "",
         None if ends == (Fraction(0), Fraction(1)) else ends, limits.without_forces,
     )
+
+
+def _variable(line: Line) -> RationalFunction:
+    """Return the variable of which all rates are rational functions, so that each point is exact.
+
+    The observable alone may be a function of a power of it.
+    """
+    rates = [rate for t in line.network.transitions for rate in (t.forward, t.backward)
+             if rate is not None]
+    root = lcm(*(line.converted(rate).root for rate in rates))
+    return rational_function(line.symbol, line.kind, root, Poly([0, 1]), Poly([1]))
 
 
 def _latex(analysis: Analysis, asked: Asked) -> str:
