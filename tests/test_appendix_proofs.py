@@ -71,7 +71,7 @@ EVERY_KIND = [
 def proofs_of(text: str) -> str:
     """Return the section of proofs."""
     return re.split(r"\\section\{Certificates\}|\\begin\{thebibliography\}",
-                    text.split(r"\section{Proofs}")[1])[0]
+                    re.split(r"\\section\{(?:Proofs|Inequalities without a proof)\}", text)[1])[0]
 
 
 def rows_of(text: str, head: str) -> list[list[str]]:

@@ -110,7 +110,7 @@ def _group(paper: Paper, quantity: Expression, claims: Sequence[Claim]) -> str:
             continue
         equations.append(equation)
         words.append(_cited(claim))
-    listed = "; ".join(words)
+    listed = "; ".join(dict.fromkeys(words))
     return "\n".join([
         rf"\paragraph{{{_heading(paper, quantity)}.}} Limited {listed}:",
         align(equations, paper.width),

@@ -70,7 +70,8 @@ def proofs_section(
         return Proofs("", None)
     made = [prove(paper.analysis, entry.quantity, entry.claims) for entry in entries]
     proved = [(entry, found) for entry, found in zip(entries, made, strict=True) if found.claims]
-    parts = [r"\section{Proofs}"]
+    title = "Proofs" if proved else "Inequalities without a proof"
+    parts = [rf"\section{{{title}}}"]
     record = None
     if proved:
         record = record_text({**FORMAT, "kind": "several", "records": [

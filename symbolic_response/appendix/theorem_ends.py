@@ -149,7 +149,7 @@ largest for the one centred at zero, so that raising the barrier by an amount of
 $\ln @end ratio@$, and with it every $\ln (\langle q \rangle / \langle q' \rangle)$, by at most
 \begin{equation}
 2 \ln \frac{\cosh \bigl((|\ln @cross ratio@_e| + \ell)/4\bigr)}
-{\cosh \bigl((|\ln @cross ratio@_e| - \ell)/4\bigr)} .
+{\cosh \bigl((|\ln @cross ratio@_e| - \ell)/4\bigr)} ,
 \label{eq:finite}
 \end{equation}
 which grows towards $\ell$ with $|\ln @cross ratio@_e|$.""")

@@ -106,7 +106,8 @@ most $\tanh (\ln(@largest@)/4)$: for odds $e^{@one@}$ and $e^{@two@}$ it is
 $\sinh ((@one@ - @two@)/2) / [\cosh ((@one@ - @two@)/2) + \cosh ((@one@ + @two@)/2)]$. A matching of
 the terms of $@back@_i @free@_j$ with those of $@free@_i @back@_j$ shows this for $\ln @largest@$
 the largest $|@force@_c|$ of the cycles with transitions inside and outside of $\mathcal{B}$: the
-two terms of each pair are equal or differ by the reversal of one such cycle.""")
+two terms of each pair are equal or differ by the reversal of one such cycle. The matchings for this
+network, one for each pair of states, stand in the record.""")
 
 
 def parameters(paper: Paper, barriers: bool) -> str:
