@@ -16,6 +16,7 @@ from symbolic_response.certificates.certify import certify
 from symbolic_response.certificates.proofs.prove import Proved, prove
 from symbolic_response.certificates.proofs.record import kind_of
 from symbolic_response.certificates.record import record_of, record_text
+from symbolic_response.certificates.report import certificate_text
 from symbolic_response.checker import check_record
 from symbolic_response.cli import run
 from symbolic_response.errors import QuantityError
@@ -214,3 +215,12 @@ def test_one_kind_at_a_time(capsys: pytest.CaptureFixture[str]) -> None:
     both = ["certify", TIDE, "d p[lit] / d barrier[fade]", "--proof-only", "--points-only"]
     assert run(both) == 2
     assert "exclude each other" in capsys.readouterr().err
+
+
+def test_points_say_why_there_is_no_proof() -> None:
+    made = certify(ring("k*(1 + c)"), "d p[A] / d ln c", count=3, workers=1)
+    text = certificate_text(made, None)
+    assert ("no proof of parameter: a rate of transition 'ab' does not change by a constant factor"
+            " with c") in text
+    assert "no proof" not in certificate_text(
+        certify(ring("k*c"), "d p[A] / d ln c", method="points", count=3, workers=1), None)

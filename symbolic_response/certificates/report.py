@@ -7,7 +7,7 @@ from fractions import Fraction
 
 from symbolic_response.bounds.decide import Weighted
 from symbolic_response.certificates.axes import value_text
-from symbolic_response.certificates.certify import Certificate
+from symbolic_response.certificates.certify import NO_POINTS, Certificate
 from symbolic_response.certificates.points import Certified, PointCertificate, values_text
 from symbolic_response.certificates.proofs.prove import Proof, Proved
 from symbolic_response.certificates.proofs.record import form_of, kind_of
@@ -35,6 +35,8 @@ def certificate_text(certificate: Certificate, file: str | None) -> str:
         lines += _proof_lines(certificate.proved, certificate.network)
     if certificate.points is not None:
         lines += [""] * bool(lines) + _point_lines(certificate.points)
+        lines += [f"no proof of {claim.name}: {why}" for claim, why in certificate.proved.without
+                  if claim.has_points and why != NO_POINTS]
     lines += [f"not certified: {claim.name}: {why}" for claim, why in certificate.without]
     if file is not None:
         lines.append(f"written: {file}")

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import json
+from pathlib import Path
 from typing import TYPE_CHECKING, Any
 
 import click
@@ -171,6 +172,9 @@ def appendix(
         progress.stage("writing the appendix")
         analysis = analysis_of(described, progress, trees, terms)
         files = [str(file) for file in write_appendix(described, output, analysis=analysis)]
+    older = Path(output).with_suffix(".proofs.json")
+    if len(files) == 1 and older.exists():
+        click.echo(f"note: {older} is of an earlier run; this document has no proofs", err=True)
     if as_json:
         proofs = files[1] if len(files) > 1 else None
         click.echo(json.dumps({"network": described.title, "file": output, "proofs": proofs}))
