@@ -113,7 +113,7 @@ def test_a_real_parameter_and_an_observable_of_another_range(texts: dict[str, st
     assert r"\partial \ln w / \partial F" in body
     assert r"for $F \to -\infty$" in body and r"for $F \to \infty$" in body
     assert r"where $H = 3/2$" in body and "at $F = -10$" in body
-    assert "In the decomposition chosen for this network it consists of the drive of" in body
+    assert "chosen for this network the change consists of the drive of" in body
     assert r"brought to the range from 0 to 1 to $F$ for $E = 2 \ln" in body
 
 
@@ -137,6 +137,13 @@ def test_one_way_steps_and_values_that_are_symbols(texts: dict[str, str]) -> Non
     assert r"\frac{K}{s^{\ast} + K}" in body
     assert r"approached for $k_{b} \to \infty$" in body
     assert "No rate depends on it." in body
+
+
+def test_letters_give_way_to_symbols_of_the_file() -> None:
+    body = section(appendix_text(network(RING, **{
+        "[symbols.c]": "[symbols.H]", '"c"': '"H"', '"3*c"': '"3*H"', '"2*c"': '"2*H"',
+        '"5*c"': '"5*H"', "ln c": "ln H"})))
+    assert r"\mathcal{H} &= 2 + t" in body and r"\partial \ln w / \partial \ln H" in body
 
 
 def test_long_functions_are_described_by_their_degrees(texts: dict[str, str]) -> None:

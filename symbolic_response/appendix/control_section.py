@@ -85,9 +85,9 @@ def _decompositions(paper: Paper, few: Decomposition, own: Decomposition | None)
     words = PieceWords(paper)
     chosen = "decomposition chosen for this network"
     if own == few:
-        return (f"In the {chosen} it consists of {words.text(few)} The sum equals the change"
-                " identically in all symbols.")
-    text = f"In few pieces it consists of {words.text(few)}"
+        return (f"In the {chosen} the change consists of {words.text(few)} The sum"
+                " equals it identically in all symbols.")
+    text = f"In few pieces the change consists of {words.text(few)}"
     if own is None:
         return text
     return (f"{text} The {chosen} consists of {words.text(own)} Either sum equals the change"
