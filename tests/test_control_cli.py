@@ -352,12 +352,20 @@ def test_the_network_file_is_not_written_over(
 
 
 def test_an_interrupted_pool_leaves_nothing_behind(ring: Path, tmp_path: Path) -> None:
-    """Ctrl-C reaches every process of the group: one line, no file, no process left."""
+    """Ctrl-C reaches every process of the group: one line, no file, no process left.
+
+    Sent once the processes of the pool are there, as Linux lists them.
+    """
     process = subprocess.Popen(
         [*PROGRAM, "cloud", str(ring), "d p[A] / d barrier[bind]", "--points", "500000",
          "--workers", "2", "-o", str(tmp_path / "a.csv"), "--quiet"],
         stdout=subprocess.PIPE, stderr=subprocess.PIPE, text=True, start_new_session=True)
-    time.sleep(4)
+    children = Path(f"/proc/{process.pid}/task/{process.pid}/children")
+    for _ in range(600):
+        if len(children.read_text(encoding="utf-8").split()) >= 2:
+            break
+        time.sleep(0.1)
+    time.sleep(1)
     os.killpg(process.pid, signal.SIGINT)
     out, err = process.communicate(timeout=30)
     assert (process.returncode, out, err) == (130, "", "error: interrupted\n")
