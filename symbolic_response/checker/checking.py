@@ -83,7 +83,7 @@ def _check_several(data: object, work: Work, draw: Callable[[], int]) -> Verdict
             wrong = error.verdict
             raise Rejected(wrong.status, f"records[{k}].{wrong.entry}", wrong.expected,
                            wrong.got) from None
-    return Verdict("valid", got="; ".join(one.got for one in found),
+    return Verdict("valid", got="; ".join(dict.fromkeys(one.got for one in found)),
                    statement="; ".join(one.statement for one in found))
 
 
