@@ -19,6 +19,7 @@ if TYPE_CHECKING:
     from symbolic_response.certificates.record import write_certificate
     from symbolic_response.checker import check_file as recheck
     from symbolic_response.control.cloud import cloud
+    from symbolic_response.control.limits import leading
     from symbolic_response.control.response_curve import response_curve
     from symbolic_response.control.result import Steepness, steepness
     from symbolic_response.figures.cloud import cloud_figure
@@ -48,6 +49,7 @@ _HOMES = {
     "bound": "bounds.report",
     "recheck": "checker",
     "cloud": "control.cloud",
+    "leading": "control.limits",
     "response_curve": "control.response_curve",
     **dict.fromkeys(("Steepness", "steepness"), "control.result"),
     "cloud_figure": "figures.cloud",
@@ -84,6 +86,7 @@ __all__ = [
     "from_generator_matrix",
     "from_networkx",
     "generator_matrix",
+    "leading",
     "read_network",
     "read_network_text",
     "recheck",

@@ -8,6 +8,7 @@ from collections.abc import Callable, Iterator, Sequence
 from dataclasses import dataclass
 from fractions import Fraction
 from itertools import pairwise
+from pathlib import Path
 
 import mpmath
 import pytest
@@ -16,13 +17,16 @@ from symbolic_response.control.asked import asked_of
 from symbolic_response.control.at_points import limit_at
 from symbolic_response.control.curve_data import CurveData, curve_csv, number_of
 from symbolic_response.control.decomposition import Decomposition
+from symbolic_response.control.report import steepness_text
 from symbolic_response.control.response_curve import response_curve
 from symbolic_response.control.result import Steepness, steepness
 from symbolic_response.errors import AssignmentError, QuantityError
-from symbolic_response.expressions.tree import Expression, Number
-from symbolic_response.network import Network, Rates, build_network
+from symbolic_response.expressions.ring import plain
+from symbolic_response.expressions.tree import Expression, Number, number
+from symbolic_response.network import Network, Rates, build_network, read_network
 from symbolic_response.network.quantity_reader import read_quantity
 from symbolic_response.response.analysis import Analysis
+from symbolic_response.response.direct import direct_value
 from symbolic_response.response.values import Point
 from tests.random_networks import Numbers, Weights, random_numbers, ring
 
@@ -557,3 +561,22 @@ def test_two_equally_steep_places() -> None:
 
         top = mpmath.findroot(lambda y: mpmath.diff(slope, y), 0.0)
         assert abs(slope(top) - mpmath.mpf(steepest.value[0])) < mpmath.mpf(10) ** -15
+
+
+def test_ends_of_the_parameter_are_said() -> None:
+    """With and without values the same limits; against the exact function far out."""
+    network = read_network(Path(__file__).parent.parent / "worked_cases/dew_valve/network.toml")
+    free = steepness(network, "mean[flow]", "m")
+    assert [end.end for end in free.tends] == ["0", "inf"]
+    values = {entry.name: Fraction(place + 2, 3) for place, entry in enumerate(network.symbols)
+              if entry.name != "m"}
+    given = steepness(network, "mean[flow]", "m", values)
+    assert given.actual is not None and given.tends == ()
+    for end, far in zip(free.tends, (Fraction(1, 10**12), Fraction(10**12)), strict=True):
+        size = direct_value(plain(end.coefficient.expression), {
+            symbol: number(value) for symbol, value in values.items()})
+        assert size is not None and end.logarithm is None
+        predicted = Fraction(int(size.p), int(size.q)) * far ** int(end.power)
+        assert abs(given.actual.function.value(far) / predicted - 1) < Fraction(1, 10**6)
+        assert f"as m -> {end.end}" in steepness_text(free)
+        assert f"as m -> {end.end}" in steepness_text(given)

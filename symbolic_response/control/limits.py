@@ -40,7 +40,9 @@ from symbolic_response.expressions.ring import (
     factors_of,
 )
 from symbolic_response.expressions.tree import Expression, Symbol, add, number
-from symbolic_response.response.analysis import Analysis
+from symbolic_response.network.model import Network
+from symbolic_response.network.quantity_reader import read_quantity
+from symbolic_response.response.analysis import Analysis, as_analysis
 from symbolic_response.response.closed_form import ClosedForm, closed_form
 from symbolic_response.response.placing import exponents_of
 
@@ -73,7 +75,9 @@ class Leading:
         return None if grows else number(0)
 
 
-def leading(analysis: Analysis, quantity: Expression, symbol: str, end: str) -> Leading:
+def leading(
+    subject: Network | Analysis, quantity: Expression | str, symbol: str, end: str
+) -> Leading:
     """Return the leading behaviour of a quantity as a symbol tends to an end, exactly.
 
     ``end``: ``"0"`` or ``"inf"``; for real symbols also ``"-inf"``, and ``"0"`` gives the first
@@ -82,13 +86,15 @@ def leading(analysis: Analysis, quantity: Expression, symbol: str, end: str) -> 
     exists, UndecidedError where it was not found, SizeLimitError as closed forms do.
 
     >>> from symbolic_response.network.build import build_network
-    >>> from symbolic_response.network.quantity_reader import read_quantity
     >>> pair = build_network("pair", states="A B", transitions=[("A", "B", "k*c", "q")])
-    >>> low = leading(Analysis(pair), read_quantity("p[B]", pair), "c", "0")
+    >>> low = leading(pair, "p[B]", "c", "0")
     >>> low.coefficient.text(), low.power
     ('k/q', Fraction(1, 1))
     """
+    analysis = as_analysis(subject)
     positive = analysis.network.symbol(symbol).positive
+    if isinstance(quantity, str):
+        quantity = read_quantity(quantity, analysis.network)
     if end not in ENDS or (positive and end == "-inf"):
         raise EvaluationError(f"{symbol} cannot tend to {end!r}; take '0' or 'inf'"
                               + ("" if positive else " or '-inf'"))

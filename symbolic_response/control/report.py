@@ -16,9 +16,12 @@ from symbolic_response.control.curve_data import (
 )
 from symbolic_response.control.decomposition import Decomposition
 from symbolic_response.control.extrema import Maximum
+from symbolic_response.control.limits import Leading
+from symbolic_response.control.rational import EXPONENTIAL, RationalFunction
 from symbolic_response.control.result import Steepness
 from symbolic_response.control.steepness import Reading
-from symbolic_response.expressions.text import fraction_text
+from symbolic_response.expressions.text import expression_text, fraction_text
+from symbolic_response.expressions.tree import Symbol, add, function, multiply, number, power
 from symbolic_response.network.model import Network
 
 MOST_CYCLES = 6
@@ -75,12 +78,39 @@ def _reading_lines(reading: Reading | None) -> list[str]:
 
 def _actual_lines(result: Steepness, by: str) -> list[str]:
     if result.actual is None:
-        return [f"with values for {', '.join(result.missing)} the actual steepness is found too"]
+        lines = [f"{result.asked.text} ~ {leading_text(end)}   as {end.symbol} -> {end.end}"
+                 for end in result.tends]
+        return [*lines, f"with values for {', '.join(result.missing)} the actual steepness is found"
+                        " too"]
     actual = result.actual
+    low = "0" if result.asked.by.logarithmic else "-inf"
     return [f"q = {actual.function.text()}",
+            *(f"q ~ {_term(actual.function, end)}   as {result.asked.symbol} -> {goal}"
+              for end, goal in (("low", low), ("high", "inf"))),
             f"d q / d {by} = {actual.sensitivity.text()}",
             f"largest abs(d q / d {by}): {maximum_text(actual.steepest)}",
             f"largest abs(d logit q / d {by}): {maximum_text(actual.largest)}"]
+
+
+def leading_text(found: Leading) -> str:
+    """Return a leading term in the syntax of the file."""
+    x = Symbol(found.symbol)
+    grows = function("exp", multiply([number(found.power), x])) if found.exponential else (
+        power(x, found.power))
+    size = found.coefficient.expression
+    if found.logarithm is not None:
+        ln = x if found.exponential else function("ln", x)
+        size = add([size, multiply([found.logarithm.expression, ln])])
+    return expression_text(multiply([size, grows]))
+
+
+def _term(f: RationalFunction, end: str) -> str:
+    """Return the leading term of a function at an end."""
+    size, exponent = f.leading_term(end)
+    x = Symbol(f.symbol)
+    grows = function("exp", multiply([number(exponent), x])) if f.kind == EXPONENTIAL else (
+        power(x, exponent))
+    return expression_text(multiply([number(size), grows]))
 
 
 def maximum_text(found: Maximum) -> str:
@@ -137,6 +167,7 @@ def steepness_data(result: Steepness) -> dict[str, object]:
             "verdict": reading.verdict, "t": None if reading.t is None else str(reading.t),
             "force": None if reading.force is None else list(reading.force)},
         "missing": list(result.missing),
+        "tends": [{"end": end.end, "leading": leading_text(end)} for end in result.tends],
         "function": None if actual is None else actual.function.text(),
         "sensitivity": None if actual is None else actual.sensitivity.text(),
         "exponent": None if actual is None else actual.exponent.text(),

@@ -14,6 +14,7 @@ from symbolic_response.control.decomposition import Decomposition, LinearForm, s
 from symbolic_response.control.extrema import Maximum, maximum
 from symbolic_response.control.family import Family, classes_of, family_of
 from symbolic_response.control.function import function_of
+from symbolic_response.control.limits import Leading, leading
 from symbolic_response.control.rational import RationalFunction
 from symbolic_response.control.separations import Part
 from symbolic_response.control.steepness import Reading, forms, read_backwards
@@ -22,7 +23,12 @@ from symbolic_response.control.user_decomposition import (
     parameter_of,
     user_decomposition,
 )
-from symbolic_response.errors import AssignmentError
+from symbolic_response.errors import (
+    AssignmentError,
+    EvaluationError,
+    SizeLimitError,
+    UndecidedError,
+)
 from symbolic_response.network.entries import DocumentError, check_keys
 from symbolic_response.network.model import Network
 from symbolic_response.network.quantities import BySymbol
@@ -60,7 +66,8 @@ class Steepness:
     same cycles. ``simplest``: the change of the rates in fewest
     pieces; ``own``: those of the file, each with the parameter or its logarithm that it is for.
     ``range``: the extremes of the observable, which is brought to 0 .. 1; None where a symbol in
-    them has no value. ``actual``: None where any symbol has none (``missing``). ``reading``: of a
+    them has no value. ``actual``: None where any symbol has none (``missing``); ``tends`` then says
+    how the observable behaves at the ends of the parameter. ``reading``: of a
     measured steepness.
     """
 
@@ -75,6 +82,7 @@ class Steepness:
     range: tuple[Fraction, Fraction] | None
     missing: tuple[str, ...]
     actual: Actual | None
+    tends: tuple[Leading, ...]
     reading: Reading | None
 
     def at_equal(self, t: Fraction | int) -> Fraction | None:
@@ -121,9 +129,10 @@ def steepness(
     if not missing and ends is not None:
         function = function_of(analysis, rescaled(asked, ends)[0], asked.symbol, asked.values)
         actual = _actual(function, low, high)
+    tends = _tends(analysis, asked) if actual is None else ()
     return Steepness(
         analysis.network, asked, family, found, _bundles(found, same, analysis), same,
-        sparsest(analysis, change, family), own, ends, missing, actual,
+        sparsest(analysis, change, family), own, ends, missing, actual, tends,
         None if measured is None else read_backwards(found, measured),
     )
 
@@ -133,6 +142,18 @@ def _actual(function: RationalFunction, low: Given | None, high: Given | None) -
     return Actual(function, sensitivity, exponent,
                   maximum(sensitivity, low, high, absolute=True),
                   maximum(exponent, low, high, absolute=True))
+
+
+def _tends(analysis: Analysis, asked: Asked) -> tuple[Leading, ...]:
+    """Return how the observable behaves at both ends of the parameter, in the other symbols.
+
+    Nothing where the closed form is beyond a limit, or where no leading term is found.
+    """
+    try:
+        return tuple(leading(analysis, asked.quantity, asked.symbol, end)
+                     for end in (("0", "inf") if asked.by.logarithmic else ("-inf", "inf")))
+    except (SizeLimitError, UndecidedError, EvaluationError):
+        return ()
 
 
 def _own(analysis: Analysis, asked: Asked) -> tuple[tuple[BySymbol, Decomposition], ...]:
