@@ -580,3 +580,17 @@ def test_ends_of_the_parameter_are_said() -> None:
         assert abs(given.actual.function.value(far) / predicted - 1) < Fraction(1, 10**6)
         assert f"as m -> {end.end}" in steepness_text(free)
         assert f"as m -> {end.end}" in steepness_text(given)
+
+
+def test_numbers_from_python_are_exact() -> None:
+    network = read_network(Path(__file__).parent.parent / "worked_cases/dew_valve/network.toml")
+    found = steepness(network, "mean[flow]", "m", measured="3/2")
+    assert found.reading is not None and found.reading.t == Fraction(1, 2)
+    assert found.at_equal("1/2") == Fraction(3, 2) and found.at_equal(1) == 2
+    for wrong in (2, "x", 0.5):
+        with pytest.raises(AssignmentError):
+            found.at_equal(wrong)  # type: ignore[arg-type]
+    with pytest.raises(AssignmentError, match="no exact number"):
+        steepness(network, "mean[flow]", "m", measured=1.5)  # type: ignore[arg-type]
+    limit = steepness(network, "mean[flow]", "m", measured=2)
+    assert "no finite force suffices" in steepness_text(limit)

@@ -48,8 +48,9 @@ def _pieces(family: Family, one_way: bool) -> str:
     items.append(drive + (r", for a one-way step $|@amount@|/2$" if one_way else "")
                  + r"~\cite{owen};")
     items.append(r"sets of rates out of one state, $@amount@$ on each: at most $|@amount@|$, "
-                 "since a spanning tree, directed towards any state, uses one of them at most "
-                 "(derived here).")
+                 "since a spanning tree, directed towards any state, uses one of them at most; of "
+                 "other sets of rates $|@amount@|$ times the range of how many of them a spanning "
+                 "tree uses (derived here).")
     return ("\\begin{itemize}\n" + "\n".join(rf"\item {item}" for item in items)
             + "\n\\end{itemize}")
 

@@ -30,9 +30,10 @@ from symbolic_response.control.curve_data import csv_text, decimal_text, logarit
 from symbolic_response.errors import QuantityError, RefutedError
 from symbolic_response.expressions.text import fraction_text
 from symbolic_response.expressions.tree import ONE, ZERO, Expression, Sum, Symbol, divide, rebuild
+from symbolic_response.network.model import Network
 from symbolic_response.network.quantities import Response
 from symbolic_response.network.quantity_reader import read_quantity
-from symbolic_response.response.analysis import Analysis
+from symbolic_response.response.analysis import Analysis, as_analysis
 from symbolic_response.response.quantity_latex import (
     Notation,
     notation_of,
@@ -91,7 +92,7 @@ class Cloud:
 
 
 def cloud(
-    analysis: Analysis,
+    subject: Network | Analysis,
     text: str,
     count: int = COUNT,
     seed: str = "0",
@@ -107,6 +108,7 @@ def cloud(
     constant), EvaluationError and UndecidedError as ``certify`` does.
     """
     check_seed(seed)
+    analysis = as_analysis(subject)
     if count < 1:
         raise QuantityError("a cloud needs one point or more")
     network = analysis.network

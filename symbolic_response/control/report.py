@@ -36,7 +36,7 @@ def steepness_text(result: Steepness) -> str:
     lines += [f"  {form.text(network, result.same)}" for form in result.forms]
     for part, cycles in result.bundles.items():
         names = ", ".join(network.transitions[e].name for e in part)
-        lines.append(f"t[{names}] = tanh(F/4), F the largest force of {len(cycles)} cycles:")
+        lines.append(f"t[{names}] = tanh(F/4), F the largest abs(force) of {len(cycles)} cycles:")
         lines += [f"    {path}   {force}" for path, force in cycles[:MOST_CYCLES]]
         if len(cycles) > MOST_CYCLES:
             lines.append(f"    and {len(cycles) - MOST_CYCLES} more")
@@ -72,8 +72,10 @@ def _reading_lines(reading: Reading | None) -> list[str]:
         return []
     if reading.t is None:
         return [f"the measured steepness: {reading.verdict}"]
-    force = "infinite" if reading.force is None else f"{reading.force[0]} or more"
-    return [f"the measured steepness: some t at least {reading.t}, so a cycle force of {force}"]
+    if reading.force is None:
+        return ["the measured steepness: some t would have to be 1; no finite force suffices"]
+    return [f"the measured steepness: some t at least {reading.t}, so a cycle force of"
+            f" {reading.force[0]} or more"]
 
 
 def _actual_lines(result: Steepness, by: str) -> list[str]:

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import contextlib
 from collections.abc import Mapping
 from dataclasses import dataclass
 from fractions import Fraction
@@ -85,8 +86,14 @@ class Steepness:
     tends: tuple[Leading, ...]
     reading: Reading | None
 
-    def at_equal(self, t: Fraction | int) -> Fraction | None:
-        """Return H where all tanh(F/4) are equal to t, None where it depends on symbols."""
+    def at_equal(self, t: Fraction | int | str) -> Fraction | None:
+        """Return H where all tanh(F/4) are equal to t, None where it depends on symbols.
+
+        ``t``: from 0 to 1; AssignmentError otherwise.
+        """
+        t = _exact(t)
+        if not 0 <= t <= 1:
+            raise AssignmentError(f"tanh(F/4) is from 0 to 1; {t} is not")
         parts = [form.numbers() for form in self.forms]
         known = [part for part in parts if part is not None]
         if len(known) < len(parts):
@@ -102,7 +109,7 @@ def steepness(
     *,
     low: Given | None = None,
     high: Given | None = None,
-    measured: Fraction | None = None,
+    measured: Fraction | int | str | None = None,
 ) -> Steepness:
     """Return the limit on the steepness of an observable in a parameter, and the actual one.
 
@@ -118,7 +125,8 @@ def steepness(
     if missing and (low is not None or high is not None):
         raise AssignmentError(f"a range of {asked.symbol} needs a value for every other symbol;"
                               f" {missing[0]} has none")
-    if measured is not None and measured < 0:
+    h = None if measured is None else _exact(measured)
+    if h is not None and h < 0:
         raise AssignmentError(f"a steepness is the size of a slope; {measured} is negative")
     family = family_of(analysis)
     found = forms(analysis, asked.by, family)
@@ -133,8 +141,17 @@ def steepness(
     return Steepness(
         analysis.network, asked, family, found, _bundles(found, same, analysis), same,
         sparsest(analysis, change, family), own, ends, missing, actual, tends,
-        None if measured is None else read_backwards(found, measured),
+        None if h is None else read_backwards(found, h),
     )
+
+
+def _exact(value: Fraction | int | str) -> Fraction:
+    """Return an exact number; AssignmentError for a float or for what is no number."""
+    if isinstance(value, Fraction | int | str):
+        with contextlib.suppress(ValueError, ZeroDivisionError):
+            return Fraction(value)
+    raise AssignmentError(f"{value!r} is no exact number; write a fraction, an integer or a text"
+                          " such as '3/2'")
 
 
 def _actual(function: RationalFunction, low: Given | None, high: Given | None) -> Actual:

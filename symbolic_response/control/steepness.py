@@ -181,8 +181,8 @@ def read_backwards(found: Sequence[LinearForm], h: Fraction) -> Reading:
         parts = form.numbers()
         if parts is None:
             raise QuantityError(
-                "the limit on the steepness depends on symbols; give their values to read a"
-                " steepness backwards")
+                "the limit on the steepness depends on symbols, maybe the parameter itself; a"
+                " measured steepness cannot be read backwards here: leave it out")
         constant, slope = parts[0], sum(parts[1].values(), Fraction(0))
         if h > constant + slope:
             return Reading(NO_DRIVING)
