@@ -340,3 +340,17 @@ def test_another_network(name: str, one: int, two: list[int]) -> None:
         assert verdict.status == "invalid", verdict
         assert verdict.entry.startswith(("trees", "proofs")), verdict
 
+
+
+@pytest.mark.parametrize("rate", ["x - y", "-x", "0", "ln(x)"])
+def test_rates_that_need_not_be_positive(rate: str) -> None:
+    refused(edited(SQUARE_EDGE, "network", "transitions", 0, "forward", rate), "invalid",
+            "network.transitions[0].forward", "a form that shows a positive rate")
+
+
+@pytest.mark.parametrize("amount", ["ln(x - y)", "sqrt(x - y)", "1/0", "ln(-1)"])
+def test_amounts_that_need_not_be_real(amount: str) -> None:
+    name = next(key for key, record in examples().items()
+                if (record.get("perturbation") or {}).get("kind") == "finite-barrier")
+    refused(edited(name, "perturbation", "amount", amount), "invalid", "perturbation.amount",
+            "a form that shows a real number")
