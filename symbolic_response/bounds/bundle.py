@@ -32,9 +32,7 @@ def bundle(question: Question) -> Claim | None:
     transitions = None if changes is None else _whole(changes, analysis)
     if changes is None or transitions is None:
         return None
-    least = analysis.graph.size - 1 - rank(set(range(len(analysis.graph.ends))) - {*transitions},
-                                           analysis.graph)
-    most = rank(transitions, analysis.graph)
+    least, most = uses(transitions, analysis.graph)
     if most > least + 1:
         return None
     names = [analysis.network.transitions[e].name for e in transitions]
@@ -92,6 +90,17 @@ def _whole(changes: RateChanges, analysis: Analysis) -> tuple[int, ...] | None:
     chosen = sorted({analysis.rates.directions()[place][0] for place in changes})
     both = sum(1 if analysis.graph.one_way[e] else 2 for e in chosen)
     return tuple(chosen) if both == len(changes) else None
+
+
+def uses(transitions: Iterable[int], graph: Graph) -> tuple[int, int]:
+    """Return how many of some transitions a spanning tree uses, directions ignored: least and most.
+
+    >>> uses([0, 1], Graph(3, ((0, 1), (1, 2), (2, 0)), (False,) * 3))
+    (1, 2)
+    """
+    chosen = set(transitions)
+    others = set(range(len(graph.ends))) - chosen
+    return graph.size - 1 - rank(others, graph), rank(chosen, graph)
 
 
 def rank(transitions: Iterable[int], graph: Graph) -> int:

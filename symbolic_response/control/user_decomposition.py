@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Callable, Iterable
 
-from symbolic_response.bounds.bundle import rank
+from symbolic_response.bounds.bundle import uses
 from symbolic_response.control.decomposition import Decomposition, Piece, check_sum
 from symbolic_response.control.separations import Part
 from symbolic_response.errors import QuantityError
@@ -134,9 +134,7 @@ class _Reader:
 
     def is_bundle(self, transitions: Part, place: Place) -> bool:
         """Return whether trees use r or r + 1 of them, not always r; DocumentError for more."""
-        graph = self.analysis.graph
-        most = rank(transitions, graph)
-        least = graph.size - 1 - rank(set(range(len(graph.ends))) - {*transitions}, graph)
+        least, most = uses(transitions, self.analysis.graph)
         if most > least + 1:
             raise DocumentError(
                 f"the transitions of a bundle: a spanning tree uses between {least} and {most} of"
