@@ -25,6 +25,25 @@ class ExpressionError(InputError):
         self.position = position
 
 
+class FormulaError(ExpressionError):
+    """A LaTeX formula cannot be read; ``line`` and ``column`` count from 1.
+
+    ``excerpt`` is the line of the text (or the part of it around the place), ``pointer`` the place
+    in the excerpt, from 0.
+    """
+
+    def __init__(
+        self, message: str, line: int, column: int, excerpt: str = "", pointer: int = 0
+    ) -> None:
+        super().__init__(f"line {line}, column {column}: {message}")
+        self.line, self.column = line, column
+        self.excerpt, self.pointer = excerpt, pointer
+
+    def pointed(self) -> str:
+        """Return the excerpt and, below it, a caret under the place."""
+        return f"{self.excerpt}\n{' ' * self.pointer}^"
+
+
 class NetworkError(InputError):
     """A network, or the file that describes it, breaks a rule."""
 

@@ -11,7 +11,8 @@ import symbolic_response
 
 ROOT = Path(symbolic_response.__file__).parent
 STAGES = ["checker", "errors", "files", "expressions", "network", "topology", "algebra", "response",
-          "bounds", "certificates", "control", "figures", "appendix", "progress", "cli", "__main__"]
+          "bounds", "certificates", "control", "hand", "figures", "export", "appendix",
+          "progress", "cli", "__main__"]
 SHELL = {"__init__"}  # the lazy list of public names reaches everything
 MAX_LINES = 400
 

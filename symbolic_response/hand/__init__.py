@@ -1,0 +1,1 @@
+"""Hand results: reading them, a verdict with a witness, and what went wrong."""
