@@ -29,14 +29,21 @@ class FormulaError(ExpressionError):
     """A LaTeX formula cannot be read; ``line`` and ``column`` count from 1.
 
     ``excerpt`` is the line of the text (or the part of it around the place), ``pointer`` the place
-    in the excerpt, from 0.
+    in the excerpt, from 0; ``source`` says where the text stands.
     """
 
     def __init__(
-        self, message: str, line: int, column: int, excerpt: str = "", pointer: int = 0
+        self,
+        message: str,
+        line: int,
+        column: int,
+        excerpt: str = "",
+        pointer: int = 0,
+        source: str = "",
     ) -> None:
-        super().__init__(f"line {line}, column {column}: {message}")
-        self.line, self.column = line, column
+        before = f"{source}: " if source else ""
+        super().__init__(f"{before}line {line}, column {column}: {message}")
+        self.message, self.line, self.column = message, line, column
         self.excerpt, self.pointer = excerpt, pointer
 
     def pointed(self) -> str:

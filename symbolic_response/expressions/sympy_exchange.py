@@ -4,9 +4,11 @@ from __future__ import annotations
 
 from collections.abc import Callable
 from fractions import Fraction
+from functools import partial
 from typing import Any
 
 from symbolic_response.errors import EvaluationError, ExpressionError, SizeLimitError
+from symbolic_response.expressions.hyperbolic import HYPERBOLIC, hyperbolic
 from symbolic_response.expressions.names import NAME
 from symbolic_response.expressions.reader import MAX_EXPONENT
 from symbolic_response.expressions.tree import (
@@ -57,7 +59,8 @@ def expression_to_sympy(node: Expression, positive: frozenset[str] = frozenset()
 def expression_from_sympy(expression: Any) -> Expression:
     """Return a SymPy expression as ours.
 
-    Sums, products, rational powers, ``exp``, ``log``, symbols and rational numbers are known.
+    Sums, products, rational powers, ``exp``, ``log``, hyperbolic functions (written with ``exp``),
+    symbols and rational numbers are known.
     Raises ExpressionError for all else, floating-point numbers included.
 
     >>> import sympy
@@ -91,13 +94,18 @@ def _from_sympy(node: Any) -> Expression:
         sympy.Mul: multiply,
         sympy.exp: lambda parts: function("exp", parts[0]),
         sympy.log: lambda parts: function("ln", parts[0]),
+        **{getattr(sympy, name): partial(_hyperbolic, name) for name in HYPERBOLIC},
     }
     if getattr(node, "func", None) in known:
         return known[node.func]([_from_sympy(part) for part in node.args])
     hint = "write an exact Rational" if isinstance(node, sympy.Float) else (
-        "write it with sums, products, rational powers, exp and log"
+        "write it with sums, products, rational powers, exp, log and hyperbolic functions"
     )
     raise ExpressionError(f"a SymPy {type(node).__name__} cannot be used; {hint}")
+
+
+def _hyperbolic(name: str, parts: list[Expression]) -> Expression:
+    return hyperbolic(name, parts[0])
 
 
 def _power(node: Any) -> Expression:

@@ -12,6 +12,7 @@ from dataclasses import dataclass, replace
 from fractions import Fraction
 
 from symbolic_response.errors import ExpressionError, QuantityError, SymbolicResponseError
+from symbolic_response.expressions.hyperbolic import HYPERBOLIC, hyperbolic
 from symbolic_response.expressions.reader import Token, no_atoms, read_tokens, tokenize
 from symbolic_response.expressions.tree import Expression, function, power, symbols_of
 from symbolic_response.network.model import Network, nearest
@@ -41,14 +42,15 @@ _FUNCTIONS = ("exp", "ln", "sqrt")
 _OPENING, _CLOSING = ("(", "["), (")", "]")
 
 
-def read_quantity(text: str, network: Network) -> Expression:
+def read_quantity(text: str, network: Network, *, hyperbolic: bool = False) -> Expression:
     """Return the quantity or response that ``text`` describes, for this network.
 
+    ``hyperbolic``: tanh, sinh, cosh and coth may occur, which are written with exponentials.
     Raises QuantityError, in one line, with the position where reading stopped.
     """
     try:
         tokens = tokenize(text)
-        quantity = _Reader(network, 0).read(tokens)
+        quantity = _Reader(network, 0, hyperbolic=hyperbolic).read(tokens)
     except ExpressionError as error:
         raise QuantityError(f"in {_excerpt(text, error.position)}: {error}") from None
     except QuantityError as error:
@@ -79,6 +81,7 @@ class _Reader:
     network: Network
     depth: int
     in_change: bool = False
+    hyperbolic: bool = False
 
     def read(self, tokens: list[Token]) -> Expression:
         """Read a whole token list as a response or as an expression of atoms."""
@@ -109,6 +112,10 @@ class _Reader:
             return EntropyProduction(), index + 1
         if token.text in _ATOMS:
             return self.bracketed(tokens, index)
+        if self.hyperbolic and token.text in HYPERBOLIC and tokens[index + 1].text == "(":
+            closing = _matching(tokens, index + 1)
+            inner = [*tokens[index + 2 : closing], Token("end", "", tokens[closing].position)]
+            return hyperbolic(token.text, read_tokens(inner, self.atom)), closing + 1
         if token.text in _ONLY_IN_INEQUALITIES:
             raise ExpressionError(f"{token.text!r} belongs in an inequality", token.position)
         return None

@@ -73,6 +73,20 @@ def read_network_text(text: str, path: str | None = None) -> Network:
     return network
 
 
+def place_in_file(path: str | None, place: tuple[str | int, ...]) -> str:
+    """Return where in its file an entry of a network stands, as ``FILE:LINE``, for messages.
+
+    Without a file, or where it can no longer be read, the keys and ordinals of the entry.
+    """
+    if path is not None:
+        try:
+            text = _read_text(path).removeprefix("\ufeff").replace("\r\n", "\n")
+        except NetworkError:
+            return path
+        return f"{path}:{line_of(key_lines(text), place)}"
+    return " ".join(str(part + 1) if isinstance(part, int) else part for part in place)
+
+
 def _read_text(label: str) -> str:
     try:
         with open(label, "rb") as file:
