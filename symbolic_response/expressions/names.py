@@ -58,6 +58,20 @@ def default_latex(name: str) -> str:
     return _word(base) + (f"_{{{subscript}}}" if subscript else "")
 
 
+def upright(name: str) -> str:
+    r"""Return a name as upright letters.
+
+    >>> print(upright("A_B"))
+    \mathrm{A\_B}
+    """
+    return rf"\mathrm{{{name}}}".replace("_", r"\_")
+
+
+def base_latex(latex: str) -> str:
+    """Return what stands before the first subscript, superscript or prime."""
+    return re.split(r"[_^']", latex)[0]
+
+
 def same_latex(latex: str) -> str:
     """Return a key that is equal for two texts that print alike: ``k_1`` and ``k_{1}``."""
     unbraced = re.sub(r"\{([^\\{}]|\\[A-Za-z]+)\}", r"\1", latex)

@@ -8,12 +8,11 @@ from typing import Any
 
 from symbolic_response.algebra.factored import Factored
 from symbolic_response.expressions.latex import expression_latex
-from symbolic_response.expressions.names import default_latex
 from symbolic_response.expressions.ring import all_symbols, plain
 from symbolic_response.expressions.sympy_exchange import expression_to_sympy
 from symbolic_response.expressions.text import expression_text
 from symbolic_response.expressions.tree import Expression
-from symbolic_response.network.model import Network
+from symbolic_response.network.notation_section import symbol_names as symbol_names
 from symbolic_response.response.analysis import Analysis
 from symbolic_response.response.closed_trees import closed_tree
 
@@ -62,8 +61,3 @@ def closed_form(quantity: Expression, analysis: Analysis) -> ClosedForm:
     """
     form = analysis.simplified(closed_tree(quantity, analysis))
     return ClosedForm(form, symbol_names(analysis.network), analysis.domain.positive)
-
-
-def symbol_names(network: Network) -> dict[str, str]:
-    """Return the LaTeX of every symbol of a network."""
-    return {entry.name: entry.latex or default_latex(entry.name) for entry in network.symbols}
