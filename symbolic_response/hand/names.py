@@ -1,0 +1,397 @@
+r"""What a formula may name: the symbols of a network and its quantities, by their LaTeX.
+
+Names are compared as canonical items, exactly first, then without fonts where that leaves one
+meaning; of several names that fit, the longest counts. Letters are those of the notation of the
+network; the other letters of a role (``p`` for ``\pi``) count where no symbol and no other role has
+them. Labels are those of the notation, the default ones and the plain names.
+"""
+
+from __future__ import annotations
+
+import difflib
+from collections.abc import Iterable, Iterator, Mapping, Sequence
+from dataclasses import dataclass, field, replace
+
+from symbolic_response.errors import ExpressionError, FormulaError
+from symbolic_response.expressions.names import base_latex, default_latex, same_latex, upright
+from symbolic_response.expressions.tree import Expression, Symbol, add, negate
+from symbolic_response.hand.items import Item, Items, items_of, key_of, without_fonts
+from symbolic_response.hand.tokens import tokenize
+from symbolic_response.network.model import Network
+from symbolic_response.network.notation_section import LETTERS, plain_symbol_names
+from symbolic_response.network.quantities import (
+    BarrierOf,
+    BarriersOf,
+    BySymbol,
+    Current,
+    DirectedRate,
+    DriveOf,
+    EnergyOf,
+    EntropyProduction,
+    Mean,
+    Perturbation,
+    Probability,
+    Traffic,
+)
+from symbolic_response.response.notation import Notation, joined, notation_of
+
+SYMBOL, CHOSEN, LABELLED, OTHER = range(4)
+"""Which of two meanings of one name counts: the lower; of equal ones neither."""
+
+
+@dataclass(frozen=True, slots=True)
+class Entry:
+    """The meanings of one name at the lowest level that has any; more than one are ambiguous."""
+
+    level: int
+    meanings: tuple[object, ...]
+    shown: str
+
+
+@dataclass(frozen=True, slots=True)
+class Match:
+    """A name found: ``count`` items, its meanings, and the superscript left over as a power."""
+
+    count: int
+    meanings: tuple[object, ...]
+    shown: str
+    power: Items | None
+    others: tuple[str, ...] = ()
+
+
+@dataclass(frozen=True, slots=True)
+class Table:
+    """Names as they are written, and without fonts; ``widest``: the most items of a name."""
+
+    exact: Mapping[str, Entry] = field(default_factory=dict)
+    loose: Mapping[str, Entry] = field(default_factory=dict)
+    widest: int = 1
+
+    def match(self, items: Items, place: int = 0) -> Match | None:
+        """Return the longest name that begins at a place.
+
+        More than one meaning, or ``others``, where the text can be read in two ways.
+        """
+        width = min(self.widest, len(items) - place)
+        exact = _longest(self.exact, items[place : place + width])
+        loose = None
+        if exact is None or width > exact.count:
+            loose = _longest(self.loose, items[place : place + width], fonts=False)
+        if exact is None or loose is None or loose.count <= exact.count:
+            return exact or loose
+        return replace(exact, others=(exact.shown, loose.shown))
+
+
+def _longest(table: Mapping[str, Entry], items: Items, *, fonts: bool = True) -> Match | None:
+    for count in range(len(items), 0, -1):
+        whole = items[:count]
+        last = whole[-1]
+        found = table.get(key_of(whole if fonts else without_fonts(whole)))
+        bare = None
+        if last.above is not None:
+            cut = (*whole[:-1], replace(last, above=None))
+            bare = table.get(key_of(cut if fonts else without_fonts(cut)))
+        if found is not None:
+            others = (found.shown, f"{bare.shown} to a power") if bare is not None else ()
+            return Match(count, found.meanings, found.shown, None, others)
+        if bare is not None:
+            return Match(count, bare.meanings, bare.shown, last.above)
+    return None
+
+
+@dataclass(frozen=True, slots=True)
+class Names:
+    """The names of a network, of its perturbations, and those defined in a text.
+
+    ``probability`` and ``barrier``: the keys of the letters that take a set of states or of
+    transitions. ``own``: the perturbations that the derivative by a symbol is; ``twofold``: those
+    of these symbols that are written like the perturbation itself.
+    """
+
+    values: Table
+    perturbations: Table
+    own: Mapping[str, Perturbation]
+    twofold: frozenset[str]
+    probability: frozenset[str]
+    barrier: frozenset[str]
+    states: Table
+    transitions: Table
+    positive: frozenset[str]
+
+    def match(self, items: Items, place: int = 0) -> Match | None:
+        """Return the longest quantity or symbol that begins at a place."""
+        found = self.values.match(items, place)
+        return found or self._of_a_set(items[place], self.probability, self.states)
+
+    def perturbation(self, items: Items, place: int = 0) -> Match | None:
+        """Return the longest name of a perturbation that begins at a place."""
+        found = self.perturbations.match(items, place)
+        return found or self._of_a_set(items[place], self.barrier, self.transitions)
+
+    def _of_a_set(self, item: Item, letters: frozenset[str], labels: Table) -> Match | None:
+        r"""Read ``\pi_{\{A,B\}}`` or ``B_{\{a,b\}}``."""
+        below = item.below
+        letter = key_of([replace(item, below=None, above=None)])
+        if letter not in letters or not below or below[0].head != r"\{":
+            return None
+        if below[-1].head != r"\}":
+            return None
+        places: set[int] = set()
+        members = list(split_at(below[1:-1], ","))
+        for member in members:
+            found = labels.match(member) if member else None
+            if found is None or found.count != len(member) or found.power is not None:
+                return None
+            if len(found.meanings) != 1 or found.meanings[0] in places:
+                return None
+            meaning = found.meanings[0]
+            assert isinstance(meaning, int)
+            places.add(meaning)
+        chosen = tuple(sorted(places))
+        value: object = Probability(chosen)
+        if labels is self.transitions:
+            value = BarrierOf(chosen[0]) if len(chosen) == 1 else BarriersOf(chosen)
+        return Match(1, (value,), key_of([item]), item.above)
+
+    def with_definitions(self, definitions: Mapping[str, Expression]) -> Names:
+        """Return the names with further ones, LaTeX to expression.
+
+        They count before the other letters and labels of the network. Raises ExpressionError where
+        the network itself has the name, FormulaError for LaTeX that is not well formed.
+        """
+        builder = _Builder()
+        builder.take(self.values)
+        for latex, value in definitions.items():
+            key = key_of(items_of(tokenize(latex), latex))
+            entry = self.values.exact.get(key)
+            if entry is not None and entry.level <= CHOSEN and entry.meanings != (value,):
+                raise ExpressionError(f"{latex} is a name of the network already; define another")
+            builder.add(latex, value, SYMBOL)
+        return replace(self, values=builder.table())
+
+    def nearest(self, items: Sequence[Item], *, perturbation: bool = False) -> str:
+        """Return ``"; did you mean k_{on}?"`` for the known name closest to items, or a list."""
+        table = self.perturbations if perturbation else self.values
+        known = {key: entry.shown for key, entry in table.loose.items() if entry.level <= CHOSEN}
+        wanted = key_of(without_fonts(items))
+        found = difflib.get_close_matches(wanted, list(known), n=1) if len(wanted) < 100 else []
+        if found:
+            return f"; did you mean {known[found[0]]}?"
+        shown = list(dict.fromkeys(known.values()))
+        more = ", ..." if len(shown) > 8 else ""
+        return f"; known: {', '.join(shown[:8])}{more}" if shown else ""
+
+
+def split_at(items: Items, head: str) -> Iterator[Items]:
+    """Yield the runs of items between those of a head."""
+    run: list[Item] = []
+    for item in items:
+        if item.head == head:
+            yield tuple(run)
+            run = []
+        else:
+            run.append(item)
+    yield tuple(run)
+
+
+def names_of(network: Network, notation: Notation | None = None) -> Names:
+    r"""Return the names of a network, in its own notation if none is given.
+
+    Raises NetworkError where the section ``[notation]`` cannot be used.
+    """
+    notation = notation_of(network) if notation is None else notation
+    writer = _Writer(network, notation)
+    return writer.names()
+
+
+@dataclass(slots=True)
+class _Builder:
+    exact: dict[str, Entry] = field(default_factory=dict)
+    loose: dict[str, Entry] = field(default_factory=dict)
+    widest: int = 1
+
+    def take(self, table: Table) -> None:
+        self.exact, self.loose = dict(table.exact), dict(table.loose)
+        self.widest = table.widest
+
+    def add(self, latex: str, value: object, level: int) -> None:
+        items = items_of(tokenize(latex), latex)
+        if not items:
+            return
+        self.widest = max(self.widest, len(without_fonts(items)))
+        _note(self.exact, key_of(items), Entry(level, (value,), latex))
+        _note(self.loose, key_of(without_fonts(items)), Entry(level, (value,), latex))
+
+    def try_add(self, latex: str, value: object, level: int) -> None:
+        """Add a name put together from a letter and a label; pass over what is not LaTeX."""
+        try:
+            self.add(latex, value, level)
+        except FormulaError:
+            return
+
+    def table(self) -> Table:
+        return Table(self.exact, self.loose, self.widest)
+
+
+def _note(table: dict[str, Entry], key: str, entry: Entry) -> None:
+    old = table.get(key)
+    if old is None or entry.level < old.level:
+        table[key] = entry
+    elif entry.level == old.level and entry.meanings[0] not in old.meanings:
+        table[key] = replace(old, meanings=old.meanings + entry.meanings)
+
+
+@dataclass(slots=True)
+class _Writer:
+    """Writes every name of a network in all letters and labels that are accepted."""
+
+    network: Network
+    notation: Notation
+    values: _Builder = field(default_factory=_Builder)
+    by: _Builder = field(default_factory=_Builder)
+
+    def names(self) -> Names:
+        for name, latex in self.notation.symbols.items():
+            self.values.add(latex, Symbol(name), SYMBOL)
+            self.by.add(latex, BySymbol(name), SYMBOL)
+        states = [self.state_labels(k) for k in range(len(self.network.states))]
+        transitions = [self.transition_labels(e) for e in range(len(self.network.transitions))]
+        self.quantities(states, transitions)
+        self.generators(states)
+        self.raised(states, transitions)
+        own = {name: perturbation for perturbation, name in self.notation.own.items()}
+        return Names(
+            values=self.values.table(),
+            perturbations=self.by.table(),
+            own=own,
+            twofold=frozenset(name for name, by in own.items() if self.is_twofold(name, by)),
+            probability=self.letter_keys("probability"),
+            barrier=self.letter_keys("barrier"),
+            states=_label_table(states),
+            transitions=_label_table(transitions),
+            positive=self.network.positive_symbols,
+        )
+
+    def is_twofold(self, name: str, by: Perturbation) -> bool:
+        match by:
+            case EnergyOf(place):
+                written = self.notation.indexed("energy", self.notation.states[place])
+            case BarrierOf(place):
+                written = self.notation.indexed("barrier", self.notation.transitions[place])
+            case DriveOf(place):
+                written = self.notation.indexed("drive", self.notation.transitions[place])
+            case _:
+                return False
+        plain = plain_symbol_names(self.network)[name]
+        return _loose_key(plain) == _loose_key(written)
+
+    def letters(self, role: str) -> Iterator[tuple[str, int]]:
+        """Yield the letter of a role, then the others that nothing else has."""
+        chosen = self.notation.letters[role]
+        yield chosen, 0
+        taken = {same_latex(base_latex(t)) for t in plain_symbol_names(self.network).values()}
+        taken |= {same_latex(letter) for letter in self.notation.letters.values()}
+        if self.notation.beta:
+            taken.add(same_latex(self.notation.beta))
+        for letter in LETTERS[role]:
+            if same_latex(letter) not in taken:
+                yield letter, 2
+
+    def letter_keys(self, role: str) -> frozenset[str]:
+        return frozenset(key_of(items_of(tokenize(letter), letter))
+                         for letter, _ in self.letters(role))
+
+    def state_labels(self, place: int) -> list[tuple[str, int]]:
+        state = self.network.states[place]
+        own = state.latex or default_latex(state.name)
+        return _labels(self.notation.states[place], own, default_latex(state.name),
+                       upright(state.name))
+
+    def transition_labels(self, place: int) -> list[tuple[str, int]]:
+        name = self.network.transitions[place].name
+        return _labels(self.notation.transitions[place], upright(name))
+
+    def quantities(
+        self, states: list[list[tuple[str, int]]], transitions: list[list[tuple[str, int]]]
+    ) -> None:
+        for letter, other in self.letters("entropy"):
+            self.values.try_add(letter, EntropyProduction(), CHOSEN + other)
+        for place, observable in enumerate(self.network.observables):
+            for label, other in _labels(self.notation.observables[place],
+                                        default_latex(observable.name), upright(observable.name)):
+                self.values.try_add(rf"\langle {label} \rangle", Mean(place), CHOSEN + other)
+        self.indexed(self.values, "probability", states, lambda k: Probability((k,)))
+        self.indexed(self.values, "current", transitions, Current)
+        self.indexed(self.values, "traffic", transitions, Traffic)
+        for e, labels in enumerate(transitions):
+            for backward, sign in ((False, "+"), (True, "-")):
+                rate = DirectedRate(e, backward)
+                self.values.try_add(self.notation.rate(e, backward), rate, CHOSEN)
+                for letter, other in self.letters("rate"):
+                    for label, variant in labels:
+                        self.values.try_add(f"{letter}_{{{label}}}^{{{sign}}}", rate,
+                                            CHOSEN + other + variant)
+
+    def indexed(
+        self, table: _Builder, role: str, labels: list[list[tuple[str, int]]], value: object
+    ) -> None:
+        assert callable(value)
+        for letter, other in self.letters(role):
+            for place, variants in enumerate(labels):
+                for label, variant in variants:
+                    table.try_add(f"{letter}_{{{label}}}", value(place), CHOSEN + other + variant)
+
+    def generators(self, states: list[list[tuple[str, int]]]) -> None:
+        """Add W_ij, the rate from j to i summed over parallel channels, and W_ii."""
+        size = len(states)
+        into: dict[tuple[int, int], list[Expression]] = {(k, k): [] for k in range(size)}
+        for e, transition in enumerate(self.network.transitions):
+            ends = (transition.first, transition.second)
+            for backward, (source, target) in ((False, ends), (True, ends[::-1])):
+                rate = DirectedRate(e, backward)
+                into.setdefault((target, source), []).append(rate)
+                into[source, source].append(negate(rate))
+        for (target, source), rates in into.items():
+            value = add(rates)
+            pair = (source, target) if self.notation.indices == "from-to" else (target, source)
+            arrow = r" \to " if self.notation.indices == "from-to" else r" \leftarrow "
+            for letter, other in self.letters("generator"):
+                for first, one in states[pair[0]]:
+                    for second, two in states[pair[1]]:
+                        level = CHOSEN + max(other, one, two)
+                        shown = {joined([first, second]): level, f"{first},{second}": level + 1,
+                                 first + arrow + second: level + 1}
+                        for label, rank in shown.items():
+                            self.values.try_add(f"{letter}_{{{label}}}", value, rank)
+
+    def raised(
+        self, states: list[list[tuple[str, int]]], transitions: list[list[tuple[str, int]]]
+    ) -> None:
+        kinds = (("energy", states, EnergyOf), ("barrier", transitions, BarrierOf),
+                 ("drive", transitions, DriveOf))
+        for role, labels, kind in kinds:
+            self.indexed(self.by, role, labels, kind)
+            for place, variants in enumerate(labels if self.notation.beta else ()):
+                for label, variant in variants:
+                    latex = f"{self.notation.beta} {self.notation.indexed(role, label)}"
+                    self.by.try_add(latex, kind(place), CHOSEN + variant)
+
+
+def _labels(first: str, *others: str) -> list[tuple[str, int]]:
+    """Return a label and those variants that differ in more than fonts, with how much later
+    each counts."""
+    found = {_loose_key(label): (label, 1) for label in reversed(others)}
+    found.pop(_loose_key(first), None)
+    return [(first, 0), *found.values()]
+
+
+def _loose_key(latex: str) -> str:
+    return key_of(without_fonts(items_of(tokenize(latex), latex)))
+
+
+def _label_table(labels: Iterable[list[tuple[str, int]]]) -> Table:
+    builder = _Builder()
+    for place, variants in enumerate(labels):
+        for label, variant in variants:
+            builder.try_add(label, place, variant)
+    return builder.table()

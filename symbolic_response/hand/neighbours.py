@@ -1,0 +1,87 @@
+"""What may stand next to what: operators, operands and brackets of one level of a formula."""
+
+from __future__ import annotations
+
+from symbolic_response.errors import FormulaError
+from symbolic_response.hand import refusals
+from symbolic_response.hand.items import CLOSING, OPENING, Item, Items
+from symbolic_response.hand.names import Names
+from symbolic_response.hand.pieces import DOTS, numeric_fraction
+from symbolic_response.hand.refusals import Unit
+from symbolic_response.hand.tokens import formula_error
+
+
+def closes(item: Item, closer: str | None, source: str) -> bool:
+    """Return whether an item closes this level; FormulaError for one that does not fit."""
+    if item.head == "|" and closer == "|":
+        return item.side not in ("l", "left")
+    if item.head in CLOSING:
+        if closer is None:
+            raise _error(source, item, f"{item.head!r} closes nothing; write the bracket before it"
+                                   " or leave it out")
+        if item.head != closer:
+            raise _error(source, item, f"{item.head!r} closes another kind of bracket; write"
+                                   f" {closer!r}")
+        return True
+    return False
+
+
+def refuse_empty(
+    items: Items, place: int, begin: int, opening: Item | None, source: str
+) -> None:
+    if place > begin:
+        raise _error(source, items[place - 1], f"nothing follows {items[place - 1].head!r}; write"
+                                           " what it is applied to")
+    if opening is not None:
+        raise _error(source, opening, f"nothing stands in {opening.head}; write a value there")
+    raise formula_error(source, 0, "the formula is empty; write an expression")
+
+
+def check_before_operator(
+    items: Items, left: Unit, item: Item, slash: Unit | None, source: str
+) -> None:
+    if left.kind == "bare":
+        raise _error(source, item, refusals.after_bare(items, left, item))
+    if slash is not None:
+        what = refusals.divided_twice if item.head == "/" else refusals.after_slash
+        raise _error(source, item, what(items, slash, left.first))
+
+
+def check_side_by_side(
+    items: Items, left: Unit, place: int, slash: Unit | None, names: Names, source: str
+) -> None:
+    """Refuse operands next to each other that can be read in two ways."""
+    item = items[place]
+    if left.kind == "bare":
+        raise _error(source, item, refusals.after_bare(items, left, item))
+    if slash is not None:
+        raise _error(source, item, refusals.after_slash(items, slash, left.first))
+    if item.head == "," or item.head == ".":
+        raise _error(source, item, refusals.comma(items, left, place))
+    if item.head.isdigit():
+        message = refusals.number_behind(items, left, place, names)
+        raise _error(source, items[left.first], message)
+    if item.head in OPENING and names.match(items, place) is None:
+        if left.kind == "name" and not _operator_inside(items, place):
+            raise _error(source, items[left.first], refusals.call(items, left, place))
+        if left.kind == "call":
+            raise _error(source, item, refusals.after_call(items, left))
+    if left.kind == "number" and numeric_fraction(item):
+        raise _error(source, item, refusals.mixed_number(items, left, place))
+
+
+def _operator_inside(items: Items, place: int) -> bool:
+    """Return whether a binary operator stands directly inside the brackets at ``place``."""
+    depth = 0
+    for at in range(place, len(items)):
+        head = items[at].head
+        depth += (head in OPENING) - (head in CLOSING)
+        if depth == 0:
+            return False
+        if depth == 1 and at > place + 1 and head in ("+", "-", "/", *DOTS):
+            return True
+    return False
+
+
+def _error(source: str, item: Item, message: str) -> FormulaError:
+    return formula_error(source, item.start, message)
