@@ -152,7 +152,8 @@ class _Scan:
         if mark["edge"]:
             name = self.environments.get(mark["name"], mark["name"])
             if name in READ or name in UNREAD or name == "":
-                return _Edge(mark["edge"] == "begin", name or mark["name"], mark[0])
+                written = f"\\{mark['edge']}{{{mark['name']}}}"
+                return _Edge(mark["edge"] == "begin", name or mark["name"], written)
         if mark["bracket"] in ("[", "]"):
             return _Edge(mark["bracket"] == "[", "[", mark[0])
         if mark["dollar"] == "$$" and self.inline is None:
@@ -202,7 +203,7 @@ class _Scan:
             self.faults.append(Fault(mark.start(), f"the display that {mark[0]} makes is not read;"
                                                    " write the display itself"))
         elif mark["word"] in _INPUTS:
-            named = re.compile(r"\s*(?:\{[^{}\n]{0,200}\}|[^\s{}\\]{1,200})").match(
+            named = re.compile(r"[ \t]*(?:\{[^{}\n]{0,200}\}|[^\s{}\\]{1,200})").match(
                 self.text, mark.end())
             if named is not None:
                 self.faults.append(Fault(mark.start(), f"{mark[0]}{named[0].rstrip()} is not "

@@ -18,7 +18,7 @@ from dataclasses import dataclass, field
 from symbolic_response.errors import InputError, SymbolicResponseError
 from symbolic_response.expressions.tree import Expression, Symbol
 from symbolic_response.hand.auxiliary import Auxiliary, check_size, is_name, resolve
-from symbolic_response.hand.gathering import Gathered, Stated, gathered, shortened
+from symbolic_response.hand.gathering import Gathered, Stated, gathered, one_line, shortened
 from symbolic_response.hand.names import Names
 from symbolic_response.hand.reading import read_formula_tokens
 from symbolic_response.hand.tokens import Token, joined
@@ -142,7 +142,8 @@ class _File:
         """Tell definitions from other statements."""
         for fault in self.parts.faults:
             self.passed.append(PassedOver(self.parts.line(fault.offset),
-                                          self.parts.excerpt(fault.offset), fault.reason))
+                                          self.parts.excerpt(fault.offset),
+                                          one_line(fault.reason)))
         for stated in self.parts.stated:
             statement = stated.statement
             if statement.refusal is None and _defines(stated, self.names):
@@ -179,7 +180,7 @@ class _File:
         shown = stated.text(tokens or stated.statement.tokens)
         text = reason if isinstance(reason, str) else self.parts.reason(reason, stated.offset)
         self.passed.append(
-            PassedOver(self.parts.line(stated.place(tokens)), shortened(shown), text))
+            PassedOver(self.parts.line(stated.place(tokens)), shortened(shown), one_line(text)))
 
     def equations(self, stated: Stated, names: Names) -> Iterator[HandEquation]:
         """Yield the hand results in a statement; pass over the rest of it."""

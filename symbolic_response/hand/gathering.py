@@ -196,8 +196,12 @@ def gathered(text: str) -> Gathered:
     return result
 
 
+def one_line(text: str) -> str:
+    """Return a text on one line, what cannot be printed as a space."""
+    return "".join(c if c.isprintable() else " " for c in " ".join(text.split()))
+
+
 def shortened(text: str) -> str:
     """Return a text on one line, cut where it is long."""
-    flat = " ".join(text.split())
-    shown = "".join(c if c.isprintable() else " " for c in flat[:_EXCERPT])
-    return shown + ("..." if len(flat) > _EXCERPT else "")
+    shown = one_line(text)
+    return shown if len(shown) <= _EXCERPT else shown[:_EXCERPT] + "..."

@@ -34,9 +34,11 @@ _COLUMNS = frozenset(("align", "flalign", "alignat", "xalignat", "xxalignat", "s
 _COUNTED = frozenset(("alignat", "xalignat", "xxalignat", "alignedat"))
 _DROPPED = frozenset((r"\nonumber", r"\notag", r"\displaystyle", r"\textstyle", r"\allowbreak",
                       r"\allowdisplaybreaks", r"\mathstrut", r"\qedhere", r"\qed", r"\square",
-                      r"\blacksquare", r"\hfill", r"\hfil", r"\noindent", r"\nobreak", r"\break"))
-_DROPPED_GROUPS = frozenset((r"\tag", r"\hspace", r"\vspace", r"\mspace", r"\hskip", r"\phantom",
-                             r"\hphantom", r"\vphantom", r"\intertext", r"\shortintertext"))
+                      r"\blacksquare", r"\noindent", r"\nobreak", r"\break"))
+_DROPPED_GROUPS = frozenset((r"\tag", r"\vspace", r"\mspace", r"\phantom", r"\hphantom",
+                             r"\vphantom", r"\intertext", r"\shortintertext"))
+_SPACES = frozenset((r"\hspace", r"\hfill", r"\hfil"))
+_NUMBERS = frozenset((r"\eqno", r"\leqno"))
 
 
 @dataclass(frozen=True, slots=True)
@@ -55,11 +57,13 @@ def statements(tokens: Sequence[Token], environment: str, source: str) -> list[S
     Raises FormulaError where braces do not match or nest more than 100 deep.
     """
     _check_braces(tokens, source)
+    number = next((place for place, token in enumerate(tokens) if token.text in _NUMBERS), None)
+    tokens = tokens[:number]
     found = [
         statement
         for row, label in _joined_rows(_unwrapped(list(tokens)), environment, source)
         for statement in split_statements(
-            _without_null_delimiters(_flattened(row, source)), label, source)
+            _without_null_delimiters(_flattened(_unboxed(row, source), source)), label, source)
     ]
     return sorted(found, key=lambda s: s.tokens[0].start if s.tokens else 0)
 
@@ -102,6 +106,15 @@ def _unwrapped(tokens: list[Token]) -> list[Token]:
     texts = [token.text for token in tokens]
     if texts[:3] == [r"\left", r"\{", r"\begin"] and texts[-2:] == [r"\right", "."]:
         return tokens[2:-2]
+    return tokens
+
+
+def _unboxed(tokens: list[Token], source: str) -> list[Token]:
+    r"""Return tokens without a ``\boxed`` around all but punctuation."""
+    if len(tokens) > 1 and tokens[0].text == r"\boxed" and tokens[1].text == "{":
+        end = group_end(tokens, 1, source)
+        if all(token.text in SPACING | PUNCTUATION for token in tokens[end:]):
+            return tokens[2 : end - 1]
     return tokens
 
 
@@ -186,7 +199,9 @@ def _rows(tokens: Sequence[Token], source: str) -> Iterator[_Row]:
         place += 1
         if text in _DROPPED:
             continue
-        if text in (r"\label", *_DROPPED_GROUPS):
+        if text in _SPACES and token is not None:
+            row.append(replace(token, text=r"\quad"))
+        if text in (r"\label", *_DROPPED_GROUPS, *_SPACES):
             start = place + (place < len(tokens) and tokens[place].text == "*")
             if start < len(tokens) and tokens[start].text == "{":
                 place = group_end(tokens, start, source)

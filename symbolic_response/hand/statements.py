@@ -13,6 +13,7 @@ from symbolic_response.hand.tokens import Token, group_end, joined
 
 SPACING = frozenset((r"\,", r"\;", r"\:", r"\!", r"\>", r"\ ", "~", r"\quad", r"\qquad", "&"))
 _WIDE = frozenset((r"\quad", r"\qquad"))
+_THIN = frozenset((r"\,", r"\;", r"\:", r"\>", r"\ ", "~"))
 TEXT = frozenset((r"\text", r"\mbox", r"\textrm", r"\textnormal", r"\hbox", r"\textit"))
 _EQUALS = frozenset(("=", r"\equiv", r"\coloneqq", r"\coloneq", r"\triangleq"))
 _OTHER = frozenset((
@@ -120,9 +121,11 @@ def split_statements(
     for statement in stated[1:]:
         if not statement.relations and refusal is None:
             refusal = (f"{_shown(statement.tokens)} beside the formula is no equation; put it "
-                       "outside the display")
-    for statement in stated:
-        yield replace(statement, refusal=refusal) if refusal else statement
+                       "outside of the display")
+    if refusal is None:
+        yield from stated
+    elif whole:
+        yield replace(_related(_trimmed(tokens), label), refusal=refusal)
 
 
 def begins_with_condition(tokens: Sequence[Token], source: str) -> bool:
@@ -134,7 +137,8 @@ def begins_with_condition(tokens: Sequence[Token], source: str) -> bool:
 
 def _words(tokens: Sequence[Token], place: int, source: str) -> tuple[str, int] | None:
     r"""Return the words of a ``\text`` that is no name, and the place behind it."""
-    if tokens[place].text not in TEXT or place + 1 >= len(tokens):
+    upright = tokens[place].text in (r"\mathrm", r"\rm")
+    if not (upright or tokens[place].text in TEXT) or place + 1 >= len(tokens):
         return None
     if tokens[place + 1].text != "{" or (place and tokens[place - 1].text in ("_", "^")):
         return None
@@ -144,7 +148,8 @@ def _words(tokens: Sequence[Token], place: int, source: str) -> tuple[str, int] 
     closing_space = bool(inside) and tokens[after - 1].space
     several = " " in shown or closing_space or any(t.space for t in inside)
     plain = [word.strip(".,;:()") for word in shown.lower().split()]
-    if several or not any(plain) or plain[0] in _CONNECTING | _CONDITIONS:
+    known = bool(plain) and plain[0] in _CONNECTING | _CONDITIONS
+    if known or (not upright and (several or not any(plain))):
         return shown, after
     return None
 
@@ -154,12 +159,13 @@ def _refused(words: str) -> str | None:
     if all(word in _CONNECTING or not word for word in plain):
         return None
     shown = words if len(words) <= 40 else words[:40] + "..."
-    return f'the words "{shown}" beside the formula are not read; put them outside the display'
+    return f'the words "{shown}" beside the formula are not read; put them outside of the display'
 
 
 def _wide_break(tokens: Sequence[Token], place: int) -> bool:
-    """Whether a wide space stands between two formulas, not within one."""
-    if tokens[place].text not in _WIDE:
+    """Whether a wide space, or two narrow ones, stand between two formulas, not within one."""
+    after_it = tokens[place + 1].text if place + 1 < len(tokens) else ""
+    if tokens[place].text not in _WIDE and not (tokens[place].text in _THIN and after_it in _THIN):
         return False
     before = list(meaningful(tokens[max(0, place - 12) : place]))
     after = first_meaningful(tokens[place : place + 12])
@@ -200,4 +206,4 @@ def _related(tokens: Sequence[Token], label: str | None) -> Statement:
 
 def _shown(tokens: Sequence[Token]) -> str:
     text = joined(tokens)
-    return repr(text if len(text) <= 40 else text[:40] + "...")
+    return text if len(text) <= 40 else text[:40] + "..."
