@@ -2,32 +2,36 @@
 
 from __future__ import annotations
 
-from collections.abc import Sequence
+from collections.abc import Mapping, Sequence
+from fractions import Fraction
+from math import lcm
 
 from symbolic_response.errors import EvaluationError, SizeLimitError
 from symbolic_response.expressions.enclosure import nonzero_somewhere
 from symbolic_response.expressions.normal_form import normal_form
 from symbolic_response.expressions.ring import (
     Domain,
+    Generator,
     Poly,
     Polynomial,
     Ring,
     common_divisor,
+    key_of,
     lift,
     product_of,
-    symbol_ring,
     union,
 )
 from symbolic_response.expressions.tree import (
     Expression,
+    Function,
     Number,
     Power,
     Product,
     Sum,
     Symbol,
     add,
+    children,
     negate,
-    walk,
 )
 
 
@@ -54,75 +58,121 @@ def equal(left: Expression, right: Expression, domain: Domain) -> bool | None:
 def vanishes_exactly(node: Expression, domain: Domain) -> bool | None:
     """Return whether an expression is zero by its normal form alone, no enclosure tried.
 
-    None where a normal form with functions is not zero, which proves nothing. Raises
-    EvaluationError for a division by what is identically zero, SizeLimitError past a limit.
+    None where a normal form with functions is not zero, which proves nothing; exponentials of
+    linear combinations of symbols, and roots of positive symbols, are independent of each other
+    and do not count as functions here. Raises EvaluationError for a division by what is
+    identically zero, SizeLimitError past a limit.
 
     >>> from symbolic_response.expressions.reader import read_expression as read
     >>> d = Domain(("a", "b"), frozenset({"a", "b"}))
-    >>> [vanishes_exactly(read(x), d) for x in ("a/b - 1/(b/a)", "a - b", "ln(a) - ln(a + b)")]
+    >>> [vanishes_exactly(read(x), d) for x in ("a/b - 1/(b/a)", "exp(a) - b", "ln(a) - ln(a + b)")]
     [True, False, None]
     """
-    if _is_rational(node):
-        return len(_fraction(node, _ring_of(node, domain))[0]) == 0
+    ring = _one_ring(node, domain)
+    if ring is not None:
+        places = {_name(generator): place for place, generator in enumerate(ring.generators)}
+        return len(_fraction(node, ring, places)[0]) == 0
     form = normal_form(node, domain)
     if form.is_zero():
         return True
     return None if any(g.kind != "symbol" for g in form.ring.generators) else False
 
 
-# -- rational functions of the symbols: one ring for the whole tree ------------------------------
+# -- rational functions of symbols, their roots and exponentials: one ring for the whole tree ------
 
 
-def _is_rational(node: Expression) -> bool:
-    for part in walk(node):
-        match part:
-            case Number() | Symbol() | Sum() | Product():
-                continue
-            case Power(_, exponent) if exponent.denominator == 1:
-                continue
-            case Polynomial() if all(g.kind == "symbol" for g in part.ring.generators):
-                continue
-        return False
-    return True
+Name = tuple[str, str]
+"""The kind of a generator, ``symbol`` or ``exp``, and the symbol behind it."""
 
 
-def _ring_of(node: Expression, domain: Domain) -> Ring:
-    parts = list(walk(node))
-    rings = [part.ring for part in parts if isinstance(part, Polynomial)]
-    names = {part.name for part in parts if isinstance(part, Symbol)}
-    return union([*rings, *(symbol_ring(name, domain) for name in sorted(names))])
+def _name(generator: Generator) -> Name:
+    assert isinstance(generator.base, Symbol)
+    return generator.kind, generator.base.name
 
 
-def _fraction(node: Expression, ring: Ring) -> tuple[Poly, Poly]:
-    """Return numerator and denominator in a ring that holds all symbols, not in lowest terms."""
+def _one_ring(node: Expression, domain: Domain) -> Ring | None:
+    """Return a ring that holds all leaves; None where one is no power of a generator."""
+    rings: list[Ring] = []
+    roots: dict[Name, int] = {}
+    stack = [node]
+    while stack:
+        part = stack.pop()
+        if isinstance(part, Polynomial):
+            if not all(g.kind in ("symbol", "exp") and isinstance(g.base, Symbol)
+                       for g in part.ring.generators):
+                return None
+            rings.append(part.ring)
+        elif (powers := _powers(part, domain.positive)) is not None:
+            for power_of, exponent in powers.items():
+                roots[power_of] = lcm(roots.get(power_of, 1), exponent.denominator)
+        elif isinstance(part, Function) or (
+            isinstance(part, Power) and part.exponent.denominator != 1
+        ):
+            return None
+        else:
+            stack.extend(children(part))
+    for (kind, name), root in roots.items():
+        base, rank = Symbol(name), domain.names.index(name)
+        key = name if kind == "symbol" else key_of(base)
+        positive = kind == "exp" or name in domain.positive
+        rings.append(Ring([Generator(kind, rank, key, base, positive)], [root]))
+    return union(rings)
+
+
+def _powers(node: Expression, positive: frozenset[str]) -> dict[Name, Fraction] | None:
+    """Return a leaf as a product of powers of generators, None where it is none."""
+    match node:
+        case Symbol(name):
+            return {("symbol", name): Fraction(1)}
+        case Power(Symbol(name), exponent) if exponent.denominator == 1 or name in positive:
+            return {("symbol", name): exponent}
+        case Function("exp", argument):
+            found: dict[Name, Fraction] = {}
+            for term in argument.terms if isinstance(argument, Sum) else (argument,):
+                match term:
+                    case Symbol(name):
+                        factor = Fraction(1)
+                    case Product((Number(factor), Symbol(name))):
+                        pass
+                    case _:
+                        return None
+                found["exp", name] = found.get(("exp", name), Fraction(0)) + factor
+            return found
+    return None
+
+
+def _fraction(node: Expression, ring: Ring, places: Mapping[Name, int]) -> tuple[Poly, Poly]:
+    """Return numerator and denominator in a ring that holds all leaves, not in lowest terms."""
     match node:
         case Number(value):
             return ring.constant(value.numerator), ring.constant(value.denominator)
         case Polynomial():
             return lift(node.poly, node.ring, ring), ring.constant(1)
-        case Symbol(name):
-            place = next(p for p, g in enumerate(ring.generators) if g.key == name)
-            return _variable(ring, place), ring.constant(1)
         case Sum(terms):
-            return _sum([_fraction(term, ring) for term in terms], ring)
+            return _sum([_fraction(term, ring, places) for term in terms], ring)
         case Product(factors):
-            pairs = [_fraction(factor, ring) for factor in factors]
+            pairs = [_fraction(factor, ring, places) for factor in factors]
             return (product_of([(top, 1) for top, _ in pairs], ring),
                     product_of([(bottom, 1) for _, bottom in pairs], ring))
-        case Power(base, exponent):
-            top, bottom = _fraction(base, ring)
+        case Power(base, exponent) if not isinstance(base, Symbol):
+            top, bottom = _fraction(base, ring, places)
             if exponent < 0:
                 top, bottom = bottom, top
             if len(bottom) == 0:
                 raise EvaluationError("division by an expression that is identically zero")
             size = abs(exponent.numerator)
             return product_of([(top, size)], ring), product_of([(bottom, size)], ring)
-    raise TypeError(f"{type(node).__name__} in a rational function")
+    return _monomials(node, ring, places)
 
 
-def _variable(ring: Ring, place: int) -> Poly:
-    """Return the symbol itself, a power of the ring's variable where that is a root of it."""
-    return ring.context.gen(place) ** ring.roots[place]
+def _monomials(node: Expression, ring: Ring, places: Mapping[Name, int]) -> tuple[Poly, Poly]:
+    powers = _powers(node, frozenset(name for _, name in places))  # asked when the ring was made
+    assert powers is not None
+    steps = [0] * len(ring.generators)
+    for name, exponent in powers.items():
+        steps[places[name]] += int(exponent * ring.roots[places[name]])
+    return (ring.monomial([max(step, 0) for step in steps]),
+            ring.monomial([max(-step, 0) for step in steps]))
 
 
 def _sum(pairs: Sequence[tuple[Poly, Poly]], ring: Ring) -> tuple[Poly, Poly]:

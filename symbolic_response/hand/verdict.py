@@ -107,12 +107,12 @@ def judge(
         return _undecided("no difference was found at the points tried, and the normal form of the"
                           " difference is not zero")
     condition = _stated(question, relations) or _of_forces(question)
-    kind, reason = ("different", "the two differ at the witness")
-    if condition is not None:
-        kind, reason = "conditional", "the two are equal under the condition; they differ elsewhere"
-    text = None if condition is None else condition.describe()
-    return Verdict(kind, text, witness.values, witness.hand,
-                   witness.derived, reason)
+    sides = witness.values, witness.hand, witness.derived
+    if condition is None:
+        return Verdict("different", None, *sides,
+                       "the two differ at the witness" + question.unsettled)
+    return Verdict("conditional", condition.describe(), *sides,
+                   "the two are equal under the condition; they differ elsewhere")
 
 
 def _proved_or_undecided(question: _Question) -> Verdict | None:
@@ -143,6 +143,7 @@ class _Question:
         self.axes = axes_of(self.network, (quantity, hand))
         self.differing: list[Values] = []
         self.tried: list[Sides] = []
+        self.unsettled = ""
 
     def at(self, values: Values) -> Sides:
         """Return both sides at a point."""
@@ -213,14 +214,19 @@ class _Question:
 
     # -- conditions ----------------------------------------------------------------------------
 
-    def holds_under(self, solved: Solved) -> bool:
+    def holds_under(self, condition: Condition) -> bool:
         """Return whether the two are proved equal, and not both zero, under a condition."""
-        agreed, vanishing = self.agree_on(solved)
+        agreed, vanishing = self.agree_on(condition.solved)
         if not agreed:
             return False
         try:
-            return self._proved_under(solved, vanishing)
-        except (EvaluationError, SizeLimitError, UndecidedError):
+            return self._proved_under(condition.solved, vanishing)
+        except EvaluationError:
+            return False  # a division by what is zero under the condition
+        except (SizeLimitError, UndecidedError) as error:
+            if not vanishing and not self.unsettled:
+                self.unsettled = (f"; whether they agree under a condition ({condition.describe()})"
+                                  f" was not settled: {error}")
             return False
 
     def agree_on(self, solved: Solved) -> tuple[bool, bool]:
@@ -276,14 +282,14 @@ def _stated(question: _Question, relations: Sequence[Relation]) -> Condition | N
     analysis = question.analysis
     for relation in relations:
         condition = condition_of([relation], analysis)
-        if question.holds_under(condition.solved):
+        if question.holds_under(condition):
             return condition
-    if len(relations) < 2 or not question.holds_under(condition_of(relations, analysis).solved):
+    if len(relations) < 2 or not question.holds_under(condition_of(relations, analysis)):
         return None
     needed = list(relations)
     for relation in relations:
         rest = [other for other in needed if other is not relation]
-        if rest and question.holds_under(condition_of(rest, analysis).solved):
+        if rest and question.holds_under(condition_of(rest, analysis)):
             needed = rest
     return condition_of(needed, analysis)
 
@@ -294,6 +300,6 @@ def _of_forces(question: _Question) -> Condition | None:
     if found.all_zero is not None and not question.agree_on(found.all_zero)[0]:
         return None
     for condition in force_conditions(found, question.analysis):
-        if question.holds_under(condition.solved):
+        if question.holds_under(condition):
             return condition
     return None
