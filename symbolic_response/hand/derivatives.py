@@ -5,7 +5,7 @@ from __future__ import annotations
 from dataclasses import dataclass, replace
 
 from symbolic_response.errors import FormulaError
-from symbolic_response.expressions.tree import Expression, symbols_of
+from symbolic_response.expressions.tree import Expression, symbols_of, walk
 from symbolic_response.hand.items import CLOSING, OPENING, Item, Items, key_of
 from symbolic_response.hand.names import Match, Names
 from symbolic_response.hand.tokens import formula_error
@@ -80,6 +80,9 @@ def differentiated(
     or drive it stands for, so that either may be meant.
     """
     explicit = {name for part in walk_quantity(quantity) for name in symbols_of(part)}
+    if _nested(quantity) + len(derivative.by) > MAX_ORDER:
+        raise formula_error(source, start, f"derivatives nested more than {MAX_ORDER} deep; name"
+                                           " one of them")
     for by in reversed(derivative.by):
         chosen = by
         if isinstance(by, BySymbol) and not by.logarithmic and by.name in names.own:
@@ -94,6 +97,15 @@ def differentiated(
                 )
         quantity = Response(quantity, chosen)
     return quantity
+
+
+def _nested(quantity: Expression) -> int:
+    """Return how many responses are within each other."""
+    depth, level = 0, [quantity]
+    while level := [part.quantity for whole in level for part in walk(whole)
+                    if isinstance(part, Response)]:
+        depth += 1
+    return depth
 
 
 def _mark(item: Item) -> str | None:

@@ -142,9 +142,10 @@ def _raised(parts: list[Any]) -> Expression:
     if not isinstance(exponent, Number):
         raise Refusal(r"an exponent must be an exact number; write e^{n \ln x}", start)
     value = exponent.value
-    if abs(value.numerator) > MAX_EXPONENT * value.denominator or value.denominator > MAX_EXPONENT:
-        raise Refusal(f"an exponent is larger than {MAX_EXPONENT}, in size or in its denominator;"
-                      " write it as a product of powers", start)
+    largest = MAX_EXPONENT**2  # two powers of a file, one of the other, are printed as one
+    if abs(value.numerator) > largest * value.denominator or value.denominator > MAX_EXPONENT:
+        raise Refusal(f"an exponent is larger than {largest}, or its denominator than"
+                      f" {MAX_EXPONENT}; write a product of powers", start)
     return _guarded(start, lambda: power(base, value))
 
 

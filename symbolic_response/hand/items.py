@@ -34,7 +34,7 @@ _ACCENTS = commands(
     " underline overrightarrow overleftarrow"
 )
 _FRACTIONS = commands("frac tfrac dfrac")
-_SPACES = frozenset((*(f"\\{c}" for c in ",;:!> \n/"), "~", "&")) | commands(
+_SPACES = frozenset((*(f"\\{c}" for c in ",;:!> \n"), "~", "&")) | commands(
     "quad qquad enspace enskip thinspace medspace thickspace negthinspace displaystyle textstyle"
     " scriptstyle nonumber notag limits nolimits mathstrut allowbreak relax strut"
 )
@@ -53,6 +53,7 @@ _DELIMITERS = {
     r"\lbrace": r"\{", r"\rbrace": r"\}", r"\lbrack": "[", r"\rbrack": "]", r"\vert": "|",
     r"\lvert": "|", r"\rvert": "|",
 }
+_WITHOUT_SCRIPTS = frozenset((*OPENING, "+", "-", "/", "=", ",", ";", r"\cdot", r"\times"))
 _SIDES = {r"\lvert": "l", r"\rvert": "r"}
 
 
@@ -95,17 +96,14 @@ def key_of(items: Iterable[Item]) -> str:
     >>> print(key_of(items_of(tokenize(r"k^+_\mathrm{on}"), "")))
     k_{\mathrm{on}}^{+}
     """
-    text = ""
+    parts: list[str] = []
+    word = False
     for item in items:
-        if text and text[-1].isalpha() and item.head[:1].isalpha() and _ends_in_word(text):
-            text += " "
-        text += _item_key(item)
-    return text
-
-
-def _ends_in_word(text: str) -> bool:
-    slash = text.rfind("\\")
-    return slash >= 0 and text[slash + 1 :].isalpha()
+        if word and item.head[:1].isalpha():
+            parts.append(" ")
+        parts.append(_item_key(item))
+        word = parts[-1] == item.head and len(item.head) > 1 and item.head[-1].isalpha()
+    return "".join(parts)
 
 
 def _item_key(item: Item) -> str:
@@ -312,6 +310,9 @@ class _Builder:
             raise self.error(token, f"{token.text!r} stands behind nothing; write the symbol that"
                                     " carries it")
         item = found[-1]
+        if item.head in _WITHOUT_SCRIPTS:
+            raise self.error(token, f"{token.text!r} right behind {item.head!r}; write the symbol"
+                                    " that carries it")
         self.place += 1
         if token.text == "'":
             found[-1] = replace(item, primes=item.primes + 1)

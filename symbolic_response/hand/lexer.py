@@ -233,6 +233,8 @@ class _Lexer:
 
     def bar(self, items: Items, place: int) -> int:
         opening = items[place]
+        if scripted(opening):
+            raise self.error(opening, refusals.BARS)
         sided = opening.side in ("l", "left")
         if not sided:
             if opening.side:

@@ -16,6 +16,7 @@ from symbolic_response.errors import ExpressionError, FormulaError
 from symbolic_response.expressions.names import base_latex, default_latex, same_latex, upright
 from symbolic_response.expressions.tree import Expression, Symbol, add, negate
 from symbolic_response.hand.items import Item, Items, items_of, key_of, without_fonts
+from symbolic_response.hand.pieces import numeric
 from symbolic_response.hand.tokens import tokenize
 from symbolic_response.network.model import Network
 from symbolic_response.network.notation_section import LETTERS, plain_symbol_names
@@ -92,7 +93,8 @@ def _longest(table: Mapping[str, Entry], items: Items, *, fonts: bool = True) ->
             cut = (*whole[:-1], replace(last, above=None))
             bare = table.get(key_of(cut if fonts else without_fonts(cut)))
         if found is not None:
-            others = (found.shown, f"{bare.shown} to a power") if bare is not None else ()
+            power = bare is not None and numeric(last.above or ()) and key_of(last.above)[0] != "("
+            others = (found.shown, f"{bare.shown} to a power") if power else ()
             return Match(count, found.meanings, found.shown, None, others)
         if bare is not None:
             return Match(count, bare.meanings, bare.shown, last.above)
@@ -104,7 +106,7 @@ class Names:
     """The names of a network, of its perturbations, and those defined in a text.
 
     ``probability`` and ``barrier``: the keys of the letters that take a set of states or of
-    transitions. ``own``: the perturbations that the derivative by a symbol is; ``twofold``: those
+    transitions; ``beta``: the inverse temperature, if it is written. ``own``: the perturbations that the derivative by a symbol is; ``twofold``: those
     of these symbols that are written like the perturbation itself.
     """
 
@@ -117,6 +119,7 @@ class Names:
     states: Table
     transitions: Table
     positive: frozenset[str]
+    beta: str
 
     def match(self, items: Items, place: int = 0) -> Match | None:
         """Return the longest quantity or symbol that begins at a place."""
@@ -126,19 +129,20 @@ class Names:
     def perturbation(self, items: Items, place: int = 0) -> Match | None:
         """Return the longest name of a perturbation that begins at a place."""
         found = self.perturbations.match(items, place)
+        if found is None and self.beta and key_of(items[place : place + 1]) == self.beta:
+            behind = items[place + 1 : place + 2]
+            several = self._of_a_set(behind[0], self.barrier, self.transitions) if behind else None
+            return several and replace(several, count=2)
         return found or self._of_a_set(items[place], self.barrier, self.transitions)
 
     def _of_a_set(self, item: Item, letters: frozenset[str], labels: Table) -> Match | None:
         r"""Read ``\pi_{\{A,B\}}`` or ``B_{\{a,b\}}``."""
         below = item.below
         letter = key_of([replace(item, below=None, above=None)])
-        if letter not in letters or not below or below[0].head != r"\{":
-            return None
-        if below[-1].head != r"\}":
+        if letter not in letters or not below or not _in_braces(below):
             return None
         places: set[int] = set()
-        members = list(split_at(below[1:-1], ","))
-        for member in members:
+        for member in split_at(below[1:-1], ","):
             found = labels.match(member) if member else None
             if found is None or found.count != len(member) or found.power is not None:
                 return None
@@ -182,6 +186,10 @@ class Names:
         return f"; known: {', '.join(shown[:8])}{more}" if shown else ""
 
 
+def _in_braces(items: Items) -> bool:
+    return items[0].head == r"\{" and items[-1].head == r"\}"
+
+
 def split_at(items: Items, head: str) -> Iterator[Items]:
     """Yield the runs of items between those of a head."""
     run: list[Item] = []
@@ -199,9 +207,7 @@ def names_of(network: Network, notation: Notation | None = None) -> Names:
 
     Raises NetworkError where the section ``[notation]`` cannot be used.
     """
-    notation = notation_of(network) if notation is None else notation
-    writer = _Writer(network, notation)
-    return writer.names()
+    return _Writer(network, notation or notation_of(network)).names()
 
 
 @dataclass(slots=True)
@@ -270,20 +276,21 @@ class _Writer:
             states=_label_table(states),
             transitions=_label_table(transitions),
             positive=self.network.positive_symbols,
+            beta=key_of(items_of(tokenize(self.notation.beta), self.notation.beta)),
         )
 
     def is_twofold(self, name: str, by: Perturbation) -> bool:
         match by:
             case EnergyOf(place):
-                written = self.notation.indexed("energy", self.notation.states[place])
+                role, label = "energy", self.notation.states[place]
             case BarrierOf(place):
-                written = self.notation.indexed("barrier", self.notation.transitions[place])
+                role, label = "barrier", self.notation.transitions[place]
             case DriveOf(place):
-                written = self.notation.indexed("drive", self.notation.transitions[place])
+                role, label = "drive", self.notation.transitions[place]
             case _:
                 return False
-        plain = plain_symbol_names(self.network)[name]
-        return _loose_key(plain) == _loose_key(written)
+        written = self.notation.indexed(role, label)
+        return _loose_key(plain_symbol_names(self.network)[name]) == _loose_key(written)
 
     def letters(self, role: str) -> Iterator[tuple[str, int]]:
         """Yield the letter of a role, then the others that nothing else has."""

@@ -71,16 +71,23 @@ def check_side_by_side(
 
 
 def _operator_inside(items: Items, place: int) -> bool:
-    """Return whether a binary operator stands directly inside the brackets at ``place``."""
+    """Return whether a binary operator, or a derivative, stands directly inside brackets."""
     depth = 0
     for at in range(place, len(items)):
         head = items[at].head
         depth += (head in OPENING) - (head in CLOSING)
         if depth == 0:
             return False
+        if depth == 1 and _differential(items[at]):
+            return True
         if depth == 1 and at > place + 1 and head in ("+", "-", "/", *DOTS):
             return True
     return False
+
+
+def _differential(item: Item) -> bool:
+    top = item.arguments[0] if item.head == r"\frac" else (item,)
+    return bool(top) and top[0].head == r"\partial"
 
 
 def _error(source: str, item: Item, message: str) -> FormulaError:

@@ -17,7 +17,7 @@ from symbolic_response.hand.macros import expand, take_definitions
 from symbolic_response.hand.names import Names
 from symbolic_response.hand.tokens import Token, formula_error, tokenize
 
-MAX_TOKENS = 200_000
+MAX_TOKENS = 100_000
 _DELIMITERS = {"$": "$", r"\[": r"\]", r"\(": r"\)"}
 _PUNCTUATION = (".", ",", ";")
 
@@ -27,7 +27,7 @@ def read_formula(text: str, names: Names) -> Expression:
 
     ``$ $``, ``\[ \]`` or ``\( \)`` around all and a full stop or comma at the end count for
     nothing. Raises FormulaError, with line and column, for what cannot be read in exactly one way,
-    and SizeLimitError for a formula of more than 200,000 tokens.
+    and SizeLimitError for a formula of more than 100,000 tokens.
 
     >>> from symbolic_response.network import read_network_text
     >>> from symbolic_response.expressions.text import expression_text

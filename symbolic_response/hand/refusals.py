@@ -112,7 +112,7 @@ def after_slash(items: Items, slash: Unit, first: int) -> str:
 
 def comma(items: Items, left: Unit, place: int) -> str:
     if left.kind == "number":
-        digits = "".join(item.head for item in items[left.first : left.after])
+        digits = excerpt(items[left.first : left.after])
         return (f"a comma behind the number {digits}: write thousands without one, decimals with a"
                 " point")
     return f"{items[place].head!r} does not belong here; leave it out, or write an operator"
@@ -122,7 +122,7 @@ def number_behind(items: Items, left: Unit, place: int, names: Names) -> str:
     last = place
     while last < len(items) and items[last].head.isdigit():
         last += 1
-    digits = "".join(item.head for item in items[place:last])
+    digits = excerpt(items[place:last])
     before = excerpt(items[left.first : left.after])
     nucleus = items[left.after - 1]
     if left.kind == "name" and nucleus.below is None:
@@ -164,7 +164,7 @@ def mixed_number(items: Items, left: Unit, place: int) -> str:
 
 
 def spaced_number(items: Items, first: int, place: int) -> str:
-    digits = "".join(item.head for item in items[first:place])
+    digits = excerpt(items[first:place])
     return (f"{digits} and {items[place].head} side by side may be one number or a product; write"
             f" the number without a space, or {digits} \\cdot {items[place].head}")
 
@@ -271,6 +271,8 @@ def check_spelled(items: Items, place: int, match: Match, source: str) -> None:
 def spelled(items: Items, place: int) -> str:
     """Return the function that letters without spaces between them spell, or nothing."""
     for word in _WORDS:
+        if items[place].head != word[0]:
+            continue
         run = items[place : place + len(word)]
         joined = all(
             part.head == letter and not (n and part.space)
