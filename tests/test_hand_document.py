@@ -660,6 +660,8 @@ HUGE = {
     "doubling": lambda: "".join(
         rf"\newcommand{{\x{chr(98 + n)}}}{{\x{chr(97 + n)}\x{chr(97 + n)}}}" for n in range(25)
     ) + r"\newcommand{\xa}{c}" + r"$$ \pi_A = \xz $$" * 300,
+    "arguments": lambda: r"\newcommand{\x}[1]{#1 #1}" + (
+        "$$ \\pi_A = " + r"\x{" * 30 + "c" + "}" * 30 + " $$\n") * 100,
     "definitions": lambda: "".join(
         f"$$ x_{{{n}}} = x_{{{n - 1}}} x_{{{n - 1}}} + x_{{{n - 1}}} $$ " for n in range(1, 200)
     ) + "$$ x_0 = a + b $$ $$ \\pi_A = x_{199} $$",

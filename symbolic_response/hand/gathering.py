@@ -9,16 +9,18 @@ from dataclasses import dataclass, field
 
 from symbolic_response.errors import FormulaError, SymbolicResponseError
 from symbolic_response.hand.displays import READ, Display, Inline, find_displays
-from symbolic_response.hand.macros import Macro, expand, take_definitions
+from symbolic_response.hand.macros import MAX_EXPANSIONS, Macro, expand, take_definitions
 from symbolic_response.hand.rows import statements
 from symbolic_response.hand.statements import Statement
-from symbolic_response.hand.tokens import Token, tokenize
+from symbolic_response.hand.tokens import Token, formula_error, tokenize
 from symbolic_response.hand.visible import Fault, visible
 
 MAX_DISPLAY = 50_000
 MAX_STATEMENTS = 2_000
 MAX_TOKENS = 2_000_000
-_FAILED = 250_000
+MAX_MACRO_DEPTH = 50
+MAX_MACRO = 20_000
+_FAILED, _ENDLESS = 20_000, 1_000_000
 _EXCERPT = 72
 _SENTENCE = re.compile(
     r"\b(?:where|with|let|defin\w+|denot\w+|here|set|setting|introduc\w+)\b", re.IGNORECASE)
@@ -80,6 +82,7 @@ class Gathered:
     _shown: str = ""
     _line_starts: list[int] = field(default_factory=list)
     _macros: dict[str, Macro] = field(default_factory=dict)
+    _lengths: dict[str, int] = field(default_factory=dict)
     _tokens: int = 0
 
     def line(self, offset: int) -> int:
@@ -135,6 +138,7 @@ class Gathered:
             self.faults.append(Fault(start, f"definitions by {rest[0].text} are not read; write "
                                             r"\newcommand"))
         self._macros |= macros
+        self._lengths.clear()
 
     def display(self, display: Display) -> None:
         """Take in the statements of a display, or say why not."""
@@ -153,7 +157,7 @@ class Gathered:
                 if not self.take(display.start, display.end, display.environment):
                     reason = "the display holds no formula"
             except SymbolicResponseError as error:
-                self._tokens += _FAILED
+                self.charge(error)
                 reason = self.reason(error, display.start)
         if reason is not None:
             self.faults.append(Fault(display.offset, reason))
@@ -171,13 +175,39 @@ class Gathered:
         try:
             self.take(start, end, "$")
         except SymbolicResponseError as error:
-            self._tokens += _FAILED
+            self.charge(error)
             self.faults.append(Fault(start, self.reason(error, start)))
+
+    def charge(self, error: Exception) -> None:
+        """Count a display that failed as tokens, so that the time for all of them is bounded."""
+        endless = f"{MAX_EXPANSIONS} calls" in str(error)
+        self._tokens += _ENDLESS if endless else _FAILED
+
+    def length(self, name: str, call: Token, source: str, depth: int = 1) -> int:
+        """Return how many tokens a macro expands to, its arguments left out.
+
+        Raises FormulaError for one that uses itself or is too long.
+        """
+        if name not in self._lengths:
+            body = self._macros[name].body
+            self._tokens += len(body)
+            inner = [part.text for part in body if part.text in self._macros]
+            length = len(body)
+            for used in inner:
+                if depth >= MAX_MACRO_DEPTH or length > MAX_MACRO:
+                    raise formula_error(source, call.start, f"the macro {call.text} uses itself or "
+                                        f"expands to more than {MAX_MACRO} tokens; write it out")
+                length += self.length(used, call, source, depth + 1)
+            self._lengths[name] = length
+        return self._lengths[name]
 
     def take(self, start: int, end: int, environment: str) -> bool:
         """Take in the statements of a part of the file; return whether there are any."""
         source = self._shown[start:end]
         raw = tokenize(source)
+        for token in raw:
+            if token.text in self._macros:
+                self.length(token.text, token, source)
         tokens = expand(raw, self._macros, source)
         self._tokens += len(tokens)
         found = statements(tokens, environment, source)
