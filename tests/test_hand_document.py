@@ -28,6 +28,8 @@ from symbolic_response.expressions.tree import (
 )
 from symbolic_response.hand.document import Reading, read_equations, read_equations_file
 from symbolic_response.hand.names import Names, names_of
+from symbolic_response.hand.statements import split_statements
+from symbolic_response.hand.tokens import tokenize
 from symbolic_response.network.model import Network
 from symbolic_response.network.quantity_reader import read_quantity
 from symbolic_response.network.toml_reader import read_network_text
@@ -190,6 +192,14 @@ def test_what_hides_nothing(names: Names, before: str) -> None:
     assert found.equations[0].line == 2
 
 
+@pytest.mark.parametrize("text", [
+    r"\iffalse $$ \pi_A = a $$ \else $$ \pi_A = c $$ \fi", r"\iftrue $$ \pi_A = c $$ \else a \fi",
+    r"\iffalse \ifx a \else b \fi \fi $$ \pi_A = c $$",
+])
+def test_branches_of_conditionals(names: Names, text: str) -> None:
+    assert pairs(read_equations(text, names)) == [(r"\pi_A", "c")]
+
+
 def test_inputs_are_listed(names: Names) -> None:
     found = read_equations("\\input{rates}\n\\include{app/b}\n$$ \\pi_A = c $$", names)
     assert [(line, reason.split(" is ")[0]) for line, reason in reasons(found)] == [
@@ -245,6 +255,15 @@ def test_rows(
     for equation, (quantity, formula) in zip(found.equations, meant, strict=True):
         assert same(equation.quantity, quantity), equation
         assert same(equation.expression, formula), equation
+
+
+@pytest.mark.parametrize(("text", "parts"), [
+    (r"\left< x \right> = \left.y\right|_{c=0}", 2), (r"f(a = b) = [c < d] > e", 3),
+    (r"\sum_{k=1}^{3} a = \{b = c\}", 2), (r"a := b \equiv c \approx d", 4),
+])
+def test_relations_in_brackets_separate_nothing(text: str, parts: int) -> None:
+    (statement,) = split_statements(tokenize(text), None, text)
+    assert len(statement.parts) == parts
 
 
 def test_lines_and_labels(names: Names) -> None:
@@ -340,6 +359,28 @@ def test_an_ambiguous_name_counts_nowhere(names: Names) -> None:
     assert "Z" in listed[2]
 
 
+def test_a_name_waits_for_all_its_formulas(names: Names) -> None:
+    found = read_equations("$$ Z = a $$ $$ Z = x $$ $$ x = y $$ $$ y = b $$\n"
+                           "$$ \\pi_A = Z $$", names)
+    assert [definition.latex for definition in found.definitions] == ["x", "y"]
+    assert found.equations == ()
+
+
+def test_another_formula_that_cannot_be_read_is_listed(names: Names) -> None:
+    found = read_equations("$$ Z = \\sum_i N_i $$\n$$ Z = a + b $$\n$$ \\pi_A = a/Z $$", names)
+    assert [(d.latex, d.line) for d in found.definitions] == [("Z", 2)]
+    assert [line for line, _ in reasons(found)] == [1]
+    assert len(found.equations) == 1
+
+
+def test_definitions_that_grow(names: Names) -> None:
+    grown = "".join(f"$$ x_{{{n + 1}}} = x_{{{n}}} a + x_{{{n}}} b $$\n" for n in range(40))
+    found = read_equations(f"$$ x_{{0}} = c $$\n{grown}", names)
+    assert 5 < len(found.definitions) < 20
+    assert len(found.definitions) + len(found.passed_over) == 41
+    assert "definitions put in" in found.passed_over[0].reason
+
+
 def test_definitions_in_a_circle(names: Names) -> None:
     found = read_equations("$$ x = y + 1 $$ $$ y = x + 1 $$ $$ z = z + 1 $$", names)
     assert found.definitions == found.equations == ()
@@ -378,6 +419,16 @@ PASSED = [
     (r"", "no formula"),
     (r"\label{x}", "no formula"),
 ]
+
+
+@pytest.mark.parametrize("rows", [
+    r"\pi_A &= a && \text{if } c = 1", r"\pi_A &= a \\ & \text{if $c = 1$}",
+    r"\pi_A &= a \\ & \text{for } c = 1", r"\pi_A &= a & &\text{(two states)}",
+])
+def test_words_about_an_equation_keep_it_from_being_read(names: Names, rows: str) -> None:
+    found = read_equations(rf"\begin{{align}}{rows}\end{{align}}", names)
+    assert found.equations == ()
+    assert "the words" in found.passed_over[0].reason
 
 
 @pytest.mark.parametrize(("inside", "reason"), PASSED)
