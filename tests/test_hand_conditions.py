@@ -11,10 +11,11 @@ import sympy
 
 from symbolic_response.errors import QuantityError
 from symbolic_response.expressions.normal_form import normal_form
-from symbolic_response.expressions.tree import substitute
+from symbolic_response.expressions.tree import number, substitute
 from symbolic_response.hand.conditions import force_conditions, forces_of, read_relations
 from symbolic_response.hand.solving import impose
 from symbolic_response.hand.verdict import judge
+from symbolic_response.hand.witness import SMALL_NUMBERS
 from symbolic_response.network.build import Barrier, Rates, build_network
 from symbolic_response.network.model import Network
 from symbolic_response.network.quantity_reader import read_quantity
@@ -303,3 +304,21 @@ def test_a_channel_in_energy_form_without_a_force() -> None:
     assert list(force_conditions(forces_of(Analysis(network)), Analysis(network))) == []
     assert verdict(network, "p[A]", "1/(1 + exp(E_A - E_B))").kind == "equal"
     assert verdict(network, "p[A]", "1/(1 + exp(E_B - E_A))").kind == "different"
+
+
+def test_agreement_at_points_is_not_taken_for_a_proof() -> None:
+    """A term that vanishes at every value that points give to b2, and not otherwise."""
+    zero_at_points = "*".join(f"(b2 - {q})" for q in SMALL_NUMBERS)
+    for hand, given in ((f"p[A]*{LOOP1} + {zero_at_points}", ()),
+                        (f"p[A]*{LOOP1} + {zero_at_points}", ("a1*a2*a3 = b1*b2*b3",))):
+        assert verdict(THETA, "p[A]", hand, *given).kind == "different"
+    found = verdict(THETA, "p[A]", f"p[A] + {zero_at_points}")
+    assert found.kind == "different" and found.witness is not None
+    assert found.witness["b2"] not in [number(q) for q in SMALL_NUMBERS]
+
+
+def test_relations_that_make_a_rate_or_an_earlier_symbol_negative() -> None:
+    network = build_network("difference", states="A B", transitions=[("A", "B", "a - b", "a + b")])
+    for net, given in ((network, ["a = b"]), (RING, ["a1 = a2 - b1", "b1 = 2*a2"])):
+        with pytest.raises(QuantityError, match="contradicts"):
+            verdict(net, "p[A]", "p[A]", *given)

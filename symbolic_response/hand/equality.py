@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping, Sequence
+from collections.abc import Sequence
 from fractions import Fraction
 from math import lcm
 
@@ -70,8 +70,7 @@ def vanishes_exactly(node: Expression, domain: Domain) -> bool | None:
     """
     ring = _one_ring(node, domain)
     if ring is not None:
-        places = {_name(generator): place for place, generator in enumerate(ring.generators)}
-        return len(_fraction(node, ring, places)[0]) == 0
+        return len(_Fractions(ring).of(node)[0]) == 0
     form = normal_form(node, domain)
     if form.is_zero():
         return True
@@ -141,38 +140,56 @@ def _powers(node: Expression, positive: frozenset[str]) -> dict[Name, Fraction] 
     return None
 
 
-def _fraction(node: Expression, ring: Ring, places: Mapping[Name, int]) -> tuple[Poly, Poly]:
-    """Return numerator and denominator in a ring that holds all leaves, not in lowest terms."""
-    match node:
-        case Number(value):
-            return ring.constant(value.numerator), ring.constant(value.denominator)
-        case Polynomial():
-            return lift(node.poly, node.ring, ring), ring.constant(1)
-        case Sum(terms):
-            return _sum([_fraction(term, ring, places) for term in terms], ring)
-        case Product(factors):
-            pairs = [_fraction(factor, ring, places) for factor in factors]
-            return (product_of([(top, 1) for top, _ in pairs], ring),
-                    product_of([(bottom, 1) for _, bottom in pairs], ring))
-        case Power(base, exponent) if not isinstance(base, Symbol):
-            top, bottom = _fraction(base, ring, places)
+class _Fractions:
+    """Numerators and denominators in a ring that holds all leaves, not in lowest terms."""
+
+    def __init__(self, ring: Ring) -> None:
+        self.ring, self.one = ring, ring.constant(1)
+        self.places = {_name(generator): p for p, generator in enumerate(ring.generators)}
+        self.names = frozenset(name for _, name in self.places)
+        self.inverses: dict[Expression, tuple[Poly, Poly]] = {}  # sums occur below again and again
+
+    def of(self, node: Expression) -> tuple[Poly, Poly]:
+        """Return numerator and denominator of a tree."""
+        ring = self.ring
+        match node:
+            case Number(value):
+                return ring.constant(value.numerator), ring.constant(value.denominator)
+            case Symbol(name):
+                place = self.places["symbol", name]
+                return ring.context.gen(place) ** ring.roots[place], self.one
+            case Polynomial():
+                return lift(node.poly, node.ring, ring), self.one
+            case Sum(terms):
+                return _sum([self.of(term) for term in terms], ring)
+            case Product(factors):
+                pairs = [self.of(factor) for factor in factors]
+                return (product_of([(top, 1) for top, _ in pairs], ring),
+                        product_of([(bottom, 1) for _, bottom in pairs], ring))
+            case Power(base, exponent) if not isinstance(base, Symbol):
+                return self._power(node, base, exponent)
+        return self._monomials(node)
+
+    def _power(self, node: Expression, base: Expression, exponent: Fraction) -> tuple[Poly, Poly]:
+        if node not in self.inverses:
+            top, bottom = self.of(base)
             if exponent < 0:
                 top, bottom = bottom, top
             if len(bottom) == 0:
                 raise EvaluationError("division by an expression that is identically zero")
             size = abs(exponent.numerator)
-            return product_of([(top, size)], ring), product_of([(bottom, size)], ring)
-    return _monomials(node, ring, places)
+            self.inverses[node] = (product_of([(top, size)], self.ring),
+                                   product_of([(bottom, size)], self.ring))
+        return self.inverses[node]
 
-
-def _monomials(node: Expression, ring: Ring, places: Mapping[Name, int]) -> tuple[Poly, Poly]:
-    powers = _powers(node, frozenset(name for _, name in places))  # asked when the ring was made
-    assert powers is not None
-    steps = [0] * len(ring.generators)
-    for name, exponent in powers.items():
-        steps[places[name]] += int(exponent * ring.roots[places[name]])
-    return (ring.monomial([max(step, 0) for step in steps]),
-            ring.monomial([max(-step, 0) for step in steps]))
+    def _monomials(self, node: Expression) -> tuple[Poly, Poly]:
+        powers = _powers(node, self.names)  # which roots may be taken: asked for the ring
+        assert powers is not None
+        steps = [0] * len(self.ring.generators)
+        for name, exponent in powers.items():
+            steps[self.places[name]] += int(exponent * self.ring.roots[self.places[name]])
+        return (self.ring.monomial([max(step, 0) for step in steps]),
+                self.ring.monomial([max(-step, 0) for step in steps]))
 
 
 def _sum(pairs: Sequence[tuple[Poly, Poly]], ring: Ring) -> tuple[Poly, Poly]:

@@ -50,7 +50,7 @@ NO_VALUE = (EvaluationError, SizeLimitError, UndecidedError, OverflowError)
 SINGLES = (2, 3, Fraction(1, 2))
 MAX_SINGLES, MAX_PAIRS, MAX_MIXED = 150, 60, 40
 MAX_IRRATIONAL = 8
-_POOL = tuple(Fraction(*pair) for pair in (
+SMALL_NUMBERS = tuple(Fraction(*pair) for pair in (
     (2, 1), (3, 1), (1, 2), (5, 1), (1, 3), (3, 2), (4, 1), (2, 3), (7, 1), (1, 5), (5, 2)))
 
 Values = Mapping[str, Expression]
@@ -156,11 +156,12 @@ def mixed_points(
     axes: tuple[Axis, ...], count: int, root: int = 1
 ) -> Iterator[dict[str, Expression]]:
     """Yield points at which symbols have different small values, none of them special."""
-    size = len(_POOL)
+    size = len(SMALL_NUMBERS)
     for trial in range(count):
         stride, shift = 1 + trial % (size - 1), 3 * trial
         yield {
-            axis.name: axis.value(_POOL[(stride * place + shift + place // size) % size], root)
+            axis.name: axis.value(
+                SMALL_NUMBERS[(stride * place + shift + place // size) % size], root)
             for place, axis in enumerate(axes)
         }
 
