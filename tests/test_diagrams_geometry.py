@@ -156,6 +156,9 @@ def test_wide_pictures_lose_expressions_then_letters() -> None:
 
 
 def test_long_expressions_fall_back_to_letters() -> None:
+    assert draw(NETWORKS["twin_ferry"]).letters == (0, 1, 2, 3)
+    assert draw(NETWORKS["text one_way"]).letters == (0,)
+    assert draw(NETWORKS["tide_lamp"]).letters == ()
     ferry = draw(NETWORKS["twin_ferry"]).text
     assert r"w^{+}_{\mathrm{ferry}}" in ferry and "e^{" not in ferry
     rates = draw(NETWORKS["tide_lamp"]).text

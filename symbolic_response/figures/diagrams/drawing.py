@@ -39,7 +39,8 @@ class Drawing:
 
     ``shown`` of the ``total`` cycles, trees, splittings or forests are drawn; of more than the
     limit one is, as an example. ``rates`` says what stands at the rates of the network's picture:
-    ``expressions`` (letters where these are long), ``letters`` or ``none``.
+    ``expressions`` (letters where these are long), ``letters`` or ``none``; ``letters`` are the
+    transitions, by place, that show letters.
     """
 
     what: str
@@ -48,6 +49,7 @@ class Drawing:
     shown: int
     total: int
     rates: str = ""
+    letters: tuple[int, ...] = ()
 
     @property
     def width(self) -> float:
@@ -112,7 +114,8 @@ def draw(
         made = network_picture(network, graph, notation or notation_of(network), places,
                                width=width, letters=letters, expressions=expressions,
                                transition=marked)
-        return Drawing(what, network.title, ((made.picture,),), 1, 1, made.rates)
+        return Drawing(what, network.title, ((made.picture,),), 1, 1, made.rates,
+                       made.letters)
     base = small(graph, places, None if what == "cycles" else marked)
     shown = grids.KINDS[what](analysis, base, grids.Asked(state, marked, limit, cycle_letter))
     return Drawing(what, network.title, _rows(shown, width), len(shown.pictures), shown.total)

@@ -6,6 +6,7 @@ Labels are set at fixed sizes, whatever the size of the document's text.
 from __future__ import annotations
 
 import re
+from collections.abc import Mapping
 from dataclasses import dataclass
 
 from symbolic_response.expressions.latex import expression_latex
@@ -24,7 +25,7 @@ _SCRIPT = re.compile(r"[_^](\{[^{}]*(\{[^{}]*\}[^{}]*)*\}|\\[A-Za-z]+|.)")
 LONGEST = 44.0
 """The widest expression in pt that is written at a rate."""
 TALL = r"[A-Zbdfhklt0-9()\[\]|/+-]|\\(beta|delta|lambda|theta|zeta|xi|[A-Z][a-z]+|var[A-Za-z]+)"
-DEEP = r"[gjpqy()\[\]|/,]|\\(beta|gamma|eta|zeta|xi|mu|rho|phi|chi|psi|varrho|varphi)"
+DEEP = r"[fgjpqyQ()\[\]|/,]|\\(beta|gamma|eta|zeta|xi|mu|rho|phi|chi|psi|varrho|varphi)"
 
 
 @dataclass(frozen=True, slots=True)
@@ -60,9 +61,12 @@ def label(latex: str, size: int) -> Label:
     >>> round(made.width, 1), round(made.height, 1), round(made.depth, 1)
     (16.0, 5.5, 1.7)
     """
-    width = formula_width(latex, style=TEXT)
-    letters = 0.0 if r"\frac" in latex else formula_width(_SCRIPT.sub("", latex), style=TEXT)
+    measured = latex.replace(r"\varnothing", r"\mathrm{O}")  # as wide, and in the table
+    width = formula_width(measured, style=TEXT)
+    letters = 0.0 if "frac" in latex else formula_width(_SCRIPT.sub("", measured), style=TEXT)
     large, script = RATIOS[size]
+    if not letters or any(re.search(r"[_^]", found[1]) for found in _SCRIPT.finditer(latex)):
+        script = 1.0  # scripts of scripts are as small at every size
     width = large * letters + script * (width - letters)
     height, depth = _extent(latex)
     scale = size / 10
@@ -71,8 +75,9 @@ def label(latex: str, size: int) -> Label:
 
 def _extent(latex: str) -> tuple[float, float]:
     """Return height and depth at 10 pt, of what is usual on one line; fractions are taller."""
-    if r"\frac" in latex or r"\tfrac" in latex:
-        return 9.5, 4.5
+    if fractions := latex.count("frac"):
+        scripts = re.search(r"[_^']|\\(hat|bar|tilde|vec|d?dot)", latex)
+        return (13.5 if scripts else 9.5) + 5 * (fractions - 1), 3.0 + 4 * fractions
     plain = re.sub(r"\\(mathrm|text|mathbf|mathcal|mathit|boldsymbol|operatorname)\b", "", latex)
     base = _SCRIPT.sub("", plain)
     height = 6.9 if re.search(TALL, base) else 4.4
@@ -81,25 +86,38 @@ def _extent(latex: str) -> tuple[float, float]:
         height += 2.7
     if "_" in plain.replace(r"\_", ""):
         low = re.search(DEEP, "".join(found[0] for found in _SCRIPT.finditer(plain)))
-        depth = max(depth, 3.4 if low else 2.9 if "^" in plain else 2.15)
+        both = "^" in plain
+        depth = max(depth, (4.9 if both else 3.4) if low else 3.1 if both else 2.15)
     if "^" in plain or "'" in plain:
-        height = max(height, 8.4)
+        height = max(height, 9.3)
     return height, depth
 
 
 # -- rates -----------------------------------------------------------------------------------------
 
 
+@dataclass(frozen=True, slots=True)
+class RateLabels:
+    """The LaTeX at each directed rate, by transition and whether it is the backward one.
+
+    ``letters`` are the transitions that show letters, not expressions.
+    """
+
+    texts: Mapping[tuple[int, bool], str]
+    letters: tuple[int, ...]
+
+
 def rate_labels(
     network: Network, notation: Notation, letters: str | None, expressions: bool
-) -> dict[tuple[int, bool], str]:
-    """Return the LaTeX at each directed rate, by transition and whether it is the backward one.
+) -> RateLabels:
+    """Return what stands at the rates.
 
     A transition whose expressions are long, or whose rates follow from energies, shows letters
     for both: see :func:`rate_letter`.
     """
     kind = letters or _shorter(network, notation)
     made: dict[tuple[int, bool], str] = {}
+    lettered = []
     for e, transition in enumerate(network.transitions):
         rates: list[tuple[bool, Expression]] = [(False, transition.forward)]
         if transition.backward is not None:
@@ -108,15 +126,9 @@ def rate_labels(
         short = all(label(latex, 8).width <= LONGEST for latex in shown.values())
         if not (expressions and short and transition.barrier is None):
             shown = {back: rate_letter(network, notation, e, back, kind) for back, _ in rates}
+            lettered.append(e)
         made.update({(e, back): latex for back, latex in shown.items()})
-    return made
-
-
-def written_rates(network: Network, notation: Notation) -> tuple[int, ...]:
-    """Return the transitions whose rates fit a drawing as expressions."""
-    made = rate_labels(network, notation, "rate", True)
-    return tuple(e for e in range(len(network.transitions))
-                 if made[e, False] != rate_letter(network, notation, e, False, "rate"))
+    return RateLabels(made, tuple(lettered))
 
 
 def rate_letter(

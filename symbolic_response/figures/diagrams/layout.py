@@ -31,6 +31,7 @@ CAREFUL = 12
 CYCLES, STEPS = 40, 20_000
 SWEEPS = 300
 EQUALS = 24
+SHORTEST = 0.05
 SPREADS = (1.0, 1.25, 1.5)
 POLYGON_BONUS, GRID_BONUS = 0.3, 0.45
 
@@ -78,7 +79,7 @@ def _tidy(places: Sequence[complex], pairs: Pairs) -> Positions:
 def _cost(places: Positions, pairs: Pairs) -> float:
     """Return how bad a drawing is: crossings, narrow places, uneven lengths, sharp angles."""
     lengths = [abs(places[a] - places[b]) for a, b in pairs]
-    if min(lengths) < 0.05:
+    if min(lengths) < SHORTEST:
         return 1000.0
     crossings = sum(
         cross(places[a], places[b], places[c], places[d])
@@ -152,6 +153,8 @@ def _with_leaves(size: int, pairs: Pairs) -> Iterator[tuple[Sequence[complex], f
     inner = tuple((place[a], place[b]) for a, b in pairs if {a, b} <= core)
     for places, bonus in _candidates(len(core), inner):
         tidy = _tidy(places, inner)
+        if min(abs(tidy[a] - tidy[b]) for a, b in inner) < SHORTEST:
+            continue
         for straight in (False, True):
             known = {k: tidy[place[k]] for k in core}
             for leaf, at in reversed(leaves):

@@ -17,7 +17,7 @@ from symbolic_response.figures.diagrams.geometry import (
     part,
     point,
 )
-from symbolic_response.figures.diagrams.labels import Label, label, rate_labels
+from symbolic_response.figures.diagrams.labels import Label, RateLabels, label, rate_labels
 from symbolic_response.figures.diagrams.layout import Positions
 from symbolic_response.figures.diagrams.looks import LINES
 from symbolic_response.figures.diagrams.pictures import Picture, Shape, Stroke
@@ -30,7 +30,7 @@ APART = 0.95
 """Half the distance between the two lines of a transition, in pt."""
 PADDING, FROM_STATE = 3.5, 1.0
 SHORTEST, BETWEEN = 17.0, 9.0
-START, LARGER, ATTEMPTS = 50.0, 1.1, 25
+START, LEAST, ROOM, LARGER, ATTEMPTS = 50.0, 30.0, 24.0, 1.1, 25
 MARGIN = 1.0
 STRETCH, MOST = 2.0, 84
 
@@ -51,10 +51,14 @@ Curves = dict[tuple[int, bool], Curve]
 
 @dataclass(frozen=True, slots=True)
 class NetworkPicture:
-    """The picture, and what stands at its rates: ``expressions``, ``letters`` or ``none``."""
+    """The picture, and what stands at its rates: ``expressions``, ``letters`` or ``none``.
+
+    ``letters`` are the transitions that show letters.
+    """
 
     picture: Picture
     rates: str
+    letters: tuple[int, ...]
 
 
 def network_picture(
@@ -75,20 +79,25 @@ def network_picture(
     if 2 * len(graph.ends) > MOST:
         kinds = [("none", USUAL)]
     for kind, sizes in kinds:
-        texts: Mapping[tuple[int, bool], str] = {}
+        shown = RateLabels({}, ())
         if kind != "none":
-            texts = rate_labels(network, notation, letters, kind == "expressions")
-        scale = START * sizes.radius / USUAL.radius
+            shown = rate_labels(network, notation, letters, kind == "expressions")
+        fitting = (width - 2 * sizes.radius - ROOM) / _extent(positions)
+        scale = min(START * sizes.radius / USUAL.radius, max(LEAST, fitting))
         for _ in range(ATTEMPTS):
             frame = _Frame(graph, notation.states, positions, scale, transition, sizes)
             is_last = frame.bounds.width * LARGER > width
-            picture = frame.picture(texts, kind == "none" and is_last)
+            picture = frame.picture(shown.texts, kind == "none" and is_last)
             if picture is not None and (picture.box.width <= width or kind == "none"):
-                return NetworkPicture(picture, kind)
+                return NetworkPicture(picture, kind, shown.letters)
             if is_last:
                 break
             scale *= LARGER
     raise AssertionError("the last picture is made whether or not it is clear")
+
+
+def _extent(positions: Positions) -> float:
+    return max(z.real for z in positions) - min(z.real for z in positions) + 0.01
 
 
 def bends(graph: Graph) -> tuple[float, ...]:

@@ -24,7 +24,7 @@ from symbolic_response.topology.graph import members
 
 SIGNS = ("+", "-")
 LENGTH, LEAST, LOWEST, WIDEST = 22.0, 15.0, 20.0, 110.0
-SPACE, BELOW, MARGIN, SIZE = 0.8, 3.0, 0.5, 8
+SPACE, BELOW, BESIDE, BEFORE, MARGIN, SIZE = 0.8, 3.0, 1.0, 3.0, 0.5, 8
 
 
 @dataclass(frozen=True, slots=True)
@@ -102,8 +102,10 @@ class Small:
             return Picture(box, tuple(strokes), dots)
         if latex in SIGNS:
             before = label(latex, 10)
-            before = before.centred(complex(box.left - BELOW - before.width / 2, box.centre.imag))
-            return Picture(hull([box, before.box]), tuple(strokes), dots, labels=(before,))
+            middle = complex(box.left - BESIDE - before.width / 2, box.centre.imag)
+            before = before.centred(middle)
+            whole = Box(before.box.left - BEFORE, box.bottom, box.right, box.top)
+            return Picture(whole, tuple(strokes), dots, labels=(before,))
         below = label(latex, SIZE)
         below = below.centred(complex(box.centre.real, box.bottom - BELOW - below.height / 2))
         whole = Box(min(box.left, below.box.left), below.box.bottom - MARGIN,

@@ -73,11 +73,11 @@ PREAMBLE = _preamble()
 def number(value: float) -> str:
     """Return a length in pt to two decimals, without needless zeros.
 
-    >>> [number(value) for value in (1.0, -0.001, 2.345678)]
-    ['1', '0', '2.35']
+    >>> [number(value) for value in (100.0, -0.001, 2.345678)]
+    ['100', '0', '2.35']
     """
-    return f"{value:.2f}".rstrip("0").rstrip(".").replace("-0", "-0").removesuffix("-") \
-        if abs(value) >= 0.005 else "0"
+    text = f"{value:.2f}".rstrip("0").rstrip(".")
+    return "0" if text == "-0" else text
 
 
 def _at(place: complex) -> str:
