@@ -31,6 +31,7 @@ from symbolic_response.expressions.ring import (
     Ring,
     expression_of,
 )
+from symbolic_response.expressions.text import expression_text
 from symbolic_response.expressions.tree import Number, Symbol, add, negate
 from symbolic_response.network import Network
 from symbolic_response.response.analysis import Analysis
@@ -139,6 +140,19 @@ def test_functions_and_roots(text: str) -> None:
         form = factored(poly, value.ring, len)
         difference = add([form, negate(Polynomial(value.ring, poly))])
         assert normal_form(difference, domain).is_zero()
+
+
+def test_whole_powers_of_roots_stay_leaves() -> None:
+    """A root to a whole power would print as the sum under it; it must not dissolve in the sum."""
+    k, c = Symbol("k"), Symbol("c")
+    root = Generator("root", 0, "k+c", add([k, c]), True)
+    ring = Ring([Generator("symbol", 0, "k", k, True), root], [1, 2])
+    gen, sqrt = ring.context.gens()
+    form = factored(sqrt**2 * gen + sqrt**3 + gen, ring, len)
+    expected = read_expression("(k + c)*k + (k + c)*sqrt(k + c) + k")
+    difference = add([read_expression(expression_text(form)), negate(expected)])
+    assert normal_form(difference, Domain(("k", "c"), frozenset("kc"))).is_zero()
+    assert characters(form, len) < 20
 
 
 def test_a_wrong_form_is_never_returned() -> None:

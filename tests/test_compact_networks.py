@@ -111,6 +111,11 @@ def test_parallel_and_one_way_transitions(graph: Graph) -> None:
     in_order(sums, rate_names(given_sums))
     check_all_sums(graph, network, expansions(sums))
     check_elimination(graph, network, eliminated(graph, given_sums.ring, given_sums.rates), 3)
+    forests = [(k, e) for k in range(graph.size) for e in range(len(graph.ends))]
+    shifted = eliminated(graph, given_sums.ring, given_sums.rates, forests=forests)
+    in_order(shifted, rate_names(given_sums))
+    assert sorted(d.place for d in shifted.definitions if d.kind == "forest") == forests
+    check_elimination(graph, network, shifted, 2)
 
 
 def check_elimination(graph: Graph, network: Network, sums: CompactSums, points: int) -> None:
@@ -134,9 +139,27 @@ def check_elimination(graph: Graph, network: Network, sums: CompactSums, points:
                         inflow, outflow = (inflow, outflow + flow) if tail == k else (
                             inflow + flow, outflow)
             assert inflow == outflow
+        check_shifts(graph, network, values)
         tree = tree_sum(graph, network, 0)
         assert found[0] == sum(
             c * value_of_product(powers, point) for powers, c in tree.items())
+
+
+def check_shifts(graph: Graph, network: Network, values: Mapping[str, Fraction]) -> None:
+    """W Phi = D (d_m - d_n) and the Phi add up to 0, for the transitions that have them."""
+    for e, (m, n) in enumerate(graph.ends):
+        if f"#forest[0, {e}]" not in values:
+            continue
+        phi = [values[f"#forest[{k}, {e}]"] for k in range(graph.size)]
+        assert sum(phi) == 0
+        balance = [Fraction(0)] * graph.size
+        for f, ends in enumerate(graph.ends):
+            for tail in ends:
+                if name := rate(graph, network, tail, f):
+                    balance[sum(ends) - tail] += values[name] * phi[tail]
+                    balance[tail] -= values[name] * phi[tail]
+        whole = values["#total[]"]
+        assert balance == [whole * ((k == m) - (k == n)) for k in range(graph.size)]
 
 
 def value_of_product(powers: Powers, point: Mapping[str, Fraction]) -> Fraction:
@@ -150,9 +173,40 @@ def value_of_product(powers: Powers, point: Mapping[str, Fraction]) -> Fraction:
 def test_elimination_on_every_small_graph(graph: nx.Graph) -> None:
     network = network_of(graph, "small")
     given_sums = sums_of(network, forests=False)
-    sums = eliminated(given_sums.graph, given_sums.ring, given_sums.rates)
-    in_order(sums, rate_names(given_sums))
-    check_elimination(given_sums.graph, network, sums, 2)
+    forests = [(k, e) for k in range(len(graph)) for e in range(graph.number_of_edges())]
+    for wanted in ([], forests):
+        sums = eliminated(given_sums.graph, given_sums.ring, given_sums.rates, forests=wanted)
+        in_order(sums, rate_names(given_sums))
+        check_elimination(given_sums.graph, network, sums, 2)
+
+
+def test_forest_differences_of_one_way_rings_and_chains() -> None:
+    """States with one way out pass their source on whole, and sources cancel."""
+    ring = Graph(4, ((0, 1), (1, 2), (2, 3), (3, 0)), (True, True, False, True))
+    chain = Graph(4, ((1, 0), (1, 2), (3, 2)), (False,) * 3)
+    for graph in (ring, chain):
+        network = network_on(graph)
+        given_sums = sums_of(network)
+        sums = eliminated(graph, given_sums.ring, given_sums.rates,
+                          forests=list(given_sums.forests))
+        in_order(sums, rate_names(given_sums))
+        check_elimination(graph, network, sums, 2)
+
+
+def test_single_forest_differences_by_elimination() -> None:
+    """Only some pairs are asked for: the others are not defined, and the forms do not need them."""
+    given_sums = sums_of(ladder(3), forests=False)
+    whole = Analysis(ladder(3))
+    numbers = [7 + 3 * place * place for place in range(len(given_sums.ring.generators))]
+    for wanted in ([(1, 0)], [(0, 3), (2, 3), (2, 5)], [(4, e) for e in range(7)]):
+        sums = eliminated(given_sums.graph, given_sums.ring, given_sums.rates, forests=wanted)
+        assert sorted(d.place for d in sums.definitions if d.kind == "forest") == wanted
+        values = {g.key: Fraction(v)
+                  for g, v in zip(given_sums.ring.generators, numbers, strict=True)}
+        for d in sums.definitions:
+            values[d.key] = value_at(d.form, values)
+        for k, e in wanted:  # two-tree forests, enumerated
+            assert values[f"#forest[{k}, {e}]"] == int(whole.forest_difference(k, e)(*numbers))
 
 
 def test_elimination_multiplied_out() -> None:
@@ -261,6 +315,10 @@ def test_the_cube_by_elimination() -> None:
     assert whole.proof == "elimination"
     assert sum(d.kind == "tree" for d in whole.definitions) == 8
     assert whole.characters() <= 1277  # all eight in less room than one took before
+    forests = {(k, e): given_sums.trees[0] for k in range(8) for e in range(12)}  # the keys count
+    everything = compact_network(replace(given_sums, forests=forests))
+    assert sum(d.kind == "forest" for d in everything.definitions) == 96
+    assert everything.characters() <= 6000
 
 
 @pytest.mark.parametrize(("network", "limit"), [

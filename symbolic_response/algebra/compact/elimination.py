@@ -8,7 +8,7 @@ rates, and stationarity at a gives the other one: S_a N_a = sum over j of A_aj N
 
 from __future__ import annotations
 
-from collections.abc import Iterator, Sequence
+from collections.abc import Sequence
 from dataclasses import dataclass
 
 from symbolic_response.algebra.compact.build import InternalError
@@ -43,24 +43,53 @@ class Step:
     entering: tuple[tuple[int, Entry], ...]
 
 
+@dataclass(frozen=True, slots=True)
+class Names:
+    """Definitions over a ring that has a generator for each of their names."""
+
+    ring: Ring
+    leaves: dict[Expression, Quotient]
+    definitions: list[Definition]
+
+    def define(self, key: str, form: Expression, top: Poly, below: Poly) -> Entry:
+        """Name a form, which must stand for top / below with all names independent: exact."""
+        shown, under = expanded(form, self.leaves, self.ring)
+        if not stands_for((shown * below, under), top):
+            raise InternalError(f"the compact form of {key} does not stand for it")
+        self.definitions.append(Definition(key, form))
+        return Entry(Symbol(key), self.generator(key))
+
+    def generator(self, key: str) -> Poly:
+        """Return the generator of a name."""
+        return self.ring.context.gen(self.ring.index[name_generator(key)])
+
+    def extended(self, keys: Sequence[str]) -> Names:
+        """Return a longer ring for further definitions, none of them made yet."""
+        ring = with_names(self.ring, keys)
+        leaves = {
+            leaf: (lift(top, self.ring, ring), lift(below, self.ring, ring))
+            for leaf, (top, below) in self.leaves.items()
+        }
+        further = Names(ring, leaves, [])
+        one = ring.constant(1)
+        leaves |= {Symbol(key): (further.generator(key), one) for key in keys}
+        return further
+
+
 class Elimination:
     """A network while its states are eliminated one by one.
 
-    ``ring`` holds the generators of the rates and one for each name; ``definitions`` are those of
-    the names in use, each checked when it is made.
+    ``ring`` holds the generators of the rates and one for each name; ``names`` has the definitions,
+    each checked when it is made.
     """
 
     def __init__(self, graph: Graph, ring: Ring, rates: Rates, width: Width) -> None:
         self.graph = graph
         self.width = width
-        self.ring = with_names(ring, graph.size)
+        self.names = Names(ring, {}, []).extended(_keys(graph.size))
+        self.ring = self.names.ring
         self.alive = list(range(graph.size))
         self.steps: list[Step] = []
-        self.definitions: list[Definition] = []
-        self.leaves: dict[Expression, Quotient] = {
-            Symbol(key): (self._generator(key), self.ring.constant(1))
-            for key in _keys(graph.size)
-        }
         self._frozen: dict[Pair, Entry] = {}
         self._terms: dict[Pair, list[Expression]] = {}
         self._values: dict[Pair, Quotient] = {}
@@ -72,7 +101,7 @@ class Elimination:
                     direct[pair] = direct[pair] + lifted if pair in direct else lifted
         for pair, poly in direct.items():
             form, leaves = factored_with_leaves(poly, self.ring, width)
-            self.leaves |= leaves
+            self.names.leaves.update(leaves)
             self._terms[pair] = [form]
             self._values[pair] = (poly, self.ring.constant(1))
 
@@ -88,7 +117,7 @@ class Elimination:
             if len(self._terms[pair]) == 1 and len(top) == 1 and below.is_one():
                 self._frozen[pair] = Entry(form, top)
             else:
-                self._frozen[pair] = self._named(key_of("rate", *pair), form, top, below)
+                self._frozen[pair] = self.names.define(key_of("rate", *pair), form, top, below)
         return self._frozen[pair]
 
     def next_state(self, keep: int | None) -> int:
@@ -125,7 +154,7 @@ class Elimination:
     def _exit(self, state: int, leaving: Sequence[tuple[int, Entry]]) -> Entry:
         total = sum((entry.poly for _, entry in leaving), self.ring.constant(0))
         form = add(entry.symbol for _, entry in leaving)
-        return self._named(key_of("exit", state), form, total, self.ring.constant(1))
+        return self.names.define(key_of("exit", state), form, total, self.ring.constant(1))
 
     def _pass_through(self, pair: Pair, out: Entry, into: Entry, leave: Entry) -> None:
         """Add the rate of the way through an eliminated state to a pair."""
@@ -136,17 +165,6 @@ class Elimination:
         self._values[pair] = (
             top * leave.poly + out.poly * into.poly * below, below * leave.poly
         ) if out is not leave else (top + into.poly * below, below)
-
-    def _named(self, key: str, form: Expression, top: Poly, below: Poly) -> Entry:
-        """Return a name, its form checked exactly: form = top / below."""
-        shown, under = expanded(form, self.leaves, self.ring)
-        if not stands_for((shown * below, under), top):
-            raise InternalError(f"the compact form of {key} does not stand for it")
-        self.definitions.append(Definition(key, form))
-        return Entry(Symbol(key), self._generator(key))
-
-    def _generator(self, key: str) -> Poly:
-        return self.ring.context.gen(self.ring.index[_name(key)])
 
     def remaining(self) -> list[list[Poly]]:
         """Return -W of the effective rates among the states that remain, in their order."""
@@ -160,20 +178,17 @@ class Elimination:
         return matrix
 
 
-def with_names(ring: Ring, size: int) -> Ring:
-    """Return a ring with a generator for every exit rate and every effective rate as well."""
-    names = [_name(key) for key in _keys(size)]
+def with_names(ring: Ring, keys: Sequence[str]) -> Ring:
+    """Return a ring with a generator for every name as well."""
+    names = [name_generator(key) for key in keys]
     return union([ring, Ring(sorted(names, key=Generator.order), [1] * len(names))])
 
 
-def _keys(size: int) -> Iterator[str]:
-    for state in range(size):
-        yield key_of("exit", state)
-    for i in range(size):
-        for j in range(size):
-            if i != j:
-                yield key_of("rate", i, j)
+def _keys(size: int) -> list[str]:
+    exits = [key_of("exit", state) for state in range(size)]
+    return exits + [key_of("rate", i, j) for i in range(size) for j in range(size) if i != j]
 
 
-def _name(key: str) -> Generator:
+def name_generator(key: str) -> Generator:
+    """Return the generator that stands for a name."""
     return Generator("symbol", NAME_RANK, key, Symbol(key), True)

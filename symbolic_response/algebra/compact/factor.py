@@ -17,8 +17,8 @@ from symbolic_response.algebra.compact.measure import (
 from symbolic_response.algebra.compact.nested import Sizes, Term
 from symbolic_response.algebra.compact.packed import Packing, Terms
 from symbolic_response.errors import SizeLimitError
-from symbolic_response.expressions.ring import Poly, Ring, factors_of
-from symbolic_response.expressions.tree import ZERO, Expression
+from symbolic_response.expressions.ring import Poly, Polynomial, Ring, factors_of
+from symbolic_response.expressions.tree import ZERO, Expression, rebuild
 
 MAX_TERMS = 5_000
 MAX_DEGREE = 1_000
@@ -41,6 +41,24 @@ def factored(poly: Poly, ring: Ring, width: Width = default_width) -> Expression
     a*(b + c) - b**2*c
     """
     return factored_with_leaves(poly, ring, width)[0]
+
+
+def compacted(node: Expression, width: Width = default_width) -> Expression:
+    """Return an expression with every polynomial leaf in its short form; see ``factored``.
+
+    >>> from symbolic_response.expressions.ring import Polynomial, Domain, symbol_ring, union
+    >>> from symbolic_response.expressions.text import expression_text
+    >>> from symbolic_response.expressions.tree import Symbol, divide
+    >>> ring = union(symbol_ring(name, Domain(tuple("abc"), frozenset())) for name in "abc")
+    >>> a, b, c = ring.context.gens()
+    >>> print(expression_text(compacted(divide(Symbol("x"), Polynomial(ring, a*b + a*c)), len)))
+    x/(a*(b + c))
+    """
+
+    def leaf(part: Expression) -> Expression:
+        return factored(part.poly, part.ring, width) if isinstance(part, Polynomial) else part
+
+    return rebuild(node, leaf)
 
 
 def factored_with_leaves(

@@ -11,7 +11,7 @@ from collections.abc import Callable
 from fractions import Fraction
 
 from symbolic_response.expressions.layout import without_sign
-from symbolic_response.expressions.ring import Generator
+from symbolic_response.expressions.ring import Generator, Polynomial, expression_of
 from symbolic_response.expressions.tree import (
     Expression,
     Function,
@@ -29,7 +29,7 @@ Width = Callable[[str], int]
 GENERATOR_WIDTH = 6
 SHORT_WIDTH = 3
 _WIDTHS = {"#total": 1, "#tree": SHORT_WIDTH, "#current": SHORT_WIDTH, "#factor": SHORT_WIDTH,
-           "#exit": SHORT_WIDTH}
+           "#exit": SHORT_WIDTH, "#shifts": SHORT_WIDTH}
 
 
 def default_width(name: str) -> int:
@@ -93,6 +93,8 @@ def characters(node: Expression, width: Width = default_width) -> int:
             return width(name)
         case Number(value):
             return len(str(value))
+        case Polynomial(ring, poly):
+            return characters(expression_of(ring, poly), width)
     raise TypeError(f"not a plain expression: {type(node).__name__}")
 
 

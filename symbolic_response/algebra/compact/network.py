@@ -7,6 +7,8 @@ from dataclasses import dataclass, field, replace
 
 from symbolic_response.algebra.compact.factor import factored_with_leaves
 from symbolic_response.algebra.compact.measure import Width, default_width
+from symbolic_response.algebra.compact.relations import along, spanning
+from symbolic_response.algebra.compact.shifts import path_sum
 from symbolic_response.algebra.compact.states import eliminated
 from symbolic_response.algebra.compact.together import (
     CompactSums,
@@ -51,17 +53,17 @@ def compact_network(
     in between whichever is shorter; ``elimination`` says otherwise. With ``relations`` a sum may be
     given by others where that is shorter: D = sum of N_k, C_e = w+ N_m - w- N_n, and for the forest
     differences, D times the solution x of W x = d_n - d_m with sum 0: they add up to 0 over k, and
-    along each cycle of transitions. Without them every sum has a form of its own.
+    along each cycle of transitions. Without them every sum has a form of its own. By elimination
+    forest differences are D y_k - N_k Y, with ``#source``, ``#shift`` = y and ``#shifts`` = Y.
     """
-    trees, given = _trees(sums, width, name_factors, elimination), {
-        key_of("tree", k): poly for k, poly in enumerate(sums.trees)
-    }
+    trees = _trees(sums, width, name_factors, elimination)
+    given = {key_of("tree", k): poly for k, poly in enumerate(sums.trees)}
     targets = [] if trees else [Target(key, poly) for key, poly in given.items()]
-    if sums.total is not None:
+    if sums.total is not None and not (trees and sums.forests):
         whole = add(Symbol(key) for key in given)
         targets.append(Target(key_of("total"), sums.total, (whole,)))
     targets += [_current(sums, e, width) for e in sorted(sums.currents)]
-    targets += _forests(sums)
+    targets += [] if trees else _forests(sums)
     if not relations:
         targets = [Target(t.key, t.poly) for t in targets]
     if trees is None:
@@ -69,7 +71,8 @@ def compact_network(
     first = 1 + sum(d.kind == "factor" for d in trees.definitions)
     rest = compact_together(sums.ring, targets, width, name_factors=name_factors, given=given,
                             first_factor=first)
-    return replace(trees, definitions=(*trees.definitions, *rest.definitions))
+    leaves = {**trees.leaves, **rest.leaves}
+    return replace(trees, definitions=(*trees.definitions, *rest.definitions), leaves=leaves)
 
 
 def _trees(
@@ -79,10 +82,12 @@ def _trees(
     size = max(len(tree) for tree in sums.trees)
     if elimination is False or (elimination is None and size <= KERNEL_TREES):
         return None
-    found = eliminated(sums.graph, sums.ring, sums.rates, width, trees=sums.trees)
+    found = eliminated(sums.graph, sums.ring, sums.rates, width, trees=sums.trees,
+                       forests=sorted(sums.forests))
     if elimination or size > ELIMINATION_TREES:
         return found
     targets = [Target(key_of("tree", k), poly) for k, poly in enumerate(sums.trees)]
+    targets += _forests(sums)
     plain = compact_together(sums.ring, targets, width, name_factors=name_factors)
     return found if found.characters(width) < plain.characters(width) else None
 
@@ -117,7 +122,7 @@ def _forests(sums: NetworkSums) -> list[Target]:
                 others = sorted(set(order) - {k})
                 relations.append(_minus_all([key_of("forest", other, e) for other in others]))
             if e not in tree:
-                relations.append(_along(sums.graph, k, e, tree))
+                relations.append(path_sum(k, along(sums.graph, e, tree)))
             targets.append(
                 Target(key_of("forest", k, e), sums.forests[(k, e)], tuple(relations))
             )
@@ -134,30 +139,6 @@ def _length(poly: Poly) -> int:
 
 
 def _shortest_tree(sums: NetworkSums, k: int, row: Sequence[int]) -> list[int]:
-    """Return a spanning forest of transitions whose forest differences are short (Kruskal)."""
-    label = list(range(sums.graph.size))
-    chosen = []
-    for e in sorted(row, key=lambda e: (_length(sums.forests[(k, e)]), e)):
-        one, other = (label[end] for end in sums.graph.ends[e])
-        if one != other:
-            chosen.append(e)
-            label = [other if entry == one else entry for entry in label]
-    return chosen
-
-
-def _along(graph: Graph, k: int, e: int, tree: Sequence[int]) -> Expression:
-    """Return Phi_{k,e} as a sum along the path of a tree from e's first to its second end."""
-    start, goal = graph.ends[e]
-    ways: dict[int, list[Expression]] = {start: []}
-    waiting = [start]
-    while goal not in ways:
-        state = waiting.pop(0)
-        for step in tree:
-            first, second = graph.ends[step]
-            symbol: Expression = Symbol(key_of("forest", k, step))
-            for tail, head, way in ((first, second, symbol), (second, first, negate(symbol))):
-                if tail == state and head not in ways:
-                    ways[head] = [*ways[state], way]
-                    waiting.append(head)
-    terms = ways[goal]
-    return add(sorted(terms, key=lambda term: not isinstance(term, Symbol)))
+    """Return a spanning forest of transitions whose forest differences are short."""
+    ordered = sorted(row, key=lambda e: (_length(sums.forests[(k, e)]), e))
+    return spanning(sums.graph, ordered)

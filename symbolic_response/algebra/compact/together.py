@@ -29,6 +29,7 @@ from symbolic_response.expressions.tree import ZERO, Expression, Symbol, negate
 
 LEAST_SAVING = 20
 MAX_PASSES = 2
+MAX_NAMED_TERMS = 4_000
 
 
 @dataclass(frozen=True, slots=True)
@@ -102,7 +103,7 @@ class CompactSums:
         return sum(literals(d.form) for d in self.definitions)
 
 
-HELPERS = ("factor", "exit", "rate")
+HELPERS = ("factor", "exit", "rate", "source", "shift", "shifts")
 
 
 def key_of(kind: str, *place: int) -> str:
@@ -122,13 +123,14 @@ def compact_together(
 
     Of a target's own form and its ``relations`` the shortest is taken; ``given`` has the sums that
     are defined elsewhere and that relations may name. Factors that occur often are named
-    ``#factor[1]``, ``#factor[2]`` ... from ``first_factor`` on, if ``name_factors``. Every form is
-    multiplied out and compared with its polynomial. SizeLimitError: see ``factored``.
+    ``#factor[1]``, ``#factor[2]`` ... from ``first_factor`` on, if ``name_factors`` and the sums
+    that have a form of their own hold up to 4,000 terms. Every form is multiplied out and compared
+    with its polynomial. SizeLimitError: see ``factored``.
     """
     width = floored(width)
     writer = _Writer(ring, targets, width, given or {}, first_factor)
     best = writer.written({})
-    if name_factors:
+    if name_factors and writer.own_terms(best) <= MAX_NAMED_TERMS:
         names = _worth_naming(best.own, width)
         for _ in range(MAX_PASSES if names else 0):
             named = writer.written(names)
@@ -171,6 +173,10 @@ class _Writer:
         """Return the length of a form in which every generator occurs once."""
         present = [place for place, degree in enumerate(poly.degrees()) if degree]
         return sum(self.sizes.widths[place] + 1 for place in present)
+
+    def own_terms(self, draft: _Draft) -> int:
+        """Return how many terms the sums have that are written by forms of their own."""
+        return sum(len(self._packed[key]) for key in draft.own)
 
     def _source(self, target: Target) -> Source:
         if target.key not in self._sources:
