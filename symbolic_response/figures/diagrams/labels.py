@@ -24,7 +24,7 @@ Small letters are cut wider.
 _SCRIPT = re.compile(r"[_^](\{[^{}]*(\{[^{}]*\}[^{}]*)*\}|\\[A-Za-z]+|.)")
 LONGEST = 44.0
 """The widest expression in pt that is written at a rate."""
-TALL = r"[A-Zbdfhklt0-9()\[\]|/+-]|\\(beta|delta|lambda|theta|zeta|xi|[A-Z][a-z]+|var[A-Za-z]+)"
+TALL = r"[A-Zbdfhijklt0-9()\[\]|/+-]|\\(beta|delta|lambda|theta|zeta|xi|[A-Z][a-z]+|var[A-Za-z]+)"
 DEEP = r"[fgjpqyQ()\[\]|/,]|\\(beta|gamma|eta|zeta|xi|mu|rho|phi|chi|psi|varrho|varphi)"
 
 

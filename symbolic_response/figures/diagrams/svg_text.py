@@ -23,6 +23,8 @@ DROPPED = frozenset((r"\left", r"\right", r"\big", r"\Big", r"\bigl", r"\bigr", 
                      r"\mathstrut"))
 FRACTIONS = frozenset((r"\frac", r"\tfrac", r"\dfrac"))
 PAIRS = frozenset((r"\overset", r"\underset", r"\stackrel", r"\binom"))
+OTHER_FONTS = "'STIX Two Text','Times New Roman','DejaVu Serif',serif"
+"""For Greek letters, which some fonts of the other letters do not have."""
 BINARY, RELATIONS = frozenset("+−·×"), frozenset("=<>≤≥→")
 SIZES = (1.0, 0.72, 0.55)
 UP, DOWN, OVER, UNDER = 4.1, 2.1, 3.6, 3.6
@@ -211,6 +213,8 @@ def _is_word(text: str) -> bool:
 
 def _style(run: _Run, size: float, scale: float) -> str:
     made = f' font-size="{size * SIZES[run.level]:g}"' if run.level else ""
+    if not run.text.isascii() and run.text[0].isalpha():
+        made += f' font-family="{OTHER_FONTS}"'
     if run.style == "italic":
         made += ' font-style="italic"'
     if len(run.text) > 1 and run.width:  # whatever the font
