@@ -17,10 +17,10 @@ from symbolic_response.hand.visible import Fault, visible
 
 MAX_DISPLAY = 50_000
 MAX_STATEMENTS = 2_000
-MAX_TOKENS = 2_000_000
+MAX_TOKENS = 300_000
 MAX_MACRO_DEPTH = 50
 MAX_MACRO = 20_000
-_FAILED, _ENDLESS = 20_000, 1_000_000
+_FAILED, _ENDLESS = 1_000, 100_000
 _EXCERPT = 72
 _SENTENCE = re.compile(
     r"\b(?:where|with|let|defin\w+|denot\w+|here|set|setting|introduc\w+)\b", re.IGNORECASE)
