@@ -11,7 +11,7 @@ import pytest
 from control_networks import DRIVEN, LONG, ONE_WAY, RING, TIDE_LAMP
 from test_appendix_document import check_log, compiled
 
-from symbolic_response.appendix import appendix_text
+from symbolic_response.appendix import Layout, appendix_text
 from symbolic_response.appendix.control_decimals import rounded, value_latex
 from symbolic_response.control.function import function_of
 from symbolic_response.errors import NetworkError
@@ -46,7 +46,7 @@ def texts() -> dict[str, str]:
 def test_it_compiles_and_nothing_sticks_out(
     name: str, width: float, tmp_path: Path, requires_latex: None
 ) -> None:
-    text = appendix_text(read_network_text(ALL[name]), width=width)
+    text = appendix_text(read_network_text(ALL[name]), layout=Layout(width=width))
     check_log(compiled(text, tmp_path))
 
 

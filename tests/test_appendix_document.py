@@ -19,8 +19,9 @@ sys.path.insert(0, str(Path(__file__).parent))
 from appendix_networks import ALL, K4, PAIR, RING
 
 from symbolic_response.algebra.minors import tree_sums_by_minors
-from symbolic_response.appendix import appendix_text, write_appendix
+from symbolic_response.appendix import Layout, appendix_text, write_appendix
 from symbolic_response.appendix.named_sums import NamedSums
+from symbolic_response.appendix.page import Page
 from symbolic_response.appendix.paper import Paper
 from symbolic_response.appendix.requests import requested
 from symbolic_response.appendix.results import closed_result
@@ -78,7 +79,8 @@ def test_every_document_compiles_without_overfull_boxes(
 @pytest.mark.parametrize("width", [246.0, 510.0])
 @pytest.mark.parametrize("name", ["ring", "energy", "k4"])
 def test_other_widths(name: str, width: float, tmp_path: Path, requires_latex: None) -> None:
-    check_log(compiled(appendix_text(read_network_text(ALL[name]), width=width), tmp_path))
+    text = appendix_text(read_network_text(ALL[name]), layout=Layout(width=width))
+    check_log(compiled(text, tmp_path))
 
 
 def test_every_kind_of_quantity_compiles(tmp_path: Path, requires_latex: None) -> None:
@@ -133,7 +135,7 @@ def test_results_with_the_names_put_back_are_the_closed_forms(name: str) -> None
 def compare_results(network, quantities) -> None:  # type: ignore[no-untyped-def]
     analysis = Analysis(network)
     notation = notation_of(network)
-    paper = Paper(network, analysis, notation, NamedSums(analysis, notation), 345.0)
+    paper = Paper(network, analysis, notation, NamedSums(analysis, notation), Page())
     source = random.Random(5)
     with flint.ctx.workprec(200):
         values = {

@@ -13,7 +13,7 @@ from proof_networks import rooted_trees, undirected_trees
 from test_appendix_document import check_log, compiled
 
 import symbolic_response.appendix.proofs_data as proofs_data
-from symbolic_response.appendix import appendix_text, write_appendix
+from symbolic_response.appendix import Layout, appendix_text, write_appendix
 from symbolic_response.appendix.forests import forests_into
 from symbolic_response.appendix.letters import PROOF_LETTERS, proof_letters
 from symbolic_response.appendix.proofs_section import EQUATIONS
@@ -261,7 +261,7 @@ def test_the_verb_reports_both_files(
 def test_every_kind_of_proof_compiles(width: float, tmp_path: Path, requires_latex: None) -> None:
     network = read_network_text(
         CHANNELS + "[appendix]\ncertificates = 2\ndigests = true\n")
-    text = appendix_text(network, quantities=EVERY_KIND, width=width,
+    text = appendix_text(network, quantities=EVERY_KIND, layout=Layout(width=width),
                          proofs_file="a_rather_long_name_of_a_network.proofs.json")
     check_log(compiled(text, tmp_path))
 

@@ -16,7 +16,14 @@ def definitions(paper: Paper, claims: Sequence[Claim]) -> str:
     """Return the notions that the inequalities use, and only those."""
     text = ["The inequalities below hold for all admissible values of the symbols."]
     text += [words for occurs, words in NOTIONS if any(map(occurs, claims))]
+    if _has_single_cycle(paper) and any(map(_has_force(EndPair), claims)):
+        text.append(r"For the transitions of the only cycle $|\ln @cross ratio@_e| = "
+                    r"|@force@_1|$, and both bounds agree.")
     return filled(paper, "\n".join(text))
+
+
+def _has_single_cycle(paper: Paper) -> bool:
+    return len(paper.analysis.fundamental_cycles) == 1
 
 
 def _has_force(kind: type) -> Occurs:

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import re
 from collections.abc import Sequence
 
 from symbolic_response.appendix.bound_definitions import definitions
@@ -57,6 +58,8 @@ MAX_LISTED_CYCLES = 6
 MAX_LISTED_SPLITTINGS = 8
 MAX_LISTED_PATHS = 6
 
+_QUOTIENT = re.compile(r"\\left\(\\frac\{((?:[^{}+-]|\{[^{}]*\})*)\}\{((?:[^{}+ -]|\{[^{}]*\})*)\}"
+                       r"\\right\)")
 WORDS = {
     "energy-covariance": "exactly, as a covariance",
     "energy-range": "by the range of the quantity",
@@ -142,6 +145,7 @@ def _heading(paper: Paper, quantity: Expression) -> str:
     if not isinstance(quantity, Response):
         return f"${quantity_in(notation, quantity)}$"
     inner = quantity_in(notation, quantity.quantity)
+    inner = _QUOTIENT.sub(r"(\1/\2)", inner)
     if formula_width(inner) + 120 > paper.width:
         return "A response"
     match quantity.perturbation:

@@ -9,7 +9,7 @@ from fractions import Fraction
 from symbolic_response.appendix.bounded import Bounded, shown
 from symbolic_response.appendix.bounds_section import WORDS
 from symbolic_response.appendix.paper import Paper
-from symbolic_response.appendix.tables import digest_latex, table, wrapping_columns
+from symbolic_response.appendix.tables import Column, digest_latex, table
 from symbolic_response.certificates.points import PointCertificate, certify_claims
 from symbolic_response.certificates.record import point_record, record_text
 from symbolic_response.certificates.report import ratio_text
@@ -27,8 +27,8 @@ def certificates_section(
     """
     if count == 0:
         return ""
-    rows: list[str] = []
-    hashes: list[str] = []
+    rows: list[list[str]] = []
+    hashes: list[list[str]] = []
     left_out: list[str] = []
     for entry in entries:
         claims = [claim for claim in entry.claims if claim.has_points]
@@ -46,13 +46,13 @@ def certificates_section(
         if digests:
             text = record_text(point_record(found, paper.analysis))
             digest = hashlib.sha256(text.encode()).hexdigest()
-            hashes.append(f"{name} & {digest_latex(digest)}")
+            hashes.append([name, digest_latex(digest)])
     if not rows and not left_out:
         return ""
     return "\n\n".join(part for part in [
         rf"\section{{Certificates}}{chr(10)}" + _words(count),
-        _table(paper, entries, rows), _left_out(left_out),
-        _digests(paper, entries, hashes)] if part)
+        table(paper.page, _COLUMNS, rows) if rows else "", _left_out(left_out),
+        table(paper.page, _DIGESTS, hashes) if hashes else ""] if part)
 
 
 def _words(count: int) -> str:
@@ -65,22 +65,18 @@ def _words(count: int) -> str:
             "side, rounded down: the closer to one, the tighter.")
 
 
-def _rows(name: str, found: PointCertificate) -> list[str]:
+_COLUMNS = (Column("Quantity"), Column("Limited", "wrap", "limited "),
+            Column("Points", "r", "points "), Column("Largest ratio", "r", "largest ratio "))
+_DIGESTS = (Column("Quantity"), Column("SHA-256 of the certificate record", "wrap"))
+
+
+def _rows(name: str, found: PointCertificate) -> list[list[str]]:
     rows = []
     for place, entry in enumerate(found.claims):
         words = WORDS[entry.claim.name]
         ratio = ratio_text(entry.worst.ratio or Fraction(0))
-        rows.append(f"{name if place == 0 else ''} & {words} & {entry.holds} & {ratio}")
+        rows.append([name if place == 0 else "", words, f"{entry.holds}", ratio])
     return rows
-
-
-def _table(paper: Paper, entries: Sequence[Bounded], rows: Sequence[str]) -> str:
-    if not rows:
-        return ""
-    fixed = [[r"\mathrm{Quantity}", r"\mathrm{Points}", r"\mathrm{Largest\ ratio}"],
-             *([shown(paper, entry)[1:-1], "", ""] for entry in entries)]
-    columns = "l" + wrapping_columns(paper.width, fixed, (1.0,)) + "rr"
-    return table(columns, "Quantity & Limited & Points & Largest ratio", rows)
 
 
 def _left_out(names: Sequence[str]) -> str:
@@ -89,10 +85,3 @@ def _left_out(names: Sequence[str]) -> str:
     return ("No points at which all rates are rational exist for a symbol that stands both inside "
             f"and outside of exponentials; left out: {', '.join(names)}.")
 
-
-def _digests(paper: Paper, entries: Sequence[Bounded], hashes: Sequence[str]) -> str:
-    if not hashes:
-        return ""
-    fixed = [[r"\mathrm{Quantity}"], *([shown(paper, entry)[1:-1]] for entry in entries)]
-    columns = "l" + wrapping_columns(paper.width, fixed, (1.0,))
-    return table(columns, "Quantity & SHA-256 of the certificate record", hashes)

@@ -8,7 +8,7 @@ from dataclasses import dataclass, field
 from symbolic_response.appendix.bounds_section import side_latex
 from symbolic_response.appendix.formulas import filled
 from symbolic_response.appendix.paper import Paper
-from symbolic_response.appendix.tables import table
+from symbolic_response.appendix.tables import Column, table
 from symbolic_response.control.changes import Change
 from symbolic_response.control.decomposition import Decomposition
 from symbolic_response.control.separations import Part
@@ -77,20 +77,11 @@ def _count(changed: int, every: int) -> str:
     return f"the logarithms of {which} rates"
 
 
-STRUT = r"\rule[-2.4ex]{0pt}{5.6ex}"
-"""Room above and below a fraction in a row of a table."""
-
-
 def _table(paper: Paper, derivative: str, groups: dict[str, list[int]]) -> str:
-    amount = max(formula_width(key, style=DISPLAY) for key in [*groups, derivative])
-    room = int(paper.width - amount - 24)
-    columns = rf">{{\raggedright\arraybackslash}}p{{{min(room, 180)}pt}}l"
-    rows = [
-        ", ".join(f"${rate_latex(paper, place)}$" for place in places)
-        + rf" & $\displaystyle {key}$" + (STRUT if r"\frac" in key else "")
-        for key, places in groups.items()
-    ]
-    return table(columns, rf"Rates & ${derivative}$", rows)
+    columns = (Column("Rates", "wrap"), Column(rf"${derivative}$"))
+    return table(paper.page, columns, [
+        [", ".join(f"${rate_latex(paper, place)}$" for place in places), rf"$\displaystyle {key}$"]
+        for key, places in groups.items()])
 
 
 # -- pieces in words -------------------------------------------------------------------------------

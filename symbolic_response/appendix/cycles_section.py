@@ -8,7 +8,7 @@ from dataclasses import dataclass
 from symbolic_response.algebra.factored import Factored
 from symbolic_response.appendix.formulas import filled
 from symbolic_response.appendix.paper import Paper
-from symbolic_response.appendix.tables import table, table_width, wrapping_columns
+from symbolic_response.appendix.tables import Column, table, table_width
 from symbolic_response.errors import SizeLimitError
 from symbolic_response.expressions.breaking import Equation, Piece, align, fits, line_limit
 from symbolic_response.expressions.tree import Expression, divide, function
@@ -33,8 +33,9 @@ def cycles_section(paper: Paper) -> str:
     heading = r"\section{Cycles and forces}"
     independent = analysis.fundamental_cycles
     if not independent:
-        return heading + ("\nThe network has no cycles: all stationary currents vanish, and "
-                          "detailed balance holds for all values of the rates.")
+        return heading + ("\nThe network has no cycles: all stationary currents vanish, "
+                          "detailed balance holds for all values of the rates, and no probability "
+                          "depends on a barrier.")
     try:
         every: Sequence[Cycle] = analysis.cycles
         count = f"{len(every)}"
@@ -88,39 +89,27 @@ def _listing(paper: Paper, entries: Sequence[_Entry]) -> str:
     rows = [_row(paper, entry, parallel) for entry in entries]
     head = [r"\mathrm{Cycle\ }c", r"\mathrm{States}"]
     head += [r"\mathrm{Transitions}"] if parallel else []
-    shown = ["Cycle $c$", "States", "Transitions"][: len(head)]
+    columns = [Column("Cycle $c$"), Column("States", "wrap", ""),
+               Column("Transitions", "wrap", "along ")][: len(head)]
     forces = [_force_latex(paper, entry) for entry in entries]
     note = "\nA minus sign marks a transition that is run from its second state to its first."
     note = note if parallel and not all(all(entry.cycle.along) for entry in entries) else ""
     letter = paper.notation.letters["force"] + "_c"
     whole = [[*row, force] for row, force in zip(rows, forces, strict=True)]
     if table_width([[*head, letter], *whole]) <= paper.width and "frac" not in "".join(forces):
-        return _route_table([*shown, f"${letter}$"], whole) + note
-    if table_width([head, *rows]) <= paper.width:
-        routes = _route_table(shown, rows)
-    else:
-        routes = _wrapped_table(paper, shown, rows)
+        return table(paper.page, [*columns, Column(f"${letter}$")],
+                     [[f"${cell}$" for cell in row] for row in whole]) + note
+    narrow = table_width([head, *rows]) > paper.width
+    routes = table(paper.page, columns, [
+        [_breakable(cell) if narrow else f"${cell}$" for cell in row] for row in rows])
     verb = "The force is" if len(entries) == 1 else "The forces are"
     equations = [_equation(paper, entry) for entry in entries]
     return routes + note + f"\n{verb}\n" + align(equations, paper.width)
 
 
-def _route_table(head: Sequence[str], rows: Sequence[Sequence[str]]) -> str:
-    body = [" & ".join(f"${cell}$" for cell in row) for row in rows]
-    return table("l" * len(head), " & ".join(head), body)
-
-
-def _wrapped_table(paper: Paper, head: Sequence[str], rows: Sequence[Sequence[str]]) -> str:
-    """Return a table whose cells break over lines after arrows and commas."""
-    wrapped = len(head) - 1
-    columns = wrapping_columns(paper.width, [[r"\mathrm{Cycle\ }c"]], (1 / wrapped,) * wrapped)
-    body = [
-        " & ".join(
-            f"${cell}$".replace(r" \to ", r" \to{}$ $").replace(",\\ ", ",$ $") for cell in row
-        )
-        for row in rows
-    ]
-    return table("l" + columns, " & ".join(head), body)
+def _breakable(cell: str) -> str:
+    """Return a list or a route as formulas between which a line may end."""
+    return f"${cell}$".replace(r" \to ", r" \to$ $").replace(",\\ ", ",$ $")
 
 
 def _row(paper: Paper, entry: _Entry, parallel: bool) -> list[str]:
@@ -174,11 +163,12 @@ def _balance(paper: Paper, independent: Sequence[_Entry]) -> str:
                 "in detailed balance.")
     if all(force is not None and force.is_zero() for force in forces):
         return ("All forces vanish identically: the network obeys detailed balance for all values "
-                "of its symbols, and all stationary currents are zero.")
+                "of its symbols, all stationary currents are zero, and no probability depends on a "
+                "barrier.")
     if all(force is not None and force.is_constant() for force in forces) or not (
         paper.network.symbols
     ):
         return "Not all forces vanish: the network is not in detailed balance."
     which = "this force vanishes" if len(forces) == 1 else "all these forces vanish"
     return (f"Detailed balance, and with it the vanishing of all stationary currents, holds where "
-            f"{which}, and only there.")
+            f"{which}, and only there. There no probability responds to a barrier.")

@@ -3,23 +3,35 @@
 from __future__ import annotations
 
 import os
-import re
 from collections.abc import Sequence
+from dataclasses import dataclass
 from pathlib import Path
 
+from symbolic_response.appendix import displays
 from symbolic_response.appendix.bounded import bounded
 from symbolic_response.appendix.bounds_section import bounds_section
 from symbolic_response.appendix.certificates_section import certificates_section
 from symbolic_response.appendix.control_section import control_section
 from symbolic_response.appendix.cycles_section import cycles_section
 from symbolic_response.appendix.escape import escaped
+from symbolic_response.appendix.fragment import fragment, prefixed, theorem_name
 from symbolic_response.appendix.model_section import model_section
 from symbolic_response.appendix.named_sums import NamedSums
+from symbolic_response.appendix.page import (
+    DEFAULT,
+    Layout,
+    Settings,
+    before_sources,
+    preamble,
+    settings,
+)
 from symbolic_response.appendix.paper import Paper
 from symbolic_response.appendix.proofs_section import proofs_section
 from symbolic_response.appendix.requests import extras, requested
 from symbolic_response.appendix.results import results_section
+from symbolic_response.appendix.sources import bibliography, bibtex, cited_in
 from symbolic_response.appendix.trees_section import trees_section
+from symbolic_response.errors import OutputError
 from symbolic_response.expressions.tree import Expression
 from symbolic_response.figures import pgfplots
 from symbolic_response.files import check_output, write_files
@@ -27,42 +39,24 @@ from symbolic_response.network.model import Network
 from symbolic_response.response.analysis import Analysis
 from symbolic_response.response.quantity_latex import notation_of
 
-TEXT_WIDTH = 345.0
-
-# Volumes and pages recalled, not checked against the papers: kirchhoff, hill, chaiken, maes.
-SOURCES = {
-    "kirchhoff": r"G. Kirchhoff, Ann. Phys. Chem. \textbf{72}, 497 (1847).",
-    "hill": r"T. L. Hill, J. Theor. Biol. \textbf{10}, 442 (1966).",
-    "schnakenberg": r"J. Schnakenberg, Rev. Mod. Phys. \textbf{48}, 571 (1976).",
-    "chaiken": r"S. Chaiken, SIAM J. Algebraic Discrete Methods \textbf{3}, 319 (1982).",
-    "owen": r"J. A. Owen, T. R. Gingrich, and J. M. Horowitz, Phys. Rev. X \textbf{10}, 011066 "
-            "(2020).",
-    "martins": r"G. Fernandes Martins and J. M. Horowitz, Phys. Rev. E \textbf{108}, 044113 "
-               "(2023).",
-    "support": r"J. A. Owen and J. M. Horowitz, Nat. Commun. \textbf{14}, 1280 (2023).",
-    "aslyamov": r"T. Aslyamov and M. Esposito, Phys. Rev. Lett. \textbf{132}, 037101 (2024).",
-    "maes": r"C. Maes and K. Neto\v{c}n\'y, Ann. Henri Poincar\'e \textbf{14}, 1193 (2013).",
-    "liang": r"S. Liang, P. De Los Rios, and D. M. Busiello, Phys. Rev. Lett. \textbf{132}, 228402 "
-             "(2024).",
-}
-
 
 def appendix_text(
     network: Network,
     *,
     quantities: Sequence[str | Expression] | None = None,
     analysis: Analysis | None = None,
-    width: float = TEXT_WIDTH,
+    layout: Layout = DEFAULT,
     proofs_file: str | None = None,
 ) -> str:
-    """Return a complete LaTeX document on a network.
+    """Return a complete LaTeX document on a network, or a fragment of one.
 
-    ``quantities`` (as text or read before) override those of the file; ``width`` is the width of
-    the text in pt; ``proofs_file`` the name under which the text speaks of the record of proofs,
-    None for not at all. Raises QuantityError or NetworkError for what cannot be used of these, and
-    SizeLimitError past a limit of the analysis.
+    ``quantities`` (as text or read before) override those of the file, ``layout`` its class,
+    columns and size; ``proofs_file`` is the name under which the text speaks of the record of
+    proofs, None for not at all. Raises QuantityError or NetworkError for what cannot be used of
+    these, and SizeLimitError past a limit of the analysis.
     """
-    return _made(network, quantities, analysis, width, proofs_file)[0]
+    chosen = settings(network, layout)
+    return _made(network, quantities, analysis, chosen, proofs_file, "").text
 
 
 def write_appendix(
@@ -71,34 +65,73 @@ def write_appendix(
     *,
     quantities: Sequence[str | Expression] | None = None,
     analysis: Analysis | None = None,
+    layout: Layout = DEFAULT,
 ) -> tuple[Path, ...]:
-    """Write the document of :func:`appendix_text` and the record of its proofs; return the files.
+    """Write the document of :func:`appendix_text` and what belongs to it; return the files.
 
-    The record of ``out.tex`` is ``out.proofs.json``; there is none where nothing is proved. Both
-    are written whole or not at all. Raises OutputError where that cannot be done.
+    Beside ``out.tex`` these are ``out.proofs.json``, the record of its proofs, unless nothing is
+    proved, and ``out.bib``, its sources, for a fragment and where it is asked for. All are written
+    whole or not at all. Raises OutputError where that cannot be done.
     """
     target = Path(path)
-    check_output(target, network.path)
-    beside = target.with_name(target.stem + ".proofs.json")
-    check_output(beside, network.path)
-    text, record = _made(network, quantities, analysis, TEXT_WIDTH, beside.name)
-    texts = {target: text} | ({} if record is None else {beside: record})
+    chosen = settings(network, layout, target.stem)
+    proofs, bib = (target.with_name(target.stem + end) for end in (".proofs.json", ".bib"))
+    for file in (target, proofs, *([bib] if chosen.bibtex else [])):
+        check_output(file, network.path)
+    if target in (proofs, bib):
+        raise OutputError(f"{str(target)!r} is the name of a file written beside the document; "
+                          "give it the ending .tex")
+    made = _made(network, quantities, analysis, chosen, proofs.name, bib.stem)
+    texts = {target: made.text}
+    if made.record is not None:
+        texts[proofs] = made.record
+    if chosen.bibtex and made.sources:
+        texts[bib] = made.sources
     write_files(texts)
     return tuple(texts)
+
+
+@dataclass(frozen=True, slots=True)
+class _Made:
+    """A document, the record of its proofs (None where nothing is proved), its sources."""
+
+    text: str
+    record: str | None
+    sources: str
 
 
 def _made(
     network: Network,
     quantities: Sequence[str | Expression] | None,
     analysis: Analysis | None,
-    width: float,
+    chosen: Settings,
     proofs_file: str | None,
-) -> tuple[str, str | None]:
-    """Return the document and the record of its proofs, None where nothing is proved."""
-    request, wanted = requested(network, quantities), extras(network)
+    bib: str,
+) -> _Made:
     known = analysis if analysis is not None else Analysis(network)
     notation = notation_of(network)
-    paper = Paper(network, known, notation, NamedSums(known, notation), width)
+    paper = Paper(network, known, notation, NamedSums(known, notation), chosen.page)
+    body, record = _body(paper, quantities, proofs_file)
+    cited = cited_in(body)
+    sources = bibtex(cited, f"{chosen.prefix}:" if chosen.prefix else "")
+    title, packages = escaped(network.title), _packages(body)
+    if chosen.fragment:
+        return _Made(fragment(body, title, packages, chosen, bib if cited else ""), record, sources)
+    listed = prefixed(bibliography(cited), chosen.prefix)
+    listed = f"\n\n{before_sources(chosen.page)}{listed}" if cited else ""
+    if r"\begin{theorem}" in body:
+        packages += rf"\newtheorem{{{theorem_name(chosen.prefix)}}}{{Theorem}}" + "\n"
+    whole = prefixed(body, chosen.prefix) + listed
+    text = preamble(chosen.page, packages, title) + whole + "\n\\end{document}\n"
+    return _Made(text, record, sources)
+
+
+def _body(
+    paper: Paper, quantities: Sequence[str | Expression] | None, proofs_file: str | None
+) -> tuple[str, str | None]:
+    """Return the sections, and the record of the proofs."""
+    network = paper.network
+    request, wanted = requested(network, quantities), extras(network)
     sections = [
         model_section(paper, request.quantities),
         cycles_section(paper),
@@ -116,35 +149,11 @@ def _made(
     sections += [control_section(paper, proved), proved]
     sections.append(certificates_section(paper, entries, wanted.certificates, wanted.digests))
     body = "\n\n".join(section for section in sections if section)
-    text = _preamble(network, width, body) + body + "\n\n" + _bibliography(body)
-    return text + "\n\\end{document}\n", record
+    return displays.fitted(body, paper.width), record
 
 
-def _preamble(network: Network, width: float, body: str) -> str:
-    theorems = "\\usepackage{amsthm}\n\\newtheorem{theorem}{Theorem}\n"
-    theorems = theorems if r"\begin{theorem}" in body else ""
-    figures = pgfplots.PREAMBLE if r"\begin{tikzpicture}" in body else ""
-    geometry = "" if width == TEXT_WIDTH else f"\\usepackage[textwidth={width:g}pt]{{geometry}}\n"
-    return rf"""\documentclass{{article}}
-\usepackage{{amsmath,amssymb}}
-\usepackage{{array,booktabs,longtable}}
-{figures}{theorems}{geometry}\allowdisplaybreaks
-\setlength{{\emergencystretch}}{{0.3\textwidth}}
-\renewcommand{{\arraystretch}}{{1.2}}
-\begin{{document}}
-\begin{{center}}
-{{\Large {escaped(network.title)}\par}}
-\medskip
-Stationary state, currents and responses in closed form
-\end{{center}}
-
-"""
-
-
-def _bibliography(body: str) -> str:
-    """Return the list of exactly the sources cited, in the order of their first citation."""
-    keys = [
-        key for group in re.findall(r"\\cite\{([^}]*)\}", body) for key in group.split(",")
-    ]
-    entries = [rf"\bibitem{{{key}}} {SOURCES[key]}" for key in dict.fromkeys(keys)]
-    return "\\begin{thebibliography}{9}\n" + "\n".join(entries) + "\n\\end{thebibliography}"
+def _packages(body: str) -> str:
+    """Return the lines of a preamble that a text needs."""
+    text = "\\usepackage{amsmath,amssymb}\n\\usepackage{array,booktabs,longtable}\n"
+    text += pgfplots.PREAMBLE if r"\begin{tikzpicture}" in body else ""
+    return text + ("\\usepackage{amsthm}\n" if r"\begin{theorem}" in body else "")

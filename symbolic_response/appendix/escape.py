@@ -41,6 +41,7 @@ _GREEK = (
 )
 _CAPITALS = frozenset(("gamma", "delta", "theta", "lambda", "xi", "pi", "sigma", "upsilon",
                        "phi", "psi", "omega"))
+_BOLTZMANN = re.compile(r"\bk\\_B\b( ?T\b)?")
 _LONG_WORD, _BREAK_EVERY = 24, 8
 
 
@@ -51,7 +52,19 @@ def escaped(text: str) -> str:
     50\% of k\_on, \textbackslash{}input\{x\} f\"{u}r 1 $\mu$M
     """
     words = re.split(r"\s+", text.strip())
-    return " ".join(_word(word) for word in words)
+    return _BOLTZMANN.sub(r"$k_{\\mathrm B}\1$", " ".join(_word(word) for word in words))
+
+
+def typed(text: str) -> str:
+    r"""Return a name or command in type of fixed width, breaks allowed behind its signs.
+
+    >>> print(typed("my_net.json"))
+    \texttt{my\_\allowbreak{}net.\allowbreak{}json}
+    """
+    pieces = re.findall(r"[^-_./\s]{1,12}[-_./]*|[-_./]+|\s+", text)
+    shown = (" " if piece.isspace() else "".join(map(_single, piece)) for piece in pieces)
+    return r"\texttt{" + r"\allowbreak{}".join(shown).replace(
+        r"\allowbreak{} \allowbreak{}", " ") + "}"
 
 
 def paragraphs(text: str) -> str:

@@ -42,7 +42,38 @@ def _current(paper: Paper) -> str:
 @current@_e = @rate@^+_e @probability@_m - @rate@^-_e @probability@_n
  = \frac{@current numerator@_e}{@normalisation@}, \qquad
 @current numerator@_e = @rate@^+_e @tree sum@_m - @rate@^-_e @tree sum@_n .
-\end{equation}""")
+\end{equation}""") + _one_cycle(paper)
+
+
+def _one_cycle(paper: Paper) -> str:
+    """Return the current of a network with a single cycle, empty for other networks."""
+    if len(paper.analysis.fundamental_cycles) != 1:
+        return ""
+    cycle = paper.analysis.fundamental_cycles[0]
+    outside = len(cycle.states) < paper.analysis.graph.size
+    forests, which = "", ""
+    if outside:
+        forests = r" \, @into@_1"
+        which = (r", $@into@_1$ being the sum of the weights of the spanning forests in which "
+                 "every state outside of the cycle is directed into it" + divided(paper))
+    elif not is_one(paper):
+        forests = r" \, @factor@^{-1}"
+    only = " and no other current flows" if len(cycle.transitions) < len(
+        paper.analysis.graph.ends) else ""
+    return filled(paper, rf"""
+The network has a single cycle. In its orientation listed above, one and the same current runs
+through all its transitions,{only and only + ','} with
+\begin{{equation}}
+@current numerator@ = \Bigl( \prod_{{c}} @rate@ \ \text{{along}}
+ - \prod_{{c}} @rate@ \ \text{{against}} \Bigr){forests}
+\label{{eq:cycle}}
+\end{{equation}}
+in the place of $@current numerator@_e${which}.""")
+
+
+def divided(paper: Paper) -> str:
+    """Return that a sum is divided by the common factor, empty where that is one."""
+    return "" if is_one(paper) else ", divided by the factor $@factor@$ like the $@tree sum@_k$"
 
 
 def _traffic(paper: Paper) -> str:
@@ -89,8 +120,7 @@ def _forest(paper: Paper) -> str:
     if "forest" in paper.explained:
         return ""
     paper.explained.add("forest")
-    divided = "" if is_one(paper) else ", divided by the factor $@factor@$ like the $@tree sum@_k$"
-    return _FOREST + divided + "."
+    return _FOREST + divided(paper) + "."
 
 
 def is_one(paper: Paper) -> bool:
@@ -107,7 +137,8 @@ def _barrier(paper: Paper) -> str:
  = -@current@_e \frac{@forest@_{k,e}}{@normalisation@} ,
 \end{equation}
 with $@current numerator@_e = @rate@^+_e @tree sum@_m - @rate@^-_e @tree sum@_n$ the numerator of
-the current; it vanishes with the current. """ + _forest(paper))
+the current; it vanishes with the current, and thus for every barrier at detailed balance. """
+                  + _forest(paper))
 
 
 def _barriers(paper: Paper) -> str:
@@ -146,7 +177,17 @@ def _mean(paper: Paper) -> str:
 $\langle q \rangle = \sum_k q_k @tree sum@_k / @normalisation@$:""")
 
 
+def _probability(paper: Paper) -> str:
+    return "The tree theorem gives"
+
+
+def _other(paper: Paper) -> str:
+    return "In terms of the sums above, and of those defined here,"
+
+
 _INTRODUCTIONS = {
+    "probability": _probability,
+    "other": _other,
     "mean": _mean,
     "current": _current,
     "traffic": _traffic,

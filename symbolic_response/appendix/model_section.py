@@ -7,7 +7,7 @@ from collections.abc import Sequence
 from symbolic_response.appendix.escape import escaped, paragraphs
 from symbolic_response.appendix.formulas import filled
 from symbolic_response.appendix.paper import Paper
-from symbolic_response.appendix.tables import COLUMN_GAP, table, table_width
+from symbolic_response.appendix.tables import Column, table, table_width
 from symbolic_response.expressions.breaking import Equation, align, line_limit
 from symbolic_response.expressions.tree import ZERO, Expression, Sum
 from symbolic_response.expressions.widths import DISPLAY, formula_width
@@ -99,17 +99,10 @@ def _symbols(paper: Paper) -> str:
                 noun = "The symbol" if len(listed) == 1 else "The symbols"
                 texts.append(f"{noun} {_and(listed)} {'is' if len(listed) == 1 else 'are'} {word}.")
         return " ".join(texts)
-    rows = [
-        f"${names[e.name]}$ & {escaped(e.about)} & {'positive' if e.positive else 'real'}"
-        for e in entries
-    ]
-    sides = table_width([
-        [r"\mathrm{Symbol}", r"\mathrm{positive}"], *([names[e.name], ""] for e in entries)
-    ])
-    room = paper.width - sides - COLUMN_GAP
-    return "The symbols are:\n" + table(
-        rf"l>{{\raggedright\arraybackslash}}p{{{int(room)}pt}}l", "Symbol & Meaning & Sign", rows
-    )
+    columns = (Column("Symbol"), Column("Meaning", "wrap", ""), Column("Sign", "l", ""))
+    return "The symbols are:\n" + table(paper.page, columns, [
+        [f"${names[e.name]}$", escaped(e.about), "positive" if e.positive else "real"]
+        for e in entries])
 
 
 def _number(count: int) -> str:
@@ -142,24 +135,24 @@ def _transitions(paper: Paper) -> str:
     whole = [*head, *columns, *rates]
     if table_width([whole, *long_rows], style=DISPLAY) <= paper.width:
         parts.append("The transitions and their rates are:\n" + _formula_table(
-            [*shown, *(f"${c}$" for c in (*columns, *rates))], long_rows
+            paper, [*shown, *(f"${c}$" for c in (*columns, *rates))], long_rows
         ))
         return "\n\n".join(parts)
     if table_width([[*head, *columns], *rows], style=DISPLAY) > paper.width:
         rows, columns = [row[:3] for row in rows], []
     parts.append("The transitions are:\n" + _formula_table(
-        [*shown, *(f"${c}$" for c in columns)], rows
+        paper, [*shown, *(f"${c}$" for c in columns)], rows
     ))
     parts.append("Their rates are\n" + align(_rate_equations(paper), paper.width))
     return "\n\n".join(parts)
 
 
-def _formula_table(head: Sequence[str], rows: Sequence[Sequence[str]]) -> str:
-    body = [
-        " & ".join(rf"$\displaystyle {cell}$" if r"\frac" in cell else f"${cell}$" for cell in row)
-        for row in rows
-    ]
-    return table("l" * len(head), " & ".join(head), body)
+def _formula_table(
+    paper: Paper, head: Sequence[str], rows: Sequence[Sequence[str]]
+) -> str:
+    return table(paper.page, [Column(name) for name in head], [
+        [rf"$\displaystyle {cell}$" if r"\frac" in cell else f"${cell}$" for cell in row]
+        for row in rows])
 
 
 def _rate_equations(paper: Paper) -> list[Equation]:

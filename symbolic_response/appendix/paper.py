@@ -16,6 +16,7 @@ from symbolic_response.algebra.factored import (
 )
 from symbolic_response.appendix.letters import letters_of
 from symbolic_response.appendix.named_sums import NamedSum, NamedSums, expanded
+from symbolic_response.appendix.page import Page
 from symbolic_response.expressions.breaking import (
     Piece,
     fits,
@@ -53,7 +54,7 @@ class Paper:
     analysis: Analysis
     notation: Notation
     sums: NamedSums
-    width: float
+    page: Page
     room: int = MAX_PRINTED_TERMS
     defined: set[str] = field(default_factory=set)
     explained: set[str] = field(default_factory=set)
@@ -61,6 +62,11 @@ class Paper:
 
     def __post_init__(self) -> None:
         self.letters = letters_of(self.notation)
+
+    @property
+    def width(self) -> float:
+        """The width of a line, as formulas are measured."""
+        return self.page.width
 
     def latex(self, node: Expression) -> str:
         """Return an expression in the user's symbols and named sums."""

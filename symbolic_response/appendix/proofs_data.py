@@ -8,7 +8,7 @@ from symbolic_response.appendix.cycles_section import MAX_LISTED
 from symbolic_response.appendix.forests import forests_into
 from symbolic_response.appendix.formulas import filled
 from symbolic_response.appendix.paper import Paper
-from symbolic_response.appendix.tables import table, table_width, wrapping_columns
+from symbolic_response.appendix.tables import Column, table, table_width
 from symbolic_response.certificates.proofs.edge import EdgeProof
 from symbolic_response.certificates.proofs.rows import PathsProof, Row, undirected
 from symbolic_response.certificates.proofs.splitting import SplittingProof
@@ -22,6 +22,7 @@ MAX_WEIGHT_TERMS = 6
 MAX_CYCLES = 12
 MAX_SPLITTINGS = 12
 MAX_PATHS = 12
+MAX_WHOLE_SET = 60.0
 
 
 def cycles_data(paper: Paper, proofs: Sequence[EdgeProof]) -> str:
@@ -107,8 +108,8 @@ def _weights(paper: Paper, cycles: Sequence[tuple[int, Cycle, int]]) -> str:
     head = [r"\mathrm{Cycle\ }c", letter, r"\mathrm{Forests}"]
     rows = [[f"{place + 1}", _weight(paper, cycle.states, weight, head), f"{weight:,}"]
             for place, cycle, weight in cycles]
-    body = [" & ".join(f"${cell}$" for cell in row) for row in rows]
-    return table("llr", f"Cycle $c$ & ${letter}$ & Forests", body)
+    columns = (Column("Cycle $c$"), Column(f"${letter}$"), Column("Forests", "r"))
+    return table(paper.page, columns, [[f"${cell}$" for cell in row] for row in rows])
 
 
 def _weight(paper: Paper, states: Sequence[int], weight: int, head: Sequence[str]) -> str:
@@ -128,20 +129,16 @@ def _sums(
 ) -> str:
     """Return the table of transitions: their cycles, and that these are complete."""
     rows = []
-    widths = [[r"\mathrm{Transition\ }e", r"\mathrm{Cycles\ through\ }e",
-               r"\mathrm{Trees\ without\ }e"]]
     for proof in proofs:
         ordered = sorted(zip(through[proof.transition], proof.rows, strict=True),
                          key=lambda pair: pair[0])
         name = paper.notation.transitions[proof.transition]
         cycles = ",$ $".join(f"{place + 1}" for place, _ in ordered)
         total = _total([row.weight for _, row in ordered])
-        rows.append(f"${name}$ & ${cycles}$ & ${total}$")
-        widths.append([name, cycles.replace("$ $", r"\ "), total.replace(r"$\allowbreak$", "")])
-    columns = "lll" if table_width(widths) <= paper.width else (
-        r"l>{\raggedright\arraybackslash}p{0.3\linewidth}"
-        r">{\raggedright\arraybackslash}p{0.36\linewidth}")
-    return table(columns, r"Transition $e$ & Cycles through $e$ & Trees without $e$", rows)
+        rows.append([f"${name}$", f"${cycles}$", f"${total}$"])
+    columns = (Column("Transition $e$"), Column("Cycles through $e$", "wrap", "cycles "),
+               Column("Trees without $e$", "wrap", "trees without it "))
+    return table(paper.page, columns, rows)
 
 
 def _total(weights: Sequence[int]) -> str:
@@ -151,9 +148,11 @@ def _total(weights: Sequence[int]) -> str:
 
 
 def _counts(paper: Paper, proofs: Sequence[EdgeProof]) -> str:
-    rows = [f"${paper.notation.transitions[p.transition]}$ & {len(p.rows):,} & "
-            f"{sum(row.weight for row in p.rows):,}" for p in proofs]
-    return table("lrr", "Transition $e$ & Cycles through $e$ & Trees without $e$", rows)
+    columns = (Column("Transition $e$"), Column("Cycles through $e$", "r", "cycles "),
+               Column("Trees without $e$", "r", "trees without it "))
+    return table(paper.page, columns, [
+        [f"${paper.notation.transitions[p.transition]}$", f"{len(p.rows):,}",
+         f"{sum(row.weight for row in p.rows):,}"] for p in proofs])
 
 
 def splittings_data(paper: Paper, proofs: Sequence[SplittingProof]) -> str:
@@ -171,22 +170,24 @@ def splittings_data(paper: Paper, proofs: Sequence[SplittingProof]) -> str:
             raise ArithmeticError(f"the splittings of transition {e} are incomplete")
         name = f"${paper.notation.transitions[e]}$"
         if len(proof.sides) > MAX_SPLITTINGS:
-            rows.append(f"{name} & {len(proof.sides):,} splittings & {total:,}")
+            rows.append([name, f"{len(proof.sides):,} splittings", f"{total:,}"])
             continue
         sets = [_set(paper, members(every ^ side.mask)) + f" ({side.weight:,})"
                 for side in sorted(proof.sides, key=lambda side: every ^ side.mask)]
-        rows.append(f"{name} & {', '.join(sets)} & {total:,}")
-    fixed = [[r"\mathrm{Transition\ }e", r"\mathrm{Trees\ with\ }e"],
-             *([paper.notation.transitions[proof.transition], ""] for proof in proofs)]
-    columns = "l" + wrapping_columns(paper.width, fixed, (1.0,)) + "r"
+        rows.append([name, ", ".join(sets), f"{total:,}"])
+    columns = (Column("Transition $e$"), Column("Splittings", "wrap", ""),
+               Column("Trees with $e$", "r", "trees with it "))
     return ("The splittings, each with its number of such pairs of trees; with $e$ a pair is a "
             "spanning tree, so that the numbers add up to the number of spanning trees that use "
             "$e$, and no splitting is missing:\n"
-            + table(columns, r"Transition $e$ & Splittings & Trees with $e$", rows))
+            + table(paper.page, columns, rows))
 
 
 def _set(paper: Paper, states: Iterable[int]) -> str:
-    return r"$\{" + ",$ $".join(paper.notation.states[k] for k in states) + r"\}$"
+    labels = [paper.notation.states[k] for k in states]
+    whole = r"\{" + ", ".join(labels) + r"\}"
+    return f"${whole}$" if formula_width(whole) < MAX_WHOLE_SET else (
+        r"$\{" + ",$ $".join(labels) + r"\}$")
 
 
 def paths_data(paper: Paper, proofs: Sequence[PathsProof]) -> str:
@@ -214,11 +215,11 @@ def _paths(paper: Paper, proof: PathsProof) -> str:
     for row in proof.rows:
         route = _route(paper, proof.start, row)
         shown = _weight(paper, _visited(paper, proof.start, row), row.weight, head)
-        rows.append(f"${route}$ & ${shown}$ & {row.weight:,}")
-    columns = r">{\raggedright\arraybackslash}p{0.3\linewidth}lr"
+        rows.append([f"${route}$", f"${shown}$", f"{row.weight:,}"])
+    columns = (Column("Path $P$", "wrap"), Column(f"${letter}$"), Column("Forests", "r"))
     return (f"The {noun} {ends}; the numbers of forests add up to {total:,}, the number of "
             f"spanning trees, and none is missing:\n"
-            + table(columns, f"Path $P$ & ${letter}$ & Forests", rows))
+            + table(paper.page, columns, rows))
 
 
 def _visited(paper: Paper, start: int, row: Row) -> list[int]:
@@ -239,5 +240,5 @@ def _route(paper: Paper, start: int, row: Row) -> str:
         alone = ends.count(ends[step // 2]) == 1
         arrow = r"\to" if alone else (
             rf"\xrightarrow{{{paper.notation.transitions[step // 2]}}}")
-        parts.append(rf"{arrow}{{}}$ ${label}")
+        parts.append(rf"{arrow}$ ${label}")
     return " ".join(parts)

@@ -9,11 +9,11 @@ from dataclasses import dataclass
 from symbolic_response.appendix import theorem_ends, theorem_sums
 from symbolic_response.appendix.bounded import Bounded, shown
 from symbolic_response.appendix.bounds_section import WORDS
-from symbolic_response.appendix.escape import escaped
+from symbolic_response.appendix.escape import escaped, typed
 from symbolic_response.appendix.formulas import filled, is_one
 from symbolic_response.appendix.paper import Paper
 from symbolic_response.appendix.proofs_data import cycles_data, paths_data, splittings_data
-from symbolic_response.appendix.tables import digest_latex, table, wrapping_columns
+from symbolic_response.appendix.tables import Column, digest_latex, table
 from symbolic_response.bounds.claim import Claim
 from symbolic_response.bounds.sides import quantity_text
 from symbolic_response.certificates.certify import Certificate
@@ -154,19 +154,20 @@ def _ends(
 def _listing(paper: Paper, proved: Sequence[tuple[Bounded, Proved]]) -> str:
     """Return the table of responses, inequalities and proofs, equal rows put together."""
     forms = {form_of(proof) for _, found in proved for proof in found.proofs} - {None}
-    alike: dict[tuple[str, ...], list[str]] = {}
+    alike: dict[tuple[tuple[str, str], ...], list[str]] = {}
     for entry, found in proved:
         rows = tuple(_rows(paper, found, len(forms) > 1))
         alike.setdefault(rows, []).append(shown(paper, entry))
-    lines = []
+    lines: list[list[str]] = []
     for rows, names in alike.items():
-        lines += [f"{', '.join(names)} & {rows[0]}", *(f" & {row}" for row in rows[1:])]
-    columns = wrapping_columns(paper.width, [[]], (0.3, 0.39, 0.31))
+        lines += [[", ".join(names) if row == rows[0] else "", *row] for row in rows]
+    columns = (Column("Quantity", "wrap"), Column("Limited", "wrap", "limited "),
+               Column("Proof", "wrap", "proof: "))
     return ("\\subsection{What is proved}\n" + _forms(forms)
-            + table(columns, "Quantity & Limited & Proof", lines))
+            + table(paper.page, columns, lines))
 
 
-def _rows(paper: Paper, found: Proved, marked: bool) -> list[str]:
+def _rows(paper: Paper, found: Proved, marked: bool) -> list[tuple[str, str]]:
     """Return what limits a response, and the proof, for all that have the same proof."""
     by_proofs: dict[tuple[Proof, ...], list[Claim]] = {}
     for claim, needs in zip(found.claims, found.needs, strict=True):
@@ -175,7 +176,7 @@ def _rows(paper: Paper, found: Proved, marked: bool) -> list[str]:
     for needs, claims in by_proofs.items():
         words = "; ".join(WORDS[claim.name] for claim in claims)
         proofs = [*(_words(paper, proof, marked) for proof in needs), _equations(needs, claims)]
-        rows.append(f"{words} & {'; '.join(proofs)}")
+        rows.append((words, "; ".join(proofs)))
     return rows
 
 
@@ -225,13 +226,12 @@ def _file(paper: Paper, file: str | None, record: str | None) -> str:
     """Return where the data of the proofs is, and how to check it."""
     if file is None:
         return ""
-    name = escaped(file)
-    text = rf"""The file \texttt{{{name}}} holds the data of these proofs. Either of
+    text = rf"""The data of these proofs stand in a file beside this text. Either of
 \begin{{flushleft}}
-\texttt{{symbolic-response recheck {name}}}\\
-\texttt{{python -I -S symbolic\_response/checker {name}}}
+{typed("symbolic-response recheck")} {typed(file)}\\
+{typed("python -I -S symbolic_response/checker")} {typed(file)}
 \end{{flushleft}}
-checks all of it; the second one shares no code with the program that made this document."""
+checks all of it; the second one shares no code with the program that made this text."""
     if record is not None:
         digest = hashlib.sha256(record.encode()).hexdigest()
         text += (" Its SHA-256 is\n\\begin{flushleft}\n" + digest_latex(digest)

@@ -5,6 +5,7 @@ from __future__ import annotations
 from collections.abc import Sequence
 from dataclasses import dataclass
 
+from symbolic_response.appendix import page
 from symbolic_response.errors import NetworkError, QuantityError
 from symbolic_response.expressions.tree import Expression, symbols_of
 from symbolic_response.network.checks import expressions_of
@@ -21,7 +22,7 @@ from symbolic_response.network.quantities import (
 )
 from symbolic_response.network.quantity_reader import read_quantity
 
-KEYS = ("quantities", "bounds", "proofs", "certificates", "digests")
+KEYS = ("quantities", "bounds", "proofs", "certificates", "digests", *page.KEYS)
 MAX_CERTIFICATE_POINTS = 100_000
 DEFAULT_RESULTS = 24
 MAX_FURTHER = 12

@@ -110,7 +110,8 @@ logarithms of the odds of $@share ahead@$ and $@share back@$, so that
 $@one@ - @two@ = \ln @cross ratio@_e$. Then
 \begin{align}
 |@share ahead@ - @share back@|
- &= \frac{\sinh (|@one@ - @two@|/2)}{\cosh ((@one@ - @two@)/2) + \cosh ((@one@ + @two@)/2)}
+ &= \frac{\sinh \frac{|@one@ - @two@|}{2}}
+ {\cosh \frac{@one@ - @two@}{2} + \cosh \frac{@one@ + @two@}{2}}
 \notag\\*  &\le \tanh \frac{|\ln @cross ratio@_e|}{4} ,
 \label{eq:tanh}
 \end{align}

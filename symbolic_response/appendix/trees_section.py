@@ -14,6 +14,7 @@ from symbolic_response.expressions.breaking import (
 )
 from symbolic_response.expressions.latex import latex_terms
 from symbolic_response.expressions.tree import Symbol
+from symbolic_response.expressions.widths import formula_width
 from symbolic_response.topology import count_undirected_trees
 
 
@@ -45,8 +46,11 @@ weights of all spanning trees directed towards $k$, the tree
 theorem~\cite{kirchhoff,hill,schnakenberg} gives the stationary probabilities as
 \begin{equation}
 @probability@_k = \frac{@tree sum@_k}{@normalisation@} , \qquad
-@normalisation@ = \sum_k @tree sum@_k
-\end{equation}""")
+@normalisation@ = \sum_k @tree sum@_k .
+\end{equation}
+A directed rate enters each $@tree sum@_k$ at most linearly. As it goes to zero, the trees that use
+it drop out, and the probabilities keep this form as long as some state can be reached from all
+others.""")
 
 
 def _counts(paper: Paper) -> str:
@@ -62,11 +66,19 @@ def _counts(paper: Paper) -> str:
         text += f"; one-way transitions leave {listed}"
     text += "."
     if not is_one(paper):
-        factor = paper.latex(paper.sums.common.expression())
-        text += filled(paper, rf""" All tree sums share the factor
-$@factor@ = {factor}$, which cancels from all stationary quantities; $@tree sum@_k$ and all sums
-below are given divided by it.""")
+        text += filled(paper, rf""" All tree sums share the factor{_factor(paper)} which cancels
+from all stationary quantities; $@tree sum@_k$ and all sums below are given divided by it.""")
     return text
+
+
+def _factor(paper: Paper) -> str:
+    """Return the common factor within a sentence, displayed where it is wide."""
+    node = paper.sums.common.expression()
+    left, right = paper.letters["factor"], paper.latex(node)
+    if formula_width(f"{left} = {right}") < 0.4 * paper.width:
+        return f" ${left} = {right}$,"
+    pieces = paper.pieces([node], line_limit(left, paper.width))
+    return "\n" + align([Equation(left, tuple(pieces))], paper.width) + "\n"
 
 
 def _too_long(terms: int) -> str:

@@ -54,6 +54,8 @@ def survey(network: str, as_json: bool, quiet: bool) -> int:
               help="Give a symbol an exact value, such as 3/7 or ln(3/2); may be repeated.")
 @click.option("--set", "put", multiple=True, metavar="SYMBOL=EXPRESSION",
               help="Put an expression in the place of a symbol first; may be repeated.")
+@click.option("--latex", "as_latex", is_flag=True,
+              help="One formula a line, LEFT = RIGHT in LaTeX, and nothing else.")
 @json_option
 @quiet_option
 @trees_option
@@ -63,6 +65,7 @@ def derive(
     quantities: tuple[str, ...],
     at: tuple[str, ...],
     put: tuple[str, ...],
+    as_latex: bool,
     as_json: bool,
     quiet: bool,
     trees: int | None,
@@ -80,7 +83,10 @@ def derive(
     Examples:
       symbolic-response derive net.toml "p[A]" "d p[A] / d ln c"
       symbolic-response derive net.toml "current[bind]" --at c=3/7 --at k=2
+      symbolic-response derive net.toml "mean[bound]" --latex
     """
+    if as_json and as_latex:
+        raise click.UsageError("choose --json or --latex, not both; --json holds LaTeX too")
     from symbolic_response.network.quantity_reader import read_quantity
     from symbolic_response.network.substitution import with_substitution
     from symbolic_response.response.deriving import (
@@ -107,6 +113,12 @@ def derive(
     if as_json:
         data = {"network": described.title, "results": [_derived_data(r) for r in results]}
         click.echo(json.dumps(data, indent=1))
+    elif as_latex:
+        from symbolic_response.response.quantity_latex import notation_of, quantity_in
+
+        notation = notation_of(described)
+        click.echo("\n".join(f"{quantity_in(notation, quantity)} = {result.latex}"
+                             for (_, quantity), result in zip(asked, results, strict=True)))
     else:
         click.echo("\n".join(_derived_text(result) for result in results))
     return 0
@@ -139,10 +151,18 @@ def _derived_text(result: Derived) -> str:
     return line
 
 
-@click.command(short_help="A complete LaTeX document.")
+@click.command(short_help="A complete LaTeX document, or a fragment for a paper.")
 @network_argument
 @click.option("-o", "--output", required=True, type=click.Path(), metavar="FILE.tex",
               help="The LaTeX file to write.")
+@click.option("--class", "document_class", metavar="article|revtex", help="Class (article).")
+@click.option("--columns", type=int, metavar="1|2", help="Columns of the page (1).")
+@click.option("--size", type=int, metavar="10|11|12", help="Size of the type in article (10).")
+@click.option("--fragment", is_flag=True, default=None,
+              help="A file to \\input into a paper: no preamble, its sources in FILE.bib.")
+@click.option("--prefix", metavar="NAME",
+              help="What labels and citations begin with (in a fragment the name of the file).")
+@click.option("--bibtex", is_flag=True, default=None, help="Write the sources to FILE.bib too.")
 @json_option
 @quiet_option
 @trees_option
@@ -150,6 +170,12 @@ def _derived_text(result: Derived) -> str:
 def appendix(
     network: str,
     output: str,
+    document_class: str | None,
+    columns: int | None,
+    size: int | None,
+    fragment: bool | None,
+    prefix: str | None,
+    bibtex: bool | None,
     as_json: bool,
     quiet: bool,
     trees: int | None,
@@ -158,26 +184,33 @@ def appendix(
     """Write a complete LaTeX document: model, cycles, trees, steady state,
     results, bounds with their proofs.
 
-    The [appendix] section of the network file chooses the quantities. The data of
-    the proofs is written to FILE.proofs.json, which recheck takes.
+    The [appendix] section of the network file chooses the quantities, and the class,
+    columns, size, fragment and bibtex where no option does. The data of the proofs is
+    written to FILE.proofs.json, which recheck takes.
 
     \b
-    Example:
+    Examples:
       symbolic-response appendix worked_cases/turnstile/network.toml -o turnstile.tex
+      symbolic-response appendix net.toml -o net.tex --class revtex --columns 2 --fragment
     """
-    from symbolic_response.appendix import write_appendix
+    from symbolic_response.appendix import Layout, write_appendix
+
+    layout = Layout(document_class, columns, size, None, fragment, prefix, bibtex)
 
     described = read(network)
     with Progress(quiet) as progress:
         progress.stage("writing the appendix")
         analysis = analysis_of(described, progress, trees, terms)
-        files = [str(file) for file in write_appendix(described, output, analysis=analysis)]
+        made = write_appendix(described, output, analysis=analysis, layout=layout)
+    files = [str(file) for file in made]
+    proofs = next((file for file in files if file.endswith(".proofs.json")), None)
+    sources = next((file for file in files if file.endswith(".bib")), None)
     older = Path(output).with_suffix(".proofs.json")
-    if len(files) == 1 and older.exists():
+    if proofs is None and older.exists():
         click.echo(f"note: {older} is of an earlier run; this document has no proofs", err=True)
     if as_json:
-        proofs = files[1] if len(files) > 1 else None
-        click.echo(json.dumps({"network": described.title, "file": output, "proofs": proofs}))
+        click.echo(json.dumps({"network": described.title, "file": output, "proofs": proofs,
+                               "sources": sources}))
     else:
         click.echo("\n".join(f"wrote {file}" for file in files), err=True)
     return 0

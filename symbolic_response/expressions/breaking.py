@@ -12,6 +12,7 @@ from collections.abc import Sequence
 from dataclasses import dataclass
 
 from symbolic_response.expressions.latex import SignedTerm
+from symbolic_response.expressions.loosening import parts_of
 from symbolic_response.expressions.widths import formula_width
 
 NUMBER_ROOM = 30.0
@@ -27,8 +28,9 @@ _LINE_COST, _SLACK_COST, _EQUALS_BONUS = 100.0, 50.0, 40.0
 class Piece:
     r"""A part of a right side that stays on one line.
 
-    ``sign`` is ``""`` or ``"-"`` for the first piece, then ``"+"``, ``"-"``, ``"="`` or
-    ``"\\times"``. ``forced``: a line ends before this piece in any case.
+    ``sign`` is ``""`` or ``"-"`` for the first piece, then ``"+"``, ``"-"``, ``"="``,
+    ``"\\times"``, or ``""`` for a factor, before which only a new line has a cross. ``forced``: a
+    line ends before this piece in any case.
     """
 
     sign: str
@@ -89,24 +91,57 @@ def _environment(block: Sequence[Equation], width: float) -> str:
     wide = is_wide(block[0].left, width)
     left = INDENT if wide else max(formula_width(e.left) for e in block)
     limit = width - left - RELATION_WIDTH
-    rows = " \\\\\n".join(_rows(equation, limit, wide) for equation in block)
+    rows = ""
+    for equation in block:
+        row = _rows(equation, limit, wide)
+        tall = r"\frac" in row.split("\n", 1)[0] and r"\frac" in rows.rsplit("\n", 1)[-1]
+        rows += (" \\\\[3pt]\n" if tall else " \\\\\n") * bool(rows) + row
     return f"\\begin{{align}}\n{rows}\n\\end{{align}}"
 
 
 def _rows(equation: Equation, limit: float, wide: bool) -> str:
     start = r"&\quad " if wide else "&"
-    rows = [f"&{equation.left}"] if wide else []
-    for place, line in enumerate(break_lines(equation.pieces, limit)):
-        first, *rest = line
+    rows = _left_rows(equation.left, limit + RELATION_WIDTH) if wide else []
+    for place, line in enumerate(break_lines(loosened(equation.pieces, limit), limit)):
+        first = line[0]
         if place == 0:
             head = ("" if wide else equation.left + " ") + start + equation.relation + first.sign
         elif first.sign == "=":
             head = start + "="
         else:
-            head = start + r"\quad{}" + first.sign
-        tail = "".join(f" {piece.sign} {piece.body}" for piece in rest)
-        rows.append(f"{head} {first.body}{tail}")
+            head = start + r"\quad{}" + (first.sign or r"\times")
+        rows.append(f"{head} {_joined(line)}")
     return " \\notag\\\\\n".join(rows)
+
+
+def _left_rows(left: str, room: float) -> list[str]:
+    """Return a left side that stands on lines of its own."""
+    if formula_width(left) <= room + INDENT:
+        return [f"&{left}"]
+    first, *rest = break_lines(loosened([Piece("", left)], room), room)
+    return [f"&{_joined(first)}"] + [
+        r"&\quad{}" + (line[0].sign or r"\times") + f" {_joined(line)}" for line in rest]
+
+
+def _joined(line: Sequence[Piece]) -> str:
+    first, *rest = line
+    return first.body + "".join(f" {piece.sign} {piece.body}" for piece in rest)
+
+
+def loosened(pieces: Sequence[Piece], limit: float) -> list[Piece]:
+    """Return the pieces, those wider than a line taken apart into such that are not."""
+    found = []
+    room = limit - NUMBER_ROOM - SIGN_WIDTH
+    for place, piece in enumerate(pieces):
+        if fits(piece.body, limit) or (
+            len(pieces) > place + 1 and formula_width(piece.body) <= limit - SIGN_WIDTH
+        ):
+            found.append(piece)
+            continue
+        (_, first), *rest = parts_of(piece.body, room, formula_width)
+        found.append(Piece(piece.sign, first, piece.forced))
+        found += [Piece(sign, body) for sign, body in rest]
+    return found
 
 
 def break_lines(pieces: Sequence[Piece], limit: float) -> list[list[Piece]]:
@@ -175,5 +210,5 @@ def fits(body: str, limit: float) -> bool:
 
 __all__ = [
     "Equation", "Piece", "align", "break_lines", "continued", "fits", "is_wide", "line_limit",
-    "product_pieces", "sum_pieces",
+    "loosened", "product_pieces", "sum_pieces",
 ]
