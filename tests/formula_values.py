@@ -290,7 +290,7 @@ class _Second:
         if token == "e" and self.next() == "^":
             self.take()
             return applied("exp", self.inner())
-        if token == r"\langle" and self.tokens[self.place : self.place + 5] == [*"load", r"\rangle"]:
+        if [token, *self.tokens[self.place : self.place + 5]] == [r"\langle", *"load", r"\rangle"]:
             self.place += 5
             return plain_value("mean[load]")
         if token == "A" and self.tokens[self.place : self.place + 2] == ["T", "P"]:

@@ -14,6 +14,7 @@ import pytest
 
 from symbolic_response.errors import EvaluationError, FormulaError, SymbolicResponseError
 from symbolic_response.expressions.latex import expression_latex
+from symbolic_response.expressions.reader import read_expression
 from symbolic_response.expressions.ring import plain
 from symbolic_response.expressions.tree import (
     Expression,
@@ -92,6 +93,17 @@ def test_random_expressions_read_back() -> None:
         counted += 1
 
 
+def test_exponentials_beside_a_symbol_e_read_back() -> None:
+    """Printed as e^2, the square of the symbol and the exponential of 2 would be one text."""
+    network = read_network_text(
+        'title = "t"\n[symbols.e]\n[symbols.a]\n[states.A]\n[states.B]\n[[transitions]]\n'
+        'between = ["A", "B"]\nrates = ["a*e", "1"]\n'
+    )
+    for text in ("exp(2)", "e**2", "exp(-a/2)*e**3 + exp(e)**2", "a*exp(a)*(a + e)"):
+        latex = expression_latex(read_expression(text), symbol_names(network))
+        assert value(read_formula(latex, names_of(network))) == value(read_expression(text)), latex
+
+
 QUANTITIES = [
     "p[A]", "p[A, C]", "ln(p[A]/p[B])", "current[bind]/p[A]", "mean[load]", "entropy_production",
     "traffic[set_down]", "forward[bind] - backward[set_down]", "current[C_A]**2", "1 - p[s_0]",
@@ -148,7 +160,7 @@ def floating(node: Expression) -> str:
             match part:
                 case Number(exact):
                     return mpmath.mpf(exact.numerator) / exact.denominator
-                case Symbol(name):
+                case Symbol(_):
                     return 1 + mpmath.mpf(value(part) % 1000) / 700
                 case Sum(terms):
                     return mpmath.fsum(map(at, terms))

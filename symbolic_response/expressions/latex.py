@@ -142,6 +142,8 @@ def _atom(base: Expression, names: Mapping[str, str]) -> str:
         case Symbol(name):
             return names[name]
         case Function("exp", argument):
+            if any(latex in ("e", r"\mathrm{e}") for latex in names.values()):
+                return rf"\exp({expression_latex(argument, names)})"  # e^2 is a power of a symbol
             return f"e^{{{exponent_latex(argument, names)}}}"
         case Function(_, argument):
             inner = expression_latex(argument, names)

@@ -121,6 +121,9 @@ def without_fonts(items: Iterable[Item]) -> Items:
     r"""Return items with fonts dissolved: ``\mathrm{on}`` is ``on``."""
     found: list[Item] = []
     for item in items:
+        if not item.arguments and item.below is None and item.above is None:
+            found.append(item)
+            continue
         below = None if item.below is None else without_fonts(item.below)
         above = None if item.above is None else without_fonts(item.above)
         if item.head in PLAIN_FONTS:

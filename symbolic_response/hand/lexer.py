@@ -21,7 +21,7 @@ from symbolic_response.hand.derivatives import (
     subscripted,
 )
 from symbolic_response.hand.items import CLOSING, MAX_NESTING, OPENING, Item, Items, key_of
-from symbolic_response.hand.names import Match, Names
+from symbolic_response.hand.names import Names
 from symbolic_response.hand.neighbours import (
     check_before_operator,
     check_side_by_side,
@@ -40,9 +40,10 @@ from symbolic_response.hand.pieces import (
 )
 from symbolic_response.hand.refusals import Unit
 from symbolic_response.hand.summation import indexed, read_range
+from symbolic_response.hand.table import Match
 from symbolic_response.hand.tokens import formula_error
 
-MAX_PIECES = 200_000
+MAX_PIECES = 150_000
 MAX_DIGITS = 1_000
 def pieces_of(items: Items, names: Names, source: str) -> list[Piece]:
     """Return the pieces of a formula; FormulaError for what cannot be read in one way only."""
@@ -209,11 +210,9 @@ class _Lexer:
     def group(self, inside: Items | None, around: Item) -> None:
         assert inside is not None
         self.deeper(around)
-        bars, self.bars = self.bars, 0
         self.put("OPEN", around)
         self.level(inside, 0, around, None)
         self.put("CLOSE", around)
-        self.bars = bars
         self.depth -= 1
 
     def bracket(self, items: Items, place: int) -> int:

@@ -12,11 +12,19 @@ import difflib
 from collections.abc import Iterable, Iterator, Mapping, Sequence
 from dataclasses import dataclass, field, replace
 
-from symbolic_response.errors import ExpressionError, FormulaError
+from symbolic_response.errors import ExpressionError
 from symbolic_response.expressions.names import base_latex, default_latex, same_latex, upright
 from symbolic_response.expressions.tree import Expression, Symbol, add, negate
 from symbolic_response.hand.items import Item, Items, items_of, key_of, without_fonts
-from symbolic_response.hand.pieces import numeric
+from symbolic_response.hand.table import (
+    CHOSEN,
+    SYMBOL,
+    Builder,
+    Match,
+    Table,
+    loose_key,
+    split_at,
+)
 from symbolic_response.hand.tokens import tokenize
 from symbolic_response.network.model import Network
 from symbolic_response.network.notation_section import LETTERS, plain_symbol_names
@@ -36,77 +44,14 @@ from symbolic_response.network.quantities import (
 )
 from symbolic_response.response.notation import Notation, joined, notation_of
 
-SYMBOL, CHOSEN, LABELLED, OTHER = range(4)
-"""Which of two meanings of one name counts: the lower; of equal ones neither."""
-
-
-@dataclass(frozen=True, slots=True)
-class Entry:
-    """The meanings of one name at the lowest level that has any; more than one are ambiguous."""
-
-    level: int
-    meanings: tuple[object, ...]
-    shown: str
-
-
-@dataclass(frozen=True, slots=True)
-class Match:
-    """A name found: ``count`` items, its meanings, and the superscript left over as a power."""
-
-    count: int
-    meanings: tuple[object, ...]
-    shown: str
-    power: Items | None
-    others: tuple[str, ...] = ()
-
-
-@dataclass(frozen=True, slots=True)
-class Table:
-    """Names as they are written, and without fonts; ``widest``: the most items of a name."""
-
-    exact: Mapping[str, Entry] = field(default_factory=dict)
-    loose: Mapping[str, Entry] = field(default_factory=dict)
-    widest: int = 1
-
-    def match(self, items: Items, place: int = 0) -> Match | None:
-        """Return the longest name that begins at a place.
-
-        More than one meaning, or ``others``, where the text can be read in two ways.
-        """
-        width = min(self.widest, len(items) - place)
-        exact = _longest(self.exact, items[place : place + width])
-        loose = None
-        if exact is None or width > exact.count:
-            loose = _longest(self.loose, items[place : place + width], fonts=False)
-        if exact is None or loose is None or loose.count <= exact.count:
-            return exact or loose
-        return replace(exact, others=(exact.shown, loose.shown))
-
-
-def _longest(table: Mapping[str, Entry], items: Items, *, fonts: bool = True) -> Match | None:
-    for count in range(len(items), 0, -1):
-        whole = items[:count]
-        last = whole[-1]
-        found = table.get(key_of(whole if fonts else without_fonts(whole)))
-        bare = None
-        if last.above is not None:
-            cut = (*whole[:-1], replace(last, above=None))
-            bare = table.get(key_of(cut if fonts else without_fonts(cut)))
-        if found is not None:
-            power = bare is not None and numeric(last.above or ()) and key_of(last.above)[0] != "("
-            others = (found.shown, f"{bare.shown} to a power") if power else ()
-            return Match(count, found.meanings, found.shown, None, others)
-        if bare is not None:
-            return Match(count, bare.meanings, bare.shown, last.above)
-    return None
-
 
 @dataclass(frozen=True, slots=True)
 class Names:
     """The names of a network, of its perturbations, and those defined in a text.
 
     ``probability`` and ``barrier``: the keys of the letters that take a set of states or of
-    transitions; ``beta``: the inverse temperature, if it is written. ``own``: the perturbations that the derivative by a symbol is; ``twofold``: those
+    transitions; ``beta``: the inverse temperature, if it is written. ``own``: the perturbations
+    that the derivative by a symbol is; ``twofold``: those
     of these symbols that are written like the perturbation itself.
     """
 
@@ -163,7 +108,7 @@ class Names:
         They count before the other letters and labels of the network. Raises ExpressionError where
         the network itself has the name, FormulaError for LaTeX that is not well formed.
         """
-        builder = _Builder()
+        builder = Builder()
         builder.take(self.values)
         for latex, value in definitions.items():
             key = key_of(items_of(tokenize(latex), latex))
@@ -178,7 +123,11 @@ class Names:
         table = self.perturbations if perturbation else self.values
         known = {key: entry.shown for key, entry in table.loose.items() if entry.level <= CHOSEN}
         wanted = key_of(without_fonts(items))
-        found = difflib.get_close_matches(wanted, list(known), n=1) if len(wanted) < 100 else []
+        alike = [key for key in known if items and key.startswith(without_fonts(items)[0].head)]
+        found: list[str] = []
+        if len(wanted) < 100:
+            found = (difflib.get_close_matches(wanted, alike, n=1, cutoff=0.3)
+                     or difflib.get_close_matches(wanted, list(known), n=1))
         if found:
             return f"; did you mean {known[found[0]]}?"
         shown = list(dict.fromkeys(known.values()))
@@ -190,18 +139,6 @@ def _in_braces(items: Items) -> bool:
     return items[0].head == r"\{" and items[-1].head == r"\}"
 
 
-def split_at(items: Items, head: str) -> Iterator[Items]:
-    """Yield the runs of items between those of a head."""
-    run: list[Item] = []
-    for item in items:
-        if item.head == head:
-            yield tuple(run)
-            run = []
-        else:
-            run.append(item)
-    yield tuple(run)
-
-
 def names_of(network: Network, notation: Notation | None = None) -> Names:
     r"""Return the names of a network, in its own notation if none is given.
 
@@ -211,50 +148,13 @@ def names_of(network: Network, notation: Notation | None = None) -> Names:
 
 
 @dataclass(slots=True)
-class _Builder:
-    exact: dict[str, Entry] = field(default_factory=dict)
-    loose: dict[str, Entry] = field(default_factory=dict)
-    widest: int = 1
-
-    def take(self, table: Table) -> None:
-        self.exact, self.loose = dict(table.exact), dict(table.loose)
-        self.widest = table.widest
-
-    def add(self, latex: str, value: object, level: int) -> None:
-        items = items_of(tokenize(latex), latex)
-        if not items:
-            return
-        self.widest = max(self.widest, len(without_fonts(items)))
-        _note(self.exact, key_of(items), Entry(level, (value,), latex))
-        _note(self.loose, key_of(without_fonts(items)), Entry(level, (value,), latex))
-
-    def try_add(self, latex: str, value: object, level: int) -> None:
-        """Add a name put together from a letter and a label; pass over what is not LaTeX."""
-        try:
-            self.add(latex, value, level)
-        except FormulaError:
-            return
-
-    def table(self) -> Table:
-        return Table(self.exact, self.loose, self.widest)
-
-
-def _note(table: dict[str, Entry], key: str, entry: Entry) -> None:
-    old = table.get(key)
-    if old is None or entry.level < old.level:
-        table[key] = entry
-    elif entry.level == old.level and entry.meanings[0] not in old.meanings:
-        table[key] = replace(old, meanings=old.meanings + entry.meanings)
-
-
-@dataclass(slots=True)
 class _Writer:
     """Writes every name of a network in all letters and labels that are accepted."""
 
     network: Network
     notation: Notation
-    values: _Builder = field(default_factory=_Builder)
-    by: _Builder = field(default_factory=_Builder)
+    values: Builder = field(default_factory=Builder)
+    by: Builder = field(default_factory=Builder)
 
     def names(self) -> Names:
         for name, latex in self.notation.symbols.items():
@@ -290,7 +190,7 @@ class _Writer:
             case _:
                 return False
         written = self.notation.indexed(role, label)
-        return _loose_key(plain_symbol_names(self.network)[name]) == _loose_key(written)
+        return loose_key(plain_symbol_names(self.network)[name]) == loose_key(written)
 
     def letters(self, role: str) -> Iterator[tuple[str, int]]:
         """Yield the letter of a role, then the others that nothing else has."""
@@ -340,7 +240,7 @@ class _Writer:
                                             CHOSEN + other + variant)
 
     def indexed(
-        self, table: _Builder, role: str, labels: list[list[tuple[str, int]]], value: object
+        self, table: Builder, role: str, labels: list[list[tuple[str, int]]], value: object
     ) -> None:
         assert callable(value)
         for letter, other in self.letters(role):
@@ -387,17 +287,13 @@ class _Writer:
 def _labels(first: str, *others: str) -> list[tuple[str, int]]:
     """Return a label and those variants that differ in more than fonts, with how much later
     each counts."""
-    found = {_loose_key(label): (label, 1) for label in reversed(others)}
-    found.pop(_loose_key(first), None)
+    found = {loose_key(label): (label, 1) for label in reversed(others)}
+    found.pop(loose_key(first), None)
     return [(first, 0), *found.values()]
 
 
-def _loose_key(latex: str) -> str:
-    return key_of(without_fonts(items_of(tokenize(latex), latex)))
-
-
 def _label_table(labels: Iterable[list[tuple[str, int]]]) -> Table:
-    builder = _Builder()
+    builder = Builder()
     for place, variants in enumerate(labels):
         for label, variant in variants:
             builder.try_add(label, place, variant)

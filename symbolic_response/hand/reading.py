@@ -18,6 +18,7 @@ from symbolic_response.hand.names import Names
 from symbolic_response.hand.tokens import Token, formula_error, tokenize
 
 MAX_TOKENS = 100_000
+MAX_CHARACTERS = 500_000
 _DELIMITERS = {"$": "$", r"\[": r"\]", r"\(": r"\)"}
 _PUNCTUATION = (".", ",", ";")
 
@@ -27,7 +28,7 @@ def read_formula(text: str, names: Names) -> Expression:
 
     ``$ $``, ``\[ \]`` or ``\( \)`` around all and a full stop or comma at the end count for
     nothing. Raises FormulaError, with line and column, for what cannot be read in exactly one way,
-    and SizeLimitError for a formula of more than 100,000 tokens.
+    and SizeLimitError for a formula of more than 500,000 characters or 100,000 tokens.
 
     >>> from symbolic_response.network import read_network_text
     >>> from symbolic_response.expressions.text import expression_text
@@ -46,6 +47,10 @@ def read_formula(text: str, names: Names) -> Expression:
     >>> expression_text(read_formula(r"\frac{k_{on}c}{k_{\mathrm{on}} c + 1}", names_of(network)))
     'k_on*c/(k_on*c + 1)'
     """
+    if len(text) > MAX_CHARACTERS:
+        raise SizeLimitError(
+            f"the formula is {len(text)} characters long; at most {MAX_CHARACTERS} are read"
+        )
     rest, macros = take_definitions(tokenize(text), text)
     return read_formula_tokens(expand(rest, macros, text), names, text)
 

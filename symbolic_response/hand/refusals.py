@@ -5,7 +5,8 @@ from __future__ import annotations
 from dataclasses import dataclass, replace
 
 from symbolic_response.hand.items import CLOSING, OPENING, Item, Items, key_of
-from symbolic_response.hand.names import Match, Names
+from symbolic_response.hand.names import Names
+from symbolic_response.hand.table import Match
 from symbolic_response.hand.tokens import formula_error
 
 FRACTION_POWER = (r"a power of a \frac is not visible as such; write \left(\frac{a}{b}\right)^{2}"
@@ -186,9 +187,10 @@ def two_readings(items: Items, place: int, match: Match) -> str:
 def unknown_power(items: Items, place: int, match: Match, names: Names) -> str:
     whole = items[place : place + match.count]
     above = key_of(match.power or ())
-    hint = f"; for a power write e^{{{above} \\ln {match.shown}}}" if above.isalnum() else ""
-    return (f"unknown symbol {key_of(whole)}, and {above!r} is no exact exponent"
-            f"{names.nearest(whole) or hint}")
+    hint = names.nearest(whole)
+    if match.power and names.match(match.power) is not None:
+        hint = f"; for a power write e^{{{above} \\ln {match.shown}}}"
+    return f"unknown symbol {key_of(whole)}, and {above!r} is no exact exponent{hint}"
 
 
 def exponent(item: Item) -> str:
