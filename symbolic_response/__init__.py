@@ -22,8 +22,11 @@ if TYPE_CHECKING:
     from symbolic_response.control.limits import leading
     from symbolic_response.control.response_curve import response_curve
     from symbolic_response.control.result import Steepness, steepness
+    from symbolic_response.export import export_functions, export_json
     from symbolic_response.figures.cloud import cloud_figure
     from symbolic_response.figures.curve import curve_figure
+    from symbolic_response.figures.diagrams import Drawing, draw, write_drawing
+    from symbolic_response.hand.compare import Comparison, compare, compare_entries
     from symbolic_response.network import (
         Barrier,
         Network,
@@ -52,6 +55,9 @@ _HOMES = {
     "leading": "control.limits",
     "response_curve": "control.response_curve",
     **dict.fromkeys(("Steepness", "steepness"), "control.result"),
+    **dict.fromkeys(("Comparison", "compare", "compare_entries"), "hand.compare"),
+    **dict.fromkeys(("Drawing", "draw", "write_drawing"), "figures.diagrams"),
+    **dict.fromkeys(("export_functions", "export_json"), "export"),
     "cloud_figure": "figures.cloud",
     "curve_figure": "figures.curve",
     **dict.fromkeys(
@@ -69,7 +75,9 @@ __all__ = [
     "Analysis",
     "Barrier",
     "Certificate",
+    "Comparison",
     "Derived",
+    "Drawing",
     "Network",
     "Rates",
     "Refutation",
@@ -81,8 +89,13 @@ __all__ = [
     "certify",
     "cloud",
     "cloud_figure",
+    "compare",
+    "compare_entries",
     "curve_figure",
     "derive",
+    "draw",
+    "export_functions",
+    "export_json",
     "from_generator_matrix",
     "from_networkx",
     "generator_matrix",
@@ -97,6 +110,7 @@ __all__ = [
     "with_substitution",
     "write_appendix",
     "write_certificate",
+    "write_drawing",
 ]
 
 

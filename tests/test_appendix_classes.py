@@ -33,7 +33,7 @@ from symbolic_response.expressions.widths import formula_width
 from symbolic_response.network import Network, Rates, build_network
 from symbolic_response.network.toml_reader import read_network, read_network_text
 from symbolic_response.response.analysis import Analysis
-from symbolic_response.response.quantity_latex import notation_of
+from symbolic_response.response.notation import notation_of
 
 WORKED = Path(__file__).parent.parent / "worked_cases"
 VARIANTS = [Layout(kind, columns, None if kind == "revtex" else size)

@@ -32,7 +32,7 @@ from symbolic_response.expressions.tree import Expression, substitute, symbols_o
 from symbolic_response.network.toml_reader import read_network_text
 from symbolic_response.response.analysis import Analysis
 from symbolic_response.response.closed_form import closed_form, symbol_names
-from symbolic_response.response.quantity_latex import notation_of
+from symbolic_response.response.notation import notation_of
 
 QUANTITIES = [
     "p[A]", "p[A, B]", "traffic[bind]", "entropy_production", "mean[occ]", "d p[A] / d drive[flip]",

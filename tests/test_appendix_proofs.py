@@ -26,7 +26,7 @@ from symbolic_response.expressions.tree import add, multiply, negate
 from symbolic_response.network import Rates, build_network
 from symbolic_response.network.toml_reader import read_network_text
 from symbolic_response.response.analysis import Analysis
-from symbolic_response.response.quantity_latex import notation_of
+from symbolic_response.response.notation import notation_of
 
 CHANNELS = """
 title = "Channels, a bridge and a one-way step"

@@ -16,7 +16,7 @@ from symbolic_response.expressions.latex import expression_latex
 from symbolic_response.figures.diagrams import draw
 from symbolic_response.figures.diagrams.labels import label
 from symbolic_response.figures.diagrams.layout import positions
-from symbolic_response.response.quantity_latex import notation_of
+from symbolic_response.response.notation import notation_of
 
 NETWORKS = networks()
 

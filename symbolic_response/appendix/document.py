@@ -37,7 +37,7 @@ from symbolic_response.figures import pgfplots
 from symbolic_response.files import check_output, write_files
 from symbolic_response.network.model import Network
 from symbolic_response.response.analysis import Analysis
-from symbolic_response.response.quantity_latex import notation_of
+from symbolic_response.response.notation import notation_of
 
 
 def appendix_text(

@@ -9,7 +9,7 @@ import re
 from collections.abc import Mapping, Sequence
 
 from symbolic_response.expressions.names import same_latex
-from symbolic_response.response.quantity_latex import Notation
+from symbolic_response.response.notation import Notation
 
 PROOF_LETTERS = {
     "free": ("a", r"\alpha", r"\mathbf{a}"),

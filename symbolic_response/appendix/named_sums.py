@@ -48,7 +48,7 @@ from symbolic_response.expressions.tree import (
     walk,
 )
 from symbolic_response.response.analysis import Analysis
-from symbolic_response.response.quantity_latex import Notation
+from symbolic_response.response.notation import Notation
 
 SHORT_TERMS = 4
 

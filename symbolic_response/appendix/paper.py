@@ -37,7 +37,7 @@ from symbolic_response.expressions.tree import (
 from symbolic_response.expressions.widths import formula_width
 from symbolic_response.network.model import Network
 from symbolic_response.response.analysis import Analysis
-from symbolic_response.response.quantity_latex import Notation
+from symbolic_response.response.notation import Notation
 
 MAX_PRINTED_TERMS = 2000
 

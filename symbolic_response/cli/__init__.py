@@ -14,10 +14,14 @@ from typing import Any
 import click
 
 from symbolic_response.cli.bounding import bound, certify, recheck
+from symbolic_response.cli.comparing import compare
 from symbolic_response.cli.controlling import cloud, curve, steepness
 from symbolic_response.cli.deriving import appendix, derive, survey
+from symbolic_response.cli.drawing import draw
+from symbolic_response.cli.exporting import export
 from symbolic_response.cli.status import INTERRUPTED, REFUTED, UNDECIDED, UNUSABLE, fail
 from symbolic_response.errors import (
+    FormulaError,
     InputError,
     RefutedError,
     SizeLimitError,
@@ -57,6 +61,11 @@ def run(arguments: Sequence[str]) -> int:
         return fail(error.format_message().rstrip(".") + hint, UNUSABLE)
     except click.ClickException as error:
         return fail(error.format_message(), UNUSABLE)
+    except FormulaError as error:
+        status = fail(str(error), UNUSABLE)
+        if error.excerpt:
+            click.echo(error.pointed(), err=True)
+        return status
     except InputError as error:
         return fail(str(error), UNUSABLE)
     except (SizeLimitError, UndecidedError) as error:
@@ -89,5 +98,6 @@ def main() -> None:
     """
 
 
-for _verb in (survey, derive, bound, certify, recheck, steepness, curve, cloud, appendix):
+for _verb in (survey, derive, bound, certify, recheck, steepness, curve, cloud, compare,
+              appendix, draw, export):
     main.add_command(_verb)

@@ -114,7 +114,8 @@ def derive(
         data = {"network": described.title, "results": [_derived_data(r) for r in results]}
         click.echo(json.dumps(data, indent=1))
     elif as_latex:
-        from symbolic_response.response.quantity_latex import notation_of, quantity_in
+        from symbolic_response.response.notation import notation_of
+        from symbolic_response.response.quantity_latex import quantity_in
 
         notation = notation_of(described)
         click.echo("\n".join(f"{quantity_in(notation, quantity)} = {result.latex}"

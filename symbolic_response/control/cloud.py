@@ -34,12 +34,8 @@ from symbolic_response.network.model import Network
 from symbolic_response.network.quantities import Response
 from symbolic_response.network.quantity_reader import read_quantity
 from symbolic_response.response.analysis import Analysis, as_analysis
-from symbolic_response.response.quantity_latex import (
-    Notation,
-    notation_of,
-    perturbation_in,
-    quantity_in,
-)
+from symbolic_response.response.notation import Notation, notation_of
+from symbolic_response.response.quantity_latex import perturbation_in, quantity_in
 from symbolic_response.response.values import Point
 from symbolic_response.topology import can_run_against, can_run_along
 

@@ -30,7 +30,8 @@ from symbolic_response.network.model import Network
 from symbolic_response.response.analysis import Analysis, as_analysis
 from symbolic_response.response.closed_form import symbol_names
 from symbolic_response.response.deriving import Given
-from symbolic_response.response.quantity_latex import notation_of, quantity_in
+from symbolic_response.response.notation import notation_of
+from symbolic_response.response.quantity_latex import quantity_in
 
 COUNT = 200
 Step = Callable[[int, int], None]

@@ -50,7 +50,8 @@ from symbolic_response.network.model import Network
 from symbolic_response.network.quantities import Probability
 from symbolic_response.response.analysis import Analysis
 from symbolic_response.response.deriving import derive_quantity
-from symbolic_response.response.quantity_latex import notation_of, quantity_in
+from symbolic_response.response.notation import notation_of
+from symbolic_response.response.quantity_latex import quantity_in
 from symbolic_response.response.survey import force_text, survey
 
 FORMAT, VERSION = "symbolic-response-results", 1

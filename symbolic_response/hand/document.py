@@ -64,11 +64,15 @@ class Definition:
 
 @dataclass(frozen=True, slots=True)
 class PassedOver:
-    """Something of the file that is neither a hand result nor a definition, and why."""
+    """Something of the file that is neither a hand result nor a definition, and why.
+
+    ``unread``: a formula for a quantity of the network, which could not be read.
+    """
 
     line: int
     excerpt: str
     reason: str
+    unread: bool = False
 
 
 @dataclass(frozen=True, slots=True)
@@ -174,13 +178,15 @@ class _File:
                        tuple(sorted(self.passed, key=lambda passed: passed.line)))
 
     def pass_over(
-        self, stated: Stated, reason: str | Exception, tokens: Sequence[Token] = ()
+        self, stated: Stated, reason: str | Exception, tokens: Sequence[Token] = (),
+        unread: bool = False,
     ) -> None:
         """Note why a statement, or a part of it, is no hand result."""
         shown = stated.text(tokens or stated.statement.tokens)
         text = reason if isinstance(reason, str) else self.parts.reason(reason, stated.offset)
         self.passed.append(
-            PassedOver(self.parts.line(stated.place(tokens)), shortened(shown), one_line(text)))
+            PassedOver(self.parts.line(stated.place(tokens)), shortened(shown), one_line(text),
+                       unread))
 
     def equations(self, stated: Stated, names: Names) -> Iterator[HandEquation]:
         """Yield the hand results in a statement; pass over the rest of it."""
@@ -233,7 +239,7 @@ class _File:
             expression = read_formula_tokens(tokens, names, stated.source)
             check_size(expression)
         except SymbolicResponseError as error:
-            self.pass_over(stated, error, tokens)
+            self.pass_over(stated, error, tokens, unread=True)
             return None
         if _has_atoms(expression) and not isinstance(quantity, _ATOMS):
             self.pass_over(stated, "both sides hold quantities; write one of them alone on the "

@@ -12,7 +12,6 @@ from symbolic_response.expressions.tree import (
     rebuild,
     symbols_of,
 )
-from symbolic_response.network.notation_section import LETTERS as LETTERS
 from symbolic_response.network.quantities import (
     BarrierOf,
     BarriersOf,
@@ -30,8 +29,7 @@ from symbolic_response.network.quantities import (
     Traffic,
     walk_quantity,
 )
-from symbolic_response.response.notation import Notation as Notation
-from symbolic_response.response.notation import notation_of as notation_of
+from symbolic_response.response.notation import Notation
 
 
 def quantity_in(notation: Notation, quantity: Expression) -> str:

@@ -23,7 +23,7 @@ from symbolic_response.figures.diagrams.tikz import COLUMN_SPACE, document, tikz
 from symbolic_response.files import check_output, write_files
 from symbolic_response.network.model import Network
 from symbolic_response.response.analysis import Analysis, as_analysis
-from symbolic_response.response.quantity_latex import Notation, notation_of
+from symbolic_response.response.notation import Notation, notation_of
 
 TEXT_WIDTH = 345.0
 """The width of the text of article at 10 pt, in pt."""

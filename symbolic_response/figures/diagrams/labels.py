@@ -14,7 +14,7 @@ from symbolic_response.expressions.tree import Expression
 from symbolic_response.expressions.widths import TEXT, formula_width
 from symbolic_response.figures.diagrams.geometry import Box
 from symbolic_response.network.model import Network
-from symbolic_response.response.quantity_latex import Notation
+from symbolic_response.response.notation import Notation
 
 RATIOS = {10: (1.0, 1.0), 8: (0.87, 0.93), 7: (0.82, 0.87)}
 """For each size of labels the widths over those at 10 pt, at the most: letters, and scripts.

@@ -23,7 +23,7 @@ from symbolic_response.figures.diagrams.looks import LINES
 from symbolic_response.figures.diagrams.pictures import Picture, Shape, Stroke
 from symbolic_response.figures.diagrams.placing import candidates, free, lined, together
 from symbolic_response.network.model import Network
-from symbolic_response.response.quantity_latex import Notation
+from symbolic_response.response.notation import Notation
 from symbolic_response.topology import Graph
 
 APART = 0.95
