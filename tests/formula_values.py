@@ -105,7 +105,7 @@ def value(node: Expression) -> int:
         case Power(base, exponent):
             return raised(value(base), exponent)
         case Function(name, argument):
-            return hashed(name, value(argument))
+            return applied(name, value(argument))
         case Response(quantity, by):
             return hashed("response", value(quantity), by)
     return hashed("atom", node)
@@ -148,6 +148,8 @@ WRITTEN = {
     r"\pi_{A}": "p[A]", r"\pi_{B}": "p[B]", r"\pi_{C}": "p[C]", "p_{A}": "p[A]", "p_{B}": "p[B]",
     "p_{C}": "p[C]", "P_{A}": "p[A]", "P_{B}": "p[B]", "P_{C}": "p[C]", r"\pi_{t}": "p[t]",
     "p_{t}": "p[t]", "P_{t}": "p[t]",
+    "A_{bind}": "traffic[bind]", "A_{slip}": "traffic[slip]", "A_{turn}": "traffic[turn]",
+    "J_{turn}": "current[turn]", "I_{turn}": "current[turn]", "j_{turn}": "current[turn]",
     "J_{bind}": "current[bind]", "J_{slip}": "current[slip]", "I_{bind}": "current[bind]",
     "I_{slip}": "current[slip]", "j_{slip}": "current[slip]", "j_{bind}": "current[bind]",
     "J_{CA}": "current[C_A]", "I_{CA}": "current[C_A]", "j_{CA}": "current[C_A]",

@@ -110,6 +110,7 @@ b \ln a + c                                 | b*ln(a) + c
 \sum_{i=1}^{3} a^i                          | a + a**2 + a**3
 b \sum_{i=1}^{2} i a^{2i} c - b             | b*(a**2*c + 2*a**4*c) - b
 \sum_{i=11}^{11} k_{i+1} a                  | k_12*a
+\sum_{i=14}^{14} a^{i} k_{i-2}               | a**14*k_12
 \prod_{i=1}^{3} (a + i)                     | (a + 1)*(a + 2)*(a + 3)
 \sum_{i=0}^{1}\sum_{j=1}^{2} a^{i} b^{j}    | b + b**2 + a*b + a*b**2
 \pi_A + \pi_{B}                             | p[A] + p[B]
@@ -229,6 +230,11 @@ c = {latex = 'x_{\mathit{on}}'}""", '["a*b*c", "1"]')
     assert read_formula(r"x_{\mathrm{on}}", names) == Symbol("b")
     with pytest.raises(FormulaError, match="2 meanings"):
         read_formula("x_{on}", names)
+
+
+def test_the_latex_of_a_symbol_that_tex_sets_otherwise_is_named() -> None:
+    with pytest.raises(FormulaError, match=r"LaTeX of symbol 'b': line 1.*write _\{12\}"):
+        names_with("b = {latex = 'x_12'}", '["a*b", "1"]')
 
 
 def test_definitions_of_a_text() -> None:

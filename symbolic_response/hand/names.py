@@ -12,7 +12,7 @@ import difflib
 from collections.abc import Iterable, Iterator, Mapping, Sequence
 from dataclasses import dataclass, field, replace
 
-from symbolic_response.errors import ExpressionError
+from symbolic_response.errors import ExpressionError, FormulaError
 from symbolic_response.expressions.names import base_latex, default_latex, same_latex, upright
 from symbolic_response.expressions.tree import Expression, Symbol, add, negate
 from symbolic_response.hand.items import Item, Items, items_of, key_of, without_fonts
@@ -142,7 +142,8 @@ def _in_braces(items: Items) -> bool:
 def names_of(network: Network, notation: Notation | None = None) -> Names:
     r"""Return the names of a network, in its own notation if none is given.
 
-    Raises NetworkError where the section ``[notation]`` cannot be used.
+    Raises NetworkError where the section ``[notation]`` cannot be used, FormulaError where the LaTeX
+    of a symbol is not well formed.
     """
     return _Writer(network, notation or notation_of(network)).names()
 
@@ -158,7 +159,11 @@ class _Writer:
 
     def names(self) -> Names:
         for name, latex in self.notation.symbols.items():
-            self.values.add(latex, Symbol(name), SYMBOL)
+            try:
+                self.values.add(latex, Symbol(name), SYMBOL)
+            except FormulaError as error:
+                raise FormulaError(error.message, error.line, error.column, error.excerpt,
+                                   error.pointer, f"the LaTeX of symbol {name!r}") from None
             self.by.add(latex, BySymbol(name), SYMBOL)
         states = [self.state_labels(k) for k in range(len(self.network.states))]
         transitions = [self.transition_labels(e) for e in range(len(self.network.transitions))]
