@@ -142,7 +142,8 @@ def _in_braces(items: Items) -> bool:
 def names_of(network: Network, notation: Notation | None = None) -> Names:
     r"""Return the names of a network, in its own notation if none is given.
 
-    Raises NetworkError where the section ``[notation]`` cannot be used, FormulaError where the LaTeX
+    Raises NetworkError where the section ``[notation]`` cannot be used, FormulaError where the
+    LaTeX
     of a symbol is not well formed.
     """
     return _Writer(network, notation or notation_of(network)).names()
