@@ -143,8 +143,7 @@ def names_of(network: Network, notation: Notation | None = None) -> Names:
     r"""Return the names of a network, in its own notation if none is given.
 
     Raises NetworkError where the section ``[notation]`` cannot be used, FormulaError where the
-    LaTeX
-    of a symbol is not well formed.
+    LaTeX of a symbol is not well formed.
     """
     return _Writer(network, notation or notation_of(network)).names()
 
@@ -271,6 +270,8 @@ class _Writer:
             for letter, other in self.letters("generator"):
                 for first, one in states[pair[0]]:
                     for second, two in states[pair[1]]:
+                        if one != two and len(states[pair[0]]) == len(states[pair[1]]):
+                            continue  # nobody mixes two kinds of labels
                         level = CHOSEN + max(other, one, two)
                         shown = {joined([first, second]): level, f"{first},{second}": level + 1,
                                  first + arrow + second: level + 1}

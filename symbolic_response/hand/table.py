@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Callable, Iterator, Mapping
 from dataclasses import dataclass, field, replace
+from functools import lru_cache
 
 from symbolic_response.errors import FormulaError
 from symbolic_response.hand.items import Item, Items, items_of, key_of, without_fonts
@@ -83,6 +84,26 @@ def _longest(
     return None
 
 
+@dataclass(frozen=True, slots=True)
+class _Key:
+    """What a name is found by: its canonical text, the head of its first item, its length."""
+
+    text: str
+    head: str
+    count: int
+
+
+@lru_cache(maxsize=20_000)
+def _keys(latex: str) -> tuple[_Key, _Key]:
+    """Return the keys of a name as it is written, and without fonts."""
+    items = items_of(tokenize(latex), latex)
+    exact, loose = (
+        _Key(key_of(seen), seen[0].head if seen else "", len(seen))
+        for seen in (items, without_fonts(items))
+    )
+    return exact, loose
+
+
 @dataclass(slots=True)
 class Builder:
     exact: dict[str, Entry] = field(default_factory=dict)
@@ -94,13 +115,11 @@ class Builder:
         self.widths = dict(table.widths)
 
     def add(self, latex: str, value: object, level: int) -> None:
-        items = items_of(tokenize(latex), latex)
         entry = Entry(level, (value,), latex)
-        for table, seen in ((self.exact, items), (self.loose, without_fonts(items))):
-            if seen:
-                _note(table, key_of(seen), entry)
-                head = seen[0].head
-                self.widths[head] = max(self.widths.get(head, 1), len(seen))
+        for table, key in zip((self.exact, self.loose), _keys(latex), strict=True):
+            if key.count:
+                _note(table, key.text, entry)
+                self.widths[key.head] = max(self.widths.get(key.head, 1), key.count)
 
     def try_add(self, latex: str, value: object, level: int) -> None:
         """Add a name put together from a letter and a label; pass over what is not LaTeX."""

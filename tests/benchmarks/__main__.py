@@ -21,7 +21,7 @@ from symbolic_response.response.analysis import Analysis, graph_of
 from symbolic_response.response.closed_form import ClosedForm, closed_form
 from symbolic_response.response.values import Point
 from symbolic_response.topology import spanning_trees
-from tests.benchmarks import certificates, curves, proofs
+from tests.benchmarks import certificates, curves, hands, proofs
 from tests.benchmarks.networks import complete, cube, ladder
 from tests.benchmarks.timing import CUT_OFF, Row, compare
 
@@ -127,6 +127,7 @@ def rows() -> list[Row]:
         certificates.row(),
         *proofs.rows(),
         curves.row(),
+        hands.row(),
     ]
 
 
