@@ -61,8 +61,8 @@ def _words(count: int) -> str:
             "large values, and at the points of a search for large ratios. The domain is that of "
             "all admissible values of the symbols; samples are drawn from the ranges of the "
             "network file. "
-            "None was violated. The last column is the largest ratio of the left to the right "
-            "side, rounded down: the closer to one, the tighter.")
+            "None was violated. The largest ratio of the left to the right side is rounded down: "
+            "the closer to one, the tighter.")
 
 
 _COLUMNS = (Column("Quantity"), Column("Limited", "wrap", "limited "),

@@ -154,6 +154,7 @@ def _body(
 
 def _packages(body: str) -> str:
     """Return the lines of a preamble that a text needs."""
-    text = "\\usepackage{amsmath,amssymb}\n\\usepackage{array,booktabs,longtable}\n"
+    tables = "array,booktabs,longtable" if r"\begin{longtable}" in body else "array,booktabs"
+    text = f"\\usepackage{{amsmath,amssymb}}\n\\usepackage{{{tables}}}\n"
     text += pgfplots.PREAMBLE if r"\begin{tikzpicture}" in body else ""
     return text + ("\\usepackage{amsthm}\n" if r"\begin{theorem}" in body else "")
