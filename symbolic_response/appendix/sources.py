@@ -90,7 +90,7 @@ def bibtex(keys: Sequence[str], prefix: str) -> str:
 
 
 def _entry(key: str, source: Source) -> str:
-    fields = {"author": " and ".join(source.authors), "title": source.title,
+    fields = {"author": " and ".join(source.authors), "title": f"{{{source.title}}}",
               "journal": source.journal, "volume": source.volume, "pages": source.pages,
               "year": f"{source.year}"}
     lines = ",\n".join(f"  {name} = {{{value}}}" for name, value in fields.items())
