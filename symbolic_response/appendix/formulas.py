@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 
-from symbolic_response.appendix.named_sums import NamedSum, expanded
+from symbolic_response.appendix.named_sums import NamedSum
 from symbolic_response.appendix.paper import Paper
 from symbolic_response.expressions.breaking import (
     Equation,
@@ -226,7 +226,7 @@ def definitions_text(paper: Paper, definitions: Sequence[NamedSum]) -> str:
         if printed:
             terms = (
                 paper.fitted(named.form, limit)[0] if named.kind == "remainder"
-                else paper.pieces(expanded(named.form), limit)
+                else paper.pieces(paper.terms(named.form), limit)
             )
             pieces = [*pieces, *continued(terms)] if pieces else terms
         equations.append(Equation(named.latex, tuple(pieces)))

@@ -15,8 +15,9 @@ from symbolic_response.algebra.factored import (
     product,
 )
 from symbolic_response.appendix.letters import letters_of
-from symbolic_response.appendix.named_sums import NamedSum, NamedSums, expanded
+from symbolic_response.appendix.named_sums import NamedSum, NamedSums
 from symbolic_response.appendix.page import Page
+from symbolic_response.appendix.short_forms import ShortForms
 from symbolic_response.expressions.breaking import (
     Piece,
     fits,
@@ -59,9 +60,11 @@ class Paper:
     defined: set[str] = field(default_factory=set)
     explained: set[str] = field(default_factory=set)
     letters: Mapping[str, str] = field(init=False)
+    short: ShortForms = field(init=False)
 
     def __post_init__(self) -> None:
         self.letters = letters_of(self.notation)
+        self.short = ShortForms(self.notation.symbols)
 
     @property
     def width(self) -> float:
@@ -70,7 +73,12 @@ class Paper:
 
     def latex(self, node: Expression) -> str:
         """Return an expression in the user's symbols and named sums."""
-        return expression_latex(node, self.sums.names())
+        return expression_latex(self.short.of(node), self.sums.names())
+
+    def terms(self, form: Factored) -> list[Expression]:
+        """Return a form, its sums as short as can be, as the terms of a sum."""
+        node = self.short.of(form.expression())
+        return list(node.terms) if isinstance(node, Sum) else [node]
 
     def take(self, terms: int) -> bool:
         """Return whether so many terms may still be printed, and count them if so."""
@@ -83,7 +91,7 @@ class Paper:
         """Return the terms of a sum as pieces that fit the limit."""
         names = self.sums.names()
         pieces: list[Piece] = []
-        for node in terms:
+        for node in map(self.short.of, terms):
             for term in latex_terms(node, names):
                 whole = sum_pieces([term]) if not pieces else [
                     Piece("-" if term.negative else "+", term.body)
@@ -122,11 +130,7 @@ class Paper:
         """Return a form as pieces that fit, and the sums that were given a name for that."""
         fresh: list[NamedSum] = []
         while True:
-            if len(form.factors) == 1 and form.factors[0][1] == 1 and not any(form.monomial):
-                terms = expanded(form)
-            else:
-                node = form.expression()
-                terms = list(node.terms) if isinstance(node, Sum) else [node]
+            terms = self.terms(form)
             if all(fits(t.body, limit) for node in terms
                    for t in latex_terms(node, self.sums.names())):
                 break

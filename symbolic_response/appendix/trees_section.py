@@ -3,7 +3,6 @@
 from __future__ import annotations
 
 from symbolic_response.appendix.formulas import filled, is_one
-from symbolic_response.appendix.named_sums import expanded
 from symbolic_response.appendix.paper import Paper
 from symbolic_response.expressions.breaking import (
     Equation,
@@ -28,7 +27,7 @@ def trees_section(paper: Paper) -> str:
         equations = []
         for s in sums:
             limit = line_limit(s.latex, paper.width)
-            equations.append(Equation(s.latex, tuple(paper.pieces(expanded(s.form), limit))))
+            equations.append(Equation(s.latex, tuple(paper.pieces(paper.terms(s.form), limit))))
         text.append(counts + " The tree sums and their total are\n"
                     + align([*equations, _total(paper)], paper.width))
     else:

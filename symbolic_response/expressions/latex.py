@@ -1,8 +1,9 @@
 """Printing expressions as LaTeX.
 
 Spacing is chosen so that the text reads back without guessing: a space between a control word and
-a letter, ``\\cdot`` before a number and before a parenthesis that follows a symbol, parentheses
-around whatever carries a superscript of its own before another one, plain parentheses throughout.
+a letter, ``\\cdot`` before a number and before a parenthesis that follows a function, or that follows
+a symbol and holds no sum, parentheses around whatever carries a superscript of its own before
+another one, plain parentheses throughout.
 """
 
 from __future__ import annotations
@@ -22,6 +23,9 @@ from symbolic_response.expressions.layout import (
 )
 from symbolic_response.expressions.ring import Polynomial
 from symbolic_response.expressions.tree import Expression, Function, Number, Sum, Symbol
+
+
+_CALLS = (r"\ln", r"\exp")
 
 
 @dataclass(frozen=True, slots=True)
@@ -75,16 +79,36 @@ def fraction_latex(value: Fraction) -> str:
 
 
 def join_factors(factors: Sequence[str]) -> str:
-    r"""Return a product of printed factors, with ``\cdot`` where juxtaposition could mislead."""
+    r"""Return a product of printed factors, with ``\cdot`` where juxtaposition could mislead.
+
+    A symbol before a sum in parentheses is read as a product, before a single thing in parentheses
+    it could be a function.
+
+    >>> print(join_factors(["k", "(a + b)"]), "or", join_factors(["k", "(a b)^{1/2}"]))
+    k (a + b) or k \cdot (a b)^{1/2}
+    """
     text, previous = "", ""
     for factor in factors:
         dotted = factor[0].isdigit() or (
             factor[0] == "(" and not previous.startswith("(") and not previous.isdigit()
+            and (previous.startswith(_CALLS) or not _holds_a_sum(factor))
         )
         if text:
             text += r" \cdot " if dotted else " "
         text, previous = text + factor, factor
     return text
+
+
+def _holds_a_sum(factor: str) -> bool:
+    """Return whether the parentheses that a factor begins with hold a sum."""
+    depth = 0
+    for place, character in enumerate(factor):
+        depth += {"(": 1, "{": 1, ")": -1, "}": -1}.get(character, 0)
+        if depth == 0:
+            return False
+        if depth == 1 and character in "+-" and factor[place - 1] == " " == factor[place + 1]:
+            return True
+    return False
 
 
 def _polynomial_terms(leaf: Polynomial, names: Mapping[str, str]) -> list[SignedTerm]:
