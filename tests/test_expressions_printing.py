@@ -136,6 +136,17 @@ def inside(latex: str) -> int:
     return depth
 
 
+def between(text: str, opening: int) -> str:
+    """Return what stands outside inner brackets between a parenthesis and its partner."""
+    kept, depth = "", 0
+    for character in text[opening:]:
+        depth += {"(": 1, "{": 1, ")": -1, "}": -1}.get(character, 0)
+        if depth == 0:
+            return kept
+        kept += character if depth == 1 else ""
+    raise AssertionError(text)
+
+
 @settings(max_examples=60, deadline=None, suppress_health_check=list(HealthCheck))
 @given(sources)
 def test_rules_of_latex(tree: Expression) -> None:
@@ -149,7 +160,8 @@ def test_rules_of_latex(tree: Expression) -> None:
     assert not re.search(r"[0-9] [0-9]", latex)  # a number before a number is dotted
     plain = latex.replace(r"\cdot ", r"\cdot@")
     assert not re.search(r"[A-Za-z}] [0-9]", plain)  # ... and so is one after a symbol
-    assert not re.search(r"(?<![A-Za-z\\])(?:[abcx]|\\mu) \(", latex)  # no call by accident
+    for call in re.finditer(r"(?<![A-Za-z\\])(?:[abcx]|\\mu) \(", latex):
+        assert re.search(r" [-+] ", between(latex, call.end() - 1))  # a sum: no call by accident
     assert "^{2}" not in latex
     assert not re.search(r"\^(?:\{[^{}]*\}|[0-9])\s*\^", latex)  # no double superscript
     assert not re.search(r"(?<!n)\(\([^()]*\)\)\^", latex)  # no second pair of parentheses

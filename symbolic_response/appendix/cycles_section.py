@@ -10,7 +10,7 @@ from symbolic_response.appendix.formulas import filled
 from symbolic_response.appendix.paper import Paper
 from symbolic_response.appendix.tables import Column, table, table_width
 from symbolic_response.errors import SizeLimitError
-from symbolic_response.expressions.breaking import Equation, Piece, align, fits, line_limit
+from symbolic_response.expressions.breaking import Equation, Piece, fits, line_limit
 from symbolic_response.expressions.tree import Expression, divide, function
 from symbolic_response.response.closed_trees import cycle_force
 from symbolic_response.topology import Cycle, can_run_along
@@ -104,7 +104,7 @@ def _listing(paper: Paper, entries: Sequence[_Entry]) -> str:
         [_breakable(cell) if narrow else f"${cell}$" for cell in row] for row in rows])
     verb = "The force is" if len(entries) == 1 else "The forces are"
     equations = [_equation(paper, entry) for entry in entries]
-    return routes + note + f"\n{verb}\n" + align(equations, paper.width)
+    return routes + note + f"\n{verb}\n" + paper.align(equations)
 
 
 def _breakable(cell: str) -> str:
@@ -143,7 +143,7 @@ def _equation(paper: Paper, entry: _Entry) -> Equation:
     pieces = paper.pieces([node], limit)
     if any(piece.forced or not fits(piece.body, limit) for piece in pieces):
         pieces = paper.pieces(_step_by_step(paper, entry.cycle), limit)
-    return Equation(left, tuple(pieces))
+    return Equation(left, tuple(pieces), meanings=(node,))
 
 
 def _step_by_step(paper: Paper, cycle: Cycle) -> list[Expression]:

@@ -27,6 +27,7 @@ from symbolic_response.appendix.page import (
 )
 from symbolic_response.appendix.paper import Paper
 from symbolic_response.appendix.proofs_section import proofs_section
+from symbolic_response.appendix.read_back import read_back, sentence
 from symbolic_response.appendix.requests import extras, requested
 from symbolic_response.appendix.results import results_section
 from symbolic_response.appendix.sources import bibliography, bibtex, cited_in
@@ -148,6 +149,7 @@ def _body(
         proved, record = proofs.section, proofs.record
     sections += [control_section(paper, proved), proved]
     sections.append(certificates_section(paper, entries, wanted.certificates, wanted.digests))
+    sections.append(sentence(read_back(paper)))
     body = "\n\n".join(section for section in sections if section)
     return displays.fitted(body, paper.width), record
 

@@ -8,7 +8,6 @@ from symbolic_response.appendix.named_sums import NamedSum
 from symbolic_response.appendix.paper import Paper
 from symbolic_response.expressions.breaking import (
     Equation,
-    align,
     continued,
     line_limit,
 )
@@ -223,14 +222,17 @@ def definitions_text(paper: Paper, definitions: Sequence[NamedSum]) -> str:
             described.append(named)
             continue
         pieces = paper.pieces(first, limit) if first is not None else []
+        meanings = [] if first is None else [add(first)]
         if printed:
+            meanings.append(named.form.expression())
             terms = (
                 paper.fitted(named.form, limit)[0] if named.kind == "remainder"
                 else paper.pieces(paper.terms(named.form), limit)
             )
             pieces = [*pieces, *continued(terms)] if pieces else terms
-        equations.append(Equation(named.latex, tuple(pieces)))
-    texts = [align(equations, paper.width)] if equations else []
+        equations.append(Equation(named.latex, tuple(pieces), quantities=(Symbol(named.key),),
+                                  meanings=tuple(meanings)))
+    texts = [paper.align(equations)] if equations else []
     if described:
         texts.insert(0, filled(paper, _description(described)))
     return "\n".join(texts)

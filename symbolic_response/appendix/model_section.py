@@ -8,7 +8,7 @@ from symbolic_response.appendix.escape import escaped, paragraphs
 from symbolic_response.appendix.formulas import filled
 from symbolic_response.appendix.paper import Paper
 from symbolic_response.appendix.tables import Column, table, table_width
-from symbolic_response.expressions.breaking import Equation, align, line_limit
+from symbolic_response.expressions.breaking import Equation, line_limit
 from symbolic_response.expressions.tree import ZERO, Expression, Sum
 from symbolic_response.expressions.widths import DISPLAY, formula_width
 from symbolic_response.network.quantities import (
@@ -143,7 +143,7 @@ def _transitions(paper: Paper) -> str:
     parts.append("The transitions are:\n" + _formula_table(
         paper, [*shown, *(f"${c}$" for c in columns)], rows
     ))
-    parts.append("Their rates are\n" + align(_rate_equations(paper), paper.width))
+    parts.append("Their rates are\n" + paper.align(_rate_equations(paper)))
     return "\n\n".join(parts)
 
 
@@ -167,7 +167,8 @@ def _rate_equations(paper: Paper) -> list[Equation]:
 
 def _equation(paper: Paper, left: str, value: Expression) -> Equation:
     terms = list(value.terms) if isinstance(value, Sum) else [value]
-    return Equation(left, tuple(paper.pieces(terms, line_limit(left, paper.width))))
+    pieces = tuple(paper.pieces(terms, line_limit(left, paper.width)))
+    return Equation(left, pieces, meanings=(value,))
 
 
 def _energy_form(paper: Paper) -> str:
@@ -189,7 +190,7 @@ barriers $@barrier@_e$ and the drives $@drive@_e$ as
     ]
     if not equations:
         return text
-    return text + "\nThe energies are\n" + align(equations, paper.width)
+    return text + "\nThe energies are\n" + paper.align(equations)
 
 
 def _observables(paper: Paper) -> str:
@@ -218,7 +219,7 @@ def _observables(paper: Paper) -> str:
     inline = [f"${e.left} = {_one_line(e)}$" for e in equations]
     if len(inline) <= 8 and all(formula_width(text_[1:-1]) < 120 for text_ in inline):
         return text + f" The values other than zero are {_and(inline)}."
-    return text + " The values other than zero are\n" + align(equations, paper.width)
+    return text + " The values other than zero are\n" + paper.align(equations)
 
 
 def _one_line(equation: Equation) -> str:

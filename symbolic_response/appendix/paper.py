@@ -19,7 +19,9 @@ from symbolic_response.appendix.named_sums import NamedSum, NamedSums
 from symbolic_response.appendix.page import Page
 from symbolic_response.appendix.short_forms import ShortForms
 from symbolic_response.expressions.breaking import (
+    Equation,
     Piece,
+    align,
     fits,
     product_pieces,
     sum_pieces,
@@ -43,12 +45,20 @@ from symbolic_response.response.notation import Notation
 MAX_PRINTED_TERMS = 2000
 
 
+@dataclass(frozen=True, slots=True)
+class Printed:
+    """Equations, and the LaTeX they were set in."""
+
+    text: str
+    equations: tuple[Equation, ...]
+
+
 @dataclass(slots=True)
 class Paper:
     """One document in the making; ``defined`` holds the keys of sums defined so far.
 
-    ``explained`` holds the general notions a section has explained; ``letters`` those of the
-    notation and of the proofs, by role.
+    ``explained`` holds the general notions a section has explained; ``printed`` the equations set
+    so far; ``letters`` those of the notation and of the proofs, by role.
     """
 
     network: Network
@@ -59,6 +69,7 @@ class Paper:
     room: int = MAX_PRINTED_TERMS
     defined: set[str] = field(default_factory=set)
     explained: set[str] = field(default_factory=set)
+    printed: list[Printed] = field(default_factory=list)
     letters: Mapping[str, str] = field(init=False)
     short: ShortForms = field(init=False)
 
@@ -79,6 +90,12 @@ class Paper:
         """Return a form, its sums as short as can be, as the terms of a sum."""
         node = self.short.of(form.expression())
         return list(node.terms) if isinstance(node, Sum) else [node]
+
+    def align(self, equations: Sequence[Equation]) -> str:
+        """Return equations set in lines of the page, and note them for reading back."""
+        text = align(equations, self.width)
+        self.printed.append(Printed(text, tuple(equations)))
+        return text
 
     def take(self, terms: int) -> bool:
         """Return whether so many terms may still be printed, and count them if so."""

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from fractions import Fraction
 from math import lcm
 
@@ -21,17 +21,13 @@ from symbolic_response.appendix.paper import Paper
 from symbolic_response.errors import SizeLimitError
 from symbolic_response.expressions.breaking import (
     Equation,
-    align,
     continued,
     line_limit,
     sum_pieces,
 )
 from symbolic_response.expressions.latex import SignedTerm, fraction_latex
 from symbolic_response.expressions.ring import Polynomial
-from symbolic_response.expressions.tree import (
-    Expression,
-    Number,
-)
+from symbolic_response.expressions.tree import Expression, Number, number
 from symbolic_response.expressions.widths import formula_width
 from symbolic_response.network.quantities import (
     BarrierOf,
@@ -128,7 +124,7 @@ def _group(paper: Paper, kind: str, quantities: Sequence[Expression]) -> str:
     if definitions:
         texts.append(formulas.definitions_text(paper, definitions))
         texts.append("With these," if len(equations) > 1 else "Hence")
-    texts.append(align(_merged(equations, paper.width), paper.width))
+    texts.append(paper.align(_merged(equations, paper.width)))
     return "\n".join(text for text in texts if text)
 
 
@@ -152,7 +148,8 @@ def _merged(equations: Sequence[Equation], width: float) -> list[Equation]:
         if alike and r"\frac" not in equation.left:
             left = f"{merged[-1].left} = {equation.left}"
             if formula_width(left) < 0.4 * width:
-                merged[-1] = Equation(left, equation.pieces)
+                both = (*merged[-1].quantities, *equation.quantities)
+                merged[-1] = replace(equation, left=left, quantities=both)
                 continue
         merged.append(equation)
     return merged
@@ -184,10 +181,13 @@ def closed_result(paper: Paper, quantity: Expression) -> Result:
 def _equation(paper: Paper, result: Result) -> tuple[Equation, list[NamedSum]]:
     left = quantity_in(paper.notation, result.quantity)
     pieces, fresh = paper.fitted(result.form, line_limit(left, paper.width))
+    meanings = [result.form.expression()]
     if result.value is not None and not result.form.is_constant():
         shown = SignedTerm(result.value < 0, fraction_latex(abs(result.value)))
         pieces = [*pieces, *continued(sum_pieces([shown]))]
-    return Equation(left, tuple(pieces)), fresh
+        meanings.append(number(result.value))
+    return Equation(left, tuple(pieces), quantities=(result.quantity,),
+                    meanings=tuple(meanings)), fresh
 
 
 def _direct(paper: Paper, quantity: Expression) -> Factored | None:

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Mapping
+from fractions import Fraction
 
 from symbolic_response.algebra.compact.factor import factored
 from symbolic_response.algebra.compact.measure import characters
@@ -11,6 +12,8 @@ from symbolic_response.expressions.tree import Expression, rebuild
 
 MAX_TERMS = 400
 """Longer sums stay as they are: a short form of one has no use for a reader."""
+EXPONENTIALS = Fraction(1, 2)
+"""Sums of exponentials read well as they are; a nested form must be shorter by this factor."""
 
 
 class ShortForms:
@@ -29,8 +32,9 @@ class ShortForms:
             return leaf
         if leaf not in self._made:
             short = factored(leaf.poly, leaf.ring, self._width)
-            kept = characters(short, self._width) < characters(leaf, self._width)
-            self._made[leaf] = short if kept else leaf
+            exponentials = any(g.kind == "exp" for g in leaf.ring.generators)
+            most = characters(leaf, self._width) * (EXPONENTIALS if exponentials else 1)
+            self._made[leaf] = short if characters(short, self._width) < most else leaf
         return self._made[leaf]
 
     def _width(self, name: str) -> int:

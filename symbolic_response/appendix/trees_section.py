@@ -6,13 +6,12 @@ from symbolic_response.appendix.formulas import filled, is_one
 from symbolic_response.appendix.paper import Paper
 from symbolic_response.expressions.breaking import (
     Equation,
-    align,
     continued,
     line_limit,
     sum_pieces,
 )
 from symbolic_response.expressions.latex import latex_terms
-from symbolic_response.expressions.tree import Symbol
+from symbolic_response.expressions.tree import Symbol, add
 from symbolic_response.expressions.widths import formula_width
 from symbolic_response.topology import count_undirected_trees
 
@@ -27,12 +26,14 @@ def trees_section(paper: Paper) -> str:
         equations = []
         for s in sums:
             limit = line_limit(s.latex, paper.width)
-            equations.append(Equation(s.latex, tuple(paper.pieces(paper.terms(s.form), limit))))
+            pieces = tuple(paper.pieces(paper.terms(s.form), limit))
+            equations.append(Equation(s.latex, pieces, quantities=(Symbol(s.key),),
+                                      meanings=(s.form.expression(),)))
         text.append(counts + " The tree sums and their total are\n"
-                    + align([*equations, _total(paper)], paper.width))
+                    + paper.align([*equations, _total(paper)]))
     else:
         text.append(counts + filled(paper, _too_long(terms)) + "\n"
-                    + align([_total(paper)], paper.width))
+                    + paper.align([_total(paper)]))
     paper.defined.update(s.key for s in (*sums, paper.sums.total()))
     return "\n\n".join(part for part in text if part)
 
@@ -77,7 +78,7 @@ def _factor(paper: Paper) -> str:
     if formula_width(f"{left} = {right}") < 0.4 * paper.width:
         return f" ${left} = {right}$,"
     pieces = paper.pieces([node], line_limit(left, paper.width))
-    return "\n" + align([Equation(left, tuple(pieces))], paper.width) + "\n"
+    return "\n" + paper.align([Equation(left, tuple(pieces), meanings=(node,))]) + "\n"
 
 
 def _too_long(terms: int) -> str:
@@ -93,6 +94,10 @@ def _total(paper: Paper) -> Equation:
         Symbol(paper.sums.tree(k).key) for k in range(paper.analysis.graph.size)
     ]
     pieces = paper.pieces(names, limit)
+    meanings = [add(names)]
     if total.form.is_constant():
-        pieces += continued(sum_pieces(latex_terms(total.form.expression(), {})))
-    return Equation(total.latex, tuple(pieces))
+        value = total.form.expression()
+        pieces += continued(sum_pieces(latex_terms(value, {})))
+        meanings.append(value)
+    return Equation(total.latex, tuple(pieces), quantities=(Symbol(total.key),),
+                    meanings=tuple(meanings))

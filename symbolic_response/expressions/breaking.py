@@ -13,6 +13,7 @@ from dataclasses import dataclass
 
 from symbolic_response.expressions.latex import SignedTerm
 from symbolic_response.expressions.loosening import parts_of
+from symbolic_response.expressions.tree import Expression
 from symbolic_response.expressions.widths import formula_width
 
 NUMBER_ROOM = 30.0
@@ -29,8 +30,8 @@ class Piece:
     r"""A part of a right side that stays on one line.
 
     ``sign`` is ``""`` or ``"-"`` for the first piece, then ``"+"``, ``"-"``, ``"="``,
-    ``"\\times"``, or ``""`` for a factor, before which only a new line has a cross. ``forced``: a
-    line ends before this piece in any case.
+    ``"\\times"``, or ``""`` or ``"\\cdot"`` for a factor, before which a new line has a cross.
+    ``forced``: a line ends before this piece in any case.
     """
 
     sign: str
@@ -40,11 +41,17 @@ class Piece:
 
 @dataclass(frozen=True, slots=True)
 class Equation:
-    """One numbered equation; ``relation`` stands between the sides: ``=`` or ``\\le``."""
+    """One numbered equation; ``relation`` stands between the sides: ``=`` or ``\\le``.
+
+    ``quantities`` and ``meanings``: what the left sides and the right sides stand for, where it is
+    known.
+    """
 
     left: str
     pieces: tuple[Piece, ...]
     relation: str = "="
+    quantities: tuple[Expression, ...] = ()
+    meanings: tuple[Expression, ...] = ()
 
 
 def sum_pieces(terms: Sequence[SignedTerm]) -> list[Piece]:
@@ -109,7 +116,7 @@ def _rows(equation: Equation, limit: float, wide: bool) -> str:
         elif first.sign == "=":
             head = start + "="
         else:
-            head = start + r"\quad{}" + (first.sign or r"\times")
+            head = start + r"\quad{}" + _opening(first.sign)
         rows.append(f"{head} {_joined(line)}")
     return " \\notag\\\\\n".join(rows)
 
@@ -120,7 +127,12 @@ def _left_rows(left: str, room: float) -> list[str]:
         return [f"&{left}"]
     first, *rest = break_lines(loosened([Piece("", left)], room), room)
     return [f"&{_joined(first)}"] + [
-        r"&\quad{}" + (line[0].sign or r"\times") + f" {_joined(line)}" for line in rest]
+        r"&\quad{}" + _opening(line[0].sign) + f" {_joined(line)}" for line in rest]
+
+
+def _opening(sign: str) -> str:
+    """Return the sign that a line begins with: a cross within a product."""
+    return r"\times" if sign in ("", r"\cdot") else sign
 
 
 def _joined(line: Sequence[Piece]) -> str:

@@ -1,9 +1,9 @@
 """Printing expressions as LaTeX.
 
 Spacing is chosen so that the text reads back without guessing: a space between a control word and
-a letter, ``\\cdot`` before a number and before a parenthesis that follows a function, or that follows
-a symbol and holds no sum, parentheses around whatever carries a superscript of its own before
-another one, plain parentheses throughout.
+a letter, ``\\cdot`` before a number and before a parenthesis that follows a function, or that
+follows a symbol and holds no sum, parentheses around whatever carries a superscript of its own
+before another one, plain parentheses throughout.
 """
 
 from __future__ import annotations
@@ -23,7 +23,6 @@ from symbolic_response.expressions.layout import (
 )
 from symbolic_response.expressions.ring import Polynomial
 from symbolic_response.expressions.tree import Expression, Function, Number, Sum, Symbol
-
 
 _CALLS = (r"\ln", r"\exp")
 
@@ -176,7 +175,19 @@ def _atom(base: Expression, names: Mapping[str, str]) -> str:
             return rf"\ln({inner})"
         case Number(value) if value >= 0 and value.denominator == 1:
             return fraction_latex(value)
-    return f"({expression_latex(base, names)})"
+    inner = expression_latex(base, names)
+    # a sum with a name of its own prints with its parentheses
+    return inner if isinstance(base, Polynomial) and _is_wrapped(inner) else f"({inner})"
+
+
+def _is_wrapped(text: str) -> bool:
+    """Return whether a text is one pair of parentheses with something inside."""
+    depth = 0
+    for place, character in enumerate(text):
+        depth += {"(": 1, ")": -1}.get(character, 0)
+        if depth == 0:
+            return place == len(text) - 1 and place > 0
+    return False
 
 
 def _before_slash(layout: FractionLayout, names: Mapping[str, str]) -> str:

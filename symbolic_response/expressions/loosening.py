@@ -19,7 +19,8 @@ _JOINED = re.compile(r"[)^_/,=<>|]|\\(?:le|ge|to|bigr|Bigr|right)\b")
 
 
 def parts_of(body: str, limit: float, width: Callable[[str], float]) -> list[tuple[str, str]]:
-    r"""Return the parts between which a line may end, each with its sign: ``+``, ``-`` or none.
+    r"""Return the parts between which a line may end, each with its sign, none between factors that
+    have none.
 
     ``width`` measures a formula; what is not wider than ``limit`` by itself is left together.
 
@@ -48,6 +49,8 @@ def _rewritten(body: str, limit: float, width: Callable[[str], float]) -> str:
         if new is None:
             start = end
         else:
+            if new.startswith(r"\exp") and body[end:].lstrip().startswith("("):
+                new += r" \cdot"
             body, start = body[:found.start()] + new + body[end:], found.start()
         found = _OPENING.search(body, start)
     return body
@@ -80,7 +83,7 @@ def _split(body: str) -> list[tuple[str, str]]:
         if token in _SIGNS and last and not before.endswith("("):
             parts.append((token, ""))
         elif token in _CROSSES:
-            parts += [("", "")] if last else []
+            parts += [("" if token == r"\," else token, "")] if last else []
         elif not last or _WORDS.search(before) or _JOINED.match(token) or before[-1] in "=(|/":
             parts[-1] = (sign, f"{last} {token}".strip())
         else:
