@@ -8,11 +8,13 @@ import re
 import shutil
 import subprocess
 import sys
+from collections.abc import Iterable
 from fractions import Fraction
 from pathlib import Path
 
 import flint
 import pytest
+import sympy
 
 sys.path.insert(0, str(Path(__file__).parent))
 
@@ -92,19 +94,27 @@ def test_every_kind_of_quantity_compiles(tmp_path: Path, requires_latex: None) -
 # -- what is printed ---------------------------------------------------------------------------
 
 
-def printed_sum(text: str, left: str) -> dict[frozenset[str], int]:
-    """Read a printed sum of products of juxtaposed symbols, by itself."""
+def printed_sum(text: str, left: str, symbols: Iterable[str]) -> dict[frozenset[str], int]:
+    """Read sums of juxtaposed symbols within parentheses, by itself; SymPy multiplies them out."""
     start = text.index(f"{left} &=") + len(left) + 3
     body = re.split(r"\\\\\n(?!&)|\n\\end", text[start:])[0]
-    body = body.replace(r"\notag\\", " ").replace(r"&\quad{}", " ").replace("\\\\", "")
-    found: dict[frozenset[str], int] = {}
-    for sign, term in re.findall(r"([+-]?)\s*([^+-]+)", body.strip()):
-        symbols = term.split()
-        assert len(symbols) == len(set(symbols))
-        key = frozenset(symbols)
-        assert key not in found
-        found[key] = -1 if sign == "-" else 1
-    return found
+    for mark in (r"\notag\\", r"&\quad{}", r"\times", r"\cdot", "\\\\"):
+        body = body.replace(mark, " ")
+    known = sorted(symbols, key=len, reverse=True)
+    tokens = re.findall("|".join([*map(re.escape, known), r"[-+()]", r"\S"]), body)
+    code, before = "", "("
+    for token in tokens:
+        word = f"v{known.index(token)}" if token in known else token
+        assert token in known or token in "+-()", token
+        code += "*" * (before not in "+-(" and word not in "+-)") + word
+        before = word
+    places = sympy.symbols(f"v:{len(known)}")
+    poly = sympy.Poly(sympy.sympify(code, dict(zip(map(str, places), places, strict=True))), places)
+    assert all(max(powers) <= 1 for powers in poly.monoms())
+    return {
+        frozenset(known[place] for place, power in enumerate(powers) if power): int(coefficient)
+        for powers, coefficient in poly.terms()
+    }
 
 
 @pytest.mark.parametrize("source", [RING, K4])
@@ -121,7 +131,7 @@ def test_printed_tree_sums_are_the_minors(source: str) -> None:
             frozenset().union(*(shown[place] for place, e in enumerate(exponents) if e)): int(c)
             for exponents, c in minor.terms()
         }
-        assert printed_sum(text, f"N_{{{state.name}}}") == expected
+        assert printed_sum(text, f"N_{{{state.name}}}", names.values()) == expected
 
 
 @pytest.mark.parametrize("name", ["ring", "energy", "one_way", "k4", "pair", "numbers", "odd"])

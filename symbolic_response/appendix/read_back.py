@@ -20,6 +20,7 @@ from symbolic_response.hand.names import Names, names_of
 from symbolic_response.hand.reading import read_formula_tokens
 from symbolic_response.hand.statements import Statement
 from symbolic_response.hand.tokens import Token
+from symbolic_response.network.quantities import Change, walk_quantity
 
 
 @dataclass(frozen=True, slots=True)
@@ -74,6 +75,8 @@ def _sides(
                           f" {len(statement.parts)} sides")
     lefts, rights = statement.parts[:-count], statement.parts[-count:]
     for tokens, quantity in zip(lefts, equation.quantities, strict=False):
+        if any(isinstance(part, Change) for part in walk_quantity(quantity)):
+            continue  # written in the notation of integrals, which the reader does not have
         if _read(equation, tokens, source, names) != quantity:
             raise OutputError(f"the left side {equation.left!r} reads back as something else")
     for tokens, meaning in zip(rights, equation.meanings, strict=True):
