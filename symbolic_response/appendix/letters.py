@@ -5,10 +5,9 @@ None of them is a symbol of the file or a letter of the notation.
 
 from __future__ import annotations
 
-import re
 from collections.abc import Mapping, Sequence
 
-from symbolic_response.expressions.names import same_latex
+from symbolic_response.expressions.names import base_latex, same_latex
 from symbolic_response.response.notation import Notation
 
 PROOF_LETTERS = {
@@ -43,6 +42,13 @@ CONTROL_LETTERS = {
 }
 """The same for control parameters; t of the proofs is explained where it occurs, and local."""
 
+ELIMINATION_LETTERS = {
+    "exit": ("S", r"\mathcal{S}", r"\mathbf{S}"),
+    "effective": (r"\tilde{w}", r"\tilde{W}", r"\mathbf{w}"),
+    "shared": ("K", r"\mathcal{K}", r"\mathbf{K}"),
+}
+"""The same for tree sums by elimination."""
+
 
 def proof_letters(notation: Notation) -> dict[str, str]:
     """Return a letter for each role in the proofs."""
@@ -51,8 +57,9 @@ def proof_letters(notation: Notation) -> dict[str, str]:
 
 def _chosen(roles: Mapping[str, Sequence[str]], notation: Notation) -> dict[str, str]:
     """Return a letter for each role; where all of one are taken it is written as its name."""
-    taken = {same_latex(re.split(r"[_^']", text)[0]) for text in notation.symbols.values()}
-    taken |= {same_latex(letter) for letter in notation.letters.values()}
+    taken = {same_latex(base_latex(text.removeprefix(notation.beta).strip()))
+             for text in notation.symbols.values()}
+    taken |= {same_latex(letter) for letter in (*notation.letters.values(), notation.beta)}
     chosen: dict[str, str] = {}
     for role, letters in roles.items():
         free = [letter for letter in letters if same_latex(letter) not in taken]
@@ -63,4 +70,5 @@ def _chosen(roles: Mapping[str, Sequence[str]], notation: Notation) -> dict[str,
 
 def letters_of(notation: Notation) -> Mapping[str, str]:
     """Return the letters of the notation, of the proofs and of control parameters by role."""
-    return dict(notation.letters) | proof_letters(notation) | _chosen(CONTROL_LETTERS, notation)
+    return (dict(notation.letters) | proof_letters(notation) | _chosen(CONTROL_LETTERS, notation)
+            | _chosen(ELIMINATION_LETTERS, notation))

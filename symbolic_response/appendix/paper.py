@@ -58,7 +58,8 @@ class Paper:
     """One document in the making; ``defined`` holds the keys of sums defined so far.
 
     ``explained`` holds the general notions a section has explained; ``printed`` the equations set
-    so far; ``letters`` those of the notation and of the proofs, by role.
+    so far; ``helpers`` the LaTeX of further symbols; ``letters`` those of the notation and of the
+    proofs, by role.
     """
 
     network: Network
@@ -70,6 +71,7 @@ class Paper:
     defined: set[str] = field(default_factory=set)
     explained: set[str] = field(default_factory=set)
     printed: list[Printed] = field(default_factory=list)
+    helpers: dict[str, str] = field(default_factory=dict)
     letters: Mapping[str, str] = field(init=False)
     short: ShortForms = field(init=False)
 
@@ -82,9 +84,13 @@ class Paper:
         """The width of a line, as formulas are measured."""
         return self.page.width
 
+    def names(self) -> dict[str, str]:
+        """Return the LaTeX of all symbols: of the file, of sums, and further ones."""
+        return self.sums.names() | self.helpers
+
     def latex(self, node: Expression) -> str:
         """Return an expression in the user's symbols and named sums."""
-        return expression_latex(self.short.of(node), self.sums.names())
+        return expression_latex(self.short.of(node), self.names())
 
     def terms(self, form: Factored) -> list[Expression]:
         """Return a form, its sums as short as can be, as the terms of a sum."""
@@ -106,7 +112,7 @@ class Paper:
 
     def pieces(self, terms: Sequence[Expression], limit: float) -> list[Piece]:
         """Return the terms of a sum as pieces that fit the limit."""
-        names = self.sums.names()
+        names = self.names()
         pieces: list[Piece] = []
         for node in map(self.short.of, terms):
             for term in latex_terms(node, names):
@@ -133,7 +139,7 @@ class Paper:
         printed = []
         for piece in above:
             shown = self.latex(piece)
-            printed.append(f"({shown})" if len(latex_terms(piece, self.sums.names())) > 1
+            printed.append(f"({shown})" if len(latex_terms(piece, self.names())) > 1
                            else shown)
         if layout.top != 1 or layout.bottom != 1:
             size = f"{layout.top}"
@@ -149,7 +155,7 @@ class Paper:
         while True:
             terms = self.terms(form)
             if all(fits(t.body, limit) for node in terms
-                   for t in latex_terms(node, self.sums.names())):
+                   for t in latex_terms(node, self.names())):
                 break
             base = _widest(form, self)
             if base is None:

@@ -13,14 +13,14 @@ from symbolic_response.errors import OutputError, SymbolicResponseError
 from symbolic_response.expressions.breaking import Equation
 from symbolic_response.expressions.enclosure import nonzero_somewhere
 from symbolic_response.expressions.ring import Domain
-from symbolic_response.expressions.tree import Expression, Symbol, add, negate, rebuild
+from symbolic_response.expressions.tree import ZERO, Expression, Symbol, add, negate, rebuild
 from symbolic_response.hand.equality import equal
 from symbolic_response.hand.gathering import gathered
 from symbolic_response.hand.names import Names, names_of
 from symbolic_response.hand.reading import read_formula_tokens
 from symbolic_response.hand.statements import Statement
 from symbolic_response.hand.tokens import Token
-from symbolic_response.network.quantities import Change, walk_quantity
+from symbolic_response.network.quantities import Change, DirectedRate, walk_quantity
 
 
 @dataclass(frozen=True, slots=True)
@@ -37,22 +37,32 @@ def read_back(paper: Paper) -> Count:
     Raises OutputError, naming the formula, at the first that cannot be read or means something
     else.
     """
-    sums = paper.sums.by_key
-    names = names_of(paper.network, paper.notation).with_definitions(
-        {named.latex: Symbol(key) for key, named in sums.items()}
-    )
-    domain = paper.analysis.domain
-    positive = {key for key, named in sums.items() if named.generator().positive}
-    wider = Domain((*domain.names, *sums), domain.positive | positive)
+    names, domain = _names(paper), _domain(paper)
     exact = close = 0
     for printed in paper.printed:
         for equation, statement, source in _statements(printed):
             for found, meaning in _sides(equation, statement, source, names):
                 settled = _same(equation, _written_out(found, paper),
-                                _written_out(meaning, paper), wider)
+                                _written_out(meaning, paper), domain)
                 exact += settled
                 close += not settled
     return Count(exact, close)
+
+
+def _names(paper: Paper) -> Names:
+    """Return the names of the network, of its sums and of what else was given a name."""
+    known = names_of(paper.network, paper.notation, variants=False)
+    further = {named.latex: Symbol(key) for key, named in paper.sums.by_key.items()}
+    further |= {latex: Symbol(key) for key, latex in paper.helpers.items()
+                if key.startswith("#") and key not in paper.sums.by_key}
+    return known.with_definitions(further)
+
+
+def _domain(paper: Paper) -> Domain:
+    domain, sums = paper.analysis.domain, paper.sums.by_key
+    names = dict.fromkeys((*domain.names, *sums, *paper.helpers))
+    positive = {key for key, named in sums.items() if named.generator().positive}
+    return Domain(tuple(names), domain.positive | positive | paper.helpers.keys())
 
 
 def _statements(printed: Printed) -> Iterator[tuple[Equation, Statement, str]]:
@@ -93,9 +103,16 @@ def _same(equation: Equation, found: Expression, meaning: Expression, domain: Do
 
 
 def _written_out(node: Expression, paper: Paper) -> Expression:
-    """Return an expression without the names that were given to parts of it for want of room."""
+    """Return an expression without the names that were given to parts of it for want of room.
+
+    Rates become their symbols.
+    """
 
     def leaf(part: Expression) -> Expression:
+        if isinstance(part, DirectedRate):
+            rates = paper.analysis.rates
+            place = rates.place(part.transition, part.backward)
+            return ZERO if place is None else rates.ring.generators[place].base
         named = paper.sums.by_key.get(part.name) if isinstance(part, Symbol) else None
         if named is None or named.kind != "remainder":
             return part

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from symbolic_response.appendix.elimination import elimination_text, serves
 from symbolic_response.appendix.formulas import filled, is_one
 from symbolic_response.appendix.paper import Paper
 from symbolic_response.expressions.breaking import (
@@ -22,7 +23,10 @@ def trees_section(paper: Paper) -> str:
     counts = _counts(paper)
     sums = [paper.sums.tree(k) for k in range(paper.analysis.graph.size)]
     terms = sum(s.terms for s in sums)
-    if paper.take(terms):
+    if serves(paper):
+        text.append(counts + filled(paper, f" The tree sums have {terms:,} terms in all. ")
+                    + elimination_text(paper) + "\nTheir total is\n" + paper.align([_total(paper)]))
+    elif paper.take(terms):
         equations = []
         for s in sums:
             limit = line_limit(s.latex, paper.width)

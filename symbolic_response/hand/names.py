@@ -139,13 +139,16 @@ def _in_braces(items: Items) -> bool:
     return items[0].head == r"\{" and items[-1].head == r"\}"
 
 
-def names_of(network: Network, notation: Notation | None = None) -> Names:
+def names_of(
+    network: Network, notation: Notation | None = None, *, variants: bool = True
+) -> Names:
     r"""Return the names of a network, in its own notation if none is given.
 
+    Without ``variants`` only letters and labels as the notation writes them are known.
     Raises NetworkError where the section ``[notation]`` cannot be used, FormulaError where the
     LaTeX of a symbol is not well formed.
     """
-    return _Writer(network, notation or notation_of(network)).names()
+    return _Writer(network, notation or notation_of(network), variants).names()
 
 
 @dataclass(slots=True)
@@ -154,6 +157,7 @@ class _Writer:
 
     network: Network
     notation: Notation
+    variants: bool
     values: Builder = field(default_factory=Builder)
     by: Builder = field(default_factory=Builder)
 
@@ -168,7 +172,8 @@ class _Writer:
         states = [self.state_labels(k) for k in range(len(self.network.states))]
         transitions = [self.transition_labels(e) for e in range(len(self.network.transitions))]
         self.quantities(states, transitions)
-        self.generators(states)
+        if self.variants:
+            self.generators(states)
         self.raised(states, transitions)
         own = {name: perturbation for perturbation, name in self.notation.own.items()}
         return Names(
@@ -201,6 +206,8 @@ class _Writer:
         """Yield the letter of a role, then the others that nothing else has."""
         chosen = self.notation.letters[role]
         yield chosen, 0
+        if not self.variants:
+            return
         taken = {same_latex(base_latex(t)) for t in plain_symbol_names(self.network).values()}
         taken |= {same_latex(letter) for letter in self.notation.letters.values()}
         if self.notation.beta:
@@ -215,12 +222,16 @@ class _Writer:
 
     def state_labels(self, place: int) -> list[tuple[str, int]]:
         state = self.network.states[place]
+        if not self.variants:
+            return [(self.notation.states[place], 0)]
         own = state.latex or default_latex(state.name)
         return _labels(self.notation.states[place], own, default_latex(state.name),
                        upright(state.name))
 
     def transition_labels(self, place: int) -> list[tuple[str, int]]:
         name = self.network.transitions[place].name
+        if not self.variants:
+            return [(self.notation.transitions[place], 0)]
         return _labels(self.notation.transitions[place], upright(name))
 
     def quantities(
