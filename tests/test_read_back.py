@@ -6,6 +6,7 @@ The reader of hand results shares no code with the printer; here the printer is 
 from __future__ import annotations
 
 from collections.abc import Callable, Mapping
+from dataclasses import replace
 from pathlib import Path
 
 import pytest
@@ -20,7 +21,6 @@ from tests.appendix_networks import ALL
 WORKED = sorted((Path(__file__).parent.parent / "worked_cases").glob("*/network.toml"))
 RING = build_network("ring", states="A B C", transitions=[
     ("A", "B", "k*c", "l"), ("B", "C", "m", "n"), ("C", "A", "u", "v")])
-SLOW = ()
 ASKED = ["current[A_B]", "d p[A] / d barrier[A_B]", "d p[C] / d ln c"]
 LINE = "read back from the printed"
 
@@ -60,8 +60,6 @@ def test_a_wrong_formula_stops_the_output(
 
 @pytest.mark.parametrize("path", WORKED, ids=lambda path: path.parent.name)
 def test_worked_cases_say_so(path: Path) -> None:
-    from dataclasses import replace
-
     network = read_network(path)
     appendix = {key: value for key, value in network.appendix.items() if key != "certificates"}
     assert LINE in appendix_text(replace(network, appendix=appendix, control=()))
@@ -75,6 +73,27 @@ def test_names_that_look_like_those_of_the_notation() -> None:
     assert LINE in appendix_text(network)
 
 
-@pytest.mark.parametrize("name", [n for n in ALL if n not in SLOW])
+@pytest.mark.parametrize("name", ALL)
 def test_documents_of_all_kinds_say_so(name: str) -> None:
     assert LINE in appendix_text(read_network_text(ALL[name]))
+
+
+@pytest.mark.parametrize("rates", ["symbols", "shorter"])
+@pytest.mark.parametrize("indices", ["transition", "to-from", "from-to"])
+@pytest.mark.parametrize("path", WORKED[::2], ids=lambda path: path.parent.name)
+def test_forms_in_rates_read_back(path: Path, indices: str, rates: str) -> None:
+    network = read_network(path)
+    notation = {**network.notation, "rates": rates, "indices": indices, "beta": r"\theta"}
+    text = appendix_text(replace(network, notation=notation, appendix={}, control=()))
+    assert LINE in text
+
+
+@pytest.mark.parametrize(("indices", "tree_sum"), [
+    # the trees towards o by hand: l and t step to o; t to l to o; l to t to o
+    ("to-from", r"N_{o} &= W_{ol} (W_{lt} + W_{ot}) + W_{tl} W_{ot}"),
+    ("from-to", r"N_{o} &= W_{lo} (W_{tl} + W_{to}) + W_{lt} W_{to}"),
+])
+def test_tree_sums_in_rates(indices: str, tree_sum: str) -> None:
+    network = read_network(WORKED[0].parent.parent / "turnstile" / "network.toml")
+    text = appendix_text(replace(network, notation={"rates": "symbols", "indices": indices}))
+    assert tree_sum in text

@@ -36,27 +36,37 @@ def cycles_section(paper: Paper) -> str:
         return heading + ("\nThe network has no cycles: all stationary currents vanish, "
                           "detailed balance holds for all values of the rates, and no probability "
                           "depends on a barrier.")
-    try:
-        every: Sequence[Cycle] = analysis.cycles
-        count = f"{len(every)}"
-    except SizeLimitError:
-        every, count = (), f"more than {analysis.cycle_limit:,}"
-    listed = every if 0 < len(every) <= MAX_LISTED else independent
+    listed, count = listed_cycles(paper)
     entries = [_entry(paper, n, cycle) for n, cycle in enumerate(listed, start=1)]
     return "\n\n".join([
-        heading + "\n" + filled(paper, _definition(count, len(listed) == len(every))),
+        heading + "\n" + filled(paper, _definition(count, count == f"{len(listed)}")),
         _listing(paper, entries),
         _balance(paper, [_entry(paper, 0, cycle) for cycle in independent]),
     ])
 
 
+def listed_cycles(paper: Paper) -> tuple[Sequence[Cycle], str]:
+    """Return the cycles that are listed, in order, and how many there are, in words or digits.
+
+    All of them, or fundamental ones where all are too many.
+    """
+    analysis = paper.analysis
+    try:
+        every: Sequence[Cycle] = analysis.cycles
+        count = f"{len(every)}"
+    except SizeLimitError:
+        every, count = (), f"more than {analysis.cycle_limit:,}"
+    return every if 0 < len(every) <= MAX_LISTED else analysis.fundamental_cycles, count
+
+
 def _entry(paper: Paper, number: int, cycle: Cycle) -> _Entry:
-    if any(paper.analysis.graph.one_way[e] for e in cycle.transitions):
+    written = paper.sums.analysis
+    if any(written.graph.one_way[e] for e in cycle.transitions):
         return _Entry(number, cycle, None)
-    force = paper.analysis.simplified(cycle_force(cycle, paper.analysis))
+    force = written.simplified(cycle_force(cycle, written))
     if number:
         back = Cycle(cycle.states, cycle.transitions, tuple(not ahead for ahead in cycle.along))
-        reverse = paper.analysis.simplified(cycle_force(back, paper.analysis))
+        reverse = written.simplified(cycle_force(back, written))
         paper.defined.add(paper.sums.force(number, force, reverse).key)
     return _Entry(number, cycle, force)
 
@@ -148,7 +158,7 @@ def _equation(paper: Paper, entry: _Entry) -> Equation:
 
 def _step_by_step(paper: Paper, cycle: Cycle) -> list[Expression]:
     """Return the force as a sum of one logarithm for each step."""
-    analysis = paper.analysis
+    analysis = paper.sums.analysis
     return [
         function("ln", divide(analysis.rate_expression(e, not ahead),
                               analysis.rate_expression(e, ahead)))

@@ -46,13 +46,11 @@ def elimination_text(paper: Paper) -> str:
 
 def _rate_symbols(paper: Paper) -> dict[str, Expression]:
     """Return what stands for each rate: its own symbol where it is one, else its letter."""
-    analysis, found = paper.analysis, dict[str, Expression]()
+    analysis, found = paper.sums.analysis, dict[str, Expression]()
     for place, (e, backward) in enumerate(analysis.rates.directions()):
         base = analysis.rates.ring.generators[place].base
         rate = analysis.rate_expression(e, backward)
         assert isinstance(base, Symbol)
-        if not isinstance(rate, Symbol):
-            paper.helpers[base.name] = paper.notation.rate(e, backward)
         found[base.name] = rate if isinstance(rate, Symbol) else base
     return found
 

@@ -262,8 +262,9 @@ def first_form(paper: Paper, named: NamedSum) -> list[Expression] | None:
     (e,) = named.place
     transition = paper.network.transitions[e]
     first = paper.sums.tree(transition.first)
-    terms = [multiply([transition.forward, Symbol(first.key)])]
+    rate = paper.sums.analysis.rate_expression
+    terms = [multiply([rate(e), Symbol(first.key)])]
     if transition.backward is not None:
-        back = multiply([transition.backward, Symbol(paper.sums.tree(transition.second).key)])
+        back = multiply([rate(e, True), Symbol(paper.sums.tree(transition.second).key)])
         terms.append(negate(back) if named.kind == "current" else back)
     return [add([term]) for term in terms]

@@ -47,7 +47,7 @@ from symbolic_response.expressions.tree import (
     number,
     walk,
 )
-from symbolic_response.response.analysis import Analysis
+from symbolic_response.response.analysis import Analysis, AnalysisInRates
 from symbolic_response.response.notation import Notation
 
 SHORT_TERMS = 4
@@ -324,7 +324,9 @@ def _common_factor(analysis: Analysis) -> Factored:
     ring_of_rates = analysis.rates.ring
     start = constant(1)
     network = analysis.network
-    if all(t.barrier is not None for t in network.transitions):
+    if not isinstance(analysis, AnalysisInRates) and all(
+        t.barrier is not None for t in network.transitions
+    ):
         energies = [s.energy for s in network.states if s.energy is not None]
         start = analysis.simplified(function("exp", add(energies)))
         if start.factors:

@@ -14,6 +14,7 @@ from symbolic_response.algebra.factored import (
     monomial_of,
     product,
 )
+from symbolic_response.appendix.in_rates import rate_letters
 from symbolic_response.appendix.letters import letters_of
 from symbolic_response.appendix.named_sums import NamedSum, NamedSums
 from symbolic_response.appendix.page import Page
@@ -77,7 +78,8 @@ class Paper:
 
     def __post_init__(self) -> None:
         self.letters = letters_of(self.notation)
-        self.short = ShortForms(self.notation.symbols)
+        self.helpers |= rate_letters(self.analysis, self.notation)
+        self.short = ShortForms(self.names())
 
     @property
     def width(self) -> float:

@@ -12,7 +12,7 @@ from symbolic_response.appendix.paper import Paper, Printed
 from symbolic_response.errors import OutputError, SymbolicResponseError
 from symbolic_response.expressions.breaking import Equation
 from symbolic_response.expressions.enclosure import nonzero_somewhere
-from symbolic_response.expressions.ring import Domain
+from symbolic_response.expressions.ring import Domain, Polynomial, expression_of
 from symbolic_response.expressions.tree import ZERO, Expression, Symbol, add, negate, rebuild
 from symbolic_response.hand.equality import equal
 from symbolic_response.hand.gathering import gathered
@@ -113,6 +113,8 @@ def _written_out(node: Expression, paper: Paper) -> Expression:
             rates = paper.analysis.rates
             place = rates.place(part.transition, part.backward)
             return ZERO if place is None else rates.ring.generators[place].base
+        if isinstance(part, Polynomial) and any(g.kind == "rate" for g in part.ring.generators):
+            return expression_of(part.ring, part.poly)
         named = paper.sums.by_key.get(part.name) if isinstance(part, Symbol) else None
         if named is None or named.kind != "remainder":
             return part

@@ -164,7 +164,7 @@ def closed_result(paper: Paper, quantity: Expression) -> Result:
     direct = _direct(paper, quantity)
     if direct is not None and paper.network.symbols:
         return Result(quantity, direct)
-    plain = paper.analysis.simplified(tree)
+    plain = paper.sums.analysis.simplified(tree)
     if plain.is_constant():
         return Result(quantity, direct or plain, plain.coefficient)
     _note_sums(paper, quantity)

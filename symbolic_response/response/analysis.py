@@ -212,6 +212,25 @@ class Analysis:
         return tuple(fundamental_cycles(self.graph))
 
 
+class AnalysisInRates(Analysis):
+    """An analysis whose forms are written in rates, each a symbol of its own.
+
+    Shares what ``analysis`` has found so far; for printing, not for exact values.
+    """
+
+    def __init__(self, analysis: Analysis) -> None:
+        self.__dict__.update(vars(analysis))
+        self._images = {}
+
+    def rate_expression(self, transition: int, backward: bool = False) -> Expression:
+        """Return a directed rate as itself; it must exist."""
+        super().rate_expression(transition, backward)
+        return Polynomial(self.rates.ring, self.rates.generator(transition, backward))
+
+    def _substituted(self, leaf: Polynomial) -> Factored:
+        return from_polynomial(leaf.poly, leaf.ring, self.substitution.context)
+
+
 def as_analysis(subject: Network | Analysis) -> Analysis:
     """Return the analysis itself, or a new one of a network."""
     return subject if isinstance(subject, Analysis) else Analysis(subject)
