@@ -382,7 +382,7 @@ def coefficients() -> Iterator[Slip]:
 
 def factors() -> Iterator[Slip]:
     """An overall factor, and the normalisation left out or squared."""
-    for graph in (THREE, SHARED, ENERGY, ONE_WAY):
+    for graph in (THREE, ENERGY, ONE_WAY):
         state = graph.states[1]
         right, d = quotient(graph, graph.trees(state), graph.total()), graph.text(graph.total())
         rate = graph.rate((0, False))
@@ -597,7 +597,7 @@ def limits() -> Iterator[Slip]:
 def other_forms() -> Iterator[Slip]:
     """Slips in formulas written in other ways than one sum over another."""
     rng = Random("forms")
-    for graph in (THREE, CHORD, SHARED, ENERGY, ONE_WAY):
+    for graph in (THREE, CHORD, ENERGY, ONE_WAY):
         state = graph.states[1]
         own, total = graph.trees(state), graph.total()
         rest = [tree for tree in total if tree not in own]
@@ -646,10 +646,9 @@ def other_rates() -> Iterator[Slip]:
         rows = [*graph.transitions]
         rows[e] = (*rows[e][:3], wrong, rows[e][4])
         changed = Graph(graph.title, graph.states, tuple(rows), graph.network)
-        for state in graph.states[:2]:
-            yield Slip("other rate", graph, f"p[{state}]",
-                       quotient(changed, changed.trees(state), changed.total()), (words,),
-                       _p(state))
+        state = graph.states[0]
+        yield Slip("other rate", graph, f"p[{state}]",
+                   quotient(changed, changed.trees(state), changed.total()), (words,), _p(state))
     right = quotient(ENERGY, ENERGY.trees("A"), ENERGY.total())
     for old, new, words in (("F/2", "F", "factor 1/2 of the drive"),
                             ("F/2", "(-F)/2", "opposite sign|rate of one are exchanged|F"),

@@ -11,9 +11,12 @@ from functools import cache
 from typing import Any
 
 import mpmath
+import pytest
 
 from symbolic_response.hand.diagnosis import Finding, diagnose
 from symbolic_response.hand.equality import equal
+from symbolic_response.network.build import Rates, build_network
+from symbolic_response.network.model import Network
 from symbolic_response.network.quantity_reader import read_quantity
 from symbolic_response.response.analysis import Analysis
 from symbolic_response.response.closed_form import closed_form
@@ -208,3 +211,43 @@ def test_no_finding_is_contradicted() -> None:
     print(dict(understood))
     assert min(understood[kind] for kind in (
         "tree", "exchange", "quantity", "network", "factor", "term")) >= 8
+
+
+# -- rates that are sums or share symbols, and input of other kinds --------------------------------
+
+TWINS = build_network("twins", states="A B", transitions=[
+    Rates("A", "B", "k", "r", "left"), Rates("A", "B", "k", "r", "right")])
+SUMS = build_network("sums", states="A B C", transitions=[
+    Rates("A", "B", "u + c*v", "r", "ab"), Rates("B", "C", "x", "y", "bc"),
+    Rates("C", "A", "z", "w", "ca")])
+NUMBERS = build_network("numbers", states="A B C", transitions=[
+    Rates("A", "B", 2, 1, "ab"), Rates("B", "C", 3, 1, "bc"), Rates("C", "A", 1, 5, "ca")])
+
+
+def texts(network: Network, quantity: str, hand: str) -> list[str]:
+    sides = (read_quantity(text, network) for text in (quantity, hand))
+    return [finding.text for finding in diagnose(Analysis(network), *sides)]
+
+
+def test_trees_with_the_same_product_are_not_told_apart() -> None:
+    first, *_ = texts(TWINS, "p[B]", "2*k/(k + 2*r)")
+    assert "lacks one of the 2 spanning trees with the product k" in first
+    assert "left forward" in first and "right forward" in first
+
+
+def test_a_tree_with_a_rate_that_is_a_sum() -> None:
+    """Trees towards A: y r, r z, x z; B: (u + c v)(y + z), w y; C: (u + c v) x, w r, w x."""
+    below = "y*r + r*z + x*z + (u + c*v)*y + w*y + (u + c*v)*x + w*r + w*x"
+    first, *_ = texts(SUMS, "p[A]", f"(y*r + r*z + x*z)/({below})")
+    assert first == ("the normalisation lacks the spanning tree towards B: ab forward (u + c*v),"
+                     " ca forward (z)")
+
+
+@pytest.mark.parametrize("network", [TWINS, SUMS, NUMBERS], ids=lambda n: n.title)
+def test_any_formula_is_answered(network: Network) -> None:
+    e = network.transitions[0].name
+    for quantity in (f"current[{e}]", "ln(p[A]/p[B])", f"change(p[A], barrier[{e}], 2)",
+                     "entropy_production"):
+        for hand in ("0", "1/3", "exp(p[A])", "sqrt(p[A])", "entropy_production/2"):
+            if network is not SUMS or hand != "exp(p[A])":
+                assert len(texts(network, quantity, hand)) <= 5

@@ -69,8 +69,10 @@ def _all(case: Case) -> list[Ranked]:
     if not case.network.symbols:  # numbers alone: terms have no names
         return [*quantity_findings(case), *network_findings(case)]
     probe = Probe(case)
-    found = [*tree_findings(case), *term_findings(case, probe), *exchange_findings(case),
-             *quantity_findings(case), *network_findings(case)]
+    by_trees = tree_findings(case)
+    found = [*by_trees, *term_findings(case, probe), *quantity_findings(case)]
+    if not any(ranked.rank == SINGLE and ranked.small for ranked in by_trees):
+        found += [*exchange_findings(case), *network_findings(case)]
     if not any(ranked.rank < FACTOR for ranked in found):
         found += [*rate_findings(case), *factor_findings(case, probe)]
     if not any(ranked.rank < NETWORK or ranked.rank == FACTOR for ranked in found):

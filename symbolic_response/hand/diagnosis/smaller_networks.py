@@ -22,14 +22,24 @@ from symbolic_response.network.quantities import (
     Traffic,
     walk_quantity,
 )
+from symbolic_response.response.analysis import graph_of
+from symbolic_response.topology import count_rooted_trees, is_connected
 
 
 def network_findings(case: Case) -> list[Ranked]:
     """Return smaller networks for which the hand result is right."""
     return [
         Ranked(NETWORK, Finding("network", text))
-        for network, quantity, text in _smaller(case) if case.is_hand(quantity, network)
+        for network, quantity, text in _smaller(case)
+        if _has_steady_state(network) and case.is_hand(quantity, network)
     ]
+
+
+def _has_steady_state(network: Network) -> bool:
+    """Return whether there is one steady state: some state can be reached from all others."""
+    graph = graph_of(network)
+    return is_connected(graph) and any(
+        count_rooted_trees(graph, root) for root in range(graph.size))
 
 
 def _smaller(case: Case) -> Iterator[tuple[Network, Expression, str]]:
