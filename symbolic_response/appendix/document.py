@@ -14,9 +14,16 @@ from symbolic_response.appendix.certificates_section import certificates_section
 from symbolic_response.appendix.control_section import control_section
 from symbolic_response.appendix.cycles_section import cycles_section
 from symbolic_response.appendix.escape import escaped
+from symbolic_response.appendix.figures_section import (
+    LOADED,
+    STYLES,
+    Diagrams,
+    behind,
+    diagrams,
+)
 from symbolic_response.appendix.fragment import fragment, prefixed, theorem_name
+from symbolic_response.appendix.in_rates import named_sums_of
 from symbolic_response.appendix.model_section import model_section
-from symbolic_response.appendix.named_sums import NamedSums
 from symbolic_response.appendix.page import (
     DEFAULT,
     Layout,
@@ -39,6 +46,8 @@ from symbolic_response.files import check_output, write_files
 from symbolic_response.network.model import Network
 from symbolic_response.response.analysis import Analysis
 from symbolic_response.response.notation import notation_of
+
+_DIAGRAM = r"\begin{tikzpicture}[diagram]"
 
 
 def appendix_text(
@@ -111,13 +120,15 @@ def _made(
 ) -> _Made:
     known = analysis if analysis is not None else Analysis(network)
     notation = notation_of(network)
-    paper = Paper(network, known, notation, NamedSums(known, notation), chosen.page)
+    paper = Paper(network, known, notation, named_sums_of(known, notation), chosen.page)
     body, record = _body(paper, quantities, proofs_file)
     cited = cited_in(body)
     sources = bibtex(cited, f"{chosen.prefix}:" if chosen.prefix else "")
     title, packages = escaped(network.title), _packages(body)
     if chosen.fragment:
+        body = STYLES + body if _DIAGRAM in body else body
         return _Made(fragment(body, title, packages, chosen, bib if cited else ""), record, sources)
+    packages += STYLES if _DIAGRAM in body else ""
     listed = prefixed(bibliography(cited), chosen.prefix)
     listed = f"\n\n{before_sources(chosen.page)}{listed}" if cited else ""
     if r"\begin{theorem}" in body:
@@ -133,16 +144,20 @@ def _body(
     """Return the sections, and the record of the proofs."""
     network = paper.network
     request, wanted = requested(network, quantities), extras(network)
+    drawn = diagrams(paper, request.quantities) if wanted.diagrams else Diagrams()
     sections = [
         model_section(paper, request.quantities),
+        drawn.network,
         cycles_section(paper),
         trees_section(paper),
-        results_section(paper, request.quantities, request.note),
+        drawn.trees,
+        behind(results_section(paper, request.quantities, request.note), drawn),
     ]
     record = None
     entries = bounded(paper, request.quantities)
     if wanted.bounds:
         sections.append(bounds_section(paper, request.quantities))
+    sections.append(drawn.splittings)
     proved = ""
     if wanted.proofs:
         proofs = proofs_section(paper, entries, proofs_file, wanted.digests)
@@ -158,5 +173,6 @@ def _packages(body: str) -> str:
     """Return the lines of a preamble that a text needs."""
     tables = "array,booktabs,longtable" if r"\begin{longtable}" in body else "array,booktabs"
     text = f"\\usepackage{{amsmath,amssymb}}\n\\usepackage{{{tables}}}\n"
-    text += pgfplots.PREAMBLE if r"\begin{tikzpicture}" in body else ""
+    text += LOADED if _DIAGRAM in body else ""
+    text += pgfplots.PREAMBLE if r"\begin{axis}" in body else ""
     return text + ("\\usepackage{amsthm}\n" if r"\begin{theorem}" in body else "")

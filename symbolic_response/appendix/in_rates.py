@@ -2,8 +2,8 @@
 
 from __future__ import annotations
 
+from symbolic_response.algebra.compact.short_forms import ShortForms
 from symbolic_response.appendix.named_sums import NamedSums
-from symbolic_response.appendix.short_forms import ShortForms
 from symbolic_response.expressions.latex import expression_latex
 from symbolic_response.expressions.tree import Symbol
 from symbolic_response.response.analysis import Analysis, AnalysisInRates

@@ -6,6 +6,7 @@ from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, field
 from fractions import Fraction
 
+from symbolic_response.algebra.compact.short_forms import ShortForms
 from symbolic_response.algebra.factored import (
     Base,
     Factored,
@@ -18,7 +19,6 @@ from symbolic_response.appendix.in_rates import rate_letters
 from symbolic_response.appendix.letters import letters_of
 from symbolic_response.appendix.named_sums import NamedSum, NamedSums
 from symbolic_response.appendix.page import Page
-from symbolic_response.appendix.short_forms import ShortForms
 from symbolic_response.expressions.breaking import (
     Equation,
     Piece,

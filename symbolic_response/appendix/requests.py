@@ -22,7 +22,7 @@ from symbolic_response.network.quantities import (
 )
 from symbolic_response.network.quantity_reader import read_quantity
 
-KEYS = ("quantities", "bounds", "proofs", "certificates", "digests", *page.KEYS)
+KEYS = ("quantities", "bounds", "proofs", "certificates", "digests", "diagrams", *page.KEYS)
 MAX_CERTIFICATE_POINTS = 100_000
 DEFAULT_RESULTS = 24
 MAX_FURTHER = 12
@@ -41,12 +41,13 @@ class Request:
 
 @dataclass(frozen=True, slots=True)
 class Extras:
-    """What else is printed: bounds, their proofs, certificates of so many points, digests."""
+    """What else is printed: bounds, proofs, certificates of so many points, digests, diagrams."""
 
     bounds: bool = True
     proofs: bool = True
     certificates: int = 0
     digests: bool = False
+    diagrams: bool = True
 
 
 def extras(network: Network) -> Extras:
@@ -55,7 +56,7 @@ def extras(network: Network) -> Extras:
     Bounds that are not stated are not proved either.
     """
     section = network.appendix
-    for key in ("bounds", "proofs", "digests"):
+    for key in ("bounds", "proofs", "digests", "diagrams"):
         if type(section.get(key, False)) is not bool:
             raise NetworkError(f"[appendix] {key} is not true or false")
     count = section.get("certificates", 0)
@@ -67,7 +68,8 @@ def extras(network: Network) -> Extras:
     if proofs and not bounds:
         raise NetworkError("[appendix] proofs is true but bounds is false: what is not stated is"
                            " not proved; write bounds = true, or leave proofs out")
-    return Extras(bounds, proofs, count, bool(section.get("digests", False)))
+    return Extras(bounds, proofs, count, bool(section.get("digests", False)),
+                  bool(section.get("diagrams", True)))
 
 
 def requested(network: Network, quantities: Sequence[str | Expression] | None) -> Request:

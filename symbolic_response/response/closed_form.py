@@ -6,6 +6,7 @@ from collections.abc import Mapping
 from dataclasses import dataclass
 from typing import Any
 
+from symbolic_response.algebra.compact.short_forms import ShortForms
 from symbolic_response.algebra.factored import Factored
 from symbolic_response.expressions.latex import expression_latex
 from symbolic_response.expressions.ring import all_symbols, plain
@@ -31,12 +32,12 @@ class ClosedForm:
         return self.form.expression()
 
     def text(self) -> str:
-        """Return the form in the syntax of the network file."""
-        return expression_text(self.expression)
+        """Return the form in the syntax of the network file, its sums as short as found."""
+        return expression_text(ShortForms({}).of(self.expression))
 
     def latex(self) -> str:
-        """Return the form as LaTeX, without math delimiters."""
-        return expression_latex(self.expression, self.names)
+        """Return the form as LaTeX, without math delimiters, its sums as short as found."""
+        return expression_latex(ShortForms(self.names).of(self.expression), self.names)
 
     def to_sympy(self) -> Any:
         """Return the form as a SymPy expression, its symbols positive or real as in the file."""
