@@ -70,4 +70,7 @@ def compared(analysis: Analysis, hand: HandResult) -> Comparison:
     verdict = judge(analysis, hand.quantity, hand.expression, hand.given)
     if verdict.kind not in ("different", "conditional"):
         return Comparison(hand, verdict)
-    return Comparison(hand, verdict, diagnose(analysis, hand.quantity, hand.expression))
+    findings = diagnose(analysis, hand.quantity, hand.expression)
+    if verdict.kind == "conditional":  # what is needed is said by the condition
+        findings = tuple(f for f in findings if f.kind not in ("limit", "term"))
+    return Comparison(hand, verdict, findings)
