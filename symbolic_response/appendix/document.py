@@ -15,6 +15,7 @@ from symbolic_response.appendix.control_section import control_section
 from symbolic_response.appendix.cycles_section import cycles_section
 from symbolic_response.appendix.escape import escaped
 from symbolic_response.appendix.figures_section import (
+    FLUSHED,
     LOADED,
     STYLES,
     Diagrams,
@@ -130,7 +131,8 @@ def _made(
         return _Made(fragment(body, title, packages, chosen, bib if cited else ""), record, sources)
     packages += STYLES if _DIAGRAM in body else ""
     listed = prefixed(bibliography(cited), chosen.prefix)
-    listed = f"\n\n{before_sources(chosen.page)}{listed}" if cited else ""
+    before = (FLUSHED if r"\begin{figure" in body else "") + before_sources(chosen.page)
+    listed = f"\n\n{before}{listed}" if cited else ""
     if r"\begin{theorem}" in body:
         packages += rf"\newtheorem{{{theorem_name(chosen.prefix)}}}{{Theorem}}" + "\n"
     whole = prefixed(body, chosen.prefix) + listed

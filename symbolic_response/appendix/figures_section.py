@@ -22,6 +22,7 @@ from symbolic_response.appendix.figures_layout import (
     in_lines,
 )
 from symbolic_response.appendix.formulas import divided, filled
+from symbolic_response.appendix.page import ARTICLE, REVTEX, Page
 from symbolic_response.appendix.paper import Paper
 from symbolic_response.appendix.results import HEADINGS
 from symbolic_response.errors import SizeLimitError
@@ -44,19 +45,31 @@ LIMIT = 32
 """How many trees towards one state, splittings of a transition or forests are drawn."""
 CYCLES_HEIGHT, TREES_HEIGHT = 0.56 * PAGE, 0.5 * PAGE
 FORESTS_HEIGHT, SPLITTINGS_HEIGHT = 0.35 * PAGE, 0.48 * PAGE
-NARROW_HEIGHT = 0.35 * PAGE
+NARROW_HEIGHT = {ARTICLE: 0.42 * PAGE, REVTEX: 0.6 * PAGE}
 """Above this height in one of two columns a float goes across both."""
 TALLER = 1.2
 """How much taller than the network cycles beside it may be."""
 LOADED, STYLES = PREAMBLE.split("\\tikzset", 1)
 """What the preamble loads for diagrams, and the styles, which may stand in the text."""
 STYLES = "\\tikzset" + STYLES
+FLUSHED = ("\\par\\makeatletter\\ifx\\@deferlist\\@empty\\else\\clearpage\\fi\\makeatother\n")
+"""Figures that wait for a page come before what follows."""
+
+
+@dataclass(frozen=True, slots=True)
+class _Drawn:
+    """The sentence that refers to a float, the float, and whether it goes across both columns."""
+
+    sentence: str = ""
+    figure: str = ""
+    wide: bool = False
 
 
 @dataclass(frozen=True, slots=True)
 class Diagrams:
     """The text of each diagram, to be put behind a section; empty for none.
 
+    A float across both columns, which comes on a later page, stands with the diagram before it.
     ``forest_sum`` is how the sum of the forests is printed.
     """
 
@@ -77,8 +90,13 @@ def diagrams(paper: Paper, quantities: Sequence[Expression]) -> Diagrams:
     marked = _transition(responses[0]) if responses else None
     chosen = list(dict.fromkeys(map(_transition, responses)))
     forests, forest_sum = _forests(paper, responses)
-    return Diagrams(_network(paper), _trees(paper, marked), forests, _splittings(paper, chosen),
-                    forest_sum)
+    drawn = [_network(paper), _trees(paper, marked), forests, _splittings(paper, chosen)]
+    texts = ["", "", "", ""]
+    for place, each in enumerate(drawn):
+        texts[place] += each.sentence
+        early = each.wide and place > 0 and bool(drawn[place - 1].sentence)
+        texts[place - 1 if early else place] += f"\n{each.figure}" if each.figure else ""
+    return Diagrams(texts[0], texts[1], texts[2], texts[3], forest_sum)
 
 
 def _responses(quantities: Sequence[Expression]) -> list[Response]:
@@ -95,22 +113,22 @@ def _transition(response: Response) -> int:
 # -- the network and its cycles --------------------------------------------------------------------
 
 
-def _network(paper: Paper) -> str:
+def _network(paper: Paper) -> _Drawn:
     pictures = _cycle_pictures(paper)
     for wide in (False, True) if paper.page.columns == 2 else (False,):
         drawing, shown, made = _network_in(paper, pictures, wide)
         if drawing.rates != "none" and shown == len(pictures):
             break
     if not made:
-        return "The network is too large for a diagram."
+        return _Drawn("The network is too large for a diagram.")
     words = _rate_words(paper, drawing)
     if not pictures:
-        return ("Figure~\\ref{fig:network} shows the network.\n"
-                + floated(paper.page, made, f"The network {words}.", "fig:network", wide))
+        return _Drawn("Figure~\\ref{fig:network} shows the network.",
+                      floated(paper.page, made, f"The network {words}.", "fig:network", wide), wide)
     what = "its cycle" if len(pictures) == 1 else "its cycles"
     caption = f"(a) The network {words}. (b) {_cycle_words(paper, shown)}"
-    return (f"Figure~\\ref{{fig:network}} shows the network and {what}.\n"
-            + floated(paper.page, made, caption, "fig:network", wide))
+    return _Drawn(f"Figure~\\ref{{fig:network}} shows the network and {what}.",
+                  floated(paper.page, made, caption, "fig:network", wide), wide)
 
 
 def _network_in(
@@ -187,14 +205,14 @@ def _cycle_words(paper: Paper, shown: int) -> str:
 # -- trees -----------------------------------------------------------------------------------------
 
 
-def _trees(paper: Paper, marked: int | None) -> str:
+def _trees(paper: Paper, marked: int | None) -> _Drawn:
     page, counts = paper.page, paper.analysis.tree_counts
     if not any(counts):
-        return ""
+        return _Drawn()
     roots = [k for k, count in enumerate(counts) if count]
     whole = [k for k in roots if counts[k] <= LIMIT]
     lines, wide = _tree_lines(paper, roots, whole, marked), False
-    while height(lines[wide]) > _most(page.columns, wide):
+    while height(lines[wide]) > _most(page, wide):
         if page.columns == 2 and not wide:
             wide = True
         elif whole:
@@ -204,13 +222,15 @@ def _trees(paper: Paper, marked: int | None) -> str:
             roots = roots[:-1]
             lines = _tree_lines(paper, roots, whole, marked)
     caption = _tree_words(paper, roots, whole, marked)
-    return ("The trees are those of Fig.~\\ref{fig:trees}.\n" if len(whole) == len(counts) else
-            "Some of the trees are drawn in Fig.~\\ref{fig:trees}.\n") + floated(
-        page, lines[wide], caption, "fig:trees", wide)
+    which = "The trees are those of" if len(whole) == len(counts) else (
+        "Some of the trees are drawn in")
+    return _Drawn(f"{which} Fig.~\\ref{{fig:trees}}.",
+                  floated(page, lines[wide], caption, "fig:trees", wide), wide)
 
 
-def _most(columns: int, wide: bool) -> float:
-    return NARROW_HEIGHT if columns == 2 and not wide else TREES_HEIGHT
+def _most(page: Page, wide: bool) -> float:
+    """Return how high a float may be."""
+    return NARROW_HEIGHT[page.document_class] if page.columns == 2 and not wide else TREES_HEIGHT
 
 
 def _tree_lines(
@@ -267,12 +287,12 @@ def _and(items: Sequence[str]) -> str:
 # -- forests ---------------------------------------------------------------------------------------
 
 
-def _forests(paper: Paper, responses: Sequence[Response]) -> tuple[str, str]:
+def _forests(paper: Paper, responses: Sequence[Response]) -> tuple[_Drawn, str]:
     """Return the forests of the first response of a probability, and the letter of their sum."""
     pairs = [(r.quantity.states[0], _transition(r)) for r in responses
              if isinstance(r.quantity, Probability) and len(r.quantity.states) == 1]
     if not pairs:
-        return "", ""
+        return _Drawn(), ""
     state, e = pairs[0]
     labels = f"{paper.notation.states[state]},{paper.notation.transitions[e]}"
     letter = paper.notation.indexed("forest", labels)
@@ -280,12 +300,13 @@ def _forests(paper: Paper, responses: Sequence[Response]) -> tuple[str, str]:
         count = draw(paper.analysis, "forests", root=state, transition=e, limit=0).total
         pictures, wide = _forest_pictures(paper, state, e, count)
     except SizeLimitError:
-        return f"The forests of ${letter}$ are too many to be drawn.", letter
+        return _Drawn(f"The forests of ${letter}$ are too many to be drawn."), letter
     width = full_width(paper.page) if wide else paper.page.line
     made = group(paper.page, pictures, width)
     caption = _forest_words(paper, state, e, count, len(pictures), letter)
-    return (f"Figure~\\ref{{fig:forests}} shows the forests of ${letter}$.\n"
-            + floated(paper.page, [[[made]]], caption, "fig:forests", wide)), letter
+    figure = floated(paper.page, [[[made]]], caption, "fig:forests", wide)
+    return _Drawn(f"Figure~\\ref{{fig:forests}} shows the forests of ${letter}$.", figure,
+                  wide), letter
 
 
 def _forest_words(
@@ -310,7 +331,7 @@ def _forest_pictures(
                            limit=LIMIT if count <= LIMIT else 0))
     for wide in (False, True):
         width = full_width(page) if wide else page.line
-        most = min(FORESTS_HEIGHT, _most(page.columns, wide))
+        most = min(FORESTS_HEIGHT, _most(page, wide))
         if height([[[group(page, every, width)]]]) <= most:
             return every, wide and page.columns == 2
     return _pictures(draw(paper.analysis, "forests", root=state, transition=e, limit=0)), False
@@ -334,21 +355,21 @@ def behind(results: str, drawn: Diagrams) -> str:
 # -- splittings ------------------------------------------------------------------------------------
 
 
-def _splittings(paper: Paper, transitions: Sequence[int]) -> str:
+def _splittings(paper: Paper, transitions: Sequence[int]) -> _Drawn:
     """Return the splittings of the transitions whose responses are asked for."""
     if not transitions:
-        return ""
+        return _Drawn()
     try:
         counts = {e: len(splittings(paper.analysis.graph, e)) for e in transitions}
     except SizeLimitError:
-        return "The splittings of the transitions are too many to be drawn."
+        return _Drawn("The splittings of the transitions are too many to be drawn.")
     for limit in (LIMIT, 0):
         for number in range(len(transitions), 0, -1):
             for wide in (False, True) if paper.page.columns == 2 else (False,):
                 blocks = _splitting_lines(paper, transitions[:number], counts, limit, wide)
-                if height(blocks) <= min(SPLITTINGS_HEIGHT, _most(paper.page.columns, wide)):
+                if height(blocks) <= min(SPLITTINGS_HEIGHT, _most(paper.page, wide)):
                     return _splitting_float(paper, blocks, counts, transitions[:number], wide)
-    return "The splittings of the transitions are too large to be drawn."
+    return _Drawn("The splittings of the transitions are too large to be drawn.")
 
 
 def _splitting_lines(
@@ -369,7 +390,7 @@ def _splitting_lines(
 def _splitting_float(
     paper: Paper, blocks: Sequence[Lines], counts: Mapping[int, int], kept: Sequence[int],
     wide: bool,
-) -> str:
+) -> _Drawn:
     labels = [f"${label}$" for label in paper.notation.transitions]
     total = [f"{counts[e]:,} of {labels[e]}" for e in kept]
     caption = ("Splittings: sets $S$ of states (filled), connected like the rest, with the first "
@@ -378,5 +399,5 @@ def _splitting_float(
     left_out = [e for e in counts if e not in kept]
     if left_out:
         caption += " Not drawn: " + _and([f"{counts[e]:,} of {labels[e]}" for e in left_out]) + "."
-    return ("The splittings are drawn in Fig.~\\ref{fig:splittings}.\n"
-            + floated(paper.page, blocks, caption, "fig:splittings", wide))
+    return _Drawn("The splittings are drawn in Fig.~\\ref{fig:splittings}.",
+                  floated(paper.page, blocks, caption, "fig:splittings", wide), wide)
