@@ -83,6 +83,9 @@ class Factored:
     def expression(self) -> Expression:
         """Return the product as a tree whose polynomials are leaves."""
         if _reads_better_spread(self):
+            ((base, _),) = self.factors
+            if self.coefficient == -1 and isinstance(base, Polynomial):
+                return Polynomial(base.ring, -base.poly)
             return add(_spread(self))
         parts = [number(self.coefficient), monomial_expression(self.ring, self.monomial)]
         parts += [power(_base_expression(base), exponent) for base, exponent in self.factors]

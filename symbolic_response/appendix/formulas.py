@@ -2,18 +2,30 @@
 
 from __future__ import annotations
 
-from collections.abc import Sequence
+from collections.abc import Collection, Sequence
 
+from symbolic_response.appendix import relations
 from symbolic_response.appendix.named_sums import NamedSum
 from symbolic_response.appendix.paper import Paper
 from symbolic_response.expressions.breaking import (
+    NUMBER_ROOM,
+    RELATION_WIDTH,
+    SIGN_WIDTH,
     Equation,
+    Piece,
     continued,
     line_limit,
 )
-from symbolic_response.expressions.tree import Expression, Symbol, add, multiply, negate
+from symbolic_response.expressions.tree import (
+    Expression,
+    Symbol,
+    add,
+    multiply,
+    negate,
+    symbols_of,
+)
+from symbolic_response.expressions.widths import formula_width
 
-MAX_SECOND_FORM = 60
 MAX_SUM_TERMS = 250
 
 
@@ -213,29 +225,71 @@ def definitions_text(paper: Paper, definitions: Sequence[NamedSum]) -> str:
     """Return the definitions of named sums; a sum too long to print is described."""
     equations: list[Equation] = []
     described: list[NamedSum] = []
+    known = paper.defined - {named.key for named in definitions}
+    texts = []
     for named in definitions:
-        limit = line_limit(named.latex, paper.width)
-        first = first_form(paper, named)
-        allowed = MAX_SUM_TERMS if first is None else MAX_SECOND_FORM
-        printed = named.terms <= allowed and paper.take(named.terms)
-        if first is None and not printed:
+        equation = _definition(paper, named, known)
+        if equation is None:
             described.append(named)
             continue
-        pieces = paper.pieces(first, limit) if first is not None else []
-        meanings = [] if first is None else [add(first)]
-        if printed:
-            meanings.append(named.form.expression())
-            terms = (
-                paper.fitted(named.form, limit)[0] if named.kind == "remainder"
-                else paper.pieces(paper.terms(named.form), limit)
-            )
-            pieces = [*pieces, *continued(terms)] if pieces else terms
-        equations.append(Equation(named.latex, tuple(pieces), quantities=(Symbol(named.key),),
-                                  meanings=tuple(meanings)))
-    texts = [paper.align(equations)] if equations else []
+        equations.append(equation)
+        known.add(named.key)
+    if any(named.kind == "forest" and equation.meanings and _names_forests(equation.meanings[0])
+           for named, equation in zip(_printed(definitions, described), equations, strict=True)):
+        texts.append(filled(paper, relations.WORDS))
     if described:
-        texts.insert(0, filled(paper, _description(described)))
+        texts.append(filled(paper, _description(described)))
+    if equations:
+        texts.append(paper.align(equations))
     return "\n".join(texts)
+
+
+def _printed(definitions: Sequence[NamedSum], described: Sequence[NamedSum]) -> list[NamedSum]:
+    return [named for named in definitions if named not in described]
+
+
+def _names_forests(form: Expression) -> bool:
+    return any(name.startswith("#forest[") for name in symbols_of(form))
+
+
+def _definition(paper: Paper, named: NamedSum, known: Collection[str]) -> Equation | None:
+    """Return the equation that defines a sum, None where it is too long."""
+    limit = line_limit(named.latex, paper.width)
+    first = first_form(paper, named)
+    related = relations.relation(paper, named, known)
+    if named.terms > MAX_SUM_TERMS and first is None and related is None:
+        return None
+    pieces: list[Piece] = []
+    meanings: list[Expression] = []
+    if named.terms <= MAX_SUM_TERMS:
+        meanings.append(named.form.expression())
+        pieces = list(
+            paper.fitted(named.form, limit)[0] if named.kind == "remainder"
+            else paper.pieces(paper.terms(named.form), limit)
+        )
+    if related is not None:
+        shorter = paper.pieces(related, limit)
+        if not pieces or _length(shorter) < _length(pieces):
+            pieces, meanings = shorter, [add(related)]
+    if first is not None:
+        opening = paper.pieces(first, limit)
+        meanings.insert(0, add(first))
+        if pieces and _width([*opening, *pieces]) + RELATION_WIDTH <= limit - NUMBER_ROOM:
+            pieces = [*opening, *continued(pieces)]
+        else:
+            pieces, meanings = opening, meanings[:1]
+    if first is None and not paper.take(min(named.terms, len(pieces))):
+        return None
+    return Equation(named.latex, tuple(pieces), quantities=(Symbol(named.key),),
+                    meanings=tuple(meanings))
+
+
+def _length(pieces: Sequence[Piece]) -> int:
+    return sum(len(piece.body) for piece in pieces)
+
+
+def _width(pieces: Sequence[Piece]) -> float:
+    return sum(formula_width(piece.body) + SIGN_WIDTH for piece in pieces)
 
 
 def _description(sums: Sequence[NamedSum]) -> str:

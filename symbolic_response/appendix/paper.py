@@ -33,9 +33,12 @@ from symbolic_response.expressions.ring import Polynomial, all_symbols
 from symbolic_response.expressions.tree import (
     Expression,
     Function,
+    Number,
+    Product,
     Sum,
     add,
     function,
+    negate,
     power,
 )
 from symbolic_response.expressions.widths import formula_width
@@ -97,7 +100,12 @@ class Paper:
     def terms(self, form: Factored) -> list[Expression]:
         """Return a form, its sums as short as can be, as the terms of a sum."""
         node = self.short.of(form.expression())
-        return list(node.terms) if isinstance(node, Sum) else [node]
+        match node:
+            case Sum(terms):
+                return list(terms)
+            case Product((Number(value), Sum(terms))) if value == -1:
+                return [negate(term) for term in terms]
+        return [node]
 
     def align(self, equations: Sequence[Equation]) -> str:
         """Return equations set in lines of the page, and note them for reading back."""

@@ -21,7 +21,7 @@ from symbolic_response.response.analysis import Analysis, graph_of
 from symbolic_response.response.closed_form import ClosedForm, closed_form
 from symbolic_response.response.values import Point
 from symbolic_response.topology import spanning_trees
-from tests.benchmarks import certificates, curves, hands, proofs
+from tests.benchmarks import appendices, certificates, curves, hands, proofs
 from tests.benchmarks.networks import complete, cube, ladder
 from tests.benchmarks.timing import CUT_OFF, Row, compare
 
@@ -128,6 +128,7 @@ def rows() -> list[Row]:
         *proofs.rows(),
         curves.row(),
         hands.row(),
+        *appendices.rows(),
     ]
 
 
@@ -167,6 +168,7 @@ def main() -> None:
     print(proofs.edges(cube(), 12))
     print(proofs.edges(complete(9), 3))
     print(curves.steepness_figures())
+    print(appendices.lengths(NAIVE_CHARACTERS))
     peak = resource.getrusage(resource.RUSAGE_SELF).ru_maxrss / 1024
     print(f"rivals cut off at {CUT_OFF:.0f} s; whole table {time.perf_counter() - start:.0f} s,"
           f" {peak:.0f} MB")
