@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Collection, Sequence
+from collections.abc import Sequence, Set
 
 from symbolic_response.appendix import relations
 from symbolic_response.appendix.named_sums import NamedSum
@@ -252,7 +252,7 @@ def _names_forests(form: Expression) -> bool:
     return any(name.startswith("#forest[") for name in symbols_of(form))
 
 
-def _definition(paper: Paper, named: NamedSum, known: Collection[str]) -> Equation | None:
+def _definition(paper: Paper, named: NamedSum, known: Set[str]) -> Equation | None:
     """Return the equation that defines a sum, None where it is too long."""
     limit = line_limit(named.latex, paper.width)
     first = first_form(paper, named)

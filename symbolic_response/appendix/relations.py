@@ -8,8 +8,9 @@ zero along every cycle. Each relation is checked exactly where it is used.
 
 from __future__ import annotations
 
-from collections.abc import Collection, Iterator
+from collections.abc import Iterator, Set
 
+from symbolic_response.algebra.compact.together import key_of
 from symbolic_response.appendix.named_sums import NamedSum
 from symbolic_response.appendix.paper import Paper
 from symbolic_response.errors import SizeLimitError
@@ -25,17 +26,17 @@ Signed = tuple[int, int, int]
 """A sign, a state and a transition."""
 
 
-def relation(paper: Paper, named: NamedSum, known: Collection[str]) -> list[Expression] | None:
+def relation(paper: Paper, named: NamedSum, known: Set[str]) -> list[Expression] | None:
     """Return a difference of forest sums as a sum of known ones, None where there is no such."""
     if named.kind != "forest":
         return None
     state, e = named.place
     for others in sorted(_relations(paper.analysis, state, e), key=len):
-        sums = [paper.sums.forest(k, f) for _, k, f in others]
-        if all(s.key in known for s in sums) and _holds(paper.analysis, (1, state, e), others):
+        keys = [key_of("forest", k, f) for _, k, f in others]
+        if known >= set(keys) and _holds(paper.analysis, (1, state, e), others):
             return [
-                negate(Symbol(s.key)) if sign > 0 else Symbol(s.key)
-                for s, (sign, _, _) in zip(sums, others, strict=True)
+                negate(Symbol(key)) if sign > 0 else Symbol(key)
+                for key, (sign, _, _) in zip(keys, others, strict=True)
             ]
     return None
 

@@ -65,6 +65,8 @@ class Analysis:
         self._currents: dict[int, Poly] = {}
         self._forests: dict[tuple[int, int], Poly] = {}
         self._images: dict[Polynomial, Factored] = {}
+        self.identities_checked: set[int] = set()
+        """Transitions whose end-pair identities were multiplied out and found to hold."""
 
     @cached_property
     def graph(self) -> Graph:

@@ -65,10 +65,12 @@ def edge_products(analysis: Analysis, e: int) -> int:
 
 
 def require_identities(analysis: Analysis, e: int) -> None:
-    """Multiply out phi a_k = a_m b_k + a_n f_k for every state k.
+    """Multiply out phi a_k = a_m b_k + a_n f_k for every state k, once for each transition.
 
     ArithmeticError if one fails: then the trees are wrong, and nothing may be certified.
     """
+    if e in analysis.identities_checked:
+        return
     first, second = analysis.graph.ends[e]
     parts = [_split(analysis, e, k) for k in range(analysis.graph.size)]
     phi = parts[second][1]
@@ -77,6 +79,7 @@ def require_identities(analysis: Analysis, e: int) -> None:
         sound = sound and phi * free == parts[first][0] * back + parts[second][0] * ahead
     if not sound:
         raise ArithmeticError(f"the trees of transition {e} do not satisfy the end-pair identities")
+    analysis.identities_checked.add(e)
 
 
 def _split(analysis: Analysis, e: int, root: int) -> tuple[Poly, Poly, Poly]:
