@@ -12,10 +12,10 @@ import sympy
 from symbolic_response.errors import QuantityError
 from symbolic_response.expressions.normal_form import normal_form
 from symbolic_response.expressions.tree import number, substitute
-from symbolic_response.hand.conditions import force_conditions, forces_of, read_relations
-from symbolic_response.hand.solving import impose
-from symbolic_response.hand.verdict import judge
-from symbolic_response.hand.witness import SMALL_NUMBERS
+from symbolic_response.hand.judging.conditions import force_conditions, forces_of, read_relations
+from symbolic_response.hand.judging.solving import impose
+from symbolic_response.hand.judging.verdict import judge
+from symbolic_response.hand.judging.witness import SMALL_NUMBERS
 from symbolic_response.network.build import Barrier, Rates, build_network
 from symbolic_response.network.model import Network
 from symbolic_response.network.quantity_reader import read_quantity

@@ -14,7 +14,7 @@ import mpmath
 import pytest
 
 from symbolic_response.hand.diagnosis import Finding, diagnose
-from symbolic_response.hand.equality import equal
+from symbolic_response.hand.judging.equality import equal
 from symbolic_response.network.build import Rates, build_network
 from symbolic_response.network.model import Network
 from symbolic_response.network.quantity_reader import read_quantity

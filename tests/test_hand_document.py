@@ -26,10 +26,10 @@ from symbolic_response.expressions.tree import (
     Sum,
     Symbol,
 )
-from symbolic_response.hand.document import Reading, read_equations, read_equations_file
-from symbolic_response.hand.names import Names, names_of
-from symbolic_response.hand.statements import split_statements
-from symbolic_response.hand.tokens import tokenize
+from symbolic_response.hand.latex.names import Names, names_of
+from symbolic_response.hand.latex.tokens import tokenize
+from symbolic_response.hand.papers.document import Reading, read_equations, read_equations_file
+from symbolic_response.hand.papers.statements import split_statements
 from symbolic_response.network.model import Network
 from symbolic_response.network.quantity_reader import read_quantity
 from symbolic_response.network.toml_reader import read_network_text

@@ -11,10 +11,10 @@ import pytest
 
 from symbolic_response.errors import ExpressionError, FormulaError
 from symbolic_response.expressions.tree import Number, Symbol
-from symbolic_response.hand.macros import expand, take_definitions
-from symbolic_response.hand.names import Names, names_of
-from symbolic_response.hand.reading import read_formula, read_formula_tokens
-from symbolic_response.hand.tokens import line_and_column, tokenize
+from symbolic_response.hand.latex.macros import expand, take_definitions
+from symbolic_response.hand.latex.names import Names, names_of
+from symbolic_response.hand.latex.reading import read_formula, read_formula_tokens
+from symbolic_response.hand.latex.tokens import line_and_column, tokenize
 from symbolic_response.network import read_network_text
 from symbolic_response.network.quantities import DirectedRate, Probability
 from tests.formula_values import MOTOR, plain_value, value

@@ -9,8 +9,8 @@ import time
 import pytest
 
 from symbolic_response.errors import FormulaError, SizeLimitError
-from symbolic_response.hand.names import names_of
-from symbolic_response.hand.reading import read_formula
+from symbolic_response.hand.latex.names import names_of
+from symbolic_response.hand.latex.reading import read_formula
 from symbolic_response.network import read_network_text
 from tests.formula_values import MOTOR
 

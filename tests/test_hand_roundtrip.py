@@ -32,8 +32,8 @@ from symbolic_response.expressions.tree import (
     number,
     power,
 )
-from symbolic_response.hand.names import names_of
-from symbolic_response.hand.reading import read_formula
+from symbolic_response.hand.latex.names import names_of
+from symbolic_response.hand.latex.reading import read_formula
 from symbolic_response.network import read_network_text
 from symbolic_response.network.model import Network
 from symbolic_response.network.notation_section import symbol_names

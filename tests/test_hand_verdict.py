@@ -10,7 +10,7 @@ import sympy
 
 from symbolic_response.errors import EvaluationError, QuantityError
 from symbolic_response.expressions.tree import Expression, Symbol, divide, multiply, number
-from symbolic_response.hand.verdict import Verdict, judge
+from symbolic_response.hand.judging.verdict import Verdict, judge
 from symbolic_response.network.build import Barrier, Rates, build_network
 from symbolic_response.network.model import Network
 from symbolic_response.network.quantity_reader import read_quantity

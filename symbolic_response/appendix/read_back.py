@@ -14,12 +14,12 @@ from symbolic_response.expressions.breaking import Equation
 from symbolic_response.expressions.enclosure import nonzero_somewhere
 from symbolic_response.expressions.ring import Domain, Polynomial, expression_of
 from symbolic_response.expressions.tree import ZERO, Expression, Symbol, add, negate, rebuild
-from symbolic_response.hand.equality import equal
-from symbolic_response.hand.gathering import gathered
-from symbolic_response.hand.names import Names, names_of
-from symbolic_response.hand.reading import read_formula_tokens
-from symbolic_response.hand.statements import Statement
-from symbolic_response.hand.tokens import Token
+from symbolic_response.hand.judging.equality import equal
+from symbolic_response.hand.latex.names import Names, names_of
+from symbolic_response.hand.latex.reading import read_formula_tokens
+from symbolic_response.hand.latex.tokens import Token
+from symbolic_response.hand.papers.gathering import gathered
+from symbolic_response.hand.papers.statements import Statement
 from symbolic_response.network.quantities import Change, DirectedRate, walk_quantity
 
 

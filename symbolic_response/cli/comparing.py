@@ -21,8 +21,8 @@ from symbolic_response.errors import QuantityError
 from symbolic_response.progress import Progress
 
 if TYPE_CHECKING:
-    from symbolic_response.hand.document import PassedOver
     from symbolic_response.hand.entries import HandResult
+    from symbolic_response.hand.papers.document import PassedOver
     from symbolic_response.network.model import Network
 
 
@@ -104,8 +104,8 @@ def _asked(
     from dataclasses import replace
 
     from symbolic_response.hand.entries import read_entries, read_line
-    from symbolic_response.hand.names import names_of
-    from symbolic_response.hand.papers import read_paper
+    from symbolic_response.hand.latex.names import names_of
+    from symbolic_response.hand.paper_results import read_paper
 
     names = names_of(network)
     asked = [read_line(text, network, names, given) for text in lines]

@@ -8,8 +8,8 @@ from typing import Any
 
 from symbolic_response.hand.diagnosis import Finding, diagnose
 from symbolic_response.hand.entries import HandResult, from_python, read_entries
-from symbolic_response.hand.names import names_of
-from symbolic_response.hand.verdict import Verdict, judge
+from symbolic_response.hand.judging.verdict import Verdict, judge
+from symbolic_response.hand.latex.names import names_of
 from symbolic_response.network.model import Network
 from symbolic_response.network.quantity_reader import read_quantity
 from symbolic_response.response.analysis import Analysis, as_analysis

@@ -10,8 +10,8 @@ from symbolic_response.errors import ExpressionError, FormulaError, InputError, 
 from symbolic_response.expressions.names import nearest
 from symbolic_response.expressions.sympy_exchange import expression_from_sympy
 from symbolic_response.expressions.tree import Expression, symbols_of
-from symbolic_response.hand.names import Names
-from symbolic_response.hand.reading import read_formula
+from symbolic_response.hand.latex.names import Names
+from symbolic_response.hand.latex.reading import read_formula
 from symbolic_response.network.entries import DocumentError, check_keys, one_line, shown
 from symbolic_response.network.model import Network
 from symbolic_response.network.quantity_reader import read_quantity

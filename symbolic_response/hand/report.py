@@ -8,7 +8,7 @@ from typing import Any
 
 from symbolic_response.expressions.text import expression_text, fraction_text
 from symbolic_response.hand.compare import Comparison
-from symbolic_response.hand.document import PassedOver
+from symbolic_response.hand.papers.document import PassedOver
 from symbolic_response.response.deriving import Value
 
 LONG = 60

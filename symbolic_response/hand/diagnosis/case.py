@@ -26,8 +26,8 @@ from symbolic_response.expressions.tree import (
     number,
     walk,
 )
-from symbolic_response.hand.equality import equal
-from symbolic_response.hand.witness import axes_of, mixed_points
+from symbolic_response.hand.judging.equality import equal
+from symbolic_response.hand.judging.witness import axes_of, mixed_points
 from symbolic_response.network.model import Network
 from symbolic_response.response.analysis import Analysis
 from symbolic_response.response.closed_form import closed_form

@@ -24,10 +24,10 @@ from symbolic_response.expressions.tree import (
     symbols_of,
     walk,
 )
-from symbolic_response.hand.conditions import forces_of
 from symbolic_response.hand.diagnosis.case import NO_ANSWER, Case
 from symbolic_response.hand.diagnosis.finding import LIMIT, VANISHING, Finding, Ranked
-from symbolic_response.hand.witness import axes_of, mixed_points
+from symbolic_response.hand.judging.conditions import forces_of
+from symbolic_response.hand.judging.witness import axes_of, mixed_points
 from symbolic_response.response.direct import direct_value
 
 MAX_PARTS = 4_000

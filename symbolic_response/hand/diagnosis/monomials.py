@@ -25,7 +25,7 @@ from symbolic_response.expressions.tree import (
     walk,
 )
 from symbolic_response.hand.diagnosis.case import Case, Values, point_at, value_at
-from symbolic_response.hand.witness import Axis
+from symbolic_response.hand.judging.witness import Axis
 from symbolic_response.response.direct import direct_value
 from symbolic_response.response.values import Point
 

@@ -10,7 +10,7 @@ from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, replace
 
 from symbolic_response.errors import FormulaError
-from symbolic_response.hand.tokens import Token, formula_error, group_end
+from symbolic_response.hand.latex.tokens import Token, formula_error, group_end
 
 MAX_EXPANSIONS = 20_000
 MAX_TOKENS = 2_000_000
@@ -39,7 +39,7 @@ def take_definitions(
     with plain parameters. Raises FormulaError for a definition that is not well formed. A later
     definition replaces an earlier one, except by ``\providecommand``.
 
-    >>> from symbolic_response.hand.tokens import tokenize
+    >>> from symbolic_response.hand.latex.tokens import tokenize
     >>> text = r"\newcommand{\on}[1]{k_{#1}} \on{a}"
     >>> rest, macros = take_definitions(tokenize(text), text)
     >>> "".join(token.text for token in expand(rest, macros, text))

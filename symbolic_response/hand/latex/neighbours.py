@@ -3,12 +3,12 @@
 from __future__ import annotations
 
 from symbolic_response.errors import FormulaError
-from symbolic_response.hand import refusals
-from symbolic_response.hand.items import CLOSING, OPENING, Item, Items
-from symbolic_response.hand.names import Names
-from symbolic_response.hand.pieces import DOTS, numeric_fraction
-from symbolic_response.hand.refusals import Unit
-from symbolic_response.hand.tokens import formula_error
+from symbolic_response.hand.latex import refusals
+from symbolic_response.hand.latex.items import CLOSING, OPENING, Item, Items
+from symbolic_response.hand.latex.names import Names
+from symbolic_response.hand.latex.pieces import DOTS, numeric_fraction
+from symbolic_response.hand.latex.refusals import Unit
+from symbolic_response.hand.latex.tokens import formula_error
 
 
 def closes(item: Item, closer: str | None, source: str) -> bool:

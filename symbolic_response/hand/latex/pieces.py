@@ -5,7 +5,7 @@ from __future__ import annotations
 from collections.abc import Iterator
 from dataclasses import dataclass
 
-from symbolic_response.hand.items import CLOSING, OPENING, Item, Items, key_of
+from symbolic_response.hand.latex.items import CLOSING, OPENING, Item, Items, key_of
 
 FUNCTIONS = {"exp": "exp", "ln": "ln", "log": "ln", "tanh": "tanh", "sinh": "sinh",
              "cosh": "cosh", "coth": "coth"}

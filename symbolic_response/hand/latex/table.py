@@ -7,9 +7,9 @@ from dataclasses import dataclass, field, replace
 from functools import lru_cache
 
 from symbolic_response.errors import FormulaError
-from symbolic_response.hand.items import Item, Items, items_of, key_of, without_fonts
-from symbolic_response.hand.pieces import numeric
-from symbolic_response.hand.tokens import tokenize
+from symbolic_response.hand.latex.items import Item, Items, items_of, key_of, without_fonts
+from symbolic_response.hand.latex.pieces import numeric
+from symbolic_response.hand.latex.tokens import tokenize
 
 SYMBOL, CHOSEN = 0, 1
 """Levels of names: symbols, then what the notation chose; labels and letters it did not choose come

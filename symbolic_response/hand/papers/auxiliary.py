@@ -11,10 +11,10 @@ from dataclasses import dataclass
 from symbolic_response.errors import SizeLimitError, SymbolicResponseError
 from symbolic_response.expressions.names import default_latex
 from symbolic_response.expressions.tree import Expression, children
-from symbolic_response.hand.items import items_of, key_of
-from symbolic_response.hand.names import Names
-from symbolic_response.hand.reading import read_formula_tokens
-from symbolic_response.hand.tokens import Token, joined
+from symbolic_response.hand.latex.items import items_of, key_of
+from symbolic_response.hand.latex.names import Names
+from symbolic_response.hand.latex.reading import read_formula_tokens
+from symbolic_response.hand.latex.tokens import Token, joined
 from symbolic_response.network.quantities import Change, Response
 
 MAX_DEFINITIONS = 300
@@ -38,7 +38,7 @@ def is_name(tokens: Sequence[Token]) -> bool:
     r"""Return whether tokens have the form of a name: a letter or a word in a font or under an
     accent, with a subscript, primes and a superscript that is no exponent.
 
-    >>> from symbolic_response.hand.tokens import tokenize
+    >>> from symbolic_response.hand.latex.tokens import tokenize
     >>> [is_name(tokenize(text)) for text in (r"\tilde{Z}_{\mathrm{on}}'", r"\Delta\mu", "Z^2")]
     [True, True, False]
     """

@@ -10,7 +10,7 @@ import re
 from collections.abc import Iterator
 from dataclasses import dataclass, field
 
-from symbolic_response.hand.visible import Fault
+from symbolic_response.hand.papers.visible import Fault
 
 _ONE = ("equation", "displaymath", "multline", "gather")
 _COLUMNS = ("align", "flalign", "alignat", "xalignat", "xxalignat", "eqnarray")

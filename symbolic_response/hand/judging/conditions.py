@@ -34,7 +34,12 @@ from symbolic_response.expressions.tree import (
     rebuild,
     walk,
 )
-from symbolic_response.hand.solving import ContradictionError, Solved, UnsolvableError, impose
+from symbolic_response.hand.judging.solving import (
+    ContradictionError,
+    Solved,
+    UnsolvableError,
+    impose,
+)
 from symbolic_response.network.quantities import DirectedRate
 from symbolic_response.network.quantity_reader import read_quantity
 from symbolic_response.response.analysis import Analysis

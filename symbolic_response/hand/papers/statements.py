@@ -9,7 +9,7 @@ from __future__ import annotations
 from collections.abc import Iterator, Sequence
 from dataclasses import dataclass, replace
 
-from symbolic_response.hand.tokens import Token, group_end, joined
+from symbolic_response.hand.latex.tokens import Token, group_end, joined
 
 SPACING = frozenset((r"\,", r"\;", r"\:", r"\!", r"\>", r"\ ", "~", r"\quad", r"\qquad", "&"))
 _WIDE = frozenset((r"\quad", r"\qquad"))

@@ -10,12 +10,12 @@ from collections.abc import Sequence
 
 from symbolic_response.errors import FormulaError, SizeLimitError
 from symbolic_response.expressions.tree import Expression
-from symbolic_response.hand.grammar import Refusal, parse
-from symbolic_response.hand.items import items_of
-from symbolic_response.hand.lexer import pieces_of
-from symbolic_response.hand.macros import expand, take_definitions
-from symbolic_response.hand.names import Names
-from symbolic_response.hand.tokens import Token, formula_error, tokenize
+from symbolic_response.hand.latex.grammar import Refusal, parse
+from symbolic_response.hand.latex.items import items_of
+from symbolic_response.hand.latex.lexer import pieces_of
+from symbolic_response.hand.latex.macros import expand, take_definitions
+from symbolic_response.hand.latex.names import Names
+from symbolic_response.hand.latex.tokens import Token, formula_error, tokenize
 
 MAX_TOKENS = 100_000
 MAX_CHARACTERS = 500_000
@@ -32,7 +32,7 @@ def read_formula(text: str, names: Names) -> Expression:
 
     >>> from symbolic_response.network import read_network_text
     >>> from symbolic_response.expressions.text import expression_text
-    >>> from symbolic_response.hand.names import names_of
+    >>> from symbolic_response.hand.latex.names import names_of
     >>> network = read_network_text('''
     ... title = "pair"
     ... [symbols.k_on]

@@ -15,8 +15,8 @@ from dataclasses import dataclass, field, replace
 from symbolic_response.errors import ExpressionError, FormulaError
 from symbolic_response.expressions.names import base_latex, default_latex, same_latex, upright
 from symbolic_response.expressions.tree import Expression, Symbol, add, negate
-from symbolic_response.hand.items import Item, Items, items_of, key_of, without_fonts
-from symbolic_response.hand.table import (
+from symbolic_response.hand.latex.items import Item, Items, items_of, key_of, without_fonts
+from symbolic_response.hand.latex.table import (
     CHOSEN,
     SYMBOL,
     Builder,
@@ -25,7 +25,7 @@ from symbolic_response.hand.table import (
     loose_key,
     split_at,
 )
-from symbolic_response.hand.tokens import tokenize
+from symbolic_response.hand.latex.tokens import tokenize
 from symbolic_response.network.model import Network
 from symbolic_response.network.notation_section import LETTERS, plain_symbol_names
 from symbolic_response.network.quantities import (

@@ -17,11 +17,11 @@ from dataclasses import dataclass, field
 
 from symbolic_response.errors import InputError, SymbolicResponseError
 from symbolic_response.expressions.tree import Expression, Symbol
-from symbolic_response.hand.auxiliary import Auxiliary, check_size, is_name, resolve
-from symbolic_response.hand.gathering import Gathered, Stated, gathered, one_line, shortened
-from symbolic_response.hand.names import Names
-from symbolic_response.hand.reading import read_formula_tokens
-from symbolic_response.hand.tokens import Token, joined
+from symbolic_response.hand.latex.names import Names
+from symbolic_response.hand.latex.reading import read_formula_tokens
+from symbolic_response.hand.latex.tokens import Token, joined
+from symbolic_response.hand.papers.auxiliary import Auxiliary, check_size, is_name, resolve
+from symbolic_response.hand.papers.gathering import Gathered, Stated, gathered, one_line, shortened
 from symbolic_response.network.notation_section import LETTERS
 from symbolic_response.network.quantities import (
     Change,
@@ -114,10 +114,10 @@ def read_equations_file(path: str | os.PathLike[str], names: Names) -> Reading:
 def read_equations(text: str, names: Names) -> Reading:
     r"""Return the hand results of a LaTeX text, a whole document or a part of one.
 
-    ``names``: the network's, from :func:`~symbolic_response.hand.names.names_of`. Never raises for
+    ``names``: the network's, from :func:`~symbolic_response.hand.latex.names.names_of`. Never raises for
     what stands in the text: a display that cannot be read is passed over.
 
-    >>> from symbolic_response.hand.names import names_of
+    >>> from symbolic_response.hand.latex.names import names_of
     >>> from symbolic_response.network.build import build_network
     >>> pair = build_network("pair", states="A B", transitions=[("A", "B", "k*c", "r")])
     >>> found = read_equations(r"\[ p_B = \frac{k c}{Z}, \quad Z = r + k c \]", names_of(pair))

@@ -5,10 +5,10 @@ from __future__ import annotations
 from dataclasses import dataclass, replace
 
 from symbolic_response.errors import FormulaError
-from symbolic_response.hand.items import FONTS, Item, Items, key_of
-from symbolic_response.hand.names import Names
-from symbolic_response.hand.table import split_at
-from symbolic_response.hand.tokens import formula_error
+from symbolic_response.hand.latex.items import FONTS, Item, Items, key_of
+from symbolic_response.hand.latex.names import Names
+from symbolic_response.hand.latex.table import split_at
+from symbolic_response.hand.latex.tokens import formula_error
 
 MAX_VALUES = 1_000
 

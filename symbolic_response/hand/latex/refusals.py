@@ -4,10 +4,10 @@ from __future__ import annotations
 
 from dataclasses import dataclass, replace
 
-from symbolic_response.hand.items import CLOSING, OPENING, Item, Items, key_of
-from symbolic_response.hand.names import Names
-from symbolic_response.hand.table import Match
-from symbolic_response.hand.tokens import formula_error
+from symbolic_response.hand.latex.items import CLOSING, OPENING, Item, Items, key_of
+from symbolic_response.hand.latex.names import Names
+from symbolic_response.hand.latex.table import Match
+from symbolic_response.hand.latex.tokens import formula_error
 
 FRACTION_POWER = (r"a power of a \frac is not visible as such; write \left(\frac{a}{b}\right)^{2}"
                   " with parentheses")

@@ -25,7 +25,7 @@ from symbolic_response.expressions.tree import (
     number,
     power,
 )
-from symbolic_response.hand.pieces import Piece
+from symbolic_response.hand.latex.pieces import Piece
 
 GRAMMAR = """
 start: sum

@@ -8,12 +8,12 @@ from collections.abc import Sequence
 from dataclasses import dataclass, field
 
 from symbolic_response.errors import FormulaError, SymbolicResponseError
-from symbolic_response.hand.displays import READ, Display, Inline, find_displays
-from symbolic_response.hand.macros import MAX_EXPANSIONS, Macro, expand, take_definitions
-from symbolic_response.hand.rows import statements
-from symbolic_response.hand.statements import Statement
-from symbolic_response.hand.tokens import Token, formula_error, tokenize
-from symbolic_response.hand.visible import Fault, visible
+from symbolic_response.hand.latex.macros import MAX_EXPANSIONS, Macro, expand, take_definitions
+from symbolic_response.hand.latex.tokens import Token, formula_error, tokenize
+from symbolic_response.hand.papers.displays import READ, Display, Inline, find_displays
+from symbolic_response.hand.papers.rows import statements
+from symbolic_response.hand.papers.statements import Statement
+from symbolic_response.hand.papers.visible import Fault, visible
 
 MAX_DISPLAY = 50_000
 MAX_STATEMENTS = 2_000

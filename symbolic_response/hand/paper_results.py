@@ -5,9 +5,9 @@ from __future__ import annotations
 from collections.abc import Sequence
 
 from symbolic_response.bounds.sides import quantity_text
-from symbolic_response.hand.document import PassedOver, read_equations_file
 from symbolic_response.hand.entries import HandResult
-from symbolic_response.hand.names import Names
+from symbolic_response.hand.latex.names import Names
+from symbolic_response.hand.papers.document import PassedOver, read_equations_file
 from symbolic_response.network.model import Network
 from symbolic_response.network.quantities import Response
 

@@ -10,7 +10,8 @@ from __future__ import annotations
 from collections.abc import Iterator, Sequence
 from dataclasses import dataclass, replace
 
-from symbolic_response.hand.statements import (
+from symbolic_response.hand.latex.tokens import Token, formula_error, group_end, joined
+from symbolic_response.hand.papers.statements import (
     OPERATORS,
     PUNCTUATION,
     RELATIONS,
@@ -24,7 +25,6 @@ from symbolic_response.hand.statements import (
     split_statements,
     tops,
 )
-from symbolic_response.hand.tokens import Token, formula_error, group_end, joined
 
 MAX_NESTING = 100
 MAX_ENVIRONMENTS = 10

@@ -6,10 +6,10 @@ from dataclasses import dataclass, replace
 
 from symbolic_response.errors import FormulaError
 from symbolic_response.expressions.tree import Expression, symbols_of, walk
-from symbolic_response.hand.items import CLOSING, OPENING, Item, Items, key_of
-from symbolic_response.hand.names import Names
-from symbolic_response.hand.table import Match
-from symbolic_response.hand.tokens import formula_error
+from symbolic_response.hand.latex.items import CLOSING, OPENING, Item, Items, key_of
+from symbolic_response.hand.latex.names import Names
+from symbolic_response.hand.latex.table import Match
+from symbolic_response.hand.latex.tokens import formula_error
 from symbolic_response.network.quantities import (
     BySymbol,
     Perturbation,

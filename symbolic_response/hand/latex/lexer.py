@@ -13,22 +13,22 @@ from functools import partial
 
 from symbolic_response.errors import FormulaError, SizeLimitError
 from symbolic_response.expressions.tree import Expression
-from symbolic_response.hand import refusals
-from symbolic_response.hand.derivatives import (
+from symbolic_response.hand.latex import refusals
+from symbolic_response.hand.latex.derivatives import (
     Derivative,
     as_derivative,
     differentiated,
     subscripted,
 )
-from symbolic_response.hand.items import CLOSING, MAX_NESTING, OPENING, Item, Items, key_of
-from symbolic_response.hand.names import Names
-from symbolic_response.hand.neighbours import (
+from symbolic_response.hand.latex.items import CLOSING, MAX_NESTING, OPENING, Item, Items, key_of
+from symbolic_response.hand.latex.names import Names
+from symbolic_response.hand.latex.neighbours import (
     check_before_operator,
     check_side_by_side,
     closes,
     refuse_empty,
 )
-from symbolic_response.hand.pieces import (
+from symbolic_response.hand.latex.pieces import (
     DOTS,
     SIGNS,
     Piece,
@@ -38,10 +38,10 @@ from symbolic_response.hand.pieces import (
     numeric,
     scripted,
 )
-from symbolic_response.hand.refusals import Unit
-from symbolic_response.hand.summation import indexed, read_range
-from symbolic_response.hand.table import Match
-from symbolic_response.hand.tokens import formula_error
+from symbolic_response.hand.latex.refusals import Unit
+from symbolic_response.hand.latex.summation import indexed, read_range
+from symbolic_response.hand.latex.table import Match
+from symbolic_response.hand.latex.tokens import formula_error
 
 MAX_PIECES = 150_000
 MAX_DIGITS = 1_000

@@ -27,7 +27,7 @@ from symbolic_response.expressions.tree import (
     substitute,
     walk,
 )
-from symbolic_response.hand.conditions import (
+from symbolic_response.hand.judging.conditions import (
     Condition,
     Relation,
     condition_of,
@@ -35,9 +35,9 @@ from symbolic_response.hand.conditions import (
     forces_of,
     read_relations,
 )
-from symbolic_response.hand.equality import vanishes_exactly
-from symbolic_response.hand.solving import Solved
-from symbolic_response.hand.witness import (
+from symbolic_response.hand.judging.equality import vanishes_exactly
+from symbolic_response.hand.judging.solving import Solved
+from symbolic_response.hand.judging.witness import (
     NO_VALUE,
     Sides,
     Values,

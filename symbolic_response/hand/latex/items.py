@@ -11,7 +11,7 @@ from collections.abc import Iterable, Sequence
 from dataclasses import dataclass, replace
 
 from symbolic_response.errors import FormulaError
-from symbolic_response.hand.tokens import Token, formula_error
+from symbolic_response.hand.latex.tokens import Token, formula_error
 
 MAX_NESTING = 60
 
@@ -92,7 +92,7 @@ def items_of(tokens: Sequence[Token], source: str) -> Items:
 def key_of(items: Iterable[Item]) -> str:
     r"""Return items as canonical LaTeX, by which they are compared.
 
-    >>> from symbolic_response.hand.tokens import tokenize
+    >>> from symbolic_response.hand.latex.tokens import tokenize
     >>> print(key_of(items_of(tokenize(r"k^+_\mathrm{on}"), "")))
     k_{\mathrm{on}}^{+}
     """

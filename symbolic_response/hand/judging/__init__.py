@@ -1,0 +1,1 @@
+"""Whether a hand result is right: exactly, under a condition, or not, with a witness."""

@@ -1,0 +1,1 @@
+"""Reading the displayed equations of LaTeX files."""
