@@ -177,7 +177,7 @@ def test_what_could_not_be_read_is_no_success(
     assert run(["compare", network(tmp_path), "--tex", str(paper), "--quiet"]) == 2
     captured = capsys.readouterr()
     assert "1 equal" in captured.out
-    assert "could not be read" in captured.err and "line 7" in captured.err
+    assert "could not be used" in captured.err and "line 7" in captured.err
 
 
 @pytest.mark.parametrize(("text", "message"), [
@@ -243,3 +243,42 @@ def test_from_python() -> None:
         sr.compare(ring, "p[A]", r"\frac{a}{q}")
     with pytest.raises(QuantityError):
         sr.compare(ring, "p[A]", "1", given=["nonsense"])
+
+
+def test_the_left_side_may_be_latex(
+    tmp_path: Path, capsys: pytest.CaptureFixture[str]
+) -> None:
+    status, data = compared(capsys, network(tmp_path), "--hand", rf"\pi_{{B}} = {LATEX_B}")
+    assert (status, data["results"][0]["quantity"]) == (0, "p[B]")
+
+
+def test_a_formula_without_a_value_leaves_the_others(
+    tmp_path: Path, capsys: pytest.CaptureFixture[str]
+) -> None:
+    path = network(tmp_path, entry("p[A]", RIGHT) + entry("p[B]", "1/(a - a + b - b)"))
+    assert run(["compare", path, "--quiet"]) == 2
+    captured = capsys.readouterr()
+    assert "1 equal" in captured.out and "passed over" in captured.out
+    assert "ring.toml:28" in captured.err and "identically zero" in captured.err
+
+
+def test_the_table_does_not_replace_the_paper(
+    tmp_path: Path, capsys: pytest.CaptureFixture[str]
+) -> None:
+    paper = tmp_path / "paper.tex"
+    paper.write_text(PAPER, encoding="utf-8")
+    assert run(["compare", network(tmp_path), "--tex", str(paper), "--table", str(paper)]) == 2
+    assert paper.read_text(encoding="utf-8") == PAPER
+    assert capsys.readouterr().err.count("\n") == 1
+
+
+def test_what_python_may_give_by_mistake() -> None:
+    ring = sr.read_network_text(RING)
+    assert sr.compare(ring, "p[A]", 1).verdict.kind == "different"
+    assert sr.compare(ring, "p[A]", "1/2", given="a*k_on = b").verdict.kind == "different"
+    for arguments, given in (
+        ((ring, 3, "1"), ()), (("ring.toml", "p[A]", "1"), ()),
+        ((ring, "p[A]", "1"), [sympy.Eq(1, 1)]), ((ring, "p[A]", "1"), 3),
+    ):
+        with pytest.raises(QuantityError):
+            sr.compare(*arguments, given=given)

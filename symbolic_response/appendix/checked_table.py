@@ -48,7 +48,8 @@ def checked_table(analysis: Analysis, found: Sequence[Comparison]) -> str:
 
 def _quantity(one: Comparison, notation: Notation) -> str:
     quantity = quantity_in(notation, one.hand.quantity)
-    return f"${quantity}$" if formula_width(quantity) <= WIDEST / 2 else (
+    style = r"\displaystyle " if r"\frac" in quantity else ""
+    return f"${style}{quantity}$" if formula_width(quantity) <= WIDEST / 2 else (
         escaped(one.hand.quantity_text))
 
 
@@ -57,7 +58,8 @@ def _formula(one: Comparison, notation: Notation) -> str:
     place = escaped(one.hand.label or one.hand.where)
     if formula_width(latex) > WIDEST:
         return f"long; see {place}"
-    return f"${latex}$" + (f" ({place})" if one.hand.label else "")
+    shown = rf"$\displaystyle {latex}$" if r"\frac" in latex else f"${latex}$"
+    return shown + (f" ({place})" if one.hand.label else "")
 
 
 def _verdict(one: Comparison, notation: Notation) -> str:

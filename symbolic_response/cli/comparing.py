@@ -17,7 +17,7 @@ from symbolic_response.cli.options import (
     trees_option,
 )
 from symbolic_response.cli.status import REFUTED, UNDECIDED, UNUSABLE, fail
-from symbolic_response.errors import QuantityError
+from symbolic_response.errors import EvaluationError, QuantityError
 from symbolic_response.progress import Progress
 
 if TYPE_CHECKING:
@@ -70,13 +70,18 @@ def compare(
     described = read(network)
     if table is not None:
         check_output(table, network)
+        for paper in papers:
+            check_output(table, paper)
     asked, passed_over = _asked(described, lines, papers, given)
     with Progress(quiet) as progress:
         analysis = analysis_of(described, progress, trees, terms)
         found = []
         for hand in asked:
             progress.stage(f"comparing {hand.quantity_text}")
-            found.append(compared(analysis, hand))
+            try:
+                found.append(compared(analysis, hand))
+            except (EvaluationError, QuantityError) as error:
+                passed_over.append(_without_value(hand, error))
     if table is not None:
         from symbolic_response.appendix.checked_table import write_checked
 
@@ -92,9 +97,20 @@ def compare(
         return UNDECIDED
     unread = [one for one in passed_over if one.unread]
     if unread:
-        return fail(f"{len(unread)} of the equations for known quantities could not be read;"
-                    f" the first on line {unread[0].line}: {unread[0].reason}", UNUSABLE)
+        first = unread[0]
+        placed = first.reason.startswith("line ") or f":{first.line}:" in first.reason
+        where = "" if placed else f"line {first.line}: "
+        return fail(f"{len(unread)} of the formulas for known quantities could not be used; the"
+                    f" first: {where}{first.reason}", UNUSABLE)
     return 0
+
+
+def _without_value(hand: HandResult, error: Exception) -> PassedOver:
+    from symbolic_response.hand.papers.document import PassedOver
+
+    line = hand.where.rpartition(":")[2]
+    return PassedOver(int(line) if line.isdigit() else 1, f"{hand.quantity_text} = {hand.formula}",
+                      f"{hand.where}: {error}", unread=True)
 
 
 def _asked(

@@ -6,6 +6,7 @@ from collections.abc import Sequence
 from dataclasses import dataclass
 from typing import Any
 
+from symbolic_response.errors import QuantityError
 from symbolic_response.hand.diagnosis import Finding, diagnose
 from symbolic_response.hand.entries import HandResult, from_python, read_entries
 from symbolic_response.hand.judging.verdict import Verdict, judge
@@ -34,14 +35,15 @@ def compare(
     quantity: str,
     formula: Any,
     *,
-    given: Sequence[str] = (),
+    given: str | Sequence[str] = (),
 ) -> Comparison:
     r"""Return the verdict on a formula for a quantity or response of a network.
 
     ``formula``: LaTeX in the notation of the network (a text with a backslash, a brace or ``^``),
-    plain syntax, or a SymPy expression in symbols of the same names. ``given``: relations between
-    symbols that may be used, such as ``"k1*k2 = k3*k4"``. Raises FormulaError, QuantityError,
-    ExpressionError for what cannot be read, SizeLimitError past a limit.
+    plain syntax, a SymPy expression in symbols of the same names, or a number. ``given``: a
+    relation between symbols that may be used, such as ``"k1*k2 = k3*k4"``, or several. Raises
+    FormulaError, QuantityError, ExpressionError for what cannot be read, SizeLimitError past a
+    limit.
 
     >>> from symbolic_response.network.build import build_network
     >>> pair = build_network("pair", states="A B", transitions=[("A", "B", "k*c", "r")])
@@ -50,11 +52,20 @@ def compare(
     >>> compare(pair, "p[B]", "k/(r + k*c)").verdict.kind
     'different'
     """
+    if not isinstance(subject, Network | Analysis):
+        raise QuantityError(f"compare takes a network or an analysis, not a Python"
+                            f" {type(subject).__name__}; read the file with read_network")
+    if not isinstance(quantity, str):
+        raise QuantityError(f"the quantity is a Python {type(quantity).__name__}; write it as a"
+                            ' text such as "p[A]"')
+    relations = (given,) if isinstance(given, str) else given
+    if not isinstance(relations, Sequence) or not all(isinstance(r, str) for r in relations):
+        raise QuantityError('given takes relations as texts, such as ["a*b = c*d"]')
     analysis = as_analysis(subject)
     network = analysis.network
     expression, text, latex = from_python(formula, network, names_of(network))
     hand = HandResult(read_quantity(quantity, network), quantity, expression, text, latex,
-                      "Python", given=tuple(given))
+                      "Python", given=tuple(relations))
     return compared(analysis, hand)
 
 

@@ -4,16 +4,20 @@ from __future__ import annotations
 
 from collections.abc import Callable, Sequence
 from dataclasses import dataclass
+from fractions import Fraction
+from numbers import Rational
 from typing import Any
 
+from symbolic_response.bounds.sides import quantity_text
 from symbolic_response.errors import ExpressionError, FormulaError, InputError, QuantityError
 from symbolic_response.expressions.names import nearest
 from symbolic_response.expressions.sympy_exchange import expression_from_sympy
-from symbolic_response.expressions.tree import Expression, symbols_of
+from symbolic_response.expressions.tree import Expression, number, symbols_of
 from symbolic_response.hand.latex.names import Names
 from symbolic_response.hand.latex.reading import read_formula
 from symbolic_response.network.entries import DocumentError, check_keys, one_line, shown
 from symbolic_response.network.model import Network
+from symbolic_response.network.quantities import Response
 from symbolic_response.network.quantity_reader import read_quantity
 from symbolic_response.network.toml_reader import place_in_file
 
@@ -54,9 +58,9 @@ def read_entries(network: Network, names: Names) -> tuple[HandResult, ...]:
     return tuple(found)
 
 
-def _entry(network: Network, names: Names, number: int) -> HandResult:
-    table, place = network.hand[number], ("hand", number)
-    what = f"hand entry {number + 1}"
+def _entry(network: Network, names: Names, ordinal: int) -> HandResult:
+    table, place = network.hand[ordinal], ("hand", ordinal)
+    what = f"hand entry {ordinal + 1}"
     check_keys(table, KEYS, what, place)
     if "quantity" not in table:
         raise DocumentError(f'{what} has no quantity; write quantity = "p[A]" or the like', *place)
@@ -113,18 +117,31 @@ def read_hand_formula(
     has. Raises FormulaError or QuantityError.
     """
     if latex is None:
-        latex = any(mark in text for mark in "\\{^")
+        latex = is_latex(text)
     return read_formula(text, names) if latex else read_quantity(text, network, hyperbolic=True)
 
 
 def read_line(text: str, network: Network, names: Names, given: Sequence[str]) -> HandResult:
-    """Return a hand result written as ``QUANTITY = FORMULA``, the quantity in plain syntax."""
+    """Return a hand result written as ``QUANTITY = FORMULA``, each side plain or LaTeX."""
     left, equals, right = text.partition("=")
     if not equals or not left.strip() or not right.strip():
         raise QuantityError(f"{shown(text)}: write QUANTITY = FORMULA")
+    quantity = read_hand_formula(left.strip(), network, names)
     expression = read_hand_formula(right, network, names)
-    return HandResult(read_quantity(left, network), left.strip(), expression, right.strip(),
-                      any(mark in right for mark in "\\{^"), "command line", given=tuple(given))
+    written = text_of(quantity, network) if is_latex(left) else left.strip()
+    return HandResult(quantity, written, expression, right.strip(), is_latex(right),
+                      "command line", given=tuple(given))
+
+
+def is_latex(text: str) -> bool:
+    """Return whether a text is LaTeX: plain syntax has no backslash, brace or ``^``."""
+    return any(mark in text for mark in "\\{^")
+
+
+def text_of(quantity: Expression, network: Network) -> str:
+    """Return a quantity as it is asked for; a response by itself stands without parentheses."""
+    shown = quantity_text(quantity, network)
+    return shown[1:-1] if isinstance(quantity, Response) else shown
 
 
 def from_python(formula: Any, network: Network, names: Names) -> tuple[Expression, str, bool]:
@@ -133,8 +150,10 @@ def from_python(formula: Any, network: Network, names: Names) -> tuple[Expressio
     Raises ExpressionError for a symbol that the network does not have, and all that the readers do.
     """
     if isinstance(formula, str):
-        latex = any(mark in formula for mark in "\\{^")
-        return read_hand_formula(formula, network, names), formula, latex
+        return read_hand_formula(formula, network, names), formula, is_latex(formula)
+    if isinstance(formula, Rational) and not isinstance(formula, bool):
+        exact = Fraction(int(formula.numerator), int(formula.denominator))
+        return number(exact), str(exact), False
     expression = formula if isinstance(formula, Expression) else expression_from_sympy(formula)
     known = [entry.name for entry in network.symbols]
     for name in sorted(symbols_of(expression) - set(known)):

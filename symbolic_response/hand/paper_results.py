@@ -4,12 +4,10 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 
-from symbolic_response.bounds.sides import quantity_text
-from symbolic_response.hand.entries import HandResult
+from symbolic_response.hand.entries import HandResult, text_of
 from symbolic_response.hand.latex.names import Names
 from symbolic_response.hand.papers.document import PassedOver, read_equations_file
 from symbolic_response.network.model import Network
-from symbolic_response.network.quantities import Response
 
 
 def read_paper(
@@ -22,12 +20,9 @@ def read_paper(
     found = read_equations_file(path, names)
     results = []
     for equation in found.equations:
-        shown = quantity_text(equation.quantity, network)
-        if isinstance(equation.quantity, Response):
-            shown = shown[1:-1]  # a response by itself stands without parentheses
         results.append(HandResult(
             quantity=equation.quantity,
-            quantity_text=shown,
+            quantity_text=text_of(equation.quantity, network),
             expression=equation.expression,
             formula=equation.latex,
             latex=True,

@@ -9,7 +9,7 @@ from fractions import Fraction
 import flint
 
 from symbolic_response.errors import SymbolicResponseError
-from symbolic_response.expressions.ring import Poly, Polynomial
+from symbolic_response.expressions.ring import Poly, Polynomial, all_symbols
 from symbolic_response.expressions.text import expression_text, fraction_text
 from symbolic_response.expressions.tree import (
     Expression,
@@ -103,14 +103,17 @@ def _text(candidate: Candidate, exponent: int, monomial: Monomial) -> str:
 
 def _candidates(case: Case, probe: Probe) -> Iterator[Candidate]:
     analysis, network = case.analysis, case.network
+    if case.hand_form is None or not all_symbols(case.hand_form):
+        return  # a number lacks every factor
     if case.trees <= MAX_TREES:
         sums = [_tree_sums(point, len(network.states)) for point in probe.points]
         total = [sum(column, flint.fmpq(0)) for column in sums]
         yield Candidate(_polynomial(case, analysis.normalisation), "the normalisation", total, True)
         for k, state in enumerate(network.states):
-            yield Candidate(_polynomial(case, analysis.tree_sum(k)),
-                            f"the sum over spanning trees towards {state.name}",
-                            [column[k] for column in sums], True)
+            if len(analysis.tree_sum(k)) > 1:  # a single tree is a product of rates like others
+                yield Candidate(_polynomial(case, analysis.tree_sum(k)),
+                                f"the sum over spanning trees towards {state.name}",
+                                [column[k] for column in sums], True)
     for k, state in enumerate(network.states):
         one = Probability((k,))
         for quantity, name in ((one, f"p[{state.name}]"),
