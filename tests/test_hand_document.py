@@ -257,6 +257,45 @@ def test_rows(
         assert same(equation.expression, formula), equation
 
 
+@pytest.fixture(scope="module")
+def signed() -> Network:
+    r"""A two-state network whose rates are written with signs as scripts."""
+    return read_network_text(PUMP.replace(
+        'a = {about = "turning"}', "a = {latex = 'a_-'}").replace(
+        'b = {about = "turning back"}', "b = {latex = 'b^{-}'}").replace(
+        'g = {about = "release"}', "g = {latex = 'f_+'}").replace(
+        'h = {about = "release undone"}', "h = {latex = 'g^*'}"))
+
+
+@pytest.mark.parametrize(("latex", "plain"), [
+    ("a_-", "a"), ("a_{-}", "a"), ("b^-", "b"), ("b^{-}", "b"), ("f_+", "g"), ("g^*", "h"),
+    (r"c a_-\,", "c*a"), ("c b^- {}", "c*b"),
+])
+@pytest.mark.parametrize("between", [
+    r"\\", r"\nonumber\\", r"\notag \label{x}\\[2pt]", r"\qquad",
+])
+def test_a_sign_in_a_script_is_no_operator(
+    signed: Network, latex: str, plain: str, between: str
+) -> None:
+    text = rf"\begin{{gather}} \pi_A = {latex} {between} \pi_B = c \end{{gather}}"
+    found = read_equations(text, names_of(signed))
+    meant = [read_quantity(plain, signed), read_quantity("c", signed)]
+    assert [e.quantity for e in found.equations] == [
+        read_quantity("p[A]", signed), read_quantity("p[B]", signed)]
+    for equation, formula in zip(found.equations, meant, strict=True):
+        assert all(value(equation.expression, salt) == value(formula, salt) for salt in (3, 8))
+    text = rf"\begin{{gather}} Z = {latex} {between} Y = c \\ \pi_A = Z/Y \end{{gather}}"
+    found = read_equations(text, names_of(signed))
+    assert [definition.latex for definition in found.definitions] == ["Z", "Y"]
+
+
+@pytest.mark.parametrize("row", [r"b^- - \\ c", r"b^{-} - {} \\ & c", r"a_{}- \\ & c"])
+def test_a_sign_behind_a_script_is_an_operator(signed: Network, row: str) -> None:
+    found = read_equations(rf"\begin{{align}} \pi_A &= {row} \end{{align}}", names_of(signed))
+    assert len(found.equations) + len(found.passed_over) == 1
+    assert all(passed.reason.startswith("line 1") for passed in found.passed_over)
+
+
 @pytest.mark.parametrize(("text", "parts"), [
     (r"\left< x \right> = \left.y\right|_{c=0}", 2), (r"f(a = b) = [c < d] > e", 3),
     (r"\sum_{k=1}^{3} a = \{b = c\}", 2), (r"a := b \equiv c \approx d", 4),

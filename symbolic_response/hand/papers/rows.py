@@ -20,7 +20,7 @@ from symbolic_response.hand.papers.statements import (
     Statement,
     begins_with_condition,
     first_meaningful,
-    meaningful,
+    last_meaningful,
     relation_at,
     split_statements,
     tops,
@@ -255,8 +255,8 @@ def _cells(row: _Row, columns: bool) -> Iterator[tuple[int, _Row]]:
 
 
 def _continues(row: _Row, above: Sequence[Token], source: str) -> bool:
-    first, last = first_meaningful(row.tokens), list(meaningful(above[-12:]))[-1:]
-    if first in RELATIONS or first == ":" or (last and last[0] in RELATIONS | OPERATORS):
+    first, last = first_meaningful(row.tokens), last_meaningful(above, len(above))
+    if first in RELATIONS or first == ":" or last in RELATIONS | OPERATORS:
         return True
     if first in TEXT:
         return begins_with_condition(row.tokens, source)

@@ -28,6 +28,8 @@ RELATIONS = _EQUALS | _OTHER
 OPERATORS = frozenset(("+", "-", "*", "/", r"\cdot", r"\times", r"\pm", r"\mp", r"\div"))
 _OPENING = frozenset(("{", "(", "[", r"\{", r"\lbrace", r"\langle", r"\left", r"\begin"))
 _CLOSING = frozenset(("}", ")", "]", r"\}", r"\rbrace", r"\rangle", r"\right", r"\end"))
+_SCRIPTS = ("_", "^")
+_NEAR = 12
 PUNCTUATION = frozenset((".", ",", ";", ":"))
 _CONNECTING = frozenset(("and", "where", "with", "so", "hence", "thus", "therefore", "i.e", "that",
                          "is", "also", "while", "then", "giving"))
@@ -66,11 +68,17 @@ def depths(tokens: Sequence[Token]) -> list[int]:
 
 
 def meaningful(tokens: Sequence[Token]) -> Iterator[str]:
-    """Yield the texts of tokens without spaces, empty groups and invisible delimiters."""
+    """Yield the texts of tokens without spaces, empty groups and invisible delimiters.
+
+    A script of one token comes with its mark, as in ``_-``: its sign is no operator.
+    """
     texts = [token.text for token in tokens if token.text not in SPACING]
     place = 0
     while place < len(texts):
         if texts[place : place + 2] in (["{", "}"], [r"\left", "."], [r"\right", "."]):
+            place += 2
+        elif texts[place] in _SCRIPTS and texts[place + 1 : place + 2] not in ([], ["{"]):
+            yield texts[place] + texts[place + 1]
             place += 2
         else:
             yield texts[place]
@@ -82,9 +90,18 @@ def first_meaningful(tokens: Sequence[Token]) -> str:
     return next(meaningful(tokens), "")
 
 
+def last_meaningful(tokens: Sequence[Token], end: int) -> str:
+    """Return the last text of :func:`meaningful` before a place, ``""`` if it is far away."""
+    start = max(0, end - _NEAR)
+    if start and tokens[start - 1].text in _SCRIPTS:
+        start -= 1
+    return next(iter([*meaningful(tokens[start:end])][-1:]), "")
+
+
 def tops(tokens: Sequence[Token]) -> list[int]:
-    """Return the places of tokens that stand in no bracket."""
-    return [place for place, depth in enumerate(depths(tokens)) if depth == 0]
+    """Return the places of tokens that stand in no bracket and are no script."""
+    return [place for place, depth in enumerate(depths(tokens))
+            if depth == 0 and not (place and tokens[place - 1].text in _SCRIPTS)]
 
 
 def relation_at(tokens: Sequence[Token], place: int) -> str:
@@ -167,10 +184,10 @@ def _wide_break(tokens: Sequence[Token], place: int) -> bool:
     after_it = tokens[place + 1].text if place + 1 < len(tokens) else ""
     if tokens[place].text not in _WIDE and not (tokens[place].text in _THIN and after_it in _THIN):
         return False
-    before = list(meaningful(tokens[max(0, place - 12) : place]))
-    after = first_meaningful(tokens[place : place + 12])
+    before = last_meaningful(tokens, place)
+    after = first_meaningful(tokens[place : place + _NEAR])
     tied = RELATIONS | OPERATORS
-    return bool(before) and before[-1] not in tied and after not in tied and after != ":"
+    return bool(before) and before not in tied and after not in tied and after != ":"
 
 
 def _trimmed(tokens: Sequence[Token]) -> list[Token]:
