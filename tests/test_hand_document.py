@@ -358,6 +358,8 @@ DEFINED = [
     r"\[ Z = k_{off} + k_{on} c \] \[ Z = k_{off} + k_{on} c \] \[ \pi_A = k_{off}/Z \]",
     r"\begin{align} \pi_A &= 1 - K' / (1 + K'), \\ \text{where } K' &= k_{on} c / k_{off}"
     r" \end{align}",
+    r"\[ \pi_A = k_{off}/c^{\left(0\right)}, \quad c^{(0)} = k_{off} + k_{on} c \]",
+    r"\[ c^{\left(0\right)} = k_{off} + k_{on} c \] \[ \pi_A = k_{off}/c^{(0)} \]",
     r"\[ Z = k_{off} + k_{on} c = k_{off} (1 + k_{on} c/k_{off}) \] \[ \pi_A = k_{off}/Z \]",
 ]
 

@@ -91,6 +91,12 @@ a + @\pi_X                        ~ did you mean \pi_
 @k                                ~ did you mean k^{+}?
 @a^{+}                            ~ unknown symbol a^{+}
 @a^{b}                            ~ write e^{b \ln a}
+@a^{(2)}                          ~ write a^{2} for the power
+b + @a^{\left(2\right)} c           ~ unknown symbol a^{(2)}
+@k_{on}^{(-1)}                    ~ write k_{on}^{-1} for the power
+@a^{(n)}                          ~ an index or an order
+(a + b@)^{(2)}                    ~ write x^{2} for the power
+@2^{(3)}                          ~ write x^{2} for the power
 @a^{100000}                       ~ write a product of powers
 @e + 1                            ~ write \exp(1)
 @\frac{1}{0}                      ~ division by zero

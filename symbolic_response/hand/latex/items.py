@@ -359,6 +359,11 @@ class _Builder:
             )
 
 
+def bracketed(items: Items) -> bool:
+    """Return whether items are one pair of parentheses around something: no power, an index."""
+    return bool(items) and items[0].head == "(" and _one_bracket(items)
+
+
 def _one_bracket(items: Items) -> bool:
     """Return whether items are one pair of brackets with all else inside."""
     depth = 0

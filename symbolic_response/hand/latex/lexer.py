@@ -20,7 +20,15 @@ from symbolic_response.hand.latex.derivatives import (
     differentiated,
     subscripted,
 )
-from symbolic_response.hand.latex.items import CLOSING, MAX_NESTING, OPENING, Item, Items, key_of
+from symbolic_response.hand.latex.items import (
+    CLOSING,
+    MAX_NESTING,
+    OPENING,
+    Item,
+    Items,
+    bracketed,
+    key_of,
+)
 from symbolic_response.hand.latex.names import Names
 from symbolic_response.hand.latex.neighbours import (
     check_before_operator,
@@ -45,6 +53,8 @@ from symbolic_response.hand.latex.tokens import formula_error
 
 MAX_PIECES = 150_000
 MAX_DIGITS = 1_000
+
+
 def pieces_of(items: Items, names: Names, source: str) -> list[Piece]:
     """Return the pieces of a formula; FormulaError for what cannot be read in one way only."""
     lexer = _Lexer(names, source)
@@ -188,6 +198,8 @@ class _Lexer:
     def name(self, items: Items, place: int, match: Match) -> None:
         if match.others or len(match.meanings) > 1:
             raise self.error(items[place], refusals.two_readings(items, place, match))
+        if match.power is not None and bracketed(match.power):
+            raise self.error(items[place], refusals.bracketed_power(items, place, match))
         if match.power is not None and not numeric(match.power):
             raise self.error(items[place], refusals.unknown_power(items, place, match, self.names))
         self.put("NAME", items[place], match.meanings[0])
@@ -199,6 +211,8 @@ class _Lexer:
             raise self.error(item, f"{item.head!r} cannot carry a subscript or prime; write it on a"
                                    " symbol")
         if item.above is not None:
+            if bracketed(item.above):
+                raise self.error(item, refusals.BRACKETED)
             if not numeric(item.above):
                 raise self.error(item, refusals.exponent(item))
             self.exponent(item, item.above)

@@ -15,6 +15,8 @@ BARS = (r"bare | may open or close, and here more than one reading is possible; 
         r" \right| around each absolute value")
 PRODUCT_BODY = (r"where the body of \prod ends is not visible; put it in parentheses, as in"
                 r" \prod_{k=1}^{3} (a_k b), and other factors before \prod")
+BRACKETED = ("a superscript in parentheses is an index or an order, no power; write x^{2} for the"
+             " power")
 _LONG = 40
 _WORDS = ("exp", "ln", "log", "tanh", "sinh", "cosh", "coth", "sqrt", "frac")
 _COMMANDS = {
@@ -191,6 +193,12 @@ def unknown_power(items: Items, place: int, match: Match, names: Names) -> str:
     if match.power and names.match(match.power) is not None:
         hint = f"; for a power write e^{{{above} \\ln {match.shown}}}"
     return f"unknown symbol {key_of(whole)}, and {above!r} is no exact exponent{hint}"
+
+
+def bracketed_power(items: Items, place: int, match: Match) -> str:
+    whole, power = key_of(items[place : place + match.count]), match.power or ()
+    return (f"unknown symbol {whole}: a superscript in parentheses is an index or an order; write"
+            f" {match.shown}^{{{key_of(power[1:-1])}}} for the power")
 
 
 def exponent(item: Item) -> str:

@@ -87,6 +87,8 @@ def _argument(texts: Sequence[str], place: int) -> int:
 def _is_mark(texts: Sequence[str]) -> bool:
     """Whether a superscript is a mark such as ``*``, ``(0)`` or upright words: no exponent."""
     inside = texts[1:-1] if texts[0] == "{" else texts
+    if inside[:1] == [r"\left"] and inside[-2:-1] == [r"\right"]:
+        inside = [*inside[1:-2], inside[-1]]
     if not inside:
         return False
     return (all(text in _MARKS for text in inside) or inside[0] in _FONTS
