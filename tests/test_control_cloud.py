@@ -111,7 +111,7 @@ def test_what_the_cloud_says(clouds: dict[str, Cloud]) -> None:
     assert found.value_text == (
         "abs(d p[s1, s2] / d barrier[e1_2])/(p[s1, s2]*(1 - p[s1, s2]))")
     assert found.value_latex.startswith(r"\left|\partial \pi_{\{1,2\}} \, / \, \partial B_{")
-    assert found.value_latex.endswith(r"\left[\pi_{\{1,2\}} \cdot (1 - \pi_{\{1,2\}})\right]")
+    assert found.value_latex.endswith(r"\left[\pi_{\{1,2\}} (1 - \pi_{\{1,2\}})\right]")
     assert (found.transition, found.seed) == ("e1_2", "0")
     assert clouds[LN].value_latex.endswith(r"\right|")
 

@@ -85,6 +85,7 @@ def write_appendix(
     whole or not at all. Raises OutputError where that cannot be done.
     """
     target = Path(path)
+    check_output(target, network.path)
     chosen = settings(network, layout, target.stem)
     proofs, bib = (target.with_name(target.stem + end) for end in (".proofs.json", ".bib"))
     for file in (target, proofs, *([bib] if chosen.bibtex else [])):

@@ -11,7 +11,7 @@ from __future__ import annotations
 from collections.abc import Sequence
 from dataclasses import dataclass
 
-from symbolic_response.expressions.latex import SignedTerm
+from symbolic_response.expressions.latex import SignedTerm, join_factors
 from symbolic_response.expressions.loosening import parts_of
 from symbolic_response.expressions.tree import Expression
 from symbolic_response.expressions.widths import formula_width
@@ -207,11 +207,11 @@ def product_pieces(factors: Sequence[str], limit: float, sign: str = "") -> list
     pieces: list[Piece] = []
     line: list[str] = []
     for factor in factors:
-        if line and formula_width(" ".join([*line, factor])) > limit - NUMBER_ROOM - SIGN_WIDTH:
-            pieces.append(Piece(r"\times" if pieces else sign, " ".join(line), bool(pieces)))
+        if line and formula_width(join_factors([*line, factor])) > limit - NUMBER_ROOM - SIGN_WIDTH:
+            pieces.append(Piece(r"\times" if pieces else sign, join_factors(line), bool(pieces)))
             line = []
         line.append(factor)
-    pieces.append(Piece(r"\times" if pieces else sign, " ".join(line), bool(pieces)))
+    pieces.append(Piece(r"\times" if pieces else sign, join_factors(line), bool(pieces)))
     return pieces
 
 
