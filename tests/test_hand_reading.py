@@ -60,6 +60,8 @@ a^\frac12                                   | a**(1/2)
 \left(\frac{a}{b}\right)^{2} c              | a**2/b**2*c
 \bigl(a + \Bigl[b - c\Bigr]\bigr)           | a + b - c
 \left[a\right]                              | a
+k_{12} \left(k^{+}\right)^{2} b            | k_12*k**2*b
+a (k_{on})^{-1} + c                         | a/k_on + c
 a(b + c)                                    | a*(b + c)
 k_{on}(a + b)                               | k_on*(a + b)
 k^{+}(a - b/c)                              | k*(a - b/c)
@@ -197,6 +199,19 @@ def names_with(symbols: str, rates: str) -> Names:
         f'title = "t"\n[symbols]\na = {{}}\n{symbols}\n[states.A]\n[states.B]\n[[transitions]]\n'
         f'name = "e"\nbetween = ["A", "B"]\nrates = {rates}\n'
     ))
+
+
+@pytest.mark.parametrize("plain", [
+    "a*k**2*b", "k_on*k**2/(a + k**3)", "k**(-2)*mu**3", "exp(F)*k**2*sqrt(b)",
+])
+def test_the_latex_of_sympy_is_read(plain: str) -> None:
+    """Oracle: the text that SymPy printed, read by the other reader."""
+    sympy = pytest.importorskip("sympy")
+    written = {sympy.Symbol(name): latex for name, latex in (
+        ("k", "k^{+}"), ("k_on", "k_{on}"), ("mu", r"\mu"), ("F", "F"))}
+    expression = sympy.sympify(plain, locals={str(symbol): symbol for symbol in written})
+    latex = sympy.latex(expression, symbol_names=written)
+    assert value(read_formula(latex, NAMES)) == plain_value(plain)
 
 
 def test_letters_give_way_to_symbols() -> None:

@@ -51,6 +51,9 @@ k@_on c                           ~ write _{on}
 @a(b)                             ~ write a \cdot (b)
 @k_{on}(c)                        ~ write k_{on} \cdot (c)
 @a(-b)                            ~ write a \cdot (- b)
+@a(k^{+})                         ~ write a \cdot (k^{+})
+@a(2)^2                           ~ write a \cdot (2)^{2}
+@a(b^2)^2                         ~ write a \cdot (b^{2})^{2}
 @a[b c]                           ~ write a \cdot [b c]
 @|a| + |b|                        ~ write \left|
 @|a|b| + c|                       ~ write \left|

@@ -62,7 +62,8 @@ def check_side_by_side(
         message = refusals.number_behind(items, left, place, names)
         raise _error(source, items[left.first], message)
     if item.head in OPENING and names.match(items, place) is None:
-        if left.kind == "name" and not _operator_inside(items, place):
+        called = not (_operator_inside(items, place) or _power_of_a_name(items, place, names))
+        if left.kind == "name" and called:
             raise _error(source, items[left.first], refusals.call(items, left, place))
         if left.kind == "call":
             raise _error(source, item, refusals.after_call(items, left))
@@ -83,6 +84,15 @@ def _operator_inside(items: Items, place: int) -> bool:
         if depth == 1 and at > place + 1 and head in ("+", "-", "/", *DOTS):
             return True
     return False
+
+
+def _power_of_a_name(items: Items, place: int, names: Names) -> bool:
+    """Return whether brackets hold one name and carry a power: no function is written so."""
+    inside = names.match(items, place + 1) if place + 1 < len(items) else None
+    if inside is None or inside.power is not None:
+        return False
+    end = place + 1 + inside.count
+    return end < len(items) and items[end].head in CLOSING and items[end].above is not None
 
 
 def _differential(item: Item) -> bool:
