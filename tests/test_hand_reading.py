@@ -225,6 +225,14 @@ def test_letters_give_way_to_symbols() -> None:
     assert read_formula("p_A", names) == Probability((0,))
 
 
+def test_no_entropy_production_with_a_one_way_step() -> None:
+    names = names_with("", '["a"]')
+    for letter in (r"\sigma", r"\Sigma"):
+        with pytest.raises(FormulaError, match="unknown"):
+            read_formula(letter, names)
+    assert read_formula(r"\sigma", names.with_definitions({r"\sigma": Symbol("a")})) == Symbol("a")
+
+
 def test_e_is_a_symbol_where_the_file_has_one() -> None:
     names = names_with("e = {}", '["a*e", "1"]')
     assert value(read_formula("e^2 a", names)) == value(read_formula("a e e", names))

@@ -237,7 +237,8 @@ class _Writer:
     def quantities(
         self, states: list[list[tuple[str, int]]], transitions: list[list[tuple[str, int]]]
     ) -> None:
-        for letter, other in self.letters("entropy"):
+        one_way = any(each.backward is None for each in self.network.transitions)
+        for letter, other in () if one_way else self.letters("entropy"):
             self.values.try_add(letter, EntropyProduction(), CHOSEN + other)
         for place, observable in enumerate(self.network.observables):
             for label, other in _labels(self.notation.observables[place],
