@@ -16,6 +16,7 @@ from symbolic_response.hand.latex.names import Names, names_of
 from symbolic_response.hand.latex.reading import read_formula, read_formula_tokens
 from symbolic_response.hand.latex.tokens import line_and_column, tokenize
 from symbolic_response.network import read_network_text
+from symbolic_response.network.build import build_network
 from symbolic_response.network.quantities import DirectedRate, Probability
 from tests.formula_values import MOTOR, plain_value, value
 
@@ -226,7 +227,8 @@ def test_letters_give_way_to_symbols() -> None:
 
 
 def test_no_entropy_production_with_a_one_way_step() -> None:
-    names = names_with("", '["a"]')
+    steps = [("A", "B", "a"), ("B", "A", "b", "c")]
+    names = names_of(build_network("drop", states="A B", transitions=steps))
     for letter in (r"\sigma", r"\Sigma"):
         with pytest.raises(FormulaError, match="unknown"):
             read_formula(letter, names)
