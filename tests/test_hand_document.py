@@ -390,6 +390,21 @@ def test_no_definition_within_a_line(names: Names, text: str) -> None:
     assert read_equations(text, names).definitions == ()
 
 
+def test_a_definition_that_nothing_uses_is_listed(names: Names) -> None:
+    text = ("$$ r_A = k_{off}/c $$\n$$ Z = a + b $$\n$$ Y = Z^2 $$ with $X = a$,\n"
+            "$$ \\pi_A = \\frac{a}{\\unknown + {Y}} $$\n$$ V = c $$\n$$ W_1 = c $$\n"
+            "$$ \\pi_B \\approx e^{-V} \\text{ for all } a $$\n$$ \\pi_C = (W_1 $$")
+    found = read_equations(text, names)
+    assert [d.latex for d in found.definitions] == ["r_A", "Z", "Y", "X", "V", "W_1"]
+    listed = [(line, reason) for line, reason in reasons(found) if "nothing uses" in reason]
+    assert listed == [(line, "read as a definition, which nothing uses") for line in (1, 3)]
+    assert {passed.excerpt for passed in found.passed_over} >= {r"r_A = k_{off}/c", "X = a"}
+    for alone in (r"\[ Z = a = Z \]", r"\[ Z = a \] \[ Z = a \]", r"so that with $Z = a$"):
+        assert "nothing uses" in str(reasons(read_equations(alone, names)))
+    cases = r"\[ Z = a \] \[ \pi_A = \begin{cases} Z & a > b \\ b & a < b \end{cases} \]"
+    assert "nothing uses" not in str(reasons(read_equations(cases, names)))
+
+
 def test_an_ambiguous_name_counts_nowhere(names: Names) -> None:
     found = read_equations("$$ Z = a + b $$\n$$ \\pi_A = a/Z $$\n$$ Y = c/Z $$\n"
                            "$$ \\pi_B = a/b $$\n$$ Z = a - b $$", names)

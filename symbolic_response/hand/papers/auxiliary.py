@@ -5,7 +5,7 @@ Definitions may stand in any order. Of a name that is defined by different formu
 
 from __future__ import annotations
 
-from collections.abc import Sequence
+from collections.abc import Iterator, Mapping, Sequence
 from dataclasses import dataclass
 
 from symbolic_response.errors import SizeLimitError, SymbolicResponseError
@@ -14,7 +14,7 @@ from symbolic_response.expressions.tree import Expression, children
 from symbolic_response.hand.latex.items import items_of, key_of
 from symbolic_response.hand.latex.names import Names
 from symbolic_response.hand.latex.reading import read_formula_tokens
-from symbolic_response.hand.latex.tokens import Token, joined
+from symbolic_response.hand.latex.tokens import Token, joined, tokenize
 from symbolic_response.network.quantities import Change, Response
 
 MAX_DEFINITIONS = 300
@@ -108,6 +108,10 @@ class Auxiliary:
     used: tuple[Token, ...] = ()
     refusal: Exception | str | None = None
 
+    def key(self) -> str:
+        """Return the name as names are compared."""
+        return key_of(items_of(self.name, self.source))
+
     def attempt(self, names: Names) -> None:
         """Try to read the formula."""
         if isinstance(self.refusal, SizeLimitError):
@@ -132,8 +136,7 @@ def resolve(auxiliaries: Sequence[Auxiliary], names: Names) -> Names:
         late.refusal = f"more than {MAX_DEFINITIONS} definitions stand before it"
     groups: dict[str, list[Auxiliary]] = {}
     for auxiliary in auxiliaries[:MAX_DEFINITIONS]:
-        key = key_of(items_of(auxiliary.name, auxiliary.source))
-        groups.setdefault(key, []).append(auxiliary)
+        groups.setdefault(auxiliary.key(), []).append(auxiliary)
     waiting = list(groups.values())
     partly = False
     for _ in range(MAX_ROUNDS):
@@ -169,6 +172,31 @@ def _settled(group: Sequence[Auxiliary], names: Names) -> Names:
     for auxiliary in group:
         auxiliary.expression, auxiliary.refusal = None, refusal
     return names
+
+
+def used_names(
+    tokens: Sequence[Token], names: Names, source: str, known: Mapping[str, str]
+) -> Iterator[str]:
+    """Yield the keys of the names in a formula; ``known``: the key of each defined name by its
+    text, which is looked for where the formula is not well formed."""
+    try:
+        waiting = [items_of(tokens, source)]
+    except SymbolicResponseError:
+        written = joined(tokens)
+        yield from (key for name, key in known.items() if name in written)
+        return
+    while waiting:
+        items = waiting.pop()
+        place = 0
+        while place < len(items):
+            item = items[place]
+            waiting += [inside for inside in (item.above, *item.arguments) if inside]
+            if item.head == r"\partial" and item.below:
+                waiting.append(item.below)
+            found = names.match(items, place)
+            if found is not None:
+                yield key_of(items_of(tokenize(found.shown), found.shown))
+            place += 1 if found is None else found.count
 
 
 def check_size(expression: Expression) -> None:

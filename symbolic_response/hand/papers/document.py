@@ -4,7 +4,8 @@ A statement ``QUANTITY = FORMULA`` is a hand result, each later part of a chain 
 more. ``NAME = FORMULA`` with a name the network does not have defines an auxiliary quantity: in a
 display, or within a line after a word such as "where", "with" or "define" in the same sentence. A
 definition counts in the whole file, also before it stands; a name with two different definitions
-counts nowhere. Everything else is passed over, with the reason. A macro counts from where it is
+counts nowhere. Everything else is passed over, with the reason, also a definition that nothing
+uses: it may have been meant as a result. A macro counts from where it is
 defined to where it is defined again.
 """
 
@@ -20,7 +21,13 @@ from symbolic_response.expressions.tree import Expression, Symbol
 from symbolic_response.hand.latex.names import Names
 from symbolic_response.hand.latex.reading import read_formula_tokens
 from symbolic_response.hand.latex.tokens import Token, joined
-from symbolic_response.hand.papers.auxiliary import Auxiliary, check_size, is_name, resolve
+from symbolic_response.hand.papers.auxiliary import (
+    Auxiliary,
+    check_size,
+    is_name,
+    resolve,
+    used_names,
+)
 from symbolic_response.hand.papers.gathering import Gathered, Stated, gathered, one_line, shortened
 from symbolic_response.network.notation_section import LETTERS
 from symbolic_response.network.quantities import (
@@ -114,8 +121,8 @@ def read_equations_file(path: str | os.PathLike[str], names: Names) -> Reading:
 def read_equations(text: str, names: Names) -> Reading:
     r"""Return the hand results of a LaTeX text, a whole document or a part of one.
 
-    ``names``: the network's, from :func:`~symbolic_response.hand.latex.names.names_of`. Never raises for
-    what stands in the text: a display that cannot be read is passed over.
+    ``names``: the network's, from :func:`~symbolic_response.hand.latex.names.names_of`. Never
+    raises for what stands in the text: a display that cannot be read is passed over.
 
     >>> from symbolic_response.hand.latex.names import names_of
     >>> from symbolic_response.network.build import build_network
@@ -163,12 +170,15 @@ class _File:
         """Read what was sorted out."""
         names = resolve([auxiliary for auxiliary, _ in self.definitions], self.names)
         definitions = []
+        used = self.used(names)
         for auxiliary, stated in self.definitions:
             if auxiliary.expression is None:
                 self.pass_over(stated, auxiliary.refusal or "it cannot be read")
                 continue
             definitions.append(Definition(stated.text(auxiliary.name), auxiliary.expression,
                                           auxiliary.line))
+            if auxiliary.key() not in used:
+                self.pass_over(stated, "read as a definition, which nothing uses")
             for part in stated.statement.parts[1:]:
                 if part is not auxiliary.used:
                     self.pass_over(stated, "another form of a definition is not compared", part)
@@ -176,6 +186,17 @@ class _File:
                      for equation in self.equations(stated, names)]
         return Reading(tuple(equations), tuple(definitions),
                        tuple(sorted(self.passed, key=lambda passed: passed.line)))
+
+    def used(self, names: Names) -> set[str]:
+        """Return the keys of the names that formulas use, a definition not those of itself."""
+        known = {joined(auxiliary.name): auxiliary.key() for auxiliary, _ in self.definitions}
+        found = {key for stated in self.claims
+                 for key in used_names(stated.statement.tokens, names, stated.source, known)}
+        for auxiliary, stated in self.definitions:
+            own = auxiliary.key()
+            found |= {key for part in stated.statement.parts[1:]
+                      for key in used_names(part, names, stated.source, known) if key != own}
+        return found
 
     def pass_over(
         self, stated: Stated, reason: str | Exception, tokens: Sequence[Token] = (),
