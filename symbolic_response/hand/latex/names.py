@@ -12,10 +12,18 @@ import difflib
 from collections.abc import Iterable, Iterator, Mapping, Sequence
 from dataclasses import dataclass, field, replace
 
-from symbolic_response.errors import ExpressionError, FormulaError
+from symbolic_response.errors import ExpressionError, FormulaError, SymbolicResponseError
 from symbolic_response.expressions.names import base_latex, default_latex, same_latex, upright
 from symbolic_response.expressions.tree import Expression, Symbol, add, negate
-from symbolic_response.hand.latex.items import Item, Items, items_of, key_of, without_fonts
+from symbolic_response.hand.latex.items import (
+    Item,
+    Items,
+    bracketed,
+    items_of,
+    key_of,
+    without_fonts,
+)
+from symbolic_response.hand.latex.pieces import numeric
 from symbolic_response.hand.latex.table import (
     CHOSEN,
     SYMBOL,
@@ -25,7 +33,7 @@ from symbolic_response.hand.latex.table import (
     loose_key,
     split_at,
 )
-from symbolic_response.hand.latex.tokens import tokenize
+from symbolic_response.hand.latex.tokens import Token, tokenize
 from symbolic_response.network.model import Network
 from symbolic_response.network.notation_section import LETTERS, plain_symbol_names
 from symbolic_response.network.quantities import (
@@ -49,10 +57,10 @@ from symbolic_response.response.notation import Notation, joined, notation_of
 class Names:
     """The names of a network, of its perturbations, and those defined in a text.
 
-    ``probability`` and ``barrier``: the keys of the letters that take a set of states or of
-    transitions; ``beta``: the inverse temperature, if it is written. ``own``: the perturbations
-    that the derivative by a symbol is; ``twofold``: those
-    of these symbols that are written like the perturbation itself.
+    ``probability``, ``current`` and ``barrier``: the keys of the letters of these roles, the
+    first and the last take a set of states or of transitions as index; ``beta``: the inverse
+    temperature, if it is written. ``own``: the perturbations that the derivative by a symbol is;
+    ``twofold``: those of these symbols that are written like the perturbation itself.
     """
 
     values: Table
@@ -60,6 +68,7 @@ class Names:
     own: Mapping[str, Perturbation]
     twofold: frozenset[str]
     probability: frozenset[str]
+    current: frozenset[str]
     barrier: frozenset[str]
     states: Table
     transitions: Table
@@ -101,6 +110,24 @@ class Names:
         if labels is self.transitions:
             value = BarrierOf(chosen[0]) if len(chosen) == 1 else BarriersOf(chosen)
         return Match(1, (value,), key_of([item]), item.above)
+
+    def begins_unknown(self, tokens: Sequence[Token], source: str) -> bool:
+        r"""Return whether a formula begins with the letter of probabilities or currents and an
+        index or superscript that is not known: ``\pi_X``, ``P_C^{ss}``."""
+        try:
+            items = items_of(tokens, source)
+        except SymbolicResponseError:
+            return False
+        first = items[0] if items else None
+        if first is None or (first.below is None and first.above is None):
+            return False
+        letter = key_of([replace(first, below=None, above=None, primes=0)])
+        found = self.match(items)
+        power = found.power if found is not None else None
+        known = found is not None and (
+            power is None or (numeric(power) and not bracketed(power))
+        )
+        return letter in self.probability | self.current and not known
 
     def with_definitions(self, definitions: Mapping[str, Expression]) -> Names:
         """Return the names with further ones, LaTeX to expression.
@@ -182,6 +209,7 @@ class _Writer:
             own=own,
             twofold=frozenset(name for name, by in own.items() if self.is_twofold(name, by)),
             probability=self.letter_keys("probability"),
+            current=self.letter_keys("current"),
             barrier=self.letter_keys("barrier"),
             states=_label_table(states),
             transitions=_label_table(transitions),

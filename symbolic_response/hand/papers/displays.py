@@ -142,7 +142,8 @@ class _Scan:
         if edge is not None and edge.opens:
             self.open(edge, mark)
         elif edge is not None:
-            self.faults.append(Fault(mark.start(), f"{edge.written} closes no display; remove it"))
+            self.faults.append(Fault(mark.start(), f"{edge.written} closes no display; remove it",
+                                     True))
         elif self.inline is None:
             self.outside(mark)
         return mark.end()
@@ -201,7 +202,7 @@ class _Scan:
             self.inline = ("$" if mark["dollar"] else ")", mark.end())
         elif mark["word"] in self.makers:
             self.faults.append(Fault(mark.start(), f"the display that {mark[0]} makes is not read;"
-                                                   " write the display itself"))
+                                                   " write the display itself", True))
         elif mark["word"] in _INPUTS:
             named = re.compile(r"[ \t]*(?:\{[^{}\n]{0,200}\}|[^\s{}\\]{1,200})").match(
                 self.text, mark.end())
@@ -215,7 +216,7 @@ class _Scan:
             edge, offset, _ = self.display
             closing = {"[": r"\]", "$$": "$$"}.get(edge.environment, f"\\end{{{edge.environment}}}")
             self.faults.append(Fault(offset, f"{edge.written} is not closed; write {closing} "
-                                             "before the next blank line or display"))
+                                             "before the next blank line or display", True))
         elif self.inline is not None:
             closing, start = self.inline
             written = "$" if closing == "$" else r"\("

@@ -4,8 +4,8 @@ A statement ``QUANTITY = FORMULA`` is a hand result, each later part of a chain 
 more. ``NAME = FORMULA`` with a name the network does not have defines an auxiliary quantity: in a
 display, or within a line after a word such as "where", "with" or "define" in the same sentence. A
 definition counts in the whole file, also before it stands; a name with two different definitions
-counts nowhere. Everything else is passed over, with the reason, also a definition that nothing
-uses: it may have been meant as a result. A macro counts from where it is
+counts nowhere. Everything else is passed over, with the reason, also a displayed definition
+that nothing uses: it may have been meant as a result. A macro counts from where it is
 defined to where it is defined again.
 """
 
@@ -73,7 +73,10 @@ class Definition:
 class PassedOver:
     """Something of the file that is neither a hand result nor a definition, and why.
 
-    ``unread``: a formula for a quantity of the network, which could not be read.
+    ``unread``: a formula for a quantity of the network, which could not be read, or something that
+    may hold one: a left side that begins with the letter of probabilities or currents and an index
+    or superscript that the network does not have, a display of which ends or braces do not match
+    or that is not read as a whole.
     """
 
     line: int
@@ -154,7 +157,7 @@ class _File:
         for fault in self.parts.faults:
             self.passed.append(PassedOver(self.parts.line(fault.offset),
                                           self.parts.excerpt(fault.offset),
-                                          one_line(fault.reason)))
+                                          one_line(fault.reason), fault.display))
         for stated in self.parts.stated:
             statement = stated.statement
             if statement.refusal is None and _defines(stated, self.names):
@@ -177,7 +180,7 @@ class _File:
                 continue
             definitions.append(Definition(stated.text(auxiliary.name), auxiliary.expression,
                                           auxiliary.line))
-            if auxiliary.key() not in used:
+            if not stated.inline and auxiliary.key() not in used:
                 self.pass_over(stated, "read as a definition, which nothing uses")
             for part in stated.statement.parts[1:]:
                 if part is not auxiliary.used:
@@ -237,7 +240,8 @@ class _File:
                 check_size(quantity)
             except SymbolicResponseError as error:
                 if _BY_TIME.search(joined(left)) is None:
-                    self.pass_over(stated, error)
+                    self.pass_over(stated, error,
+                                   unread=self.names.begins_unknown(left, stated.source))
                     return None
                 reason = "a derivative by time is no quantity of a steady state"
             else:

@@ -142,7 +142,7 @@ class Gathered:
 
     def display(self, display: Display) -> None:
         """Take in the statements of a display, or say why not."""
-        reason = None
+        reason, lost = None, True
         if display.environment not in READ | {"[", "$$"}:
             reason = f"the environment {display.environment} is not read; use equation or align"
         elif display.end - display.start > MAX_DISPLAY:
@@ -155,12 +155,12 @@ class Gathered:
         else:
             try:
                 if not self.take(display.start, display.end, display.environment):
-                    reason = "the display holds no formula"
+                    reason, lost = "the display holds no formula", False
             except SymbolicResponseError as error:
                 self.charge(error)
                 reason = self.reason(error, display.start)
         if reason is not None:
-            self.faults.append(Fault(display.offset, reason))
+            self.faults.append(Fault(display.offset, reason, lost))
 
     def inline(self, inline: Inline) -> None:
         """Take in a formula within a line if a word before it says that it defines something."""

@@ -30,10 +30,14 @@ _CONDITIONALS = frozenset((
 
 @dataclass(frozen=True, slots=True)
 class Fault:
-    """Something of a file that is not read: where it begins, from 0, and why."""
+    """Something of a file that is not read: where it begins, from 0, and why.
+
+    ``display``: displays may be lost by it.
+    """
 
     offset: int
     reason: str
+    display: bool = False
 
 
 def visible(text: str) -> tuple[str, tuple[Fault, ...]]:
@@ -96,7 +100,7 @@ class _State:
             return found + len(closing)
         if self.dead is None:
             self.faults.append(
-                Fault(start, rf"\begin{{{name}}} is not closed; write {closing} after it"))
+                Fault(start, rf"\begin{{{name}}} is not closed; write {closing} after it", True))
         return len(self.text)
 
     def verb(self, end: int) -> int:
@@ -136,4 +140,5 @@ class _State:
         if self.dead is not None:
             self.hidden.append((self.dead, len(self.text)))
             self.faults.append(Fault(
-                self.dead, rf"\{self.open[-1]} is not closed; write \fi after what it leaves out"))
+                self.dead, rf"\{self.open[-1]} is not closed; write \fi after what it leaves out",
+                True))
