@@ -411,8 +411,14 @@ def test_an_ambiguous_name_counts_nowhere(names: Names) -> None:
     assert pairs(found) == [(r"\pi_B", "a/b")]
     assert found.definitions == ()
     listed = dict(reasons(found))
-    assert "lines 1" in listed[1] and "5" in listed[1] and "lines 1" in listed[5]
-    assert "Z" in listed[2]
+    said = "Z has two different definitions (lines 1 and 5); give each a name of its own"
+    assert listed[1] == listed[5] == said
+    assert listed[2] == f"line 2, column 14: {said}"
+    assert listed[3] == f"line 3, column 10: {said}"
+    found = read_equations("$$ c^{(1)} = a $$\n$$ c^{(1)} = b $$ $$ \\Delta c = a $$\n"
+                           "$$ c^{(1)} = g $$\n$$ \\pi_A = c^{(1)} $$\n$$ \\pi_B = c^2 $$", names)
+    assert "c^{(1)} has 3 different definitions (lines 1, 2 and 3)" in dict(reasons(found))[4]
+    assert pairs(found) == [(r"\pi_B", "c^2")]
 
 
 def test_a_name_waits_for_all_its_formulas(names: Names) -> None:

@@ -133,6 +133,9 @@ class _Lexer:
         if (item.head.isdigit() and item.head.isascii()) or item.head == ".":
             return Unit("number", place, self.number(items, place))
         match = self.names.match(items, place)
+        refused = self.names.refusal(items, place, match)
+        if refused:
+            raise self.error(item, refused)
         if match is not None:
             refusals.check_spelled(items, place, match, self.source)
             self.name(items, place, match)

@@ -59,7 +59,8 @@ class Names:
 
     ``probability``, ``current`` and ``barrier``: the keys of the letters of these roles, the
     first and the last take a set of states or of transitions as index; ``beta``: the inverse
-    temperature, if it is written. ``own``: the perturbations that the derivative by a symbol is;
+    temperature, if it is written. ``refused``: names that a text gives no one meaning, with the
+    reason. ``own``: the perturbations that the derivative by a symbol is;
     ``twofold``: those of these symbols that are written like the perturbation itself.
     """
 
@@ -74,6 +75,7 @@ class Names:
     transitions: Table
     positive: frozenset[str]
     beta: str
+    refused: Table = field(default_factory=Table)
 
     def match(self, items: Items, place: int = 0) -> Match | None:
         """Return the longest quantity or symbol that begins at a place."""
@@ -144,6 +146,28 @@ class Names:
                 raise ExpressionError(f"{latex} is a name of the network already; define another")
             builder.add(latex, value, SYMBOL)
         return replace(self, values=builder.table())
+
+    def with_refused(self, latex: str, reason: str) -> Names:
+        """Return the names with one that a text does not define in one way: uses give the reason.
+
+        Raises FormulaError for LaTeX that is not well formed.
+        """
+        builder = Builder()
+        builder.take(self.refused)
+        builder.add(latex, reason, SYMBOL)
+        return replace(self, refused=builder.table())
+
+    def refusal(self, items: Items, place: int, found: Match | None) -> str:
+        """Return why the name at a place is refused, or nothing; ``found``: the name that is not.
+
+        Of the two the longer name counts.
+        """
+        lost = self.refused.match(items, place) if self.refused.exact else None
+        if lost is None or (found is not None and (
+            lost.count < found.count or (lost.power is not None and found.power is None)
+        )):
+            return ""
+        return f"{lost.shown} {lost.meanings[0]}"
 
     def nearest(self, items: Sequence[Item], *, perturbation: bool = False) -> str:
         """Return ``"; did you mean k_{on}?"`` for the known name closest to items, or a list."""

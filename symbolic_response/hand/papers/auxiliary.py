@@ -161,14 +161,20 @@ def _settled(group: Sequence[Auxiliary], names: Names) -> Names:
     """Add a name to the names, or refuse it if its formulas are not the same."""
     expression = group[0].expression
     assert expression is not None
-    lines = ", ".join(str(auxiliary.line) for auxiliary in group)
-    refusal: Exception | str = (f"the name has different formulas (lines {lines}), so none of them "
-                                "is used; give each a name of its own")
+    latex = joined(group[0].name)
     if all(auxiliary.expression == expression for auxiliary in group):
         try:
-            return names.with_definitions({joined(group[0].name): expression})
+            return names.with_definitions({latex: expression})
         except SymbolicResponseError as error:
-            refusal = error
+            return _refuse(group, names, error)
+    lines = [str(auxiliary.line) for auxiliary in group]
+    number = "two" if len(lines) == 2 else str(len(lines))
+    reason = (f"has {number} different definitions (lines {', '.join(lines[:-1])} and {lines[-1]});"
+              " give each a name of its own")
+    return _refuse(group, names.with_refused(latex, reason), f"{latex} {reason}")
+
+
+def _refuse(group: Sequence[Auxiliary], names: Names, refusal: Exception | str) -> Names:
     for auxiliary in group:
         auxiliary.expression, auxiliary.refusal = None, refusal
     return names
