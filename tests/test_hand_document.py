@@ -360,6 +360,7 @@ DEFINED = [
     r" \end{align}",
     r"\[ \pi_A = k_{off}/c^{\left(0\right)}, \quad c^{(0)} = k_{off} + k_{on} c \]",
     r"\[ c^{\left(0\right)} = k_{off} + k_{on} c \] \[ \pi_A = k_{off}/c^{(0)} \]",
+    r"\[ \pi_A = k_{off}/f', \quad f^{'} = k_{off} + k_{on} c \]",
     r"\[ Z = k_{off} + k_{on} c = k_{off} (1 + k_{on} c/k_{off}) \] \[ \pi_A = k_{off}/Z \]",
 ]
 

@@ -63,6 +63,9 @@ a^\frac12                                   | a**(1/2)
 \left[a\right]                              | a
 k_{12} \left(k^{+}\right)^{2} b            | k_12*k**2*b
 a (k_{on})^{-1} + c                         | a/k_on + c
+a{}^2 b                                     | a**2*b
+k{}_{12}{}^{2}                              | k_12**2
+a + {}b                                     | a + b
 a(b + c)                                    | a*(b + c)
 k_{on}(a + b)                               | k_on*(a + b)
 k^{+}(a - b/c)                              | k*(a - b/c)
@@ -261,6 +264,12 @@ c = {latex = 'x_{\mathit{on}}'}""", '["a*b*c", "1"]')
 def test_the_latex_of_a_symbol_that_tex_sets_otherwise_is_named() -> None:
     with pytest.raises(FormulaError, match=r"LaTeX of symbol 'b': line 1.*write _\{12\}"):
         names_with("b = {latex = 'x_12'}", '["a*b", "1"]')
+
+
+def test_primes_in_braces() -> None:
+    names = NAMES.with_definitions({"f'": Symbol("a"), "f''": Symbol("b")})
+    for latex, name in (("f^{'}", "a"), ("f^{''}", "b"), (r"f^{\prime}", "a"), ("f'{}'", "b")):
+        assert read_formula(latex, names) == Symbol(name)
 
 
 def test_definitions_of_a_text() -> None:

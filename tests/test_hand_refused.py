@@ -37,6 +37,22 @@ REFUSED = r"""
 a/b@c                             ~ write \frac{a}{b}
 a/b @\cdot c                      ~ write \frac{a}{b}
 1/2 @a                            ~ write \frac{1}{2}
+ab(c+a)/b @\overset{!}{=} 1/2      ~ unknown command \overset
+a c/b @\footnotemark               ~ unknown command \footnotemark
+\ln a @\footnotemark               ~ unknown command \footnotemark
+b - a(b+c)/b @c                   ~ write \frac{a (b + c)}{b} before
+ab/(b+ac)\,@c                     ~ write \frac{a b}{b + a c} before
+a/(b+c)^2 @c                      ~ write \frac{a}{(b + c)^{2}} before
+c(1+ab/b @c)                      ~ write \frac{a b}{b} before
+\ln a @(b+c)                      ~ write \ln(a) or \ln(a (b + c))
+\ln a @\left|b\right|             ~ write \ln(a)
+@{a \over b + c}                  ~ write \frac{a}{b + c}
+1 + @{\cal D}_1 c                 ~ write \mathcal{D}
+@\cal D                           ~ write \mathcal{...}
+@{\rm d} + a                      ~ write \mathrm{d}
+@a'^{2}                           ~ unknown symbol
+a{}^2{}@^3                        ~ two superscripts
+a @{}^2                           ~ not visible
 a/b@/c                            ~ write \frac{a}{b c}
 a/b @(a + b)                      ~ write \frac{a}{b}
 a/@\sum_{i=1}^{2} b^i             ~ in parentheses
@@ -97,7 +113,7 @@ a + @\pi_X                        ~ did you mean \pi_
 @a^{(2)}                          ~ write a^{2} for the power
 b + @a^{\left(2\right)} c           ~ unknown symbol a^{(2)}
 @k_{on}^{(-1)}                    ~ write k_{on}^{-1} for the power
-@a^{(n)}                          ~ an index or an order
+@a^{(n)}                          ~ an index or an order; known: a
 (a + b@)^{(2)}                    ~ write x^{2} for the power
 @2^{(3)}                          ~ write x^{2} for the power
 @a^{100000}                       ~ write a product of powers
@@ -146,6 +162,16 @@ def test_refused_at_its_place_with_what_to_write(marked: str, message: str) -> N
     assert (error.line, error.column) == (1, column)
     excerpt, caret = error.pointed().splitlines()
     assert excerpt == latex and caret == " " * (column - 1) + "^"
+
+
+@pytest.mark.parametrize(("latex", "left_out"), [
+    (" ".join("abc" * 9) + "/b c", "\\frac"), (r"\ln a |b|", " or "),
+    (r"\ln a (" + "a + " * 20 + "b)", " or "),
+])
+def test_no_suggestion_where_none_can_be_made(latex: str, left_out: str) -> None:
+    with pytest.raises(FormulaError) as caught:
+        read_formula(latex, NAMES)
+    assert left_out not in str(caught.value)
 
 
 def test_places_in_several_lines() -> None:

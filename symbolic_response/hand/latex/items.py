@@ -174,6 +174,8 @@ class _Builder:
                 return tuple(found)
             if token.text in ("^", "_", "'"):
                 self.script(found, token)
+            elif token.text == "{" and found and not spaced and self.carries_on(found[-1], token):
+                self.place += 2
             elif self.dropped(token, found):
                 spaced = True
             else:
@@ -185,6 +187,12 @@ class _Builder:
         if opening is not None:
             raise self.error(opening, "'{' is never closed; write the missing }")
         return tuple(found)
+
+    def carries_on(self, before: Item, token: Token) -> bool:
+        """Return whether ``{}`` right behind a symbol only stands between it and its script."""
+        ahead = [part.text for part in self.tokens[self.place + 1 : self.place + 3]]
+        scripted = len(ahead) == 2 and ahead[0] == "}" and ahead[1] in ("^", "_", "'")
+        return scripted and not token.space and before.head not in _WITHOUT_SCRIPTS
 
     def dropped(self, token: Token, found: list[Item]) -> bool:
         """Pass over what sets no symbol; False where a symbol follows."""
@@ -320,6 +328,10 @@ class _Builder:
         if token.text == "'":
             found[-1] = replace(item, primes=item.primes + 1)
             return
+        primes = self.primes_in_braces() if token.text == "^" else 0
+        if primes:
+            found[-1] = replace(item, primes=item.primes + primes)
+            return
         braced = self.text() == "{"
         inside = self.argument(token)
         if not braced:
@@ -335,6 +347,19 @@ class _Builder:
             if item.below is not None:
                 raise self.error(token, "two subscripts on one symbol; write one, as in k_{1,2}")
             found[-1] = replace(item, below=inside)
+
+    def primes_in_braces(self) -> int:
+        """Pass over ``{'}`` or ``{''}`` and return how many primes these are; 0 for all else."""
+        end = self.place + 1
+        while end < len(self.tokens) and self.tokens[end].text == "'":
+            end += 1
+        count = end - self.place - 1
+        if self.text() != "{" or not count or end == len(self.tokens) or (
+            self.tokens[end].text != "}"
+        ):
+            return 0
+        self.place = end + 1
+        return count
 
     def check_single(self, script: Token, inside: Items) -> None:
         """Refuse ``x_12``, ``2^10`` and ``k_on``, which TeX sets as x_1 2, 2^1 0 and k_o n."""

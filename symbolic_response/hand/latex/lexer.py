@@ -202,7 +202,8 @@ class _Lexer:
         if match.others or len(match.meanings) > 1:
             raise self.error(items[place], refusals.two_readings(items, place, match))
         if match.power is not None and bracketed(match.power):
-            raise self.error(items[place], refusals.bracketed_power(items, place, match))
+            raise self.error(items[place], refusals.bracketed_power(items, place, match,
+                                                                    self.names))
         if match.power is not None and not numeric(match.power):
             raise self.error(items[place], refusals.unknown_power(items, place, match, self.names))
         self.put("NAME", items[place], match.meanings[0])

@@ -41,10 +41,10 @@ def check_before_operator(
     items: Items, left: Unit, item: Item, slash: Unit | None, source: str
 ) -> None:
     if left.kind == "bare":
-        raise _error(source, item, refusals.after_bare(items, left, item))
+        raise _error(source, item, refusals.after_bare(items, left, left.after))
     if slash is not None:
         what = refusals.divided_twice if item.head == "/" else refusals.after_slash
-        raise _error(source, item, what(items, slash, left.first))
+        raise _error(source, item, what(items, slash))
 
 
 def check_side_by_side(
@@ -52,10 +52,12 @@ def check_side_by_side(
 ) -> None:
     """Refuse operands next to each other that can be read in two ways."""
     item = items[place]
+    if (left.kind == "bare" or slash is not None) and refusals.is_unread(items, place, names):
+        raise _error(source, item, refusals.unknown(items, place, names))
     if left.kind == "bare":
-        raise _error(source, item, refusals.after_bare(items, left, item))
+        raise _error(source, item, refusals.after_bare(items, left, place))
     if slash is not None:
-        raise _error(source, item, refusals.after_slash(items, slash, left.first))
+        raise _error(source, item, refusals.after_slash(items, slash))
     if item.head == "," or item.head == ".":
         raise _error(source, item, refusals.comma(items, left, place))
     if item.head.isdigit():

@@ -4,8 +4,9 @@ from __future__ import annotations
 
 from dataclasses import dataclass, replace
 
-from symbolic_response.hand.latex.items import CLOSING, OPENING, Item, Items, key_of
+from symbolic_response.hand.latex.items import CLOSING, FONTS, OPENING, Item, Items, key_of
 from symbolic_response.hand.latex.names import Names
+from symbolic_response.hand.latex.pieces import numeric
 from symbolic_response.hand.latex.table import Match
 from symbolic_response.hand.latex.tokens import formula_error
 
@@ -27,6 +28,9 @@ _COMMANDS = {
     r"\ast": r"\ast is no product; write \cdot",
     r"\div": r"\div is not read; write \frac{a}{b}",
     r"\over": r"\over is not read; write \frac{a}{b}",
+    **{f"\\{old}": rf"\{old} is not read; write \{new}{{...}}" for old, new in (
+        ("cal", "mathcal"), ("rm", "mathrm"), ("bf", "mathbf"), ("it", "mathit"),
+        ("sf", "mathsf"), ("tt", "mathtt"))},
     "!": "factorials are not read; write the number",
     r"\int": "integrals are not read; write the result",
     r"\lim": "limits are not read; write the result",
@@ -42,6 +46,7 @@ _COMMANDS = {
     "\u00d7": r"this is no product sign of LaTeX; write \times",
 }
 _DOTS = (r"\cdots", r"\ldots", r"\dots", r"\dotsb", r"\dotsc", r"\vdots", r"\dotsm", r"\dotsi")
+_READ = frozenset(f"\\{word}" for word in (*_WORDS, "partial", "sum", "prod", "left", "lvert"))
 _OTHER_FUNCTIONS = tuple(
     rf"\{name}" for name in ("sin", "cos", "tan", "arcsin", "arccos", "arctan", "max", "min", "det",
                              "sec", "csc", "cot", "lg", "sup", "inf", "arg", "gcd", "sgn")
@@ -82,35 +87,75 @@ def no_operand(item: Item, items: Items, place: int) -> str:
     return f"a value is missing{before} {item.head!r}; write it or leave the operator out"
 
 
-def after_bare(items: Items, left: Unit, item: Item) -> str:
+def is_unread(items: Items, place: int, names: Names) -> bool:
+    """Return whether a command stands at a place that nothing in a formula can be."""
+    head = items[place].head
+    known = head in _READ or head in FONTS or names.match(items, place) is not None
+    return head[0] == "\\" and head[1:].isalpha() and not known
+
+
+def after_bare(items: Items, left: Unit, place: int) -> str:
     """Say what to write where something follows the argument of a function without brackets."""
+    item = items[place]
     head, argument = excerpt(items[left.first : left.first + 1]), _argument(items, left)
     if head.startswith((r"\partial", r"\frac")):
         return (f"where the derivative {head} {argument} ends is not visible before {item.head!r};"
                 f" write \\left({head} {argument}\\right)")
+    more = _joined(items, place)
     return (f"where the argument of {head} ends is not visible before {item.head!r}; write"
-            f" {head}({argument}) or {head}({argument} {_joined(item)})")
+            f" {head}({argument})" + (f" or {head}({argument} {more})" if more else ""))
 
 
 def _argument(items: Items, left: Unit) -> str:
     return excerpt(items[left.first + 1 : left.after])
 
 
-def _joined(item: Item) -> str:
-    return f"{item.head} ..." if item.head in ("/", r"\cdot", r"\times") else excerpt((item,))
+def _joined(items: Items, place: int) -> str:
+    """Return what may belong to an argument too, or nothing where that cannot be shown."""
+    item = items[place]
+    if item.head in ("/", r"\cdot", r"\times"):
+        return f"{item.head} ..."
+    if item.head == "|":
+        return ""
+    shown = excerpt(items[place : _closing(items, place) + 1])
+    return "" if shown.endswith("...") else shown
 
 
-def divided_twice(items: Items, slash: Unit, first: int) -> str:
+def divided_twice(items: Items, slash: Unit) -> str:
     below = excerpt(items[slash.first : slash.after])
     return (f"a second / behind /{below} can be read in two ways; write \\frac{{a}}{{b c}} for"
             " a/(b c)")
 
 
-def after_slash(items: Items, slash: Unit, first: int) -> str:
-    above = excerpt(items[max(0, slash.first - 2) : slash.first - 1])
+def after_slash(items: Items, slash: Unit) -> str:
+    end = slash.first - 1
+    above = excerpt(items[_term_start(items, end) : end])
     below = excerpt(items[slash.first : slash.after])
-    return (f"what stands behind /{below} may be divided by or not; write \\frac{{{above}}}"
-            f"{{{below}}} before it, or put all that is divided by in parentheses")
+    fraction = f"\\frac{{{above}}}{{{_inside(items, slash)}}}"
+    cut = above.endswith("...") or below.endswith("...")
+    return (f"what stands behind /{below} may be divided by or not; "
+            + ("" if cut else f"write {fraction} before it, or ")
+            + "put all that is divided by in parentheses")
+
+
+def _inside(items: Items, unit: Unit) -> str:
+    """Return a denominator, without the brackets around all of it."""
+    first, last = items[unit.first], items[unit.after - 1]
+    plain = last.above is None and last.below is None and _closing(items, unit.first) + 1
+    around = first.head in OPENING and plain == unit.after
+    return excerpt(items[unit.first + around : unit.after - around])
+
+
+def _term_start(items: Items, end: int) -> int:
+    """Return where the term begins that ends at a place."""
+    depth = 0
+    for at in range(end - 1, -1, -1):
+        item = items[at]
+        depth += (item.head in CLOSING) - (item.head in OPENING)
+        sign = item.head in ("+", "-") and item.above is None and item.below is None
+        if depth < 0 or (depth == 0 and sign):
+            return at + 1
+    return 0
 
 
 def comma(items: Items, left: Unit, place: int) -> str:
@@ -195,10 +240,13 @@ def unknown_power(items: Items, place: int, match: Match, names: Names) -> str:
     return f"unknown symbol {key_of(whole)}, and {above!r} is no exact exponent{hint}"
 
 
-def bracketed_power(items: Items, place: int, match: Match) -> str:
-    whole, power = key_of(items[place : place + match.count]), match.power or ()
-    return (f"unknown symbol {whole}: a superscript in parentheses is an index or an order; write"
-            f" {match.shown}^{{{key_of(power[1:-1])}}} for the power")
+def bracketed_power(items: Items, place: int, match: Match, names: Names) -> str:
+    whole, inside = items[place : place + match.count], (match.power or ())[1:-1]
+    hint = names.nearest(whole)
+    if numeric(inside):
+        hint = f"; write {match.shown}^{{{key_of(inside)}}} for the power"
+    return (f"unknown symbol {key_of(whole)}: a superscript in parentheses is an index or an order"
+            f"{hint}")
 
 
 def exponent(item: Item) -> str:
@@ -294,6 +342,19 @@ def spelled(items: Items, place: int) -> str:
     return ""
 
 
+def _in_braces(inside: Items, command: str) -> str:
+    r"""Say what to write for ``{a \over b}`` and ``{\cal D}``."""
+    heads = [item.head for item in inside]
+    place = heads.index(command)
+    before, behind = excerpt(inside[:place]), excerpt(inside[place + 1 :])
+    said = _COMMANDS[command]
+    if not behind or before.endswith("...") or behind.endswith("..."):
+        return said
+    if command == r"\over" and before and heads.count(command) == 1:
+        return said.replace(r"\frac{a}{b}", rf"\frac{{{before}}}{{{behind}}}")
+    return said if before else said.replace("...", behind)
+
+
 def unknown(items: Items, place: int, names: Names) -> str:
     """Say what is wrong with an item that begins no operand."""
     item = items[place]
@@ -309,6 +370,9 @@ def unknown(items: Items, place: int, names: Names) -> str:
         return f"{word} spells a function; write \\{word}"
     if head == "{}":
         inside = excerpt(item.arguments[0])
+        for part in item.arguments[0]:
+            if part.head in _COMMANDS and part.head[0] == "\\":
+                return _in_braces(item.arguments[0], part.head)
         return f"braces around {inside} are not visible; write ({inside}) or leave them out"
     if head in (",", ";", ":", ".", "?", '"', "`"):
         return f"{head!r} does not belong here; leave it out, or write an operator"

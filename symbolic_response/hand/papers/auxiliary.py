@@ -30,7 +30,7 @@ _VARIANTS = frozenset("\\" + word for word in (
     "varepsilon", "varphi", "vartheta", "varrho", "varsigma", "varpi", "varkappa", "ell", "hbar",
 ))
 _DIFFERENCES = frozenset((r"\Delta", r"\delta"))
-_MARKS = frozenset(("*", "+", "-", r"\ast", r"\star", r"\dagger", r"\prime", r"\circ", r"\pm"))
+_MARKS = frozenset(("*", "+", "-", "'", r"\ast", r"\star", r"\dagger", r"\prime", r"\circ", r"\pm"))
 _SPACING = frozenset((r"\,", r"\;", r"\:", r"\!", r"\ ", "~"))
 
 
