@@ -222,7 +222,7 @@ def test_lines_and_scales_are_those_of_tex(tmp_path: Path, requires_latex: None)
     (r"\sqrt{a - b}", [("", "(a"), ("-", "b)^{1/2}")]),
     (r"\frac{\partial (a + b)}{\partial x}", [("", r"\frac{\partial}{\partial x}"), ("", "((a"),
                                               ("+", "b))")]),
-    (r"3 \cdot (-a + b)", [("", "3"), ("", "(-a"), ("+", "b)")]),
+    (r"3 \cdot (-a + b)", [("", "3"), (r"\cdot", "(-a"), ("+", "b)")]),
 ])
 def test_parts_of_a_wide_formula(body: str, parts: list[tuple[str, str]]) -> None:
     fit = {r"\frac{1}{c d}", r"\frac{1}{c}", r"\frac{\partial}{\partial x}"}
