@@ -6,6 +6,7 @@ on spanning trees (Schnakenberg, Rev. Mod. Phys. 48, 571 (1976), writes it so; f
 
 import pytest
 
+from symbolic_response.appendix import appendix_text
 from symbolic_response.errors import NetworkError
 from symbolic_response.network import read_network_text
 from symbolic_response.network.model import Network
@@ -122,3 +123,10 @@ def test_refused(section: str, message: str) -> None:
         notation_of(network(section))
     assert message in str(caught.value)
     assert "\n" not in str(caught.value)
+
+
+def test_a_document_says_what_energies_are_multiplied_by() -> None:
+    text = appendix_text(network("beta = true"))
+    # in energy form: exp(E - B + F/2), conventions of the README, each in units of energy
+    assert r"\beta = 1/(k_{\mathrm B} T)" in text
+    assert r"e^{\beta \varepsilon_m - \beta B_e + \beta F_e/2}" in text

@@ -50,6 +50,10 @@ ELIMINATION_LETTERS = {
 """The same for tree sums by elimination."""
 
 
+ENERGIES = ("energy", "barrier", "drive")
+"""Roles that are written times the inverse temperature where the notation asks for it."""
+
+
 def proof_letters(notation: Notation) -> dict[str, str]:
     """Return a letter for each role in the proofs."""
     return _chosen(PROOF_LETTERS, notation)
@@ -70,5 +74,8 @@ def _chosen(roles: Mapping[str, Sequence[str]], notation: Notation) -> dict[str,
 
 def letters_of(notation: Notation) -> Mapping[str, str]:
     """Return the letters of the notation, of the proofs and of control parameters by role."""
-    return (dict(notation.letters) | proof_letters(notation) | _chosen(CONTROL_LETTERS, notation)
-            | _chosen(ELIMINATION_LETTERS, notation))
+    letters = (dict(notation.letters) | proof_letters(notation)
+               | _chosen(CONTROL_LETTERS, notation) | _chosen(ELIMINATION_LETTERS, notation))
+    if notation.beta:
+        letters |= {role: f"{notation.beta} {letters[role]}" for role in ENERGIES}
+    return letters

@@ -55,9 +55,14 @@ its own, and $@generator@_{ij}$ is the sum of their rates"""
         noun = "The transition" if len(one_way) == 1 else "The transitions"
         verb = "is" if len(one_way) == 1 else "are"
         text += f"{noun} {', '.join(one_way)} {verb} one-way, $@rate@^-_e = 0$. "
-    text += r"""Rates and currents are in units of inverse time, energies and forces in units of
-$k_{\mathrm B} T$. Stationary probabilities are denoted by $@probability@_k$."""
-    return filled(paper, text)
+    text += "Rates and currents are in units of inverse time, "
+    beta = paper.notation.beta
+    if beta:
+        text += (r"forces in units of $k_{\mathrm B} T$; energies, barriers and drives come times"
+                 rf" the inverse temperature ${beta} = 1/(k_{{\mathrm B}} T)$.")
+    else:
+        text += r"energies and forces in units of $k_{\mathrm B} T$."
+    return filled(paper, text + " Stationary probabilities are denoted by $@probability@_k$.")
 
 
 _ACTIONS = {
@@ -186,7 +191,7 @@ barriers $@barrier@_e$ and the drives $@drive@_e$ as
         _equation(paper, left, state.energy)
         for state, label in zip(network.states, paper.notation.states, strict=True)
         if state.energy is not None
-        and (left := paper.notation.indexed("energy", label)) != paper.latex(state.energy)
+        and (left := filled(paper, f"@energy@_{{{label}}}")) != paper.latex(state.energy)
     ]
     if not equations:
         return text

@@ -85,7 +85,7 @@ def notation_of(network: Network) -> Notation:
         section.states.get(s.name) or s.latex or default_latex(s.name) for s in network.states
     )
     return Notation(
-        letters=_choose_letters(plain_symbol_names(network), own, section.letters),
+        letters=_choose_letters(plain_symbol_names(network), own, section),
         symbols=symbols,
         states=states,
         transitions=_transition_labels(network, states, section),
@@ -171,7 +171,7 @@ def _own_symbols(network: Network) -> dict[Perturbation, str]:
 
 
 def _choose_letters(
-    symbols: Mapping[str, str], own: Mapping[Perturbation, str], asked: Mapping[str, str]
+    symbols: Mapping[str, str], own: Mapping[Perturbation, str], section: NotationSection
 ) -> dict[str, str]:
     """Return for each role the letter asked for, or the first that no symbol has as its base."""
     exempt: dict[str, frozenset[str]] = {
@@ -179,13 +179,13 @@ def _choose_letters(
         "barrier": _owned(own, lambda p: isinstance(p, BarrierOf)),
         "drive": _owned(own, lambda p: isinstance(p, DriveOf)),
     }
-    chosen: dict[str, str] = dict(asked)
+    chosen: dict[str, str] = dict(section.letters)
     for role, letters in LETTERS.items():
-        if role in asked:
+        if role in chosen:
             continue
         spared = exempt.get(role, frozenset())
         taken = _bases(latex for name, latex in symbols.items() if name not in spared)
-        taken |= {same_latex(letter) for letter in chosen.values()}
+        taken |= {same_latex(letter) for letter in (*chosen.values(), section.beta)}
         free = [letter for letter in letters if same_latex(letter) not in taken]
         chosen[role] = free[0] if free else rf"\mathrm{{{role.split()[0]}}}"
     return chosen
