@@ -8,6 +8,8 @@ import pytest
 
 from symbolic_response.appendix import appendix_text
 from symbolic_response.errors import NetworkError
+from symbolic_response.hand.latex.names import names_of
+from symbolic_response.hand.latex.reading import read_formula
 from symbolic_response.network import read_network_text
 from symbolic_response.network.model import Network
 from symbolic_response.network.quantity_reader import read_quantity
@@ -61,7 +63,7 @@ def left(section: str, quantity: str) -> str:
     ("", "forward[hop]", r"w^{+}_{\mathrm{hop}}"),
     ("indices = 'to-from'", "forward[hop]", r"W_{ba}^{(\mathrm{hop})}"),
     ("indices = 'to-from'", "backward[leap]", r"W_{ba}^{(\mathrm{leap})}"),
-    ("indices = 'from-to'", "forward[hop]", r"W_{ab}^{(\mathrm{hop})}"),
+    ("indices = 'from-to'", "forward[hop]", r"w_{ab}^{(\mathrm{hop})}"),
     ("indices = 'to-from'\nletters = {generator = 'R'}", "forward[hop]",
      r"R_{ba}^{(\mathrm{hop})}"),
     ("beta = true", "d p[a] / d barrier[leap]", r"\frac{\partial \pi_{a}}{\partial (\beta B)}"),
@@ -130,3 +132,15 @@ def test_a_document_says_what_energies_are_multiplied_by() -> None:
     # in energy form: exp(E - B + F/2), conventions of the README, each in units of energy
     assert r"\beta = 1/(k_{\mathrm B} T)" in text
     assert r"e^{\beta \varepsilon_m - \beta B_e + \beta F_e/2}" in text
+
+
+@pytest.mark.parametrize(("indices", "formula", "meaning"), [
+    ("to-from", "W_{ba}", "forward[hop] + backward[leap]"),
+    ("to-from", r"W_{ab}^{(\mathrm{hop})}", "backward[hop]"),
+    ("from-to", "w_{ba}", "backward[hop] + forward[leap]"),
+    ("from-to", "W_{ba}", "forward[hop] + backward[leap]"),
+    ("from-to", r"w_{ab}^{(\mathrm{hop})}", "forward[hop]"),
+])
+def test_rates_between_states_are_read(indices: str, formula: str, meaning: str) -> None:
+    described = network(f"indices = '{indices}'")
+    assert read_formula(formula, names_of(described)) == read_quantity(meaning, described)

@@ -91,7 +91,7 @@ def test_forms_in_rates_read_back(path: Path, indices: str, rates: str) -> None:
 @pytest.mark.parametrize(("indices", "tree_sum"), [
     # the trees towards o by hand: l and t step to o; t to l to o; l to t to o
     ("to-from", r"N_{o} &= W_{ol} (W_{lt} + W_{ot}) + W_{tl} W_{ot}"),
-    ("from-to", r"N_{o} &= W_{lo} (W_{tl} + W_{to}) + W_{lt} W_{to}"),
+    ("from-to", r"N_{o} &= w_{lo} (w_{tl} + w_{to}) + w_{lt} w_{to}"),
 ])
 def test_tree_sums_in_rates(indices: str, tree_sum: str) -> None:
     network = read_network(WORKED[0].parent.parent / "turnstile" / "network.toml")

@@ -50,7 +50,7 @@ back with rate $@rate@^-_e$"""
     if len(set(ends)) < len(ends):
         text += r"""; where several transitions join the same two states, each is a mechanism of
 its own, and $@generator@_{ij}$ is the sum of their rates"""
-    text += ". "
+    text += ". " + _indices(paper, len(set(ends)) < len(ends))
     if one_way:
         noun = "The transition" if len(one_way) == 1 else "The transitions"
         verb = "is" if len(one_way) == 1 else "are"
@@ -63,6 +63,20 @@ its own, and $@generator@_{ij}$ is the sum of their rates"""
     else:
         text += r"energies and forces in units of $k_{\mathrm B} T$."
     return filled(paper, text + " Stationary probabilities are denoted by $@probability@_k$.")
+
+
+def _indices(paper: Paper, parallel: bool) -> str:
+    """Return how single rates are written where that is not by transition."""
+    if paper.notation.indices == "transition":
+        return ""
+    if paper.notation.indices == "to-from":
+        letter, direction = "@generator@", ""
+    else:
+        letter, direction = "@rate@", ", the rate from state $i$ to state $j$"
+    text = f"Single rates are written ${letter}_{{ij}}${direction}"
+    if parallel:
+        text += f"; of several transitions ${letter}_{{ij}}^{{(e)}}$ is that of $e$"
+    return text + ". "
 
 
 _ACTIONS = {

@@ -5,7 +5,7 @@ r"""The section ``[notation]`` of a network file: how the network is to be writt
                 LaTeX letters; a letter that is the base of a symbol or of another role is refused
 ``states``      a table from names of states to their labels; ``transitions``, ``observables`` too
 ``indices``     what a rate carries: ``"transition"`` (default), ``"to-from"`` (W_ij is the rate
-                from j to i) or ``"from-to"``
+                from j to i) or ``"from-to"`` (w_ij is the rate from i to j)
 ``rates``       whether results are written in rates: ``"expressions"`` (default: in the symbols of
                 the file), ``"symbols"`` (in rates) or ``"shorter"`` (whichever is)
 ``beta``        true, or a letter: energies, barriers and drives are written times the inverse

@@ -64,7 +64,8 @@ class Notation:
             return f"{self.letters['rate']}^{{{sign}}}_{{{self.transitions[transition]}}}"
         source, target = self.ends[transition][::-1] if backward else self.ends[transition]
         pair = (target, source) if self.indices == "to-from" else (source, target)
-        shown = self.letters["generator"] + f"_{{{joined([self.states[k] for k in pair])}}}"
+        letter = self.letters["generator" if self.indices == "to-from" else "rate"]
+        shown = f"{letter}_{{{joined([self.states[k] for k in pair])}}}"
         alike = [e for e, ends in enumerate(self.ends) if set(ends) == {source, target}]
         return shown if len(alike) == 1 else f"{shown}^{{({self.transitions[transition]})}}"
 

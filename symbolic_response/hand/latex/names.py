@@ -318,7 +318,10 @@ class _Writer:
                     table.try_add(f"{letter}_{{{label}}}", value(place), CHOSEN + other + variant)
 
     def generators(self, states: list[list[tuple[str, int]]]) -> None:
-        """Add W_ij, the rate from j to i summed over parallel channels, and W_ii."""
+        """Add W_ij, the rate from j to i summed over parallel channels, and W_ii.
+
+        Where the notation asks for it also w_ij, the rate from i to j.
+        """
         size = len(states)
         into: dict[tuple[int, int], list[Expression]] = {(k, k): [] for k in range(size)}
         for e, transition in enumerate(self.network.transitions):
@@ -328,19 +331,25 @@ class _Writer:
                 into.setdefault((target, source), []).append(rate)
                 into[source, source].append(negate(rate))
         for (target, source), rates in into.items():
-            value = add(rates)
-            pair = (source, target) if self.notation.indices == "from-to" else (target, source)
-            arrow = r" \to " if self.notation.indices == "from-to" else r" \leftarrow "
-            for letter, other in self.letters("generator"):
-                for first, one in states[pair[0]]:
-                    for second, two in states[pair[1]]:
-                        if one != two and len(states[pair[0]]) == len(states[pair[1]]):
-                            continue  # nobody mixes two kinds of labels
-                        level = CHOSEN + max(other, one, two)
-                        shown = {joined([first, second]): level, f"{first},{second}": level + 1,
-                                 first + arrow + second: level + 1}
-                        for label, rank in shown.items():
-                            self.values.try_add(f"{letter}_{{{label}}}", value, rank)
+            self.between("generator", (target, source), r" \leftarrow ", states, add(rates))
+            if self.notation.indices == "from-to":
+                self.between("rate", (source, target), r" \to ", states, add(rates))
+
+    def between(
+        self, role: str, pair: tuple[int, int], arrow: str, states: list[list[tuple[str, int]]],
+        value: Expression,
+    ) -> None:
+        """Add a letter with two states as its index, in all labels that they have."""
+        for letter, other in self.letters(role):
+            for first, one in states[pair[0]]:
+                for second, two in states[pair[1]]:
+                    if one != two and len(states[pair[0]]) == len(states[pair[1]]):
+                        continue  # nobody mixes two kinds of labels
+                    level = CHOSEN + max(other, one, two)
+                    shown = {joined([first, second]): level, f"{first},{second}": level + 1,
+                             first + arrow + second: level + 1}
+                    for label, rank in shown.items():
+                        self.values.try_add(f"{letter}_{{{label}}}", value, rank)
 
     def raised(
         self, states: list[list[tuple[str, int]]], transitions: list[list[tuple[str, int]]]
