@@ -16,10 +16,11 @@ if os.environ.get("CI"):
 
 @pytest.fixture
 def requires_latex() -> None:
-    """Skip where pdflatex is missing; fail there if the variable CI is set."""
-    if shutil.which("pdflatex") is not None:
+    """Skip where pdflatex or pdftotext is missing; fail there if the variable CI is set."""
+    missing = [name for name in ("pdflatex", "pdftotext") if shutil.which(name) is None]
+    if not missing:
         return
-    message = "pdflatex is not installed"
+    message = f"{' and '.join(missing)} not installed"
     if os.environ.get("CI"):
         pytest.fail(f"{message}, and CI must not skip what needs it")
     pytest.skip(message)

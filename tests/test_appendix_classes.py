@@ -4,7 +4,6 @@ from __future__ import annotations
 
 import itertools
 import re
-import shutil
 import subprocess
 from collections import Counter
 from concurrent.futures import ThreadPoolExecutor
@@ -129,8 +128,6 @@ def compiled(text: str, folder: Path, bib: str | None = None) -> Compiled:
 
 def words_of(folder: Path) -> list[tuple[str, float, float]]:
     """Return the words of the PDF with their left and right ends in pt."""
-    if shutil.which("pdftotext") is None:
-        pytest.skip("pdftotext is not installed")
     subprocess.run(["pdftotext", "-bbox", "one.pdf", "one.html"], cwd=folder, check=True,
                    capture_output=True, timeout=60)
     shown = (folder / "one.html").read_text(encoding="utf-8")

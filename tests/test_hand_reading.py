@@ -8,6 +8,7 @@ the notation means is common practice in papers on kinetic networks, no source.
 from fractions import Fraction
 
 import pytest
+import sympy
 
 from symbolic_response.errors import ExpressionError, FormulaError
 from symbolic_response.expressions.tree import Number, Symbol
@@ -210,7 +211,6 @@ def names_with(symbols: str, rates: str) -> Names:
 ])
 def test_the_latex_of_sympy_is_read(plain: str) -> None:
     """Oracle: the text that SymPy printed, read by the other reader."""
-    sympy = pytest.importorskip("sympy")
     written = {sympy.Symbol(name): latex for name, latex in (
         ("k", "k^{+}"), ("k_on", "k_{on}"), ("mu", r"\mu"), ("F", "F"))}
     expression = sympy.sympify(plain, locals={str(symbol): symbol for symbol in written})

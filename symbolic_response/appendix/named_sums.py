@@ -31,7 +31,6 @@ from symbolic_response.expressions.ring import (
     Polynomial,
     lift,
     lift_exponents,
-    monomial_expression,
     union,
 )
 from symbolic_response.expressions.tree import (
@@ -39,12 +38,9 @@ from symbolic_response.expressions.tree import (
     Function,
     Number,
     Power,
-    Sum,
     Symbol,
     add,
     function,
-    multiply,
-    number,
     walk,
 )
 from symbolic_response.response.analysis import Analysis, AnalysisInRates
@@ -296,23 +292,6 @@ def _content(values: Sequence[Fraction]) -> Fraction:
     return Fraction(
         gcd(*(value.numerator for value in values)), lcm(*(value.denominator for value in values))
     )
-
-
-def expanded(form: Factored) -> list[Expression]:
-    """Return a form with at most one polynomial base as the terms of a sum."""
-    if len(form.factors) != 1 or not isinstance(form.factors[0][0], Polynomial) \
-            or form.factors[0][1] != 1:
-        node = form.expression()
-        return list(node.terms) if isinstance(node, Sum) else [node]
-    base = form.factors[0][0]
-    ring = union([form.ring, base.ring])
-    lead = lift_exponents(form.monomial, form.ring, ring)
-    terms = []
-    for exponents, coefficient in lift(base.poly, base.ring, ring).terms():
-        mapped = [int(a) + b for a, b in zip(exponents, lead, strict=True)]
-        size = number(form.coefficient * int(coefficient))
-        terms.append(multiply([size, monomial_expression(ring, mapped)]))
-    return terms
 
 
 def _common_factor(analysis: Analysis) -> Factored:
