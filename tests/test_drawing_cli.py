@@ -75,3 +75,11 @@ def test_equations_for_a_paper(capsys: pytest.CaptureFixture[str]) -> None:
     first, second = capsys.readouterr().out.splitlines()
     assert first.startswith(r"\pi_{l} = \frac{c k_{in} (t_{b} + s_{f}) + t_{b} s_{b}}{")
     assert second.startswith(r"\frac{\partial \pi_{o}}{\partial E_{o}} = ")
+
+
+@pytest.mark.parametrize("verb", ["compare", "draw", "export", "appendix", "derive"])
+def test_help_sets_examples_line_by_line(verb: str, capsys: pytest.CaptureFixture[str]) -> None:
+    run([verb, "--help"])
+    shown = capsys.readouterr().out
+    assert "\b" not in shown and r"\b" not in shown
+    assert "\n    symbolic-response " in shown

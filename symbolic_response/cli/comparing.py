@@ -51,7 +51,7 @@ def compare(
     trees: int | None,
     terms: int | None,
 ) -> int:
-    r"""Compare hand results with the derived ones: a verdict, a witness, and what went wrong.
+    """Compare hand results with the derived ones: a verdict, a witness, and what went wrong.
 
     The formulas are those of --hand and --tex, without these the [[hand]] entries of
     the network file. Exit status: 0 all equal, 1 one differs or needs a condition,
